@@ -1,0 +1,178 @@
+"""The matrix left on the vertices at an energy: levels below it, and vectors near it.
+
+On a mesh with two ends the matrix is tridiagonal, on a ring it has one more coupling between last and first vertex, eliminated last.
+All functions take many energies at once.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.discrete.elements import Condensed
+
+Array = NDArray[np.float64]
+Complex = NDArray[np.complex128]
+
+
+@dataclass(frozen=True)
+class Chain:
+    """Diagonal (vertices, energies), couplings to the next vertex (vertices - 1, energies), and on a ring the `corner`.
+
+    `corner` (energies,) is the coupling of the last vertex to the first, complex with a Bloch phase; None with two ends.
+    """
+
+    diagonal: Array
+    side: Array
+    corner: Complex | Array | None
+
+
+def vertex_terms(condensed: Condensed, energies: Array, *, mass: bool = False) -> Array:
+    """Return the condensed element matrices at the energies: (elements, 3, energies) for left-left, right-right, left-right.
+
+    With `mass`, minus the derivative with respect to the energy instead: the condensed mass.
+    """
+    gaps = condensed.poles[:, :, None] - energies
+    gaps[gaps == 0] = np.finfo(float).tiny
+    inverse = 1 / gaps**2 if mass else -1 / gaps
+    left, right = condensed.coupling[:, 0], condensed.coupling[:, 1]
+    pairs = np.stack([left * left, right * right, left * right], axis=1)
+    terms: Array = pairs @ inverse
+    for row, (a, b) in enumerate(((0, 0), (1, 1), (0, 1))):
+        heavy = condensed.heavy[:, a, b, None]
+        terms[:, row] += heavy if mass else condensed.stiff[:, a, b, None] - heavy * energies
+    return terms
+
+
+def chain(condensed: Condensed, energies: Array, *, mass: bool = False) -> Chain:
+    """Return the vertex matrix at the energies (or its condensed mass)."""
+    terms = vertex_terms(condensed, energies, mass=mass)
+    mesh = condensed.mesh
+    elements = terms.shape[0]
+    diagonal = np.zeros((elements + 1, terms.shape[2]))
+    diagonal[:-1] += terms[:, 0]
+    diagonal[1:] += terms[:, 1]
+    side = terms[:, 2]
+    if mesh.phase is not None:
+        diagonal[0] += diagonal[-1]
+        turn = np.exp(1j * mesh.phase)
+        corner = side[-1] * (turn.real if abs(turn.imag) < 1e-15 else turn)
+        return Chain(diagonal[:-1], side[:-1], corner)
+    first, last = int(mesh.left.fixed), elements + 1 - int(mesh.right.fixed)
+    return Chain(diagonal[first:last], side[first : last - 1], None)
+
+
+def count_below(condensed: Condensed, energies: Array) -> NDArray[np.int64]:
+    """Return the number of levels of the mesh below each energy, by the inertia of the shifted matrix (Sylvester)."""
+    matrix = chain(condensed, energies)
+    below = np.count_nonzero(condensed.poles[:, :, None] < energies, axis=(0, 1))
+    if matrix.corner is None:
+        return below + _negative(matrix.diagonal, matrix.side)
+    return below + _negative_ring(matrix)
+
+
+def _negative(diagonal: Array, side: Array) -> NDArray[np.int64]:
+    """Return the number of negative pivots of tridiagonal matrices, all columns at once."""
+    tiny = np.finfo(float).tiny ** 0.5
+    count = np.zeros(diagonal.shape[1], dtype=np.int64)
+    if len(diagonal) == 0:
+        return count
+    squares = side * side
+    pivot = diagonal[0].copy()
+    with np.errstate(over="ignore"):
+        for row in range(len(side)):
+            pivot[pivot == 0] = -tiny
+            count += pivot < 0
+            pivot = diagonal[row + 1] - squares[row] / pivot
+    count += pivot < 0
+    return count
+
+
+def _negative_ring(matrix: Chain) -> NDArray[np.int64]:
+    """Return the number of negative pivots with the first vertex eliminated last."""
+    if len(matrix.diagonal) == 1:
+        closed = matrix.diagonal[0] + 2 * np.real(matrix.corner)
+        return (closed < 0).astype(np.int64)
+    count, last, _ = eliminate_ring(matrix)
+    return count + (last < 0)
+
+
+def eliminate_ring(matrix: Chain) -> tuple[NDArray[np.int64], Array, list[tuple[Array, Complex]]]:
+    """Eliminate all vertices but the first: negative pivots, what is left of the first, and (pivot, link to the first) of each."""
+    tiny = np.finfo(float).tiny ** 0.5
+    vertices = len(matrix.diagonal)
+    count = np.zeros(matrix.diagonal.shape[1], dtype=np.int64)
+    last = matrix.diagonal[0].astype(float).copy()
+    steps = []
+    pivot = matrix.diagonal[1].copy()
+    link = matrix.side[0].astype(complex)
+    for row in range(1, vertices):
+        final = row == vertices - 1
+        if final:
+            link = link + matrix.corner
+        pivot = np.where(pivot == 0, -tiny, pivot)
+        count += pivot < 0
+        last -= np.abs(link) ** 2 / pivot
+        steps.append((pivot, link))
+        if not final:
+            ratio = matrix.side[row] / pivot
+            pivot = matrix.diagonal[row + 1] - matrix.side[row] * ratio
+            link = -ratio * link
+    return count, last, steps
+
+
+def twisted_vectors(matrix: Chain) -> tuple[Array, Array]:
+    """Return for each column the vector z that solves the tridiagonal system but for one row, and the misfit of that row.
+
+    Shapes (vertices, energies) and (energies,): T z = misfit e_r with z_r = 1 and |misfit| least over r, the twisted
+    factorisation (Parlett and Dhillon, Linear Algebra Appl. 267 (1997) 247).
+    """
+    diagonal, side = matrix.diagonal, matrix.side
+    vertices, columns = diagonal.shape
+    tiny = np.finfo(float).tiny ** 0.5
+    down, up = diagonal.copy(), diagonal.copy()
+    squares = side * side
+    with np.errstate(over="ignore"):
+        for row in range(vertices - 1):
+            down[row][down[row] == 0] = tiny
+            down[row + 1] -= squares[row] / down[row]
+        for row in range(vertices - 1, 0, -1):
+            up[row][up[row] == 0] = tiny
+            up[row - 1] -= squares[row - 1] / up[row]
+    gamma = down + up - diagonal
+    twist = np.argmin(np.abs(gamma), axis=0)
+    z = np.zeros_like(diagonal)
+    take = np.arange(columns)
+    z[twist, take] = 1.0
+    with np.errstate(over="ignore", invalid="ignore"):
+        upward, downward = -side / np.where(down[:-1] == 0, tiny, down[:-1]), -side / np.where(up[1:] == 0, tiny, up[1:])
+    for row in range(vertices - 2, -1, -1):
+        z[row] = np.where(row < twist, upward[row] * z[row + 1], z[row])
+    for row in range(vertices - 1):
+        z[row + 1] = np.where(row >= twist, downward[row] * z[row], z[row + 1])
+    return z, gamma[twist, take]
+
+
+def full_vertices(condensed: Condensed, z: NDArray[np.generic]) -> NDArray[np.generic]:
+    """Return vertex values at both ends of each element, (elements, 2, levels), from those of the free vertices."""
+    mesh = condensed.mesh
+    elements = len(mesh.places) - 1
+    if mesh.phase is not None:
+        turn = np.exp(1j * mesh.phase)
+        last = z[:1] * (turn.real if abs(turn.imag) < 1e-15 else turn)
+        whole = np.concatenate([z, last])
+    else:
+        whole = np.zeros((elements + 1, z.shape[1]), dtype=z.dtype)
+        whole[int(mesh.left.fixed) : elements + 1 - int(mesh.right.fixed)] = z
+    return np.stack([whole[:-1], whole[1:]], axis=1)
+
+
+def element_coefficients(condensed: Condensed, z: NDArray[np.generic], energies: Array) -> NDArray[np.generic]:
+    """Return the eigenfunctions' coefficients of the reference functions, (elements, functions, levels), not normalised."""
+    ends = full_vertices(condensed, z)
+    gaps = condensed.poles[:, :, None] - energies
+    gaps[gaps == 0] = np.finfo(float).tiny
+    interior = -(np.swapaxes(condensed.coupling, 1, 2) @ ends) / gaps
+    return condensed.basis @ np.concatenate([ends, interior], axis=1)

@@ -1,0 +1,67 @@
+"""Bracket levels by counting: no level can be missed, and close ones come as groups."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+Array = NDArray[np.float64]
+Count = Callable[[Array], NDArray[np.int64]]
+
+CLOSE = 1e-10
+"""Levels nearer to each other than this share of their distance to the bottom are handled as one group."""
+
+
+@dataclass(frozen=True)
+class Group:
+    """Levels number `first` ... `first + size - 1`, all of them in (low, high), and no others there."""
+
+    first: int
+    size: int
+    low: float
+    high: float
+
+
+def isolate(count: Count, first: int, last: int, low: float, high: float) -> list[Group]:
+    """Return groups that hold the levels first ... last, given count(low) <= first and count(high) > last.
+
+    Each bracket is cut at several energies at once, until it holds one level or is narrower than `CLOSE` of its distance to `low`.
+    """
+    bottom = low
+    ends = count(np.array([low, high]))
+    todo = [Group(int(ends[0]), int(ends[1] - ends[0]), low, high)]
+    done: list[Group] = []
+    while todo:
+        cuts = [_cuts(group, first, last) for group in todo]
+        counts = np.split(count(np.concatenate(cuts)), np.cumsum([len(c) for c in cuts])[:-1])
+        pieces = [piece for group, c, n in zip(todo, cuts, counts, strict=True) for piece in _pieces(group, c, n)]
+        wanted = [g for g in pieces if g.first <= last and g.first + g.size > first]
+        todo = [g for g in wanted if not _settled(g, bottom)]
+        done += [g for g in wanted if _settled(g, bottom)]
+    return sorted(done, key=lambda group: group.first)
+
+
+def _settled(group: Group, bottom: float) -> bool:
+    width = group.high - group.low
+    middle = (group.high + group.low) / 2
+    narrow = width <= CLOSE * (middle - bottom) or width <= 8 * np.spacing(max(abs(group.low), abs(group.high)))
+    return group.size == 1 or narrow
+
+
+def _cuts(group: Group, first: int, last: int) -> Array:
+    """Return energies inside a bracket: several for each wanted level in it."""
+    inside = min(group.first + group.size - 1, last) - max(group.first, first) + 1
+    pieces = int(min(512, max(8, 3 * inside)))
+    return np.linspace(group.low, group.high, pieces + 1)[1:-1]
+
+
+def _pieces(group: Group, cuts: Array, counts: NDArray[np.int64]) -> list[Group]:
+    """Return the non-empty parts of a bracket; a count that rounding made fall is raised to the one below it."""
+    places = np.concatenate([[group.low], cuts, [group.high]])
+    numbers = np.concatenate([[group.first], np.clip(counts, group.first, group.first + group.size), [group.first + group.size]])
+    numbers = np.maximum.accumulate(numbers)
+    rise = np.flatnonzero(np.diff(numbers))
+    return [Group(int(numbers[k]), int(numbers[k + 1] - numbers[k]), float(places[k]), float(places[k + 1])) for k in rise]
