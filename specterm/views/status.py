@@ -1,0 +1,101 @@
+"""Two lines under the screen: what the chosen state is, and how far it can be trusted."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+from specterm.spectrum.result import Level, Spectrum
+from specterm.views.cells import Row, cut, width_of
+from specterm.views.level_table import value_text
+from specterm.views.numbers import duration, short, with_unit
+
+
+@dataclass(frozen=True)
+class Units:
+    """The names of the units, "" when dimensionless, and the coordinate's name."""
+
+    energy: str = ""
+    length: str = ""
+    momentum: str = ""
+    coordinate: str = "x"
+
+
+@dataclass(frozen=True)
+class MomentsText:
+    """Expectations and spreads of place and momentum in a state; NaN where one is not known."""
+
+    x: float
+    spread_x: float
+    p: float
+    spread_p: float
+
+
+def state_line(level: Level | None, units: Units, width: int, *, moments: MomentsText | None = None, mark: str = "…") -> Row:
+    """Return the line for the chosen state; parts at the end that do not fit leave a mark."""
+    if level is None:
+        return ((cut("no level", width, mark), "warn"),)
+    parts = [f"level {level.index}", with_unit(value_text(level), units.energy), level.kind]
+    if level.nodes is not None:
+        parts.append(f"{level.nodes} node{'' if level.nodes == 1 else 's'}")
+    if level.parity:
+        parts.append(level.parity)
+    if moments is not None:
+        name = units.coordinate
+        parts += [
+            f"<{name}> {_amount(moments.x, moments.spread_x, units.length)}",
+            f"spread {with_unit(short(moments.spread_x, 4), units.length)}",
+            f"<p> {_amount(moments.p, moments.spread_p, units.momentum)}",
+            f"spread {with_unit(short(moments.spread_p, 4), units.momentum)}",
+        ]
+    return ((join(parts, width, mark), "chosen"),)
+
+
+def _amount(value: float, spread: float, unit: str) -> str:
+    """Return an expectation; one that is nothing beside its spread is shown as 0."""
+    return with_unit("0" if abs(value) < 1e-9 * abs(spread) else short(value, 5), unit)
+
+
+def join(parts: Sequence[str], width: int, mark: str = "…", gap: str = "  ") -> str:
+    """Return the parts in a line of at most `width` columns; whole parts are left out at the end, a mark in their place."""
+    line = gap.join(parts)
+    kept = list(parts)
+    while width_of(line) > width and len(kept) > 1:
+        kept.pop()
+        line = gap.join(kept) + gap[:1] + mark
+    return cut(line, width, mark)
+
+
+def trust_line(spectrum: Spectrum | None, units: Units, width: int, *, mark: str = "…") -> Row:
+    """Return the line of trust: largest error, levels found and bound, whether any is missing, domain, basis, time."""
+    if spectrum is None:
+        return ((cut("no spectrum yet", width, mark), "dim"),)
+    good = spectrum.complete and all(level.kind != "unresolved" for level in spectrum.levels)
+    parts = [_reached(spectrum, units), _found(spectrum), _domain(spectrum, units)]
+    parts += [f"{spectrum.unknowns} unknowns", spectrum.basis, duration(spectrum.seconds)]
+    return ((join([part for part in parts if part], width, mark), "good" if good else "warn"),)
+
+
+def _reached(spectrum: Spectrum, units: Units) -> str:
+    """Return the largest error of the levels that have one."""
+    errors = [level.error for level in spectrum.levels if level.error is not None]
+    if not errors:
+        return "no error known" if spectrum.levels else ""
+    return f"error <= {with_unit(short(max(errors), 1), units.energy)}"
+
+
+def _found(spectrum: Spectrum) -> str:
+    """Return how many levels there are, how many are bound, and whether one may be missing."""
+    count = len(spectrum.levels)
+    words = f"{count} level{'' if count == 1 else 's'}"
+    if spectrum.bound is not None:
+        words += f", {spectrum.bound} bound"
+    unresolved = sum(level.kind == "unresolved" for level in spectrum.levels)
+    if unresolved:
+        words += f", {unresolved} UNRESOLVED"
+    return words + (", complete" if spectrum.complete else ", MAY BE INCOMPLETE")
+
+
+def _domain(spectrum: Spectrum, units: Units) -> str:
+    """Return the part of the domain computed on."""
+    return f"{units.coordinate} {short(spectrum.left, 4)}..{with_unit(short(spectrum.right, 4), units.length)}"
