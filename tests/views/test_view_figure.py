@@ -82,7 +82,7 @@ def test_levels_mode_has_lines_only():
 def test_small_figure_exactly():
     """One level in 16 x 4 ascii cells, as it stands (looked at by eye)."""
     text = plain(draw(scene(source(spectrum(1), potential, AXES), 0), 16, 4, glyphs="ascii", mode="levels"))
-    assert text == ".  :|...|:  .<0\n     |   |\n     '| |'\n      |-|"
+    assert text == ".  :|...|:  .<0\n    |   |\n    '| |'\n     |-|"
 
 
 def test_complex_states_say_so():
