@@ -1,0 +1,1 @@
+"""What outlives a single computation: the document, its file, the presets, rescued text."""
