@@ -1,0 +1,170 @@
+"""Text -> tokens, statement by statement, so that the first mistake in a sheet is the first one reported."""
+
+from __future__ import annotations
+
+import re
+import unicodedata
+from collections.abc import Iterator
+from typing import NamedTuple
+
+from specterm.errors import SheetError, Span
+from specterm.language.catalogue import refuse
+
+MAX_TEXT = 1_000_000
+MAX_NESTING = 200
+MAX_TOKENS = 60_000
+MAX_DIGITS = 400
+
+_SUPERSCRIPTS = "⁰¹²³⁴⁵⁶⁷⁸⁹"
+_TOKEN = re.compile(
+    rf"""(?P<blank>[ \t\r\u00a0\u2000-\u200a\u202f\u205f\u3000]+|\A\ufeff)
+    |(?P<comment>\#[^\n]*)
+    |(?P<newline>\n)
+    |(?P<number>(?:[0-9]+\.?[0-9]*|\.[0-9]+)(?:[eE][+-]?[0-9]+)?)
+    |(?P<name>[^\W\d{_SUPERSCRIPTS}][^\W{_SUPERSCRIPTS}]*)
+    |(?P<string>"[^"\n]*")
+    |(?P<unit>\[[^\[\]\n]*\])
+    |(?P<power>[⁺⁻]?[{_SUPERSCRIPTS}]+)
+    |(?P<op>\*\*|==|!=|<=|>=|[-+*/^()=<>,:;−·⋅×≤≥≠∞])""",
+    re.VERBOSE,
+)
+_CONTROL = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\ud800-\udfff]|\r(?!\n)")
+_OPERATORS = {"**": "^", "−": "-", "·": "*", "⋅": "*", "×": "*", "≤": "<=", "≥": ">=", "≠": "!="}
+_NAMES = {"π": "pi", "ħ": "hbar"}
+_TO_DIGITS = str.maketrans(_SUPERSCRIPTS, "0123456789")
+
+
+class Token(NamedTuple):
+    """One token: `kind` is number, name, op, string, unit or end; `text` as the parser wants it; the place in the sheet."""
+
+    kind: str
+    text: str
+    start: int
+    end: int
+
+    @property
+    def span(self) -> Span:
+        """The characters this token came from."""
+        return Span(self.start, self.end)
+
+
+class Line(NamedTuple):
+    """The tokens of one statement, closed by an `end` token, and its indentation (-1 where it does not start its line)."""
+
+    tokens: list[Token]
+    indent: int
+
+
+def check_text(text: str) -> None:
+    """Refuse a text that is too large or holds control characters, before any other work."""
+    if len(text) > MAX_TEXT or (not text.isascii() and len(text.encode("utf-8", "surrogatepass")) > MAX_TEXT):
+        raise refuse("too-large", None, limit=f"{MAX_TEXT:,}")
+    found = _CONTROL.search(text)
+    if found:
+        raise refuse("control-character", Span(found.start(), found.end()), code=f"U+{ord(found[0]):04X}")
+
+
+def lines(text: str) -> Iterator[Line]:
+    """Yield the statements of `text`; they end at a newline or `;` outside brackets. Empty ones are left out."""
+    tokens: list[Token] = []
+    opened: list[Token] = []
+    begin, fresh, indent, at = 0, True, 0, 0
+    while at < len(text):
+        match = _TOKEN.match(text, at)
+        if match is None:
+            raise _bad_character(text, at, tokens)
+        kind, start, at = match.lastgroup, at, match.end()
+        if kind in {"blank", "comment"}:
+            continue
+        separator = kind == "newline" or match[0] == ";"
+        if separator and opened and kind != "newline":
+            raise refuse("unclosed-bracket", opened[-1].span)
+        if separator:
+            if tokens and not opened:
+                yield _line(tokens, indent)
+                tokens = []
+            begin, fresh = (at, True) if kind == "newline" else (begin, False)
+            continue
+        if not tokens:
+            indent = len(text[begin:start].expandtabs(8)) if fresh else -1
+        fresh = False
+        for token in _tokens(str(kind), match[0], start, at):
+            _match_bracket(token, opened, text)
+            tokens.append(token)
+        if len(tokens) > MAX_TOKENS:
+            raise refuse("too-many-nodes", tokens[0].span, limit="10,000")
+    if opened:
+        raise refuse("unclosed-bracket", opened[-1].span)
+    if tokens:
+        yield _line(tokens, indent)
+
+
+def _line(tokens: list[Token], indent: int) -> Line:
+    """Close a statement with its `end` token, which stands right behind the last one."""
+    last = tokens[-1].end
+    return Line([*tokens, Token("end", "", last, last + 1)], indent)
+
+
+def _tokens(kind: str, raw: str, start: int, end: int) -> Iterator[Token]:
+    """Yield the token, or the tokens, that a piece of text stands for."""
+    if kind == "name":
+        yield Token(kind, _name(raw, start), start, end)
+    elif kind == "op":
+        yield Token("name", "inf", start, end) if raw == "∞" else Token(kind, _OPERATORS.get(raw, raw), start, end)
+    elif kind == "number":
+        if len(raw) > MAX_DIGITS:
+            raise refuse("number-too-long", Span(start, end), limit=MAX_DIGITS)
+        yield Token(kind, raw, start, end)
+    elif kind in {"string", "unit"}:
+        yield Token(kind, raw[1:-1].strip() if kind == "unit" else raw[1:-1], start, end)
+    else:
+        yield Token("op", "^", start, end)
+        if raw[0] in "⁺⁻":
+            yield Token("op", "-" if raw[0] == "⁻" else "+", start, end)
+        yield Token("number", raw.lstrip("⁺⁻").translate(_TO_DIGITS), start, end)
+
+
+def _name(raw: str, start: int) -> str:
+    """Return a name in its canonical spelling; digits of other scripts are refused."""
+    if raw.isascii():
+        return raw
+    for offset, character in enumerate(raw):
+        if character.isdecimal() and not character.isascii():
+            raise refuse("foreign-digit", Span(start + offset, start + offset + 1), found=character)
+    name = unicodedata.normalize("NFKC", raw)
+    return _NAMES.get(name, name)
+
+
+def _match_bracket(token: Token, opened: list[Token], text: str) -> None:
+    """Keep the stack of open brackets; refuse one that closes nothing, is never closed, or lies too deep."""
+    if token.kind != "op":
+        return
+    if token.text == "(":
+        opened.append(token)
+        if len(opened) > MAX_NESTING:
+            raise refuse("too-deep", token.span, limit=MAX_NESTING)
+    elif token.text == ")":
+        if not opened:
+            raise refuse("stray-bracket", token.span)
+        opened.pop()
+    elif token.text == "=" and opened and "\n" in text[opened[-1].end : token.start]:
+        raise refuse("unclosed-bracket", opened[-1].span)
+
+
+def _bad_character(text: str, at: int, tokens: list[Token]) -> SheetError:
+    """Return the error for a character that starts no token."""
+    found, span = text[at], Span(at, at + 1)
+    if found == '"':
+        return refuse("unclosed-quote", span)
+    if found == "[":
+        if text[at + 1 :].lstrip(" \t\r\n")[:1] == "[":
+            return refuse("channels", span)
+        return refuse("unclosed-unit", span)
+    if found.isdigit():
+        return refuse("foreign-digit", span, found=found)
+    if found == "'" and tokens and tokens[-1].end == at:
+        return refuse("prime", span, name=tokens[-1].text)
+    hints = {"&": "and", "|": "or", "!": "not", "~": "not"}
+    if found in hints:
+        return refuse("logic-sign", span, found=found, word=hints[found])
+    return refuse("bad-character", span, found=found if found.isprintable() else f"U+{ord(found):04X}")
