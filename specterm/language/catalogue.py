@@ -273,10 +273,10 @@ _MODEL = {
         "there is no `layers` block for `{name}`", "write one: `layers {name}: thickness, V`", "‸x in layers\nH = p^2"
     ),
     "domain-empty": _model(
-        "the ends of the domain are equal ({left})", "the right end lies above the left one", "H = p^2\nx in ‸(1, 1)"
+        "the ends of the domain are equal ({left})", "the right end lies above the left one", "H = p^2\nx in (‸1, 1)"
     ),
     "domain-reversed": _model(
-        "the left end of the domain ({left}) lies above the right one ({right})", "swap the two", "H = p^2\nx in ‸(1, 0)"
+        "the left end of the domain ({left}) lies above the right one ({right})", "swap the two", "H = p^2\nx in (‸1, 0)"
     ),
     "domain-infinite-ring": _model(
         "a ring has finite ends", "write `x in ring(0, 2*pi)`, or `x in (-inf, inf)`", "H = p^2\nx in ring(0, ‸inf)"
@@ -308,6 +308,25 @@ _MODEL = {
     "level-index": _model(
         "a level is numbered 0, 1, 2, ..., found {found}", "use a whole number from 0", "x in (0, 1)\nH = p^2\nstate s = level(‸0.5)"
     ),
+    "level-outside-state": _model(
+        "a level stands only in a state", "write `state NAME = level(0)`", "x in (0, 1)\nH = p^2 + ‸level(0)", "x in (0, 1)\nV = ‸level(0)\nH = p^2"
+    ),
+    "infinity-place": _model(
+        "`inf` can only be an end of the domain", "use a number here", "x in (0, 1)\nH = p^2 + ‸inf", "x in (0, 2*‸inf)\nH = p^2"
+    ),
+    "state-as-value": _model(
+        "`{name}` is a state and stands for no value", "write its expression again", "x in (0, 1)\nH = p^2\nstate a = x\nstate b = ‸a + 1"
+    ),
+    "layers-coordinate": _model(
+        "the layers belong to `{name}`, but the coordinate is `{coordinate}`",
+        "write `layers {coordinate}: ...`",
+        "‸layers y: thickness, V\n  1 2\nx in (0, 1)\nH = p^2",
+    ),
+    "not-positive": _model("{what} must be above 0, but is {value}", "use a positive number", "hbar = ‸-1\nx in (0, 1)\nH = p^2"),
+    "free-open": _model(
+        "an infinite end cannot be free", "say which end is: `free left` or `free right`", "H = p^2\n‸x in (-inf, inf), free"
+    ),
+    "set-unknown": _model("there is no `{name}` to set in the sheet", "{near}set a name the sheet defines"),
     "state-not-normalisable": _model(
         "the state `{name}` cannot be normalised: {reason}", "let it fall off towards the open ends of the domain"
     ),

@@ -1,0 +1,193 @@
+"""A sheet -> a model: names resolved, units applied, the domain and the operator to diagonalise found."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from pathlib import Path
+
+from specterm.errors import SheetError, Span
+from specterm.language.catalogue import refuse
+from specterm.language.nodes import DomainStatement, Name, Node, Number, Sheet, Unary
+from specterm.language.suggest import nearest
+from specterm.model.domain import FREE, OPEN, RING, WALL, Domain
+from specterm.model.function import Function
+from specterm.model.model import Model
+from specterm.model.operator import Operator, multiplication
+from specterm.model.overrides import overridden
+from specterm.model.scalar import Scalar
+from specterm.model.scope import Scope
+from specterm.model.state import State, build_state
+from specterm.model.term import Term
+from specterm.model.values import Levels
+from specterm.units import UnitSystem
+
+
+def build(sheet: Sheet, *, folder: Path | None = None, overrides: Mapping[str, str] | None = None) -> Model:
+    """Return the model a sheet stands for.
+
+    `folder` is where relative paths start; `overrides` replaces the expressions of definitions (as `--set NAME=VALUE` does; the
+    text is read like the sheet's own, a bare number is in the sheet's units). Raises SheetError with the place of what is wrong.
+    """
+    sheet = overridden(sheet, overrides or {})
+    units = UnitSystem.dimensionless() if sheet.units is None else UnitSystem.make(sheet.units.pairs, sheet.units.span)
+    statement = _domain_statement(sheet)
+    scope = Scope(sheet, units, folder, statement.coordinate)
+    _check_names(sheet, statement.coordinate)
+    if "hbar" in scope.definitions:
+        scope.set_hbar(_hbar(scope))
+    domain = _domain(statement, scope)
+    scope.set_domain(domain)
+    scope.ensure([*scope.definitions, *scope.blocks])
+    return _model(sheet, units, scope, domain)
+
+
+def _model(sheet: Sheet, units: UnitSystem, scope: Scope, domain: Domain) -> Model:
+    operators = {name: v for name, v in scope.values.items() if isinstance(v, Operator)}
+    terms = {name: v for name, v in scope.values.items() if isinstance(v, Term)}
+    _check_levels(scope)
+    constants = {n: t.data for n, t in terms.items() if t.scalar is not None and t.scalar.is_real}
+    functions = {n: Function(t) for n, t in terms.items() if n not in constants}
+    main = _main(sheet, scope, operators)
+    if main not in operators:
+        operators[main] = multiplication(terms[main], scope.setting)
+    states = _states(sheet, scope)
+    return Model(
+        sheet=sheet,
+        units=units,
+        domain=domain,
+        hbar=float(scope.setting.hbar.value.real),
+        parameters={d.name: float(constants[d.name].value) for d in sheet.definitions if d.name in constants},
+        plain=tuple(d.name for d in sheet.definitions if d.name in constants and _is_plain(d.expression)),
+        functions=functions,
+        operators=operators,
+        states=states,
+        main=main,
+        warnings=_warnings(sheet, scope, constants),
+        scope=scope,
+    )
+
+
+def _domain_statement(sheet: Sheet) -> DomainStatement:
+    if not sheet.domains:
+        raise refuse("no-domain", None)
+    if len(sheet.domains) > 1:
+        raise refuse("several-coordinates", sheet.domains[1].coordinate_span)
+    statement = sheet.domains[0]
+    for block in sheet.layers:
+        if block.coordinate != statement.coordinate:
+            raise refuse("layers-coordinate", block.span, name=block.coordinate, coordinate=statement.coordinate)
+    return statement
+
+
+def _check_names(sheet: Sheet, coordinate: str) -> None:
+    for block in sheet.layers:
+        for name, _, span in block.columns[1:]:
+            if name == coordinate:
+                raise refuse("coordinate-defined", span, name=name, line=1)
+
+
+def _hbar(scope: Scope) -> Scalar:
+    node = scope.definitions["hbar"].expression
+    value = scope.scalar(Name(node.span, "hbar"), "`hbar`")
+    if not value.value.real > 0:
+        raise refuse("not-positive", node.span, what="`hbar`", value=f"{value.value:g}")
+    return value
+
+
+def _domain(statement: DomainStatement, scope: Scope) -> Domain:
+    if statement.shape == "layers":
+        return _layered_domain(statement, scope)
+    if statement.left is None or statement.right is None:
+        raise refuse("no-domain", statement.span)
+    left, right = _end(statement.left, "the left end of the domain", scope), _end(statement.right, "the right end of the domain", scope)
+    _check_ends(statement.left, statement.right, left, right)
+    if statement.shape == "ring":
+        for node, end in ((statement.left, left), (statement.right, right)):
+            if not math.isfinite(end):
+                raise refuse("domain-infinite-ring", node.span)
+        phase = None if statement.phase is None else scope.number(statement.phase, "the phase")
+        return Domain(statement.coordinate, left, right, RING, RING, phase)
+    return _interval(statement, left, right)
+
+
+def _interval(statement: DomainStatement, left: float, right: float) -> Domain:
+    free = (statement.free_left, statement.free_right)
+    both = all(free)
+    ends = []
+    for end, is_free in zip((left, right), free, strict=True):
+        ends.append(OPEN if not math.isfinite(end) else FREE if is_free else WALL)
+    if any(free) and FREE not in ends or not both and any(f and e == OPEN for f, e in zip(free, ends, strict=True)):
+        raise refuse("free-open", statement.span)
+    return Domain(statement.coordinate, left, right, ends[0], ends[1])
+
+
+def _layered_domain(statement: DomainStatement, scope: Scope) -> Domain:
+    if not scope.blocks:
+        raise refuse("no-layers", statement.coordinate_span, name=statement.coordinate)
+    scope.ensure(scope.blocks)
+    left = min(float(block.boundaries[0]) for block in scope.layers.values())
+    right = max(float(block.boundaries[-1]) for block in scope.layers.values())
+    return _interval(statement, left, right)
+
+
+def _end(node: Node, what: str, scope: Scope) -> float:
+    """Return one end of the domain: a number, `inf` or `-inf`."""
+    sign, inner = 1.0, node
+    while isinstance(inner, Unary) and inner.operator in "+-":
+        sign, inner = -sign if inner.operator == "-" else sign, inner.operand
+    if isinstance(inner, Name) and inner.name == "inf" and "inf" not in scope.definitions:
+        return sign * math.inf
+    return scope.number(node, what)
+
+
+def _check_ends(left_node: Node, right_node: Node, left: float, right: float) -> None:
+    span = Span(left_node.span.start, right_node.span.end)
+    if left == right:
+        raise refuse("domain-empty", span, left=f"{left:g}")
+    if left > right:
+        raise refuse("domain-reversed", span, left=f"{left:g}", right=f"{right:g}")
+
+
+def _check_levels(scope: Scope) -> None:
+    for name, value in scope.values.items():
+        if isinstance(value, Levels):
+            raise refuse("level-outside-state", scope.definitions[name].expression.span)
+
+
+def _main(sheet: Sheet, scope: Scope, operators: Mapping[str, Operator]) -> str:
+    wanted = sheet.diagonalise
+    if wanted is not None:
+        if wanted.name not in scope.values:
+            raise refuse("diagonalise-unknown", wanted.span, name=wanted.name, near=nearest(wanted.name, scope.values))
+        return wanted.name
+    if "H" in scope.values:
+        return "H"
+    if not operators:
+        raise refuse("no-operator", None)
+    if len(operators) > 1:
+        raise refuse("which-operator", None, names=", ".join(operators))
+    return next(iter(operators))
+
+
+def _states(sheet: Sheet, scope: Scope) -> dict[str, State]:
+    states = {}
+    for s in sheet.states:
+        try:
+            states[s.name] = build_state(s.name, s.name_span, scope.value(s.expression), s.expression.span)
+        except SheetError as error:
+            error.span = error.span or s.name_span
+            raise
+    return states
+
+
+def _is_plain(node: Node) -> bool:
+    """Say whether an expression is a number, perhaps with a sign and a unit."""
+    while isinstance(node, Unary) and node.operator in "+-":
+        node = node.operand
+    return isinstance(node, Number)
+
+
+def _warnings(sheet: Sheet, scope: Scope, constants: Mapping[str, object]) -> tuple[str, ...]:
+    unused = [d.name for d in sheet.definitions if d.name in constants and d.name not in scope.used and d.name != "hbar"]
+    return tuple(f"the parameter `{name}` is never used" for name in unused)

@@ -1,0 +1,88 @@
+"""Is an operator its own formal adjoint, and if not, what could be written instead."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from specterm.model.function import Function
+from specterm.model.normal import vanishes
+from specterm.model.term import UNIT, Term, scaled
+from specterm.model.text import show
+from specterm.model.wordtext import show_word
+
+if TYPE_CHECKING:
+    from specterm.model.operator import Operator, Word
+
+
+@dataclass(frozen=True, slots=True)
+class NotHermitian:
+    """Why an operator is not Hermitian (`reason`) and the form to use instead (`mend`)."""
+
+    reason: str
+    mend: str
+
+
+def hermitian(operator: Operator) -> NotHermitian | None:
+    """Return None where operator == dagger(operator) formally, boundary terms aside.
+
+    Equal words cancel exactly first. The rest is normal ordered and compared at sample places, to 1e-10 of the sum of |terms|; functions
+    that jump count as generic there: their formal derivatives take arbitrary values.
+    """
+    difference = operator - operator.adjoint()
+    if not difference.words:
+        return None
+    domain = operator.setting.domain
+    if all(vanishes(pairs, domain) for pairs in difference.normal.values()):
+        return None
+    return _refusal(operator)
+
+
+def _refusal(operator: Operator) -> NotHermitian:
+    twisted = [w for w in operator.words if w.adjoint() != w and not _partner(w, operator)]
+    words = twisted or list(operator.words)
+    complex_slots = [s for w in words for s in _complex_slots(w)]
+    if complex_slots:
+        function = show(complex_slots[0], operator.setting.coordinate, operator.setting.labels)
+        return NotHermitian(
+            f"the operator is not Hermitian: the function {function} is complex",
+            "use a real function, or add the conjugate: (A + dagger(A))/2 is Hermitian for every A",
+        )
+    bad = [w for w in words if w.order] or words
+    shown = show_word(bad[0].coefficient, bad[0].slots, operator.setting)
+    return NotHermitian(f"the operator is not Hermitian: {shown} is not its own adjoint", _mend(bad, operator))
+
+
+def _partner(word: Word, operator: Operator) -> bool:
+    """Say whether the adjoint of the word stands in the operator with the same weight."""
+    mirror = word.adjoint()
+    for w in operator.words:
+        if w.slots == mirror.slots:
+            gap = w.coefficient - mirror.coefficient
+            return abs(gap.value) <= gap.slack
+    return False
+
+
+def _complex_slots(word: Word) -> list[Term]:
+    found = [s for s in word.slots if not s.broken and not Function(s).is_real]
+    if not word.order and not word.coefficient.is_real:
+        found.append(scaled(word.coefficient, word.slots[0]))
+    return found
+
+
+def _mend(bad: list[Word], operator: Operator) -> str:
+    word, setting = bad[0], operator.setting
+    factors = [s for s in word.slots if s != UNIT]
+    if _is_imaginary(word):
+        return "its coefficient has the wrong phase: p and i*D are Hermitian, D and i*p are not"
+    if word.order == 2 and len(factors) == 1 and factors[0] != word.slots[1]:
+        return f"use the symmetric form {show_word(word.coefficient, (UNIT, factors[0], UNIT), setting)}"
+    shown, mirror = show_word(word.coefficient, word.slots, setting), word.adjoint()
+    return f"use the symmetric form ({shown} + {show_word(mirror.coefficient, mirror.slots, setting)})/2"
+
+
+def _is_imaginary(word: Word) -> bool:
+    """Say whether the coefficient turns its sign on taking the adjoint of a word of equal slots."""
+    mirror = word.adjoint()
+    total = word.coefficient + mirror.coefficient
+    return mirror.slots == word.slots and abs(total.value) <= total.slack

@@ -1,0 +1,127 @@
+"""Normal ordering: derivatives moved to the right by the product rule, and the test whether a sum of terms vanishes."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable, Sequence
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.errors import SheetError
+from specterm.model.derivative import MOST_TERMS, derivative
+from specterm.model.domain import Domain
+from specterm.model.rounding import step
+from specterm.model.scalar import Scalar
+from specterm.model.term import NIL, Term, linear, multiply, spread
+from specterm.model.walk import leaves_first
+
+Pairs = list[tuple[Scalar, Term]]
+Normal = dict[int, Pairs]
+"""For every power of D the coefficient, a sum of (number, function)."""
+
+
+def normal_order(words: Iterable[tuple[Scalar, tuple[Term, ...]]]) -> Normal:
+    """Return the sum of words f0 D f1 ... D fn with all D on the right, equal terms collected.
+
+    Raises SheetError above 10,000 terms.
+    """
+    total: Normal = {}
+    slopes: dict[Term, Term] = {}
+    for coefficient, slots in words:
+        for power, pairs in _one_word(slots, slopes).items():
+            total.setdefault(power, []).extend((coefficient * c, t) for c, t in pairs)
+    return {k: collected for k, pairs in total.items() if (collected := collect(pairs))}
+
+
+def _one_word(slots: tuple[Term, ...], slopes: dict[Term, Term]) -> Normal:
+    """Return the normal order of one word, built from its right end."""
+    current: Normal = {0: [(Scalar(1.0), slots[-1])]}
+    for slot in reversed(slots[:-1]):
+        moved: Normal = {}
+        for power, pairs in current.items():
+            moved.setdefault(power + 1, []).extend(pairs)
+            moved.setdefault(power, []).extend(_derived(pairs, slopes))
+        current = {k: [(c, multiply(slot, t)) for c, t in collect(pairs)] for k, pairs in moved.items()}
+        if sum(map(len, current.values())) > MOST_TERMS:
+            raise SheetError(
+                f"too many terms: moving the derivatives to the right takes more than {MOST_TERMS}",
+                mend="write the operator with fewer products of functions between the momenta",
+            )
+    return current
+
+
+def _derived(pairs: Pairs, slopes: dict[Term, Term]) -> Pairs:
+    result: Pairs = []
+    for c, t in pairs:
+        if t not in slopes:
+            slopes[t] = derivative(t)
+        result.extend(pair for pair in spread(c, slopes[t]) if pair[1] != NIL)
+    return result
+
+
+def collect(pairs: Iterable[tuple[Scalar, Term]]) -> Pairs:
+    """Return the sum with equal terms collected and constant factors in front."""
+    parts = [pair for c, t in pairs for pair in spread(c, t)]
+    term = linear(parts)
+    if term == NIL:
+        return []
+    return spread(Scalar(1.0), term)
+
+
+def vanishes(pairs: Sequence[tuple[Scalar, Term]], domain: Domain | None, tolerance: float = 1e-10) -> bool:
+    """Say whether a sum of terms is zero: exactly, or on a sample to `tolerance` times the sum of |terms|.
+
+    Formal derivatives of functions that jump take arbitrary fixed values, so they only vanish where they cancel.
+    """
+    kept = collect(pairs)
+    if not kept:
+        return True
+    if len(kept) == 1 and kept[0][1].kind == "constant":
+        return False
+    x = sample(domain)
+    total: Any = 0.0
+    size: Any = 0.0
+    noise: Any = 0.0
+    for c, t in kept:
+        values, bound = generic_values(t, x)
+        total, size = total + c.value * values, size + abs(c.value) * np.abs(values)
+        noise = noise + abs(c.value) * bound
+    with np.errstate(all="ignore"):
+        seen = np.isfinite(total) & np.isfinite(size)
+        return bool(np.all(np.abs(total)[seen] <= tolerance * size[seen] + noise[seen]))
+
+
+def generic_values(root: Term, x: NDArray[np.float64]) -> tuple[NDArray[Any], NDArray[np.float64]]:
+    """Return values at x and their rounding bound, edges replaced by arbitrary fixed functions."""
+    values: dict[int, Any] = {}
+    bounds: dict[int, Any] = {}
+    with np.errstate(all="ignore"):
+        for term in leaves_first(root):
+            if term.kind == "edge":
+                values[term.digest], bounds[term.digest] = _arbitrary(term, x), 0.0
+                continue
+            inputs, errors = [values[a.digest] for a in term.args], [bounds[a.digest] for a in term.args]
+            values[term.digest], bounds[term.digest] = step(term, x, inputs, errors)
+    shape = x.shape
+    return np.broadcast_to(np.asarray(values[root.digest]), shape), np.broadcast_to(np.asarray(bounds[root.digest]), shape)
+
+
+def _arbitrary(term: Term, x: NDArray[np.float64]) -> NDArray[Any]:
+    generator = np.random.Generator(np.random.PCG64(term.digest % 2**64))
+    values = generator.uniform(0.5, 2.0, x.shape)
+    return values if term.real else values * np.exp(2j * np.pi * generator.uniform(size=x.shape))
+
+
+def sample(domain: Domain | None) -> NDArray[np.float64]:
+    """Return places to compare functions at: irregular, inside the domain, over several scales where it is open."""
+    steps = np.geomspace(1e-3, 50, 40) * 1.0123456789
+    left, right = (-math.inf, math.inf) if domain is None else (domain.left, domain.right)
+    if math.isfinite(left) and math.isfinite(right):
+        return left + (right - left) * (np.arange(1, 62) * (math.sqrt(5) - 1) / 2 % 1)
+    if math.isfinite(left):
+        return left + steps
+    if math.isfinite(right):
+        return right - steps
+    return np.concatenate([-steps[::-1] * 0.9876543, steps])

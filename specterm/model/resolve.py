@@ -1,0 +1,149 @@
+"""Expression trees -> values: names looked up, units converted, functions and operators combined. Nothing recurses."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+
+from specterm.errors import SheetError, Span
+from specterm.language.catalogue import refuse
+from specterm.language.nodes import Binary, Call, Compare, ForeignLevel, Name, Node, Number, Table, Unary
+from specterm.model import calls, compose
+from specterm.model.scalar import written
+from specterm.model.setting import Setting
+from specterm.model.term import Term, constant
+from specterm.model.values import Value, as_real, negated, power_of, product_of, sum_of
+from specterm.units import UnitSystem
+
+
+@dataclass(frozen=True, slots=True)
+class Context:
+    """What names and tables mean where an expression stands."""
+
+    setting: Setting
+    units: UnitSystem
+    lookup: Callable[[Name], Value]
+    table: Callable[[Table], Term]
+
+
+def resolve(root: Node, context: Context) -> Value:
+    """Return the value of an expression. Raises SheetError with the place of what cannot be."""
+    values: dict[int, Value] = {}
+    stack: list[tuple[Node, bool]] = [(root, False)]
+    while stack:
+        node, ready = stack.pop()
+        parts = operands(node)
+        if parts and not ready:
+            stack.append((node, True))
+            stack.extend((part, False) for part in parts)
+            continue
+        values[id(node)] = _placed(node, [values[id(part)] for part in parts], context)
+    return values[id(root)]
+
+
+def operands(node: Node) -> Sequence[Node]:
+    """Return the expressions a node is made of; sums and products whole, however long."""
+    if isinstance(node, Binary):
+        return [part for _, part in _chain(node)]
+    if isinstance(node, Unary):
+        return (node.operand,)
+    if isinstance(node, Compare):
+        return node.operands
+    if isinstance(node, Call):
+        return node.arguments
+    return (node.index,) if isinstance(node, ForeignLevel) else ()
+
+
+def names_in(root: Node) -> list[Name]:
+    """Return every name in an expression."""
+    found, stack = [], [root]
+    while stack:
+        node = stack.pop()
+        if isinstance(node, Name):
+            found.append(node)
+        stack.extend(operands(node))
+    return found
+
+
+def _chain(node: Binary) -> list[tuple[str, Node]]:
+    """Return the operands of a chain of one level, each with the operator before it, from left to right."""
+    level = {"+": "+-", "-": "+-", "*": "*/", "/": "*/"}.get(node.operator)
+    if level is None:
+        return [("", node.left), (node.operator, node.right)]
+    parts: list[tuple[str, Node]] = []
+    walker: Node = node
+    while isinstance(walker, Binary) and walker.operator in level:
+        parts.append((walker.operator, walker.right))
+        walker = walker.left
+    parts.append((level[0], walker))
+    return parts[::-1]
+
+
+def _placed(node: Node, values: list[Value], context: Context) -> Value:
+    """Return the value of one node; an error without a place gets the node's."""
+    try:
+        value = _value(node, values, context)
+    except SheetError as error:
+        error.span = error.span or node.span
+        raise
+    if isinstance(value, Term) and value.scalar is not None and not value.scalar.is_finite:
+        number = value.scalar.value
+        shown = "undefined" if number != number else "infinite"  # noqa: PLR0124
+        raise refuse("not-finite", node.span, what="this", value=shown)
+    return value
+
+
+def _value(node: Node, values: list[Value], context: Context) -> Value:
+    if isinstance(node, Number):
+        return _number(node, context.units)
+    if isinstance(node, Name):
+        return context.lookup(node)
+    if isinstance(node, Table):
+        return context.table(node)
+    if isinstance(node, Unary):
+        return _unary(node, values[0])
+    if isinstance(node, Binary):
+        return _binary(node, values, context.setting)
+    if isinstance(node, Compare):
+        return _comparison(node, values)
+    if isinstance(node, Call):
+        return calls.call_value(node, values, context.setting)
+    if isinstance(node, ForeignLevel):
+        return calls.level(values[0], node.index.span, node.path, context.setting)
+    raise refuse("not-yet", node.span, what="this expression")
+
+
+def _number(node: Number, units: UnitSystem) -> Term:
+    scalar = written(node.value)
+    if node.unit is not None:
+        scalar = scalar * written(units.parse(node.unit, node.span)[0])
+    return constant(scalar)
+
+
+def _unary(node: Unary, value: Value) -> Value:
+    if node.operator == "not":
+        return compose.logic("not", as_real(value, "the operand of `not`", node.operand.span))
+    return negated(value) if node.operator == "-" else value
+
+
+def _binary(node: Binary, values: list[Value], setting: Setting) -> Value:
+    chain = _chain(node)
+    spans: list[Span] = [part.span for _, part in chain]
+    if node.operator in "+-":
+        return sum_of([(-1 if op == "-" else 1, v, s) for (op, _), v, s in zip(chain, values, spans, strict=True)], setting)
+    if node.operator in "*/":
+        return product_of([(op == "/", v, s) for (op, _), v, s in zip(chain, values, spans, strict=True)], setting)
+    if node.operator == "^":
+        return power_of(values[0], values[1], spans[0], spans[1])
+    what = f"an operand of `{node.operator}`"
+    return compose.logic(node.operator, *(as_real(v, what, s) for v, s in zip(values, spans, strict=True)))
+
+
+def _comparison(node: Compare, values: list[Value]) -> Term:
+    terms = [as_real(v, "a side of a comparison", part.span) for v, part in zip(values, node.operands, strict=True)]
+    result = compose.compare(node.operators[0], terms[0], terms[1])
+    for operator, a, b in zip(node.operators[1:], terms[1:-1], terms[2:], strict=True):
+        result = compose.logic("and", result, compose.compare(operator, a, b))
+    return result
+
+

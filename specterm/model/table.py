@@ -1,0 +1,72 @@
+"""`table(...)` -> a function of the coordinate through the points of a file."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.errors import Span
+from specterm.language.catalogue import refuse
+from specterm.language.nodes import Table
+from specterm.model.domain import Domain
+from specterm.model.spline import cubic, linear
+from specterm.model.tablefile import TableText, column, read_table
+from specterm.model.term import Term, make
+from specterm.units import UnitSystem
+
+Floats = NDArray[np.float64]
+
+
+@dataclass(frozen=True)
+class Points:
+    """What a table says: places `x` (n,), strictly increasing, and values `y` (n,), in the sheet's units."""
+
+    x: Floats
+    y: Floats
+
+
+def build_table(node: Table, folder: Path | None, units: UnitSystem, domain: Domain | None) -> Term:
+    """Return the function a table stands for: a smooth cubic spline (C2, not-a-knot ends) through its points, or straight lines.
+
+    A domain that reaches beyond the points is an error unless `hold` or `extend` is said.
+    """
+    points = _points(read_table(folder, node.path, node.span), node, units)
+    outside = node.outside
+    if domain is not None:
+        covered = points.x[0] <= domain.left and domain.right <= points.x[-1]
+        if outside == "error" and not covered:
+            raise refuse(
+                "table-outside",
+                node.span,
+                left=f"{points.x[0]:g}",
+                right=f"{points.x[-1]:g}",
+                domain=f"({domain.left:g}, {domain.right:g})",
+            )
+        outside = "extend" if covered else outside
+    interpolate = cubic if node.smooth else linear
+    return make("spline", (), interpolate(f'table("{node.path}")', points.x, points.y, outside), real=True)
+
+
+def _points(table: TableText, node: Table, units: UnitSystem) -> Points:
+    (first, first_unit), (second, second_unit) = node.columns
+    x = column(table, first, node.span) * _factor(first_unit, units, node.span)
+    y = column(table, second, node.span) * _factor(second_unit, units, node.span)
+    order = np.argsort(x, kind="stable")
+    x, y = x[order], y[order]
+    same = np.flatnonzero(np.diff(x) == 0)
+    for k in same:
+        if y[k] != y[k + 1]:
+            a, b = sorted((table.lines[order[k]], table.lines[order[k + 1]]))
+            raise refuse("table-conflict", node.span, path=table.path, first=a, second=b, place=f"{x[k]:g}")
+    keep = np.append(True, np.diff(x) > 0)[: len(x)]
+    x, y = x[keep], y[keep]
+    if len(x) < 2:
+        raise refuse("table-too-short", node.span, path=table.path, found=len(x))
+    return Points(x, y)
+
+
+def _factor(unit: str | None, units: UnitSystem, span: Span) -> float:
+    return 1.0 if unit is None else units.parse(unit, span)[0]

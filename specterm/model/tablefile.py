@@ -1,0 +1,123 @@
+"""Reading the text of a table file: columns of numbers with comments and perhaps a header. Never more than a plain file's data."""
+
+from __future__ import annotations
+
+import os
+import re
+import stat
+from dataclasses import dataclass
+from pathlib import Path
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.errors import Span, printable
+from specterm.language.catalogue import refuse
+
+LARGEST_FILE = 50_000_000
+MOST_ROWS = 1_000_000
+_COMMENT = ("#", "%", "!")
+_UNIT = re.compile(r"\s*[\[(][^\])]*[\])]\s*$")
+_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eEdD][+-]?\d+)?", re.ASCII)
+_QUOTED = re.compile(r'"[^"]*"|\S+')
+
+
+@dataclass(frozen=True)
+class TableText:
+    """The lines of a table cut into cells: header names (or none), rows and the line number of each row."""
+
+    path: str
+    names: tuple[str, ...]
+    rows: list[list[str]]
+    lines: list[int]
+
+
+def read_table(folder: Path | None, path: str, span: Span) -> TableText:
+    """Return the cells of a file; `path` starts at `folder`. Only regular files up to 50 MB and 1,000,000 rows are read."""
+    shown = printable(path)
+    full = (folder or Path()) / path
+    try:
+        found = os.stat(full)
+        if not stat.S_ISREG(found.st_mode):
+            raise refuse("file-special", span, path=shown)
+        if found.st_size > LARGEST_FILE:
+            raise refuse("file-too-large", span, path=shown, found=f"{found.st_size} bytes", limit=f"{LARGEST_FILE} bytes")
+        with open(full, "rb") as file:
+            data = file.read(LARGEST_FILE + 1)
+    except FileNotFoundError:
+        raise refuse("file-missing", span, path=shown) from None
+    except (OSError, ValueError) as error:
+        reason = getattr(error, "strerror", None) or "no such name can be"
+        raise refuse("file-unreadable", span, path=shown, reason=reason) from None
+    return _cut(shown, data, span)
+
+
+def _cut(path: str, data: bytes, span: Span) -> TableText:
+    try:
+        text = data.decode("utf-8-sig")
+    except UnicodeDecodeError:
+        raise refuse("file-unreadable", span, path=path, reason="it is not UTF-8 text") from None
+    if "\0" in text:
+        raise refuse("file-unreadable", span, path=path, reason="it is not text")
+    rows, lines = [], []
+    for number, line in enumerate(text.splitlines(), 1):
+        content = line.strip()
+        if content and not content.startswith(_COMMENT):
+            rows.append(content)
+            lines.append(number)
+        if len(rows) > MOST_ROWS + 1:
+            raise refuse("file-too-large", span, path=path, found=f"over {MOST_ROWS} rows", limit=f"{MOST_ROWS} rows")
+    separator = next((s for s in ("\t", ";", ",") if rows and s in rows[0]), None)
+    cells = [_cells(row, separator) for row in rows]
+    names: tuple[str, ...] = ()
+    if cells and not any(_NUMBER.fullmatch(c) for c in cells[0]):
+        names = tuple(_bare(c) for c in cells[0])
+        cells, lines = cells[1:], lines[1:]
+    return TableText(path, names, cells, lines)
+
+
+def _cells(row: str, separator: str | None) -> list[str]:
+    """Return the cells of a row: by the separator where there is one, else by blanks outside quotation marks."""
+    for mark in (" #", " %", " !", "\t#"):
+        row = row.split(mark, 1)[0]
+    if separator is not None:
+        return [c.strip() for c in row.split(separator)]
+    return _QUOTED.findall(row) if '"' in row else row.split()
+
+
+def _bare(name: str) -> str:
+    """Return a header's name without quotation marks and without a unit in brackets behind it."""
+    name = name.strip().strip('"').strip("'").strip()
+    return _UNIT.sub("", name) or name
+
+
+def column(table: TableText, which: str | int, span: Span) -> NDArray[np.float64]:
+    """Return a column, by header or by number from 1, as finite numbers; shape (rows,)."""
+    place = _place(table, which, span)
+    values = np.empty(len(table.rows))
+    for k, row in enumerate(table.rows):
+        cell = row[place].strip('"') if place < len(row) else ""
+        value = float(cell.replace("d", "e").replace("D", "e")) if _NUMBER.fullmatch(cell) else np.nan
+        if not np.isfinite(value):
+            raise refuse("table-cell", span, path=table.path, line=table.lines[k], found=printable(cell))
+        values[k] = value
+    return values
+
+
+def _place(table: TableText, which: str | int, span: Span) -> int:
+    from specterm.language.suggest import nearest
+
+    width = len(table.rows[0]) if table.rows else len(table.names)
+    names = table.names or tuple(str(k) for k in range(1, width + 1))
+    shown = printable(", ".join(names))
+    if isinstance(which, int):
+        if width and which > width:
+            raise refuse("table-column-unknown", span, path=table.path, name=which, near=None, names=shown)
+        return which - 1
+    wanted = _bare(which)
+    exact = [k for k, name in enumerate(table.names) if name == wanted]
+    loose = exact or [k for k, name in enumerate(table.names) if name.casefold() == wanted.casefold()]
+    if not loose:
+        near = nearest(wanted, table.names)
+        raise refuse("table-column-unknown", span, path=table.path, name=f'"{printable(which)}"', near=near, names=shown)
+    return loose[0]
