@@ -89,7 +89,7 @@ class Dimension:
         return Dimension(*(a * power for a in self.powers))
 
     def __bool__(self) -> bool:
-        """False for a plain number."""
+        """Say whether this is more than a plain number."""
         return any(self.powers)
 
     def __str__(self) -> str:
@@ -234,10 +234,9 @@ _UNITS: dict[str, tuple[Decimal, Dimension]] = {
     "percent": (Decimal("0.01"), PLAIN),
     "%": (Decimal("0.01"), PLAIN),
 }
-_PREFIXES = {
-    **dict(zip(("da", "h", "k", "M", "G", "T", "P", "E", "Z", "Y", "R", "Q"), (1, 2, 3, 6, 9, 12, 15, 18, 21, 24, 27, 30), strict=True)),
-    **dict(zip(("d", "c", "m", "u", "μ", "n", "p", "f", "a", "z", "y", "r", "q"), (-1, -2, -3, -6, -6, -9, -12, -15, -18, -21, -24, -27, -30), strict=True)),
-}
+_UP = dict(zip("kMGTPEZYRQ", range(3, 31, 3), strict=True))
+_DOWN = dict(zip("munpfazyrq", (-3, -6, *range(-9, -31, -3)), strict=True))
+_PREFIXES = {"da": 1, "h": 2, **_UP, "d": -1, "c": -2, **_DOWN, "μ": -6}
 _NEVER = {"au": "a_0", "AU": "a_0"}
 _WAVENUMBER = (_times("100", _H, _LIGHT), ENERGY)
 
@@ -288,7 +287,8 @@ def _read(text: str, span: Span | None) -> Quantity:
             total, fresh, below = (Decimal(1), PLAIN), True, below ^ (sign < 0)
             continue
         above = (power * sign > 0) ^ below
-        total = _joined(total, _factor(part["name"], power, sign, fresh, above, span))
+        factor = _energy_for(part["name"], _named(part["name"], span), power, above=above, multiplies=sign > 0 and not fresh)
+        total = _joined(total, _raised(factor, power * sign))
         fresh = False
     if outer or fresh:
         raise broken
@@ -306,14 +306,13 @@ def _exponent(text: str, broken: UnitError) -> Fraction:
     return power
 
 
-def _factor(name: str, power: Fraction, sign: int, first: bool, above: bool, span: Span | None) -> Quantity:
-    """Return one factor of a unit, raised to its power."""
-    if name == "cm" and power == -1 and (first or sign < 0):
-        return _raised(_WAVENUMBER, Fraction(sign))
-    value, dimension = _named(name, span)
-    if dimension == TEMPERATURE and above:
-        value, dimension = _C.multiply(value, _K_B), ENERGY
-    return _raised((value, dimension), power * sign)
+def _energy_for(name: str, quantity: Quantity, power: Fraction, *, above: bool, multiplies: bool) -> Quantity:
+    """Return a unit as the energy that it stands for in its place: `cm^-1` (raised to the power -1 by the caller) and `K`."""
+    if name == "cm" and power == -1 and not multiplies:
+        return _raised(_WAVENUMBER, Fraction(-1))
+    if quantity[1] == TEMPERATURE and above:
+        return _C.multiply(quantity[0], _K_B), ENERGY
+    return quantity
 
 
 def _named(name: str, span: Span | None) -> Quantity:
@@ -398,9 +397,9 @@ class UnitSystem:
             names[lacking[0]] = _label(lacking[0], given[lacking[0]])
         else:
             _check_consistent(given, span)
-        energy, length, mass = given["energy"], given["length"], given["mass"]
-        system = UnitSystem(**names, bases=(energy, length, mass))
-        return UnitSystem(**names, hbar=system.convert((_HBAR, ACTION)), bases=system.bases)
+        bases = (given["energy"], given["length"], given["mass"])
+        hbar = UnitSystem(bases=bases).convert((_HBAR, ACTION))
+        return UnitSystem(names["energy"], names["length"], names["mass"], names["time"], hbar, bases)
 
     def convert(self, quantity: Quantity) -> float:
         """Return an SI quantity as a number in this system, rounded once."""
@@ -459,7 +458,8 @@ def _check_consistent(given: dict[str, Decimal], span: Span | None) -> None:
 
 def _label(quantity: str, value: Decimal) -> str:
     """Return a derived base as a number with a unit, for printing."""
-    units = {"energy": ("eV",), "length": ("nm",), "mass": ("m_e",), "time": ("as", "fs", "ps", "ns", "us", "ms", "s")}[quantity]
+    choices = {"energy": ("eV",), "length": ("nm",), "mass": ("m_e",), "time": ("as", "fs", "ps", "ns", "us", "ms", "s")}
+    units = choices[quantity]
     numbers = [float(_C.divide(value, _named(unit, None)[0])) for unit in units]
     chosen = max((k for k, number in enumerate(numbers) if number >= 1), default=0)
     return f"{numbers[chosen]:.6g} {units[chosen]}"

@@ -34,7 +34,7 @@ class Lines:
 
 
 def parse_layers(cursor: Cursor, stream: Lines) -> LayersBlock:
-    """Return the block whose header is at the cursor; its rows, indented more than the header's line, are taken from `stream`."""
+    """Return the block whose header is at the cursor; its rows, indented more than the header, are taken from `stream`."""
     begin = cursor.take()
     coordinate = cursor.take()
     if coordinate.text in WORDS:

@@ -46,7 +46,7 @@ _TEXT = {
     "foreign-digit": _row("'{found}' is not one of the digits 0 to 9", "write numbers with 0 to 9", "H = ‸٣*p^2", "V‸٣ = 1"),
     "logic-sign": _row("'{found}' has no meaning in a sheet", "write `{word}`", "V = x > 0 ‸& x < 1", "V = ‸!x"),
     "prime": _row("a name has no prime", "call it `{name}1`, say", "f‸' = x"),
-    "unclosed-quote": _row("the quotation mark is never closed", "close it on the same line", "V = table(‸\"a.csv, 1, 2)"),
+    "unclosed-quote": _row("the quotation mark is never closed", "close it on the same line", 'V = table(‸"a.csv, 1, 2)'),
     "unclosed-unit": _row("the bracket '[' is never closed", "close it with ']' on the same line", "a = 3 ‸[nm\nH = p^2"),
     "unclosed-bracket": _row(
         "this '(' is never closed", "close it with ')'", "H = p^2/‸(2*m\nx in (0, 1)\nm = 3", "H = ‸(p; x in (0, 1)"
@@ -58,7 +58,9 @@ _TEXT = {
         "H = " + "(" * 200 + "‸(x" + ")" * 201,
     ),
     "too-many-nodes": _row("the expression is too long: more than {limit} terms", "give parts of it names, or use a table"),
-    "too-many-statements": _row("the sheet has more than {limit} statements", "put data into files and read them with `table(...)`"),
+    "too-many-statements": _row(
+        "the sheet has more than {limit} statements", "put data into files and read them with `table(...)`"
+    ),
     "number-too-long": _row("a number of more than {limit} digits", "write fewer digits: 17 are kept", "a = ‸" + "1" * 401),
     "number-too-large": _row("the number is too large to compute with", "the largest is about 1.8e308", "a = ‸1e999"),
     "number-too-small": _row("the number is too small to compute with", "the smallest is about 1e-307", "a = 2*‸1e-999"),
@@ -72,7 +74,7 @@ _EXPRESSIONS = {
         "H = 2*‸/x",
         "H =‸",
         "x in (0,‸)",
-        "V = (‸lambda: 3)".replace("‸lambda", "lambda‸"),
+        "V = (lambda‸: 3)",
         "diagonalise‸",
         "x in‸",
         "state s‸ x",
@@ -87,15 +89,23 @@ _EXPRESSIONS = {
         "H = p ‸p",
         "H = (x)‸(x)",
     ),
-    "second-equals": _row("a second '=' in one statement", "to compare, write '=='; else end the first statement", "a = b ‸= 3"),
+    "second-equals": _row(
+        "a second '=' in one statement", "to compare, write '=='; else end the first statement", "a = b ‸= 3"
+    ),
     "stray-comma": _row(
         "a comma stands only between the arguments of a function",
         "a decimal number has a point; a domain is written `x in (a, b)`",
         "x = (0‸, 1)",
     ),
-    "loose-not": _row("`not` binds looser than what stands before it", "put `not ...` in brackets", "V = 1 + ‸not x", "V = -‸not x"),
-    "quoted-text": _row("a text in quotation marks is no value", "only `table(...)` and `of` take a file's name", 'V = ‸"a.csv"'),
-    "unit-alone": _row("the unit [{unit}] has no number before it", "write the number, then the unit: `1 [{unit}]`", "V = ‸[nm]"),
+    "loose-not": _row(
+        "`not` binds looser than what stands before it", "put `not ...` in brackets", "V = 1 + ‸not x", "V = -‸not x"
+    ),
+    "quoted-text": _row(
+        "a text in quotation marks is no value", "only `table(...)` and `of` take a file's name", 'V = ‸"a.csv"'
+    ),
+    "unit-alone": _row(
+        "the unit [{unit}] has no number before it", "write the number, then the unit: `1 [{unit}]`", "V = ‸[nm]"
+    ),
     "unit-place": _row(
         "the unit [{unit}] does not stand behind a number",
         "a unit belongs to the number before it: `2 [{unit}]`; multiply by `1 [{unit}]` elsewhere",
@@ -108,7 +118,9 @@ _EXPRESSIONS = {
         'V = ‸table("a.csv", 1)',
     ),
     "column-number": _row("'{found}' is no number of a column", "columns count 1, 2, 3, ...", 'V = table("a.csv", ‸0, 1)'),
-    "empty-path": _row("the name of the file is empty", "write the file's name between the quotation marks", 'V = table(‸"", 1, 2)'),
+    "empty-path": _row(
+        "the name of the file is empty", "write the file's name between the quotation marks", 'V = table(‸"", 1, 2)'
+    ),
     "table-option": _row(
         "a table has no option '{found}'",
         "{near}the options are `linear`, `hold` and `extend`",
@@ -141,7 +153,9 @@ _EXPRESSIONS = {
 }
 
 _STATEMENTS = {
-    "empty": _row("the sheet is empty: it defines no operator", "write, for instance, `H = p^2/2 + x^2/2` and `x in (-inf, inf)`"),
+    "empty": _row(
+        "the sheet is empty: it defines no operator", "write, for instance, `H = p^2/2 + x^2/2` and `x in (-inf, inf)`"
+    ),
     "no-statement": _row(
         "this line is no statement: a statement is `name = expression`, `x in (a, b)` and the like",
         "give the expression a name: `H = ...`",
@@ -167,13 +181,17 @@ _STATEMENTS = {
     ),
     "name-with-blank": _row("'{found}': a name has no blank in it", "join the words with '_'", "‸my x in (0, 1)"),
     "units-form": _row(
-        "the units are not given as they should be", "write `units: energy meV, length nm, mass m_e`", "‸units energy meV".replace(" e", "(e")
+        "the units are not given as they should be", "write `units: energy meV, length nm, mass m_e`", "‸units(energy meV)"
     ),
     "layers-form": _row(
-        "the layers are not given as they should be", "write `layers x: thickness, V, m` and indent the rows below it", "‸layers: thickness, V"
+        "the layers are not given as they should be",
+        "write `layers x: thickness, V, m` and indent the rows below it",
+        "‸layers: thickness, V",
     ),
     "state-form": _row("a state needs a name", "write `state NAME = ...`", "‸state: x"),
-    "reserved-word": _row("`{name}` is a word of the language", "choose another name", "‸inf = 3", "‸and = 2", "state ‸not = 2"),
+    "reserved-word": _row(
+        "`{name}` is a word of the language", "choose another name", "‸inf = 3", "‸and = 2", "state ‸not = 2"
+    ),
     "name-twice": _row(
         "`{name}` is defined twice: first in line {line}",
         "keep one of the two, or rename it",
@@ -210,7 +228,9 @@ _STATEMENTS = {
         "{near}the quantities are energy, length, mass and time",
         "units: ‸enrgy eV",
     ),
-    "quantity-twice": _row("two units for one quantity, {name}", "keep one of the two", "units: energy eV, length nm, ‸energy meV"),
+    "quantity-twice": _row(
+        "two units for one quantity, {name}", "keep one of the two", "units: energy eV, length nm, ‸energy meV"
+    ),
 }
 
 _DOMAINS = {
@@ -225,7 +245,9 @@ _DOMAINS = {
     ),
     "option-twice": _row("`{name}` is given twice", "keep one of the two", "x in ring(0, 1), phase 0.1, ‸phase 0.2"),
     "phase-without-ring": _row("only a ring has a phase", "write `x in ring(a, b), phase ...`", "x in (0, 1), ‸phase 0.2"),
-    "free-ring": _row("a ring has no ends that could be free", "delete `free`, or write `x in (a, b), free`", "x in ring(0, 1), ‸free"),
+    "free-ring": _row(
+        "a ring has no ends that could be free", "delete `free`, or write `x in (a, b), free`", "x in ring(0, 1), ‸free"
+    ),
     "first-column": _row(
         "the first column of a `layers` block is the thickness, found '{found}'",
         "write `layers x: thickness, ...`",
@@ -244,15 +266,11 @@ _DOMAINS = {
 }
 
 _MODEL = {
-    "unknown-name": _model(
-        "`{name}` is not defined", "{near}define it: `{name} = ...`", "x in (0, 1)\nH = p^2/2 + ‸kappa*x^2"
-    ),
+    "unknown-name": _model("`{name}` is not defined", "{near}define it: `{name} = ...`", "x in (0, 1)\nH = p^2/2 + ‸kappa*x^2"),
     "unknown-function": _model(
         "there is no function `{name}`", "{near}for a product write `{name}*(...)`", "x in (0, 1)\nH = p^2 + ‸sinn(x)"
     ),
-    "argument-count": _model(
-        "`{name}` takes {wanted}, found {found}", "give it {wanted}", "x in (0, 1)\nH = p^2 + ‸sin(x, 2)"
-    ),
+    "argument-count": _model("`{name}` takes {wanted}, found {found}", "give it {wanted}", "x in (0, 1)\nH = p^2 + ‸sin(x, 2)"),
     "cycle": _model("`{name}` is defined by itself: {path}", "break the circle", "x in (0, 1)\n‸a = b\nb = a\nH = a*p^2"),
     "no-domain": _model(
         "the coordinate has no domain", "say where it lives: `x in (-inf, inf)`, `x in (0, 10)`, ...", "H = p^2/2 + x^2"
@@ -260,9 +278,7 @@ _MODEL = {
     "several-coordinates": _model(
         "more than one coordinate is not available yet", "keep one domain", "x in (0, 1)\n‸y in (0, 1)\nH = p^2"
     ),
-    "no-operator": _model(
-        "the sheet defines no operator", "write, for instance, `H = p^2/2 + x^2/2`", "x in (0, 1)\na = 3"
-    ),
+    "no-operator": _model("the sheet defines no operator", "write, for instance, `H = p^2/2 + x^2/2`", "x in (0, 1)\na = 3"),
     "which-operator": _model(
         "several operators and none is called H: {names}", "say which: `diagonalise NAME`", "x in (0, 1)\nA = p^2\nB = p^4"
     ),
@@ -281,13 +297,13 @@ _MODEL = {
     "domain-infinite-ring": _model(
         "a ring has finite ends", "write `x in ring(0, 2*pi)`, or `x in (-inf, inf)`", "H = p^2\nx in ring(0, ‸inf)"
     ),
-    "not-constant": _model(
-        "{what} must be a number, but depends on `{name}`", "use constants here", "H = p^2\nx in (0, ‸x)"
-    ),
+    "not-constant": _model("{what} must be a number, but depends on `{name}`", "use constants here", "H = p^2\nx in (0, ‸x)"),
     "not-real": _model("{what} must be real, but is {value}", "use a real number here", "H = p^2\nx in (0, ‸1 + i)"),
     "not-finite": _model("{what} is not a finite number: {value}", "check what it is computed from", "H = p^2\nx in (0, ‸1/0)"),
     "operator-here": _model(
-        "{what} must be a number or a function, but contains a derivative", "use functions of the coordinate here", "x in (0, 1)\nH = p^2\nV = sin(‸p)"
+        "{what} must be a number or a function, but contains a derivative",
+        "use functions of the coordinate here",
+        "x in (0, 1)\nH = p^2\nV = sin(‸p)",
     ),
     "division-by-operator": _model(
         "an operator cannot be divided by", "multiply by a function, `(1/f)*...`", "x in (0, 1)\nH = 1/‸p"
@@ -300,29 +316,45 @@ _MODEL = {
     ),
     "too-many-terms": _model("the operator has more than {limit} terms", "use a lower power, or fewer terms in it"),
     "layer-thickness": _model(
-        "the thickness of a layer must be above 0, found {found}", "delete the row, or make it thicker", "layers x: thickness, V\n  ‸0 1\nx in layers\nH = p^2 + V"
+        "the thickness of a layer must be above 0, found {found}",
+        "delete the row, or make it thicker",
+        "layers x: thickness, V\n  ‸0 1\nx in layers\nH = p^2 + V",
     ),
     "state-structure": _model(
-        "the state mixes levels and functions", "a state is a function, or a sum of levels with factors", "x in (0, 1)\nH = p^2\nstate s = ‸level(0)^2"
+        "the state mixes levels and functions",
+        "a state is a function, or a sum of levels with factors",
+        "x in (0, 1)\nH = p^2\nstate s = ‸level(0)^2",
     ),
     "level-index": _model(
-        "a level is numbered 0, 1, 2, ..., found {found}", "use a whole number from 0", "x in (0, 1)\nH = p^2\nstate s = level(‸0.5)"
+        "a level is numbered 0, 1, 2, ..., found {found}",
+        "use a whole number from 0",
+        "x in (0, 1)\nH = p^2\nstate s = level(‸0.5)",
     ),
     "level-outside-state": _model(
-        "a level stands only in a state", "write `state NAME = level(0)`", "x in (0, 1)\nH = p^2 + ‸level(0)", "x in (0, 1)\nV = ‸level(0)\nH = p^2"
+        "a level stands only in a state",
+        "write `state NAME = level(0)`",
+        "x in (0, 1)\nH = p^2 + ‸level(0)",
+        "x in (0, 1)\nV = ‸level(0)\nH = p^2",
     ),
     "infinity-place": _model(
-        "`inf` can only be an end of the domain", "use a number here", "x in (0, 1)\nH = p^2 + ‸inf", "x in (0, 2*‸inf)\nH = p^2"
+        "`inf` can only be an end of the domain",
+        "use a number here",
+        "x in (0, 1)\nH = p^2 + ‸inf",
+        "x in (0, 2*‸inf)\nH = p^2",
     ),
     "state-as-value": _model(
-        "`{name}` is a state and stands for no value", "write its expression again", "x in (0, 1)\nH = p^2\nstate a = x\nstate b = ‸a + 1"
+        "`{name}` is a state and stands for no value",
+        "write its expression again",
+        "x in (0, 1)\nH = p^2\nstate a = x\nstate b = ‸a + 1",
     ),
     "layers-coordinate": _model(
         "the layers belong to `{name}`, but the coordinate is `{coordinate}`",
         "write `layers {coordinate}: ...`",
         "‸layers y: thickness, V\n  1 2\nx in (0, 1)\nH = p^2",
     ),
-    "not-positive": _model("{what} must be above 0, but is {value}", "use a positive number", "hbar = ‸-1\nx in (0, 1)\nH = p^2"),
+    "not-positive": _model(
+        "{what} must be above 0, but is {value}", "use a positive number", "hbar = ‸-1\nx in (0, 1)\nH = p^2"
+    ),
     "free-open": _model(
         "an infinite end cannot be free", "say which end is: `free left` or `free right`", "H = p^2\n‸x in (-inf, inf), free"
     ),
@@ -343,12 +375,18 @@ _MODEL = {
     ),
     "unit-mismatch": _model(
         "`{left}` is {left_kind}, but `{right}` is {right_kind}",
-        "make the two the same kind of quantity{hint}",
+        "a factor is missing or one too many: the second is the first times {factor}",
         "units: energy eV, length nm, mass m_e\nx in (0 [nm], 1 [nm])\nH = p^2/(2*m_e) + ‸3 [nm]",
+        "units: energy meV, length nm, mass m_e\nx in (0, 9)\nH = p^2/(2*m_e) + ‸F*x\nF = 20 [kV/cm]",
+    ),
+    "unit-mismatch-kelvin": _model(
+        "`{left}` is {left_kind}, but `{right}` is {right_kind}",
+        "a number in [K] counts as an energy: give a temperature that k_B multiplies without a unit",
+        "units: energy meV, length nm, mass m_e\nx in (0, 9)\nH = p^2/(2*m_e) + ‸k_B*T\nT = 300 [K]",
     ),
     "unit-argument": _model(
         "`{name}` takes a plain number, but `{argument}` is {kind}",
-        "divide it by {kind}, for instance `1 [...]`",
+        "divide it by {kind}",
         "units: energy eV, length nm, mass m_e\nx in (0, 1)\nH = p^2/(2*m_e) + sin(‸3 [nm])",
     ),
 }

@@ -39,7 +39,7 @@ def parse_expression(text: str, *, state: bool = False) -> Node:
 
 
 def decode(data: bytes) -> str:
-    """Return the text of a sheet's bytes: UTF-8, a byte order mark dropped, line ends made `\\n`.
+    """Return the text of a sheet's bytes: UTF-8, a byte order mark dropped, CRLF made a plain newline.
 
     Raises SheetError where the data is too large or not UTF-8, naming line and column (in bytes) of the first bad byte.
     """

@@ -31,6 +31,7 @@ _TOKEN = re.compile(
 _CONTROL = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\ud800-\udfff]|\r(?!\n)")
 _OPERATORS = {"**": "^", "−": "-", "·": "*", "⋅": "*", "×": "*", "≤": "<=", "≥": ">=", "≠": "!="}
 _NAMES = {"π": "pi", "ħ": "hbar"}
+_WORDS_FOR = {"&": "and", "|": "or", "!": "not", "~": "not"}
 _TO_DIGITS = str.maketrans(_SUPERSCRIPTS, "0123456789")
 
 
@@ -154,17 +155,11 @@ def _match_bracket(token: Token, opened: list[Token], text: str) -> None:
 def _bad_character(text: str, at: int, tokens: list[Token]) -> SheetError:
     """Return the error for a character that starts no token."""
     found, span = text[at], Span(at, at + 1)
-    if found == '"':
-        return refuse("unclosed-quote", span)
-    if found == "[":
-        if text[at + 1 :].lstrip(" \t\r\n")[:1] == "[":
-            return refuse("channels", span)
-        return refuse("unclosed-unit", span)
-    if found.isdigit():
-        return refuse("foreign-digit", span, found=found)
+    if found in _WORDS_FOR:
+        return refuse("logic-sign", span, found=found, word=_WORDS_FOR[found])
     if found == "'" and tokens and tokens[-1].end == at:
         return refuse("prime", span, name=tokens[-1].text)
-    hints = {"&": "and", "|": "or", "!": "not", "~": "not"}
-    if found in hints:
-        return refuse("logic-sign", span, found=found, word=hints[found])
-    return refuse("bad-character", span, found=found if found.isprintable() else f"U+{ord(found):04X}")
+    key = {'"': "unclosed-quote", "[": "unclosed-unit"}.get(found, "foreign-digit" if found.isdigit() else "bad-character")
+    if found == "[" and text[at + 1 :].lstrip(" \t\r\n")[:1] == "[":
+        key = "channels"
+    return refuse(key, span, found=found if found.isprintable() else f"U+{ord(found):04X}")

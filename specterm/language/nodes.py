@@ -110,7 +110,8 @@ class DomainStatement:
     """`x in (a, b), free` and its kin.
 
     `shape` is "interval", "ring" or "layers"; `left` and `right` are expressions (None for "layers"; `inf` and `-inf` are
-    the name `inf`). `free_left`/`free_right` say which ends have zero slope; `phase` is the Bloch phase in units of 2 pi, or None.
+    the name `inf`). `free_left`/`free_right` say which ends have zero slope; `phase` is the Bloch phase in units of 2 pi,
+    or None.
     """
 
     coordinate: str

@@ -9,7 +9,7 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass, field
 
-from specterm.errors import Span
+from specterm.errors import SheetError, Span
 from specterm.language.calls import parse_foreign, parse_table
 from specterm.language.catalogue import refuse
 from specterm.language.chains import Item, fold
@@ -89,11 +89,12 @@ class ExpressionParser:
                 if not self._name(cursor.take()):
                     return
             elif token.kind == "number":
-                return self._number(cursor.take())
+                self._number(cursor.take())
+                return
             else:
                 raise self._no_value()
 
-    def _no_value(self) -> Exception:
+    def _no_value(self) -> SheetError:
         """Return the error for a token that stands where a value should."""
         cursor = self.cursor
         if cursor.sees("string"):
@@ -237,7 +238,7 @@ def whole_expression(cursor: Cursor, *, state: bool = False) -> Node:
     return node
 
 
-def leftover(cursor: Cursor, wanted: str) -> Exception:
+def leftover(cursor: Cursor, wanted: str) -> SheetError:
     """Return the error for a token that cannot go on with the expression before it."""
     token, before = cursor.now, cursor.before
     if token.kind == "unit":

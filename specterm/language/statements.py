@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from specterm.errors import Span, position
+from specterm.errors import SheetError, Span, position
 from specterm.language.blocks import Lines, parse_layers
 from specterm.language.catalogue import refuse
 from specterm.language.cursor import Cursor
@@ -18,7 +18,7 @@ from specterm.language.nodes import (
     StateStatement,
     UnitsStatement,
 )
-from specterm.language.parser import WORDS, leftover, whole_expression
+from specterm.language.parser import WORDS, whole_expression
 from specterm.language.suggest import nearest
 
 MAX_STATEMENTS = 20_000
@@ -193,27 +193,31 @@ def _unit_text(cursor: Cursor) -> str:
     return text
 
 
-def _no_statement(cursor: Cursor) -> Exception:
+def _no_statement(cursor: Cursor) -> SheetError:
     """Return the error for a line that is no statement, guessing what was meant."""
     first, second = cursor.now, cursor.ahead(1)
-    shown = cursor.shown(first)
-    if first.kind == "number":
-        return refuse("loose-number", first.span)
-    if first.kind == "name" and second.kind == "op":
-        if second.text == "==":
-            return refuse("double-equals", second.span, name=shown)
-        if second.text == "(" and "=" in [token.text for token in cursor.tokens if token.kind == "op"]:
-            return refuse("function-definition", first.span, name=shown)
-        if second.text == ":" and (near := nearest(first.text, _KEYWORDS)):
-            return refuse("unknown-statement", first.span, found=shown, near=near)
-    if first.kind == "name" and second.kind == "name":
-        if cursor.ahead(2).text == "in":
-            return refuse("name-with-blank", first.span, found=f"{shown} {cursor.shown(second)}")
-        return refuse("unknown-statement", first.span, found=shown, near=nearest(first.text, _KEYWORDS))
-    if first.text in ("units", "layers", "state") and first.kind == "name":
+    if first.kind != "name":
+        return refuse("loose-number" if first.kind == "number" else "no-statement", first.span)
+    shown, near = cursor.shown(first), nearest(first.text, _KEYWORDS)
+    if first.text in {"units", "layers", "state"}:
         return refuse(f"{first.text}-form", first.span)
-    if first.kind == "name":
-        cursor.take()
-        if not cursor.done() and not cursor.sees("op", "+", "-", "*", "/", "^"):
-            return leftover(cursor, "'=' or 'in'") if cursor.sees("unit") else cursor.unexpected("'=' or 'in'")
+    if second.kind == "name":
+        if cursor.ahead(2).text == "in" or near is None:
+            return refuse("name-with-blank", first.span, found=f"{shown} {cursor.shown(second)}")
+        return refuse("unknown-statement", first.span, found=shown, near=near)
+    return _no_definition(cursor, near)
+
+
+def _no_definition(cursor: Cursor, near: str | None) -> SheetError:
+    """Return the error for a name with something behind it that makes no statement."""
+    first, second = cursor.take(), cursor.now
+    shown = cursor.shown(first)
+    if second.text == "==":
+        return refuse("double-equals", second.span, name=shown)
+    if second.text == ":" and near is not None:
+        return refuse("unknown-statement", first.span, found=shown, near=near)
+    if second.text == "(" and any(token.text == "=" for token in cursor.tokens):
+        return refuse("function-definition", first.span, name=shown)
+    if second.text in {"", ":", ",", "<", ">"}:
+        return cursor.unexpected("'=' or 'in'")
     return refuse("no-statement", first.span)
