@@ -8,6 +8,7 @@ from pathlib import Path
 
 from specterm.errors import SheetError, Span
 from specterm.language.catalogue import refuse
+from specterm.language.dimensions import check_dimensions
 from specterm.language.nodes import DomainStatement, Name, Node, Number, Sheet, Unary
 from specterm.language.suggest import nearest
 from specterm.model.domain import FREE, OPEN, RING, WALL, Domain
@@ -19,19 +20,20 @@ from specterm.model.scalar import Scalar
 from specterm.model.scope import Scope
 from specterm.model.state import State, build_state
 from specterm.model.term import Term
-from specterm.model.values import Levels
 from specterm.units import UnitSystem
 
 
 def build(sheet: Sheet, *, folder: Path | None = None, overrides: Mapping[str, str] | None = None) -> Model:
     """Return the model a sheet stands for.
 
-    `folder` is where relative paths start; `overrides` replaces the expressions of definitions (as `--set NAME=VALUE` does; the
-    text is read like the sheet's own, a bare number is in the sheet's units). Raises SheetError with the place of what is wrong.
+    `folder` is where relative paths start; `overrides` replaces the expressions of definitions (as `--set NAME=VALUE` does;
+    the text is read like the sheet's own, a bare number is in the sheet's units). Raises SheetError with the place of what
+    is wrong.
     """
     sheet = overridden(sheet, overrides or {})
     units = UnitSystem.dimensionless() if sheet.units is None else UnitSystem.make(sheet.units.pairs, sheet.units.span)
     statement = _domain_statement(sheet)
+    check_dimensions(sheet, units)
     scope = Scope(sheet, units, folder, statement.coordinate)
     _check_names(sheet, statement.coordinate)
     if "hbar" in scope.definitions:
@@ -45,7 +47,6 @@ def build(sheet: Sheet, *, folder: Path | None = None, overrides: Mapping[str, s
 def _model(sheet: Sheet, units: UnitSystem, scope: Scope, domain: Domain) -> Model:
     operators = {name: v for name, v in scope.values.items() if isinstance(v, Operator)}
     terms = {name: v for name, v in scope.values.items() if isinstance(v, Term)}
-    _check_levels(scope)
     constants = {n: t.data for n, t in terms.items() if t.scalar is not None and t.scalar.is_real}
     functions = {n: Function(t) for n, t in terms.items() if n not in constants}
     main = _main(sheet, scope, operators)
@@ -100,7 +101,8 @@ def _domain(statement: DomainStatement, scope: Scope) -> Domain:
         return _layered_domain(statement, scope)
     if statement.left is None or statement.right is None:
         raise refuse("no-domain", statement.span)
-    left, right = _end(statement.left, "the left end of the domain", scope), _end(statement.right, "the right end of the domain", scope)
+    left = _end(statement.left, "the left end of the domain", scope)
+    right = _end(statement.right, "the right end of the domain", scope)
     _check_ends(statement.left, statement.right, left, right)
     if statement.shape == "ring":
         for node, end in ((statement.left, left), (statement.right, right)):
@@ -117,7 +119,8 @@ def _interval(statement: DomainStatement, left: float, right: float) -> Domain:
     ends = []
     for end, is_free in zip((left, right), free, strict=True):
         ends.append(OPEN if not math.isfinite(end) else FREE if is_free else WALL)
-    if any(free) and FREE not in ends or not both and any(f and e == OPEN for f, e in zip(free, ends, strict=True)):
+    lost = [f and e == OPEN for f, e in zip(free, ends, strict=True)]
+    if (any(free) and FREE not in ends) or (any(lost) and not both):
         raise refuse("free-open", statement.span)
     return Domain(statement.coordinate, left, right, ends[0], ends[1])
 
@@ -147,12 +150,6 @@ def _check_ends(left_node: Node, right_node: Node, left: float, right: float) ->
         raise refuse("domain-empty", span, left=f"{left:g}")
     if left > right:
         raise refuse("domain-reversed", span, left=f"{left:g}", right=f"{right:g}")
-
-
-def _check_levels(scope: Scope) -> None:
-    for name, value in scope.values.items():
-        if isinstance(value, Levels):
-            raise refuse("level-outside-state", scope.definitions[name].expression.span)
 
 
 def _main(sheet: Sheet, scope: Scope, operators: Mapping[str, Operator]) -> str:

@@ -11,7 +11,7 @@ from specterm.language.suggest import nearest
 from specterm.model import compose
 from specterm.model.elementary import COMPOSED, FUNCTIONS, ORDERED, SECOND_NAMES, first_name
 from specterm.model.setting import Setting
-from specterm.model.term import Term
+from specterm.model.term import UNIT, Term
 from specterm.model.values import LevelPart, Levels, Value, adjoint, as_number, as_operator, as_real, as_term
 
 _COUNTS = {"where": 3, "mod": 2, "re": 1, "im": 1, "arg": 1, "conj": 1, "dagger": 1, "commutator": 2, "level": 1}
@@ -69,4 +69,4 @@ def level(index: Value, span: Span, path: str | None, setting: Setting) -> Level
     number = as_number(index, "the number of a level", span, setting.coordinate)
     if number < 0 or number != int(number):
         raise refuse("level-index", span, found=f"{number:g}")
-    return Levels((LevelPart(compose.constant(1.0), int(number), path),))
+    return Levels((LevelPart(UNIT, int(number), path),))

@@ -4,16 +4,16 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from typing import Any
 
 import numpy as np
 
+from specterm.model.arrays import Values
 from specterm.model.elementary import FUNCTIONS
 from specterm.model.scalar import ONE, ULP, Scalar, snap
-from specterm.model.term import NIL, UNIT, Term, constant, divide, linear, make, multiply, negative, scaled, split, subtract
+from specterm.model.term import NIL, UNIT, Term, constant, divide, linear, make, multiply, scaled, split, subtract
 from specterm.model.walk import rebuild
 
-COMPARISONS: dict[str, Callable[..., Any]] = {
+COMPARISONS: dict[str, Callable[..., Values]] = {
     "<": np.less,
     "<=": np.less_equal,
     ">": np.greater,
@@ -76,7 +76,7 @@ def call(name: str, *args: Term) -> Term:
     return make("call", args, name)
 
 
-def folded(value: Callable[..., Any], args: tuple[Term, ...], ulps: float) -> Term:
+def folded(value: Callable[..., Values], args: tuple[Term, ...], ulps: float) -> Term:
     """Return the constant value(*args) with its slack: what the slack of each argument does, plus the function's own error."""
     numbers = [a.data.value for a in args]
     with np.errstate(all="ignore"):
@@ -90,7 +90,7 @@ def folded(value: Callable[..., Any], args: tuple[Term, ...], ulps: float) -> Te
     return constant(Scalar(snap(result, slack), slack))
 
 
-def _slope(value: Callable[..., Any], numbers: list[Any], k: int, slack: float) -> float:
+def _slope(value: Callable[..., Values], numbers: list[Values], k: int, slack: float) -> float:
     """Return a bound of |d value / d argument k| from both sides, over a step that rounding does not swamp."""
     step = max(8 * slack, 2.0**-26 * min(abs(numbers[k]), 1.0))
     here = _number(value(*numbers))
@@ -101,7 +101,7 @@ def _slope(value: Callable[..., Any], numbers: list[Any], k: int, slack: float) 
     return max(s for s in slopes if math.isfinite(s))
 
 
-def _number(value: Any) -> Any:
+def _number(value: Values) -> Values:
     return complex(value) if np.iscomplexobj(value) else float(value)
 
 
@@ -183,5 +183,3 @@ def modulus(a: Term, b: Term) -> Term:
 def argument(term: Term) -> Term:
     """Return the phase of a complex term, from -pi to pi."""
     return call("atan2", imaginary_part(term), real_part(term))
-
-

@@ -2,9 +2,12 @@
 
 from __future__ import annotations
 
-from specterm.errors import SheetError
-from specterm.model.compose import call, power, where
+from collections.abc import Callable
+
+from specterm.language.catalogue import refuse
+from specterm.model.compose import call, imaginary_part, power, real_part, where
 from specterm.model.elementary import FUNCTIONS
+from specterm.model.places import branches_meet
 from specterm.model.scalar import ONE, Scalar
 from specterm.model.slopes import slope_pairs
 from specterm.model.term import NIL, UNIT, Term, add, constant, divide, linear, make, multiply, scaled, subtract
@@ -23,37 +26,16 @@ def derivative(root: Term) -> Term:
     for term in order:
         slopes[term.digest] = _slope(term, tuple(slopes[a.digest] for a in term.args)) if term.varies else NIL
     if len(order) > MOST_TERMS:
-        raise SheetError(
-            f"a derivative in this operator has more than {MOST_TERMS} terms",
-            mend="write the operator with fewer products of functions between the momenta",
-        )
+        raise refuse("too-many-terms", None, limit=MOST_TERMS)
     return slopes[root.digest]
 
 
 def _slope(term: Term, slopes: tuple[Term, ...]) -> Term:
-    args, kind = term.args, term.kind
-    if kind == "coordinate":
-        return UNIT
-    if kind == "sum":
-        return linear(zip(term.data, slopes, strict=True))
-    if kind == "product":
-        return _product(args, slopes)
-    if kind == "quotient":
-        return _quotient(args[0], args[1], slopes[0], slopes[1])
-    if kind == "power":
-        lowered = power(args[0], constant(float(term.data - 1)))
-        return scaled(Scalar(float(term.data)), multiply(lowered, slopes[0]))
-    if kind == "raise":
-        return _raise(args[0], args[1], slopes)
-    if kind in ("real", "imaginary"):
-        return make(kind, slopes, real=True) if slopes[0].varies else _constant_part(kind, slopes[0])
-    if kind == "where":
-        return _choice(term, slopes)
-    if kind == "call" and not FUNCTIONS[term.data].jumps:
-        return slope_pairs(term.data, args, slopes)
-    if kind == "spline":
-        slope = term.data.derivative()
-        return edge(term) if slope is None else make("spline", (), slope, real=True)
+    """Return the derivative of one term, given those of the terms it is made of; by default it jumps."""
+    return _RULES.get(term.kind, _jump)(term, slopes)
+
+
+def _jump(term: Term, _slopes: tuple[Term, ...]) -> Term:
     return edge(term)
 
 
@@ -64,18 +46,25 @@ def edge(term: Term) -> Term:
     return make("edge", (term,), 1, real=term.real)
 
 
-def _product(args: tuple[Term, ...], slopes: tuple[Term, ...]) -> Term:
-    parts = [multiply(*args[:k], slope, *args[k + 1 :]) for k, slope in enumerate(slopes) if slope != NIL]
+def _product(term: Term, slopes: tuple[Term, ...]) -> Term:
+    parts = [multiply(*term.args[:k], slope, *term.args[k + 1 :]) for k, slope in enumerate(slopes) if slope != NIL]
     return add(*parts)
 
 
-def _quotient(top: Term, bottom: Term, top_slope: Term, bottom_slope: Term) -> Term:
-    """Return top'/bottom - top bottom'/bottom^2, the second power kept apart from what may overflow."""
-    falling = divide(multiply(top, bottom_slope), power(bottom, constant(2.0)))
-    return subtract(divide(top_slope, bottom), falling)
+def _quotient(term: Term, slopes: tuple[Term, ...]) -> Term:
+    """Return top'/bottom - top bottom'/bottom^2."""
+    top, bottom = term.args
+    falling = divide(multiply(top, slopes[1]), power(bottom, constant(2.0)))
+    return subtract(divide(slopes[0], bottom), falling)
 
 
-def _raise(base: Term, exponent: Term, slopes: tuple[Term, ...]) -> Term:
+def _power(term: Term, slopes: tuple[Term, ...]) -> Term:
+    lowered = power(term.args[0], constant(float(term.data - 1)))
+    return scaled(Scalar(float(term.data)), multiply(lowered, slopes[0]))
+
+
+def _raise(term: Term, slopes: tuple[Term, ...]) -> Term:
+    base, exponent = term.args
     parts = []
     if slopes[0] != NIL:
         lowered = power(base, linear([(ONE, exponent), (-ONE, UNIT)]))
@@ -85,14 +74,35 @@ def _raise(base: Term, exponent: Term, slopes: tuple[Term, ...]) -> Term:
     return add(*parts)
 
 
-def _constant_part(kind: str, term: Term) -> Term:
-    value = complex(term.data.value)
-    return constant(Scalar(value.real if kind == "real" else value.imag, term.data.slack))
+def _part(term: Term, slopes: tuple[Term, ...]) -> Term:
+    return real_part(slopes[0]) if term.kind == "real" else imaginary_part(slopes[0])
+
+
+def _call(term: Term, slopes: tuple[Term, ...]) -> Term:
+    return edge(term) if FUNCTIONS[term.data].jumps else slope_pairs(term.data, term.args, slopes)
+
+
+def _spline(term: Term, _slopes: tuple[Term, ...]) -> Term:
+    slope = term.data.derivative()
+    return edge(term) if slope is None else make("spline", (), slope, real=True)
 
 
 def _choice(term: Term, slopes: tuple[Term, ...]) -> Term:
     """Return the slope of the branch taken, plus an edge unless the branches are seen to meet wherever the choice changes."""
-    from specterm.model.places import branches_meet
-
     smooth = where(term.args[0], slopes[1], slopes[2])
     return smooth if branches_meet(term) else add(smooth, edge(term))
+
+
+_RULES: dict[str, Callable[[Term, tuple[Term, ...]], Term]] = {
+    "coordinate": lambda _t, _s: UNIT,
+    "sum": lambda t, s: linear(zip(t.data, s, strict=True)),
+    "product": _product,
+    "quotient": _quotient,
+    "power": _power,
+    "raise": _raise,
+    "real": _part,
+    "imaginary": _part,
+    "where": _choice,
+    "call": _call,
+    "spline": _spline,
+}

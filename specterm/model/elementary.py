@@ -5,9 +5,10 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import reduce
-from typing import Any
 
 import numpy as np
+
+from specterm.model.arrays import Values
 
 
 @dataclass(frozen=True, slots=True)
@@ -21,15 +22,15 @@ class Elementary:
     name: str
     fewest: int
     most: int
-    value: Callable[..., Any]
+    value: Callable[..., Values]
     ulps: float = 4.0
     holomorphic: bool = True
     jumps: bool = False
 
 
-def _special(name: str, which: int | None = None) -> Callable[..., Any]:
-    def value(*arguments: Any) -> Any:
-        from scipy import special
+def _special(name: str, which: int | None = None) -> Callable[..., Values]:
+    def value(*arguments: Values) -> Values:
+        from scipy import special  # noqa: PLC0415 - takes long to import, few sheets need it
 
         result = getattr(special, name)(*arguments)
         return result if which is None else result[which]
@@ -37,21 +38,21 @@ def _special(name: str, which: int | None = None) -> Callable[..., Any]:
     return value
 
 
-def _sech(x: Any) -> Any:
+def _sech(x: Values) -> Values:
     if np.iscomplexobj(x):
         return 1 / np.cosh(x)
     small = np.exp(-np.abs(x))
     return 2 * small / (1 + small * small)
 
 
-def _csch(x: Any) -> Any:
+def _csch(x: Values) -> Values:
     if np.iscomplexobj(x):
         return 1 / np.sinh(x)
     size = np.abs(x)
     return np.copysign(2.0, x) * np.exp(-size) / -np.expm1(-2 * size)
 
 
-def _acot(x: Any) -> Any:
+def _acot(x: Values) -> Values:
     return np.pi / 2 - np.arctan(x) if np.iscomplexobj(x) else np.arctan2(1.0, x)
 
 

@@ -2,18 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING
 
 from specterm.errors import PhysicsError
 from specterm.model.function import Function
 from specterm.model.normal import Pairs, collect, normal_order, vanishes
 from specterm.model.scalar import ONE, Scalar
+from specterm.model.setting import Setting
 from specterm.model.term import UNIT, Term, linear, multiply, spread
-
-if TYPE_CHECKING:
-    from specterm.model.operator import Operator, Word
+from specterm.model.word import Word
 
 _NO_JUMPS = "write the operator so that the jump is not differentiated: p*f*p instead of f*p^2 or (f*p^2 + p^2*f)/2"
 
@@ -38,21 +36,21 @@ class Sturm:
     V: Function
 
 
-def form(operator: Operator) -> Form:
+def form(words: Sequence[Word], setting: Setting) -> Form:
     """Return the weak form. Each word is split where no function that jumps is differentiated, then evenly, then cheaply.
 
     Two equally good splits are averaged, so that a Hermitian word has a Hermitian form. Boundary terms are left out: they
     vanish at walls and on rings and are the natural condition of free ends.
     """
     total: dict[tuple[int, int], Pairs] = {}
-    for word in operator.words:
+    for word in words:
         choices = _best_splits(word)
         share = Scalar(1.0 / len(choices))
         for split in choices:
             for key, pairs in split.items():
                 total.setdefault(key, []).extend((c * share * word.coefficient, t) for c, t in pairs)
     live = {key: kept for key, pairs in sorted(total.items()) if (kept := collect(pairs))}
-    domain = operator.setting.domain
+    domain = setting.domain
     return Form(tuple((key, Function(linear(p))) for key, p in live.items() if len(p) == 1 or not vanishes(p, domain)))
 
 
@@ -83,12 +81,12 @@ def _split(slots: tuple[Term, ...], moved: int) -> Split:
     }
 
 
-def sturm(operator: Operator) -> Sturm:
+def sturm(words: Sequence[Word], setting: Setting) -> Sturm:
     """Return K, B and V of a Hermitian operator of order at most 2 (the caller has tested both).
 
     Raises PhysicsError where the jump of a function would have to be differentiated.
     """
-    weak = dict(form(operator).terms)
+    weak = dict(form(words, setting).terms)
     if any(max(key) > 1 for key in weak):
         raise PhysicsError("a function that jumps stands beside a second derivative", mend=_NO_JUMPS)
     zero = Function(linear([]))
@@ -98,7 +96,7 @@ def sturm(operator: Operator) -> Sturm:
     potential = _real(_combined([(ONE, weak.get((0, 0), zero)), (ONE, slope)]))
     if potential.has_edge or drift.has_edge:
         raise PhysicsError("the jump of a function is differentiated in this operator", mend=_NO_JUMPS)
-    is_zero = drift.constant == 0 or vanishes(spread(ONE, drift.term), operator.setting.domain)
+    is_zero = drift.constant == 0 or vanishes(spread(ONE, drift.term), setting.domain)
     return Sturm(_real(weak.get((1, 1), zero)), None if is_zero else drift, potential)
 
 
@@ -108,5 +106,3 @@ def _combined(parts: Iterable[tuple[Scalar, Function]]) -> Function:
 
 def _real(function: Function) -> Function:
     return function if function.term.real else function.real()
-
-

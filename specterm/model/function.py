@@ -10,6 +10,7 @@ import numpy as np
 from numpy.typing import ArrayLike, NDArray
 
 from specterm.model import compose, term
+from specterm.model.arrays import Values
 from specterm.model.derivative import derivative
 from specterm.model.places import centres, edges, knots
 from specterm.model.rounding import rounding
@@ -17,13 +18,14 @@ from specterm.model.scalar import Scalar, written
 from specterm.model.tape import Tape, compile_term
 from specterm.model.term import Term
 from specterm.model.text import show
+from specterm.model.wide import evaluate
 
 _SAMPLE = np.concatenate([s * np.geomspace(1e-3, 1e3, 61) * 1.0123456789 for s in (-1, 1)])
 
 
 @dataclass(frozen=True, repr=False)
 class Function:
-    """A function of the coordinate. Equal functions are those with the same expression, up to the order of sums and products."""
+    """A function of the coordinate; equal where the expressions are, up to the order of sums and products."""
 
     term: Term
 
@@ -49,9 +51,14 @@ class Function:
             values = values.real
         return np.array(np.broadcast_to(values, places.shape))
 
-    def _raw(self, places: NDArray[np.float64]) -> Any:
+    def _raw(self, places: NDArray[np.float64]) -> Values:
         values = np.asarray(self._tape(places))
-        return values if values.dtype.kind in "fc" else values.astype(float)
+        lost = np.isnan(values)
+        if lost.any() and values.shape == places.shape:
+            rescued = lost & np.isfinite(places)
+            values = values.astype(complex if np.iscomplexobj(values) else float)
+            values[rescued] = evaluate(self.term, places[rescued])[0]
+        return values
 
     def derivative(self) -> Function:
         """Return the derivative; where the function jumps it holds an edge, which stays formal and cannot be evaluated."""
@@ -87,12 +94,17 @@ class Function:
         return knots(self.term)
 
     def centres(self, left: float, right: float) -> NDArray[np.float64]:
-        """Return the natural places within [left, right]: zeros of every sum in the expression that depends on the coordinate."""
+        """Return the natural places within [left, right]: zeros of every sum that depends on the coordinate."""
         return centres(self.term, left, right)
 
     def rounding(self, x: ArrayLike) -> NDArray[np.float64]:
         """Return a bound of |computed - true| at x, in the function's own unit (see `specterm.model.rounding`)."""
-        return rounding(self.term, np.asarray(x, dtype=float))
+        places = np.asarray(x, dtype=float)
+        bounds = rounding(self.term, places)
+        lost = np.isnan(bounds) & np.isfinite(places)
+        if lost.any() and not self.term.broken:
+            bounds[lost] = evaluate(self.term, places[lost])[1]
+        return bounds
 
     def conj(self) -> Function:
         """Return the complex conjugate."""

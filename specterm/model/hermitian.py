@@ -2,17 +2,16 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING
 
 from specterm.model.function import Function
-from specterm.model.normal import vanishes
+from specterm.model.normal import normal_order, vanishes
+from specterm.model.setting import Setting
 from specterm.model.term import UNIT, Term, scaled
 from specterm.model.text import show
+from specterm.model.word import Word, gathered
 from specterm.model.wordtext import show_word
-
-if TYPE_CHECKING:
-    from specterm.model.operator import Operator, Word
 
 
 @dataclass(frozen=True, slots=True)
@@ -23,40 +22,39 @@ class NotHermitian:
     mend: str
 
 
-def hermitian(operator: Operator) -> NotHermitian | None:
-    """Return None where operator == dagger(operator) formally, boundary terms aside.
+def hermitian(words: Sequence[Word], setting: Setting) -> NotHermitian | None:
+    """Return None where the sum of words equals its adjoint formally, boundary terms aside.
 
-    Equal words cancel exactly first. The rest is normal ordered and compared at sample places, to 1e-10 of the sum of |terms|; functions
-    that jump count as generic there: their formal derivatives take arbitrary values.
+    Equal words cancel exactly first. The rest is normal ordered and compared at sample places, to 1e-10 of the sum of
+    |terms|; functions that jump count as generic there: their formal derivatives take arbitrary values.
     """
-    difference = operator - operator.adjoint()
-    if not difference.words:
+    difference = gathered([*words, *(w.adjoint().negative() for w in words)])
+    if not difference:
         return None
-    domain = operator.setting.domain
-    if all(vanishes(pairs, domain) for pairs in difference.normal.values()):
+    normal = normal_order((w.coefficient, w.slots) for w in difference)
+    if all(vanishes(pairs, setting.domain) for pairs in normal.values()):
         return None
-    return _refusal(operator)
+    return _refusal(words, setting)
 
 
-def _refusal(operator: Operator) -> NotHermitian:
-    twisted = [w for w in operator.words if w.adjoint() != w and not _partner(w, operator)]
-    words = twisted or list(operator.words)
+def _refusal(every: Sequence[Word], setting: Setting) -> NotHermitian:
+    words = [w for w in every if w.adjoint() != w and not _partner(w, every)] or every
     complex_slots = [s for w in words for s in _complex_slots(w)]
     if complex_slots:
-        function = show(complex_slots[0], operator.setting.coordinate, operator.setting.labels)
+        function = show(complex_slots[0], setting.coordinate, setting.labels)
         return NotHermitian(
             f"the operator is not Hermitian: the function {function} is complex",
             "use a real function, or add the conjugate: (A + dagger(A))/2 is Hermitian for every A",
         )
     bad = [w for w in words if w.order] or words
-    shown = show_word(bad[0].coefficient, bad[0].slots, operator.setting)
-    return NotHermitian(f"the operator is not Hermitian: {shown} is not its own adjoint", _mend(bad, operator))
+    shown = show_word(bad[0].coefficient, bad[0].slots, setting)
+    return NotHermitian(f"the operator is not Hermitian: {shown} is not its own adjoint", _mend(bad[0], setting))
 
 
-def _partner(word: Word, operator: Operator) -> bool:
-    """Say whether the adjoint of the word stands in the operator with the same weight."""
+def _partner(word: Word, every: Sequence[Word]) -> bool:
+    """Say whether the adjoint of the word stands in the sum with the same weight."""
     mirror = word.adjoint()
-    for w in operator.words:
+    for w in every:
         if w.slots == mirror.slots:
             gap = w.coefficient - mirror.coefficient
             return abs(gap.value) <= gap.slack
@@ -70,8 +68,7 @@ def _complex_slots(word: Word) -> list[Term]:
     return found
 
 
-def _mend(bad: list[Word], operator: Operator) -> str:
-    word, setting = bad[0], operator.setting
+def _mend(word: Word, setting: Setting) -> str:
     factors = [s for s in word.slots if s != UNIT]
     if _is_imaginary(word):
         return "its coefficient has the wrong phase: p and i*D are Hermitian, D and i*p are not"

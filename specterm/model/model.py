@@ -6,14 +6,14 @@ from dataclasses import dataclass, field
 
 from specterm.errors import SheetError
 from specterm.language import parse_expression
-from specterm.language.catalogue import refuse
 from specterm.language.nodes import Sheet
 from specterm.model.domain import Domain
 from specterm.model.function import Function
 from specterm.model.operator import Operator
+from specterm.model.resolve import forbid_levels
 from specterm.model.scope import Scope
 from specterm.model.state import State
-from specterm.model.values import Levels, as_operator
+from specterm.model.values import as_operator
 from specterm.units import UnitSystem
 
 
@@ -22,8 +22,8 @@ class Model:
     """A resolved sheet. Numbers are in the coherent system `units` (dimensionless without one).
 
     `parameters`: the real constants of the sheet in the order written; `plain`: those written as plain numbers, perhaps with
-    unit and sign; `functions`: what depends on the coordinate, and complex constants; `operators`: what contains a derivative, and
-    `main`, the name of the operator to diagonalise; `warnings`: what is odd but no error.
+    unit and sign; `functions`: what depends on the coordinate, and complex constants; `operators`: what contains a
+    derivative, and `main`, the name of the operator to diagonalise; `warnings`: what is odd but no error.
     """
 
     sheet: Sheet
@@ -51,10 +51,8 @@ class Model:
         """
         try:
             node = parse_expression(text)
-            value = self.scope.value(node)
-            if isinstance(value, Levels):
-                raise refuse("level-outside-state", None)
-            return as_operator(value, self.scope.setting, node.span)
+            forbid_levels(node)
+            return as_operator(self.scope.value(node), self.scope.setting, node.span)
         except SheetError as error:
             shown = " ".join(text.split())[:60]
             raise SheetError(f"in the observable `{shown}`: {error.message}", mend=error.mend) from None

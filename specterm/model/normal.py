@@ -9,7 +9,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from specterm.errors import SheetError
+from specterm.language.catalogue import refuse
 from specterm.model.derivative import MOST_TERMS, derivative
 from specterm.model.domain import Domain
 from specterm.model.rounding import step
@@ -45,10 +45,7 @@ def _one_word(slots: tuple[Term, ...], slopes: dict[Term, Term]) -> Normal:
             moved.setdefault(power, []).extend(_derived(pairs, slopes))
         current = {k: [(c, multiply(slot, t)) for c, t in collect(pairs)] for k, pairs in moved.items()}
         if sum(map(len, current.values())) > MOST_TERMS:
-            raise SheetError(
-                f"too many terms: moving the derivatives to the right takes more than {MOST_TERMS}",
-                mend="write the operator with fewer products of functions between the momenta",
-            )
+            raise refuse("too-many-terms", None, limit=MOST_TERMS)
     return current
 
 

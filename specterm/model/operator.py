@@ -5,65 +5,15 @@ from __future__ import annotations
 from collections.abc import Iterable
 from dataclasses import dataclass
 from functools import cached_property
-from typing import TYPE_CHECKING
 
-from specterm.errors import SheetError
-from specterm.model.compose import conjugate
+from specterm.model.form import Form, Sturm, form, sturm
 from specterm.model.function import Function, as_term
+from specterm.model.hermitian import NotHermitian, hermitian
 from specterm.model.normal import Normal, normal_order, vanishes
 from specterm.model.scalar import ONE, Scalar
 from specterm.model.setting import Setting
-from specterm.model.term import COORDINATE, NIL, UNIT, Term, linear, multiply, split
-
-if TYPE_CHECKING:
-    from specterm.model.form import Form, Sturm
-    from specterm.model.hermitian import NotHermitian
-
-MOST_WORDS = 10_000
-LARGEST_ORDER = 16
-
-
-@dataclass(frozen=True, slots=True)
-class Word:
-    """coefficient times f0 D f1 D ... D fn; `slots` are f0..fn, each without constant factor."""
-
-    coefficient: Scalar
-    slots: tuple[Term, ...]
-
-    @property
-    def order(self) -> int:
-        """The number of derivatives."""
-        return len(self.slots) - 1
-
-    def adjoint(self) -> Word:
-        """Return the formal adjoint: reversed, conjugated, a sign for each derivative."""
-        c = self.coefficient.conjugate()
-        return Word(-c if self.order % 2 else c, tuple(conjugate(s) for s in reversed(self.slots)))
-
-
-def word(coefficient: Scalar, slots: Iterable[Term]) -> Word:
-    """Return a word with the constant factors of the slots gathered in front."""
-    kept = []
-    for slot in slots:
-        inner, core = split(slot)
-        coefficient = coefficient * inner
-        kept.append(core)
-    return Word(coefficient, tuple(kept))
-
-
-def gathered(words: Iterable[Word]) -> tuple[Word, ...]:
-    """Return the words with equal ones collected, zeros dropped and all plain functions made one."""
-    pairs: dict[tuple[Term, ...], Scalar] = {}
-    functions: list[tuple[Scalar, Term]] = []
-    for w in words:
-        if w.order == 0:
-            functions.append((w.coefficient, w.slots[0]))
-            continue
-        before = pairs.get(w.slots)
-        pairs[w.slots] = w.coefficient if before is None else before + w.coefficient
-    kept = [Word(c, s) for s, c in pairs.items() if abs(c.value) > c.slack]
-    potential = linear(functions)
-    return (*kept, *([] if potential == NIL else [word(ONE, (potential,))]))
+from specterm.model.term import COORDINATE, UNIT, Term, linear, multiply
+from specterm.model.word import Word, check_size, gathered, word
 
 
 @dataclass(frozen=True)
@@ -80,7 +30,7 @@ class Operator:
         return self._lifted(other) + self
 
     def __neg__(self) -> Operator:
-        return Operator(tuple(Word(-w.coefficient, w.slots) for w in self.words), self.setting)
+        return Operator(tuple(w.negative() for w in self.words), self.setting)
 
     def __sub__(self, other: Operator | Function | complex) -> Operator:
         return self + (-self._lifted(other))
@@ -135,7 +85,7 @@ class Operator:
     @cached_property
     def normal(self) -> Normal:
         """The operator with all derivatives on the right: coefficient sums by power of D."""
-        return normal_order(((w.coefficient, w.slots) for w in self.words))
+        return normal_order((w.coefficient, w.slots) for w in self.words)
 
     @cached_property
     def order(self) -> int:
@@ -156,31 +106,15 @@ class Operator:
 
     def hermitian(self) -> NotHermitian | None:
         """Return None if the operator equals its formal adjoint, else why not and what to write instead."""
-        from specterm.model.hermitian import hermitian
-
-        return hermitian(self)
+        return hermitian(self.words, self.setting)
 
     def form(self) -> Form:
         """Return the weak form (see `specterm.model.form.form`)."""
-        from specterm.model.form import form
-
-        return form(self)
+        return form(self.words, self.setting)
 
     def sturm(self) -> Sturm:
         """Return the real functions K, B and V of a Hermitian operator of order <= 2 (see `specterm.model.form.sturm`)."""
-        from specterm.model.form import sturm
-
-        return sturm(self)
-
-
-def check_size(words: int, order: int) -> None:
-    """Refuse an operator above the limits (SheetError) before it is expanded."""
-    if words > MOST_WORDS:
-        raise SheetError(f"too many terms: the operator would have {words} after expansion, the limit is {MOST_WORDS}",
-                         mend="multiply fewer sums with each other")  # fmt: skip
-    if order > LARGEST_ORDER:
-        raise SheetError(f"the order of the operator is {order}, the limit is {LARGEST_ORDER}",
-                         mend="use lower powers of p or D")  # fmt: skip
+        return sturm(self.words, self.setting)
 
 
 def multiplication(value: Function | Term | Scalar | complex, setting: Setting) -> Operator:
@@ -206,6 +140,6 @@ def position(setting: Setting) -> Operator:
 
 def total(operators: Iterable[tuple[int, Operator]], setting: Setting) -> Operator:
     """Return the sum of operators with signs +1 or -1."""
-    words = [Word(w.coefficient if sign > 0 else -w.coefficient, w.slots) for sign, o in operators for w in o.words]
+    words = [w if sign > 0 else w.negative() for sign, o in operators for w in o.words]
     check_size(len(words), 0)
     return Operator(gathered(words), setting)

@@ -5,10 +5,11 @@ from __future__ import annotations
 import struct
 from dataclasses import dataclass
 from functools import cached_property
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
+
+from specterm.model.arrays import Values
 
 
 @dataclass(frozen=True)
@@ -34,10 +35,10 @@ class Pieces:
         """Return the number of the layer each place is in."""
         return np.searchsorted(self.boundaries, x, side="right")
 
-    def values_at(self, x: NDArray[np.float64]) -> Any:
+    def values_at(self, x: NDArray[np.float64]) -> Values:
         """Return the values at the places x (nan at nan)."""
         return np.where(np.isnan(x), np.nan, self.values[self.index(x)])
 
-    def rounding(self, x: NDArray[np.float64]) -> Any:
+    def rounding(self, x: NDArray[np.float64]) -> Values:
         """Return how far rounding moved the value at each place."""
         return self.slack[self.index(x)]

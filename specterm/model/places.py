@@ -9,22 +9,24 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specterm.model.polynomial import coefficients, roots
-from specterm.model.term import NIL, Term, subtract
+from specterm.model.rounding import rounding
 from specterm.model.tape import compile_term
+from specterm.model.term import NIL, Term, subtract
 from specterm.model.walk import leaves_first
 
 Places = NDArray[np.float64]
 Key = Callable[[Places], NDArray[np.float64]]
 MOST_CENTRES = 12
 MOST_PLACES = 20_000
-_STEPS = np.geomspace(1e-40, 1e40, 2001)
+_STEPS = np.geomspace(1e-40, 1e40, 801)
 
 
 def edges(root: Term, left: float, right: float) -> Places:
     """Return the sorted places strictly between left and right where the function or one of its derivatives jumps.
 
-    Affine and quadratic differences are solved in closed form; the others are bracketed on a sample that is log-geometric around
-    every centre (and even over a finite interval) and bisected to neighbouring floating-point numbers: the right one is returned.
+    Affine and quadratic differences are solved in closed form; the others are bracketed on a sample that is log-geometric
+    around every centre (and even over a finite interval) and bisected to neighbouring floating-point numbers: the right
+    one is returned.
     """
     found: list[Places] = []
     for term in leaves_first(root):
@@ -58,8 +60,10 @@ def switches(term: Term) -> Iterable[Term]:
     elif term.kind == "call" and term.data in ("min", "max"):
         for k, a in enumerate(args):
             yield from (subtract(a, b) for b in args[k + 1 :])
-    elif term.kind in ("where", "logic") and term.kind == "where" and args[0].kind not in ("compare", "logic"):
+    elif term.kind == "where" and args[0].kind not in ("compare", "logic"):
         yield args[0]
+    elif term.kind == "logic":
+        yield from (a for a in args if a.kind not in ("compare", "logic"))
 
 
 def crossings(difference: Term, root: Term, left: float, right: float) -> Places:
@@ -67,8 +71,12 @@ def crossings(difference: Term, root: Term, left: float, right: float) -> Places
     polynomial = coefficients(difference, 2)
     if polynomial is not None:
         return roots(polynomial)
-    values = _values(difference)
-    return _changes(lambda x: np.sign(values(x)), _sample(root, left, right))
+    return _sign_changes(difference, _sample(root, left, right))
+
+
+def _sign_changes(term: Term, sample: Places) -> Places:
+    values = _values(term)
+    return _changes(lambda x: np.sign(values(x)), sample)
 
 
 def _values(term: Term) -> Key:
@@ -105,7 +113,7 @@ def _between(low: Places, high: Places) -> Places:
 
 
 def _sample(root: Term, left: float, right: float) -> Places:
-    """Return sorted places in [left, right], log-geometric around 0, the ends and the zeros of affine parts, even in between."""
+    """Return sorted places in [left, right], log-geometric around 0, the ends and the zeros of affine parts, and even ones."""
     around = _anchors(root, left, right)
     parts = [around]
     for centre in around[:MOST_CENTRES]:
@@ -130,20 +138,16 @@ def _anchors(root: Term, left: float, right: float) -> Places:
 def centres(root: Term, left: float, right: float) -> Places:
     """Return the sorted zeros within [left, right] of every sum in the expression that depends on the coordinate.
 
-    Affine and quadratic sums in closed form, the others by sign changes on the sample of `_sample`, refined to the last bit; the zeros of
-    the coordinate itself count. At most 64 for one sum, those of smallest magnitude.
+    Affine and quadratic sums in closed form, the others by sign changes on the sample of `_sample`, refined to the last bit;
+    the zero of the coordinate itself counts. At most 64 for one sum, those of smallest magnitude.
     """
-    sample = _sample(root, left, right)
-    found = [np.zeros(1)] if any(t.kind == "coordinate" for t in leaves_first(root)) else []
-    for term in leaves_first(root):
-        if term.kind != "sum" or not term.varies or not term.real or term.broken:
-            continue
-        polynomial = coefficients(term, 2)
-        if polynomial is None:
-            values = _values(term)
-            zeros = _changes(lambda x, values=values: np.sign(values(x)), sample)  # type: ignore[misc]
-        else:
-            zeros = roots(polynomial)
+    parts = leaves_first(root)
+    found = [np.zeros(1)] if any(t.kind == "coordinate" for t in parts) else []
+    sums = [t for t in parts if t.kind == "sum" and len(t.args) > 1 and t.varies and t.real and not t.broken]
+    polynomials = [coefficients(t, 2) for t in sums]
+    sample = _sample(root, left, right) if None in polynomials else np.empty(0)
+    for term, polynomial in zip(sums, polynomials, strict=True):
+        zeros = _sign_changes(term, sample) if polynomial is None else roots(polynomial)
         found.append(zeros[np.argsort(np.abs(zeros), kind="stable")][:64])
     every = np.unique(np.concatenate(found)) if found else np.empty(0)
     return every[(every >= left) & (every <= right)]
@@ -167,6 +171,4 @@ def branches_meet(term: Term) -> bool:
     places = np.concatenate(found) if found else np.empty(0)
     if not places.size or term.broken:
         return False
-    from specterm.model.rounding import rounding
-
     return bool(np.all(np.abs(_values(gap)(places)) <= 8 * rounding(gap, places)))

@@ -58,7 +58,7 @@ def _multiplied(a: Coefficients, b: Coefficients) -> Coefficients:
 
 
 def roots(polynomial: Coefficients) -> NDArray[np.float64]:
-    """Return the simple real zeros of a polynomial of degree <= 2, sorted; a double zero does not change the sign and is left out.
+    """Return the simple real zeros of a polynomial of degree <= 2, sorted; a double zero changes no sign and is left out.
 
     The stable form of the quadratic formula: Press et al., Numerical Recipes 5.6 (from memory).
     """

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 from specterm.errors import SheetError, Span
 from specterm.language.catalogue import refuse
@@ -65,6 +66,16 @@ def names_in(root: Node) -> list[Name]:
     return found
 
 
+def forbid_levels(root: Node) -> None:
+    """Refuse `level(n)` in an expression that is no state."""
+    stack = [root]
+    while stack:
+        node = stack.pop()
+        if isinstance(node, ForeignLevel) or (isinstance(node, Call) and node.name == "level"):
+            raise refuse("level-outside-state", node.span)
+        stack.extend(operands(node))
+
+
 def _chain(node: Binary) -> list[tuple[str, Node]]:
     """Return the operands of a chain of one level, each with the operator before it, from left to right."""
     level = {"+": "+-", "-": "+-", "*": "*/", "/": "*/"}.get(node.operator)
@@ -82,7 +93,7 @@ def _chain(node: Binary) -> list[tuple[str, Node]]:
 def _placed(node: Node, values: list[Value], context: Context) -> Value:
     """Return the value of one node; an error without a place gets the node's."""
     try:
-        value = _value(node, values, context)
+        value = _RULES[type(node)](node, values, context)
     except SheetError as error:
         error.span = error.span or node.span
         raise
@@ -91,26 +102,6 @@ def _placed(node: Node, values: list[Value], context: Context) -> Value:
         shown = "undefined" if number != number else "infinite"  # noqa: PLR0124
         raise refuse("not-finite", node.span, what="this", value=shown)
     return value
-
-
-def _value(node: Node, values: list[Value], context: Context) -> Value:
-    if isinstance(node, Number):
-        return _number(node, context.units)
-    if isinstance(node, Name):
-        return context.lookup(node)
-    if isinstance(node, Table):
-        return context.table(node)
-    if isinstance(node, Unary):
-        return _unary(node, values[0])
-    if isinstance(node, Binary):
-        return _binary(node, values, context.setting)
-    if isinstance(node, Compare):
-        return _comparison(node, values)
-    if isinstance(node, Call):
-        return calls.call_value(node, values, context.setting)
-    if isinstance(node, ForeignLevel):
-        return calls.level(values[0], node.index.span, node.path, context.setting)
-    raise refuse("not-yet", node.span, what="this expression")
 
 
 def _number(node: Number, units: UnitSystem) -> Term:
@@ -147,3 +138,13 @@ def _comparison(node: Compare, values: list[Value]) -> Term:
     return result
 
 
+_RULES: dict[type[Node], Callable[[Any, list[Value], Context], Value]] = {
+    Number: lambda node, _values, context: _number(node, context.units),
+    Name: lambda node, _values, context: context.lookup(node),
+    Table: lambda node, _values, context: context.table(node),
+    Unary: lambda node, values, _context: _unary(node, values[0]),
+    Binary: lambda node, values, context: _binary(node, values, context.setting),
+    Compare: lambda node, values, _context: _comparison(node, values),
+    Call: lambda node, values, context: calls.call_value(node, values, context.setting),
+    ForeignLevel: lambda node, values, context: calls.level(values[0], node.index.span, node.path, context.setting),
+}

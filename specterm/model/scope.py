@@ -13,7 +13,7 @@ from specterm.model.calls import KNOWN
 from specterm.model.domain import Domain
 from specterm.model.layers import Layers, build_layers
 from specterm.model.operator import differentiation, momentum
-from specterm.model.resolve import Context, names_in, resolve
+from specterm.model.resolve import Context, forbid_levels, names_in, resolve
 from specterm.model.scalar import Scalar, written
 from specterm.model.setting import Setting
 from specterm.model.table import build_table
@@ -113,8 +113,9 @@ class Scope:
             for name, term in self.layers[key].columns.items():
                 self._keep(name, term)
             return
-        context = Context(self.setting, self.units, self._look_up, self._table)
-        self._keep(key, resolve(self.definitions[key].expression, context))
+        expression = self.definitions[key].expression
+        forbid_levels(expression)
+        self._keep(key, resolve(expression, Context(self.setting, self.units, self._look_up, self._table)))
 
     def _keep(self, name: str, value: Value) -> None:
         self.values[name] = value

@@ -1,4 +1,4 @@
-"""Derivative rules of the elementary functions, one row a function (standard calculus; Bessel and Airy: DLMF 10.6, 10.29, 9.2)."""
+"""Derivative rules of the elementary functions, one row a function (calculus; Bessel and Airy: DLMF 10.6, 10.29, 9.2)."""
 
 from __future__ import annotations
 

@@ -4,11 +4,11 @@ from __future__ import annotations
 
 from dataclasses import dataclass, replace
 from functools import cached_property
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
+from specterm.model.arrays import Values
 from specterm.model.scalar import ULP
 
 Floats = NDArray[np.float64]
@@ -16,7 +16,7 @@ Floats = NDArray[np.float64]
 
 @dataclass(frozen=True)
 class Spline:
-    """A derivative of a piecewise polynomial. `x` are the knots (n,), increasing; piece k is sum over j of c[j, k] (t - x[k])^j.
+    """A derivative of a piecewise polynomial. `x` are the knots (n,), increasing; piece k is the sum of c[j, k] (t - x[k])^j.
 
     `c` has shape (m, n - 1). `outside` says what holds beyond the knots: "error" (nan), "hold" (the end value) or "extend" (the
     last piece goes on). `smooth` is how many derivatives are continuous, `taken` how many have been taken already. `name` is
@@ -54,7 +54,7 @@ class Spline:
         inside = np.clip(t, self.x[0], self.x[-1]) if self.outside == "hold" else t
         return k, inside - self.x[k]
 
-    def values_at(self, t: Floats) -> Any:
+    def values_at(self, t: Floats) -> Values:
         """Return the values at the places t."""
         k, u = self._pieces(t)
         value = self.c[-1][k]
@@ -67,7 +67,7 @@ class Spline:
             value = np.where(beyond, 0.0, value)
         return np.where(np.isnan(t), np.nan, value)
 
-    def rounding(self, t: Floats) -> Any:
+    def rounding(self, t: Floats) -> Values:
         """Return a bound of the error of the values: of the sum, of the coefficients, and of the rounding of t itself."""
         k, u = self._pieces(t)
         size = np.abs(u)
@@ -93,10 +93,7 @@ def cubic(name: str, x: Floats, y: Floats, outside: str) -> Spline:
     """
     if len(x) == 2:
         return linear(name, x, y, outside)
-    if len(x) == 3:
-        slopes = _parabola_slopes(x, y)
-    else:
-        slopes = _slopes(x, y)
+    slopes = _parabola_slopes(x, y) if len(x) == 3 else _slopes(x, y)
     h, d = np.diff(x), np.diff(y) / np.diff(x)
     second = (3 * d - 2 * slopes[:-1] - slopes[1:]) / h
     third = (slopes[:-1] + slopes[1:] - 2 * d) / h**2
@@ -115,7 +112,7 @@ def _parabola_slopes(x: Floats, y: Floats) -> Floats:
 
 def _slopes(x: Floats, y: Floats) -> Floats:
     """Return the slopes at the knots: a tridiagonal system, its ends closed by the continuity of the third derivative there."""
-    from scipy.linalg import solve_banded
+    from scipy.linalg import solve_banded  # noqa: PLC0415 - takes long to import, few sheets need it
 
     h, d = np.diff(x), np.diff(y) / np.diff(x)
     n = len(x)

@@ -29,7 +29,7 @@ class Points:
 
 
 def build_table(node: Table, folder: Path | None, units: UnitSystem, domain: Domain | None) -> Term:
-    """Return the function a table stands for: a smooth cubic spline (C2, not-a-knot ends) through its points, or straight lines.
+    """Return the function a table stands for: a cubic spline (C2, not-a-knot ends) through its points, or straight lines.
 
     A domain that reaches beyond the points is an error unless `hold` or `extend` is said.
     """

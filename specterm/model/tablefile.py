@@ -1,4 +1,4 @@
-"""Reading the text of a table file: columns of numbers with comments and perhaps a header. Never more than a plain file's data."""
+"""Reading the text of a table file: columns of numbers, with comments and perhaps a header. Only regular files are read."""
 
 from __future__ import annotations
 
@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 
 from specterm.errors import Span, printable
 from specterm.language.catalogue import refuse
+from specterm.language.suggest import nearest
 
 LARGEST_FILE = 50_000_000
 MOST_ROWS = 1_000_000
@@ -105,8 +106,6 @@ def column(table: TableText, which: str | int, span: Span) -> NDArray[np.float64
 
 
 def _place(table: TableText, which: str | int, span: Span) -> int:
-    from specterm.language.suggest import nearest
-
     width = len(table.rows[0]) if table.rows else len(table.names)
     names = table.names or tuple(str(k) for k in range(1, width + 1))
     shown = printable(", ".join(names))

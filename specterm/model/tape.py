@@ -4,25 +4,23 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
 from specterm.errors import PhysicsError
+from specterm.model.arrays import Values
 from specterm.model.compose import COMPARISONS
 from specterm.model.elementary import FUNCTIONS
 from specterm.model.term import UNIT, Term
 from specterm.model.walk import leaves_first
-
-Values = NDArray[Any]
 
 
 @dataclass(frozen=True, slots=True)
 class Instruction:
     """One call: `run(*inputs)` gives register `out`; `done` are the registers nobody needs afterwards."""
 
-    run: Callable[..., Any]
+    run: Callable[..., Values]
     inputs: tuple[int, ...]
     out: int
     done: tuple[int, ...]
@@ -32,12 +30,12 @@ class Instruction:
 class Tape:
     """A compiled term. Registers 0.. hold constants at the start; `place` is the register of the coordinate, or -1."""
 
-    start: tuple[Any, ...]
+    start: tuple[Values, ...]
     instructions: tuple[Instruction, ...]
     place: int
     result: int
 
-    def __call__(self, x: Values) -> Any:
+    def __call__(self, x: NDArray[np.float64]) -> Values:
         """Return the values at x, or a number where nothing depends on x."""
         registers = list(self.start)
         if self.place >= 0:
@@ -72,7 +70,7 @@ def compile_term(root: Term) -> Tape:
     return _with_coordinate(order, start, instructions)
 
 
-def _with_coordinate(order: Sequence[Term], start: tuple[Any, ...], instructions: tuple[Instruction, ...]) -> Tape:
+def _with_coordinate(order: Sequence[Term], start: tuple[Values, ...], instructions: tuple[Instruction, ...]) -> Tape:
     """Give the coordinate a register: its own, or one more where only tables and layers use it."""
     where = next((k for k, t in enumerate(order) if t.kind == "coordinate"), len(order))
     kept = tuple(
@@ -82,17 +80,17 @@ def _with_coordinate(order: Sequence[Term], start: tuple[Any, ...], instructions
     return Tape((*start, None) if where == len(order) else start, kept, where, len(order) - 1)
 
 
-def runner(term: Term) -> Callable[..., Any]:
+def runner(term: Term) -> Callable[..., Values]:
     """Return the numpy call for one term: its arguments' values in, its values out (pieces and splines take the coordinate)."""
     return _RUNNERS[term.kind](term)
 
 
-def _sum(term: Term) -> Callable[..., Any]:
+def _sum(term: Term) -> Callable[..., Values]:
     coefficients = tuple(c.value for c in term.data)
     constants = tuple(a == UNIT for a in term.args)
 
-    def run(*values: Any) -> Any:
-        total: Any = None
+    def run(*values: Values) -> Values:
+        total: Values = None
         for c, v, bare in zip(coefficients, values, constants, strict=True):
             if total is None:
                 total = c if bare else (v if c == 1 else c * v)
@@ -105,8 +103,8 @@ def _sum(term: Term) -> Callable[..., Any]:
     return run
 
 
-def _product(_term: Term) -> Callable[..., Any]:
-    def run(*values: Any) -> Any:
+def _product(_term: Term) -> Callable[..., Values]:
+    def run(*values: Values) -> Values:
         total = values[0]
         for v in values[1:]:
             total = total * v
@@ -115,10 +113,10 @@ def _product(_term: Term) -> Callable[..., Any]:
     return run
 
 
-def _power(term: Term) -> Callable[..., Any]:
+def _power(term: Term) -> Callable[..., Values]:
     exponent = term.data
 
-    def run(base: Any) -> Any:
+    def run(base: Values) -> Values:
         result, square, n = None, base, exponent
         while n:
             if n & 1:
@@ -131,13 +129,13 @@ def _power(term: Term) -> Callable[..., Any]:
     return run
 
 
-def _compare(term: Term) -> Callable[..., Any]:
+def _compare(term: Term) -> Callable[..., Values]:
     function = COMPARISONS[term.data]
     return lambda a, b: np.where(np.isnan(a) | np.isnan(b), np.nan, function(a, b))
 
 
-def _logic(term: Term) -> Callable[..., Any]:
-    functions: dict[str, Callable[..., Any]] = {
+def _logic(term: Term) -> Callable[..., Values]:
+    functions: dict[str, Callable[..., Values]] = {
         "and": lambda a, b: np.logical_and(a != 0, b != 0).astype(float),
         "or": lambda a, b: np.logical_or(a != 0, b != 0).astype(float),
         "not": lambda a: np.equal(a, 0).astype(float),
@@ -145,11 +143,11 @@ def _logic(term: Term) -> Callable[..., Any]:
     return functions[term.data]
 
 
-def _choice(_term: Term) -> Callable[..., Any]:
+def _choice(_term: Term) -> Callable[..., Values]:
     return lambda c, a, b: np.where(np.isnan(c), np.nan, np.where(np.not_equal(c, 0), a, b))
 
 
-_RUNNERS: dict[str, Callable[[Term], Callable[..., Any]]] = {
+_RUNNERS: dict[str, Callable[[Term], Callable[..., Values]]] = {
     "sum": _sum,
     "product": _product,
     "quotient": lambda _t: np.divide,

@@ -1,7 +1,7 @@
 """Resolved expressions of the coordinate as a graph of terms, in a canonical form, with exact structural equality.
 
-A term is never evaluated here. Two terms are equal when they are the same up to the order of sums and products; the test compares
-127-bit digests (a polynomial hash modulo 2^127 - 1, recomputed here).
+A term is never evaluated here. Two terms are equal when they are the same up to the order of sums and products; the test
+compares 127-bit digests (a polynomial hash modulo 2^127 - 1).
 """
 
 from __future__ import annotations
@@ -13,6 +13,9 @@ from typing import Any
 
 from specterm.model.scalar import ONE, ZERO, Scalar
 
+Data = Any
+"""What a term carries beside its arguments; see the kinds in `Term`."""
+
 _PRIME = 2**127 - 1
 _BASE = 0x5BD1E995A3C59AC2F64E1B7D9F8C3D51
 
@@ -21,15 +24,15 @@ _BASE = 0x5BD1E995A3C59AC2F64E1B7D9F8C3D51
 class Term:
     """One node: its kind, the terms below it and its own data.
 
-    Kinds: constant (Scalar), coordinate, sum (Scalar coefficients), product, quotient, power (int), raise (general power), call (name),
-    compare (operator), logic (and, or, not), where, real, imaginary, pieces (Pieces), spline (Spline), edge (int: the order of
-    the formal derivative of a function that jumps). `varies`: depends on the coordinate; `real`: real by construction;
-    `broken`: contains an edge and cannot be evaluated.
+    Kinds: constant (Scalar), coordinate, sum (Scalar coefficients), product, quotient, power (int), raise (general power),
+    call (name), compare (operator), logic (and, or, not), where, real, imaginary, pieces (Pieces), spline (Spline), edge
+    (int: the order of the formal derivative of a function that jumps). `varies`: depends on the coordinate; `real`: real by
+    construction; `broken`: contains an edge and cannot be evaluated.
     """
 
     kind: str
     args: tuple[Term, ...]
-    data: Any
+    data: Data
     digest: int
     varies: bool
     real: bool
@@ -54,7 +57,7 @@ def _mix(numbers: Iterable[int]) -> int:
     return h * (h ^ (h >> 64)) % _PRIME
 
 
-def _code(data: Any) -> int:
+def _code(data: Data) -> int:
     if isinstance(data, str):
         return int.from_bytes(data.encode(), "little") % _PRIME
     if isinstance(data, complex):
@@ -66,7 +69,7 @@ def _code(data: Any) -> int:
     return 0 if data is None else int(data.digest)
 
 
-def make(kind: str, args: tuple[Term, ...], data: Any = None, *, real: bool | None = None, key: int | None = None) -> Term:
+def make(kind: str, args: tuple[Term, ...], data: Data = None, *, real: bool | None = None, key: int | None = None) -> Term:
     """Return a node; `key` replaces the digest of data and args where their order does not count."""
     if key is None:
         key = _mix([_code(data), *(a.digest for a in args)])

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
+from collections.abc import Callable, Mapping, Sequence
 
 from specterm.model.scalar import Scalar
 from specterm.model.term import UNIT, Term
@@ -31,31 +31,53 @@ def _shown(root: Term, coordinate: str, labels: Mapping[int, str]) -> tuple[str,
     return texts[root.digest]
 
 
-def _one(term: Term, args: Sequence[tuple[str, int]], coordinate: str) -> tuple[str, int]:
-    kind = term.kind
-    if kind == "constant":
-        return show_number(term.data), _SIGN if str(term.data.value).startswith("-") else _ATOM
-    if kind == "coordinate":
+Shown = tuple[str, int]
+"""A text and how tightly it binds."""
+
+
+def _one(term: Term, args: Sequence[Shown], coordinate: str) -> Shown:
+    if term.kind == "coordinate":
         return coordinate, _ATOM
-    if kind == "sum":
-        parts = [_scaled(c, a, bare=t == UNIT) for c, a, t in zip(term.data, args, term.args, strict=True)]
-        return " + ".join(parts).replace("+ -", "- "), _SUM if len(parts) > 1 else _PRODUCT
-    if kind == "product":
-        return "*".join(_wrap(a, _PRODUCT) for a in args), _PRODUCT
-    if kind == "quotient":
-        return f"{_wrap(args[0], _PRODUCT)}/{_wrap(args[1], _POWER)}", _PRODUCT
-    if kind == "power":
-        return f"{_wrap(args[0], _ATOM)}^{term.data}", _POWER
-    if kind == "raise":
-        return f"{_wrap(args[0], _ATOM)}^{_wrap(args[1], _ATOM)}", _POWER
-    if kind in ("compare", "logic"):
-        return f" {term.data} ".join(_wrap(a, _SUM + 1) for a in args) if len(args) > 1 else f"not {args[0][0]}", _SUM
-    if kind in ("pieces", "spline"):
-        return term.data.name, _ATOM
-    if kind == "edge":
-        return f"({args[0][0]})" + "'" * term.data, _ATOM
-    name = {"real": "re", "imaginary": "im", "where": "where"}.get(kind, str(term.data))
+    return _RULES.get(term.kind, _call)(term, args)
+
+
+def _constant(term: Term, _args: Sequence[Shown]) -> Shown:
+    return show_number(term.data), _SIGN if str(term.data.value).startswith("-") else _ATOM
+
+
+def _sum(term: Term, args: Sequence[Shown]) -> Shown:
+    parts = [_scaled(c, a, bare=t == UNIT) for c, a, t in zip(term.data, args, term.args, strict=True)]
+    return " + ".join(parts).replace("+ -", "- "), _SUM if len(parts) > 1 else _PRODUCT
+
+
+def _raise(_term: Term, args: Sequence[Shown]) -> Shown:
+    return f"{_wrap(args[0], _ATOM)}^{_wrap(args[1], _ATOM)}", _POWER
+
+
+def _truth(term: Term, args: Sequence[Shown]) -> Shown:
+    if len(args) == 1:
+        return f"not {_wrap(args[0], _ATOM)}", _SUM
+    return f" {term.data} ".join(_wrap(a, _PRODUCT) for a in args), _SUM
+
+
+def _call(term: Term, args: Sequence[Shown]) -> Shown:
+    name = {"real": "re", "imaginary": "im", "where": "where"}.get(term.kind, str(term.data))
     return f"{name}({', '.join(a[0] for a in args)})", _ATOM
+
+
+_RULES: dict[str, Callable[[Term, Sequence[Shown]], Shown]] = {
+    "constant": _constant,
+    "sum": _sum,
+    "product": lambda _t, args: ("*".join(_wrap(a, _PRODUCT) for a in args), _PRODUCT),
+    "quotient": lambda _t, args: (f"{_wrap(args[0], _PRODUCT)}/{_wrap(args[1], _POWER)}", _PRODUCT),
+    "power": lambda t, args: (f"{_wrap(args[0], _ATOM)}^{t.data}", _POWER),
+    "raise": _raise,
+    "compare": _truth,
+    "logic": _truth,
+    "pieces": lambda t, _args: (t.data.name, _ATOM),
+    "spline": lambda t, _args: (t.data.name, _ATOM),
+    "edge": lambda t, args: (f"({args[0][0]})" + "'" * t.data, _ATOM),
+}
 
 
 def _wrap(part: tuple[str, int], least: int) -> str:

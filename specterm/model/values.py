@@ -9,10 +9,11 @@ from specterm.errors import Span
 from specterm.language.catalogue import refuse
 from specterm.model.compose import conjugate, power, real_part, whole
 from specterm.model.function import Function
-from specterm.model.operator import LARGEST_ORDER, Operator, multiplication, total
+from specterm.model.operator import Operator, multiplication, total
 from specterm.model.scalar import ONE
 from specterm.model.setting import Setting
 from specterm.model.term import UNIT, Term, divide, linear, multiply, negative
+from specterm.model.word import LARGEST_ORDER
 
 
 @dataclass(frozen=True, slots=True)
