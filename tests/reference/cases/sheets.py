@@ -9,7 +9,7 @@ import series
 from mpmath import mp, mpf
 
 FLOAT_NAMES = {"exp": np.exp, "sin": np.sin, "cos": np.cos, "cosh": np.cosh, "sinh": np.sinh, "tanh": np.tanh, "sqrt": np.sqrt,
-               "log": np.log, "ln": np.log, "where": np.where, "step": lambda x: np.heaviside(x, 0.5), "abs": np.abs, "pi": np.pi,
+               "log": np.log, "ln": np.log, "where": series.where, "step": lambda x: float(middle_of(x) > 0), "abs": np.abs, "pi": np.pi,
                "inf": np.inf, "sech": lambda x: 1 / np.cosh(x)}
 with mp.workdps(60):
     HBAR = mpf("6.62607015e-34") / (2 * mp.pi)
@@ -19,6 +19,25 @@ with mp.workdps(60):
         "energy eV, length nm, mass m_e": ("1.602176634e-19", "1e-9", "9.1093837139e-31"),
         "energy cm^-1, length angstrom, mass u": (mpf("6.62607015e-34") * 29979245800, "1e-10", "1.66053906892e-27"),
     }
+
+
+class Nodes(np.ndarray):
+    """Values at the nodes of one element; comparisons are decided at the middle node, as an element never straddles an edge."""
+
+    def middle(self):
+        """Value at the middle node."""
+        return float(self[len(self) // 2])
+
+    def __lt__(self, other):
+        return self.middle() < middle_of(other)
+
+    def __gt__(self, other):
+        return self.middle() > middle_of(other)
+
+
+def middle_of(value):
+    """Value at the middle of an element, of a number or of nodes."""
+    return value.middle() if isinstance(value, Nodes) else value
 
 
 class Kinetic:
@@ -155,6 +174,6 @@ class _Names(dict):
         raise KeyError(name)
 
     def _layer(self):
-        middle = self.x.middle() if self.kind is mpf else (self.x[0] + self.x[-1]) / 2
+        middle = self.x.middle()
         inside = [k for k, edge in enumerate(self.sheet.edges[1:-1], 1) if middle > edge]
         return inside[-1] if inside else 0

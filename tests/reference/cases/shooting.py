@@ -2,25 +2,32 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, field
+from collections.abc import Callable
+from dataclasses import dataclass
+from functools import cached_property
 from operator import mul
 
 import numpy as np
 from mpmath import mp, mpf
 from series import ORDER, Series, exp
-from sheets import Sheet
+from sheets import Nodes, Sheet
 
 BITS = 300
 
 
-@dataclass(frozen=True)
+@dataclass
 class Step:
-    """One step in s with x = s or x = e^s; lists are fixed-point Taylor coefficients of f' = r flux, flux' = (a - E b) f."""
+    """One step in s with x = s or x = e^s; `lists` are fixed-point Taylor coefficients of f' = r flux, flux' = (a - E b) f."""
 
     s: mpf
     h: mpf
     log: bool
-    lists: tuple = field(repr=False)
+    expand: Callable[[], tuple]
+
+    @cached_property
+    def lists(self):
+        """The coefficients (r, a, b), worked out when first needed."""
+        return tuple(fixed((self.h * Series.of(v)).c) for v in self.expand())
 
 
 @dataclass(frozen=True)
@@ -40,12 +47,14 @@ def fixed(values):
 
 
 def make_step(sheet, s, h, log):
-    """Expand the equation about the left end of a step."""
-    line = Series([s, h])
-    x = exp(line) if log else line
-    slope = x if log else Series([1])
-    K, V = (Series.of(v) for v in sheet.at(x, mpf))
-    return Step(s, h, log, (fixed((h * slope / K).c), fixed((h * slope * V).c), fixed((h * slope).c)))
+    """The equation about the left end of a step."""
+    def expand():
+        line = Series([s, h])
+        x = exp(line) if log else line
+        slope = x if log else Series([1])
+        K, V = sheet.at(x, mpf)
+        return slope / K, slope * V, slope
+    return Step(s, h, log, expand)
 
 
 def mesh(sheet, pieces, left="wall", right="wall", match=None):
@@ -152,7 +161,7 @@ def trace(m, E):
     return mp.ldexp(mpf(f), s - BITS) + mp.ldexp(mpf(g), t - BITS)
 
 
-def elements(m, count, floor, order=12, phase=None, smallest=1e-7):
+def elements(m, count, floor, order=12, phase=None, smallest=1e-11):
     """Lowest levels by Gauss-Lobatto-Legendre elements in doubles on the same steps (walls where the ends are open)."""
     from scipy.sparse import coo_matrix, diags
     from scipy.sparse.linalg import eigsh
@@ -164,9 +173,9 @@ def elements(m, count, floor, order=12, phase=None, smallest=1e-7):
     mass = np.zeros(size)
     for st in steps:
         s, h = float(st.s), float(st.h)
-        nodes = s + h * (xi * (1 - 1e-13) + 1) / 2
-        x = np.exp(nodes) if st.log else nodes
-        slope = x if st.log else np.ones_like(x)
+        nodes = s + h * (xi + 1) / 2
+        x = (np.exp(nodes) if st.log else nodes).view(Nodes)
+        slope = np.asarray(x) if st.log else np.ones(order + 1)
         K, V = (np.broadcast_to(np.asarray(v, float), x.shape) for v in m.sheet.at(x, float))
         A = d.T @ np.diag(w * K / slope * 2 / h) @ d + np.diag(w * V * slope * h / 2)
         index = np.arange(at, at + order + 1)
