@@ -2,16 +2,16 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Mapping
 from pathlib import Path
 
-from specterm.errors import SheetError, Span
+from specterm.errors import SheetError
 from specterm.language.catalogue import refuse
 from specterm.language.dimensions import check_dimensions
 from specterm.language.nodes import DomainStatement, Name, Node, Number, Sheet, Unary
 from specterm.language.suggest import nearest
-from specterm.model.domain import FREE, OPEN, RING, WALL, Domain
+from specterm.model.domain import Domain
+from specterm.model.ends import build_domain
 from specterm.model.function import Function
 from specterm.model.model import Model
 from specterm.model.operator import Operator, multiplication
@@ -38,7 +38,7 @@ def build(sheet: Sheet, *, folder: Path | None = None, overrides: Mapping[str, s
     _check_names(sheet, statement.coordinate)
     if "hbar" in scope.definitions:
         scope.set_hbar(_hbar(scope))
-    domain = _domain(statement, scope)
+    domain = build_domain(statement, scope)
     scope.set_domain(domain)
     scope.ensure([*scope.definitions, *scope.blocks])
     return _model(sheet, units, scope, domain)
@@ -94,62 +94,6 @@ def _hbar(scope: Scope) -> Scalar:
     if not value.value.real > 0:
         raise refuse("not-positive", node.span, what="`hbar`", value=f"{value.value:g}")
     return value
-
-
-def _domain(statement: DomainStatement, scope: Scope) -> Domain:
-    if statement.shape == "layers":
-        return _layered_domain(statement, scope)
-    if statement.left is None or statement.right is None:
-        raise refuse("no-domain", statement.span)
-    left = _end(statement.left, "the left end of the domain", scope)
-    right = _end(statement.right, "the right end of the domain", scope)
-    _check_ends(statement.left, statement.right, left, right)
-    if statement.shape == "ring":
-        for node, end in ((statement.left, left), (statement.right, right)):
-            if not math.isfinite(end):
-                raise refuse("domain-infinite-ring", node.span)
-        phase = None if statement.phase is None else scope.number(statement.phase, "the phase")
-        return Domain(statement.coordinate, left, right, RING, RING, phase)
-    return _interval(statement, left, right)
-
-
-def _interval(statement: DomainStatement, left: float, right: float) -> Domain:
-    free = (statement.free_left, statement.free_right)
-    both = all(free)
-    ends = []
-    for end, is_free in zip((left, right), free, strict=True):
-        ends.append(OPEN if not math.isfinite(end) else FREE if is_free else WALL)
-    lost = [f and e == OPEN for f, e in zip(free, ends, strict=True)]
-    if (any(free) and FREE not in ends) or (any(lost) and not both):
-        raise refuse("free-open", statement.span)
-    return Domain(statement.coordinate, left, right, ends[0], ends[1])
-
-
-def _layered_domain(statement: DomainStatement, scope: Scope) -> Domain:
-    if not scope.blocks:
-        raise refuse("no-layers", statement.coordinate_span, name=statement.coordinate)
-    scope.ensure(scope.blocks)
-    left = min(float(block.boundaries[0]) for block in scope.layers.values())
-    right = max(float(block.boundaries[-1]) for block in scope.layers.values())
-    return _interval(statement, left, right)
-
-
-def _end(node: Node, what: str, scope: Scope) -> float:
-    """Return one end of the domain: a number, `inf` or `-inf`."""
-    sign, inner = 1.0, node
-    while isinstance(inner, Unary) and inner.operator in "+-":
-        sign, inner = -sign if inner.operator == "-" else sign, inner.operand
-    if isinstance(inner, Name) and inner.name == "inf" and "inf" not in scope.definitions:
-        return sign * math.inf
-    return scope.number(node, what)
-
-
-def _check_ends(left_node: Node, right_node: Node, left: float, right: float) -> None:
-    span = Span(left_node.span.start, right_node.span.end)
-    if left == right:
-        raise refuse("domain-empty", span, left=f"{left:g}")
-    if left > right:
-        raise refuse("domain-reversed", span, left=f"{left:g}", right=f"{right:g}")
 
 
 def _main(sheet: Sheet, scope: Scope, operators: Mapping[str, Operator]) -> str:

@@ -12,7 +12,8 @@ WALL, FREE, OPEN, RING = "wall", "free", "open", "ring"
 class Domain:
     """The interval of the coordinate. Ends are "wall" (psi = 0), "free" (zero flux), "open" (infinite) or "ring" (both).
 
-    `phase` is the Bloch phase in units of 2 pi, None where the sheet gives none.
+    `phase` is the Bloch phase in units of 2 pi, None where the sheet gives none. `left_slack` and `right_slack` bound how far
+    rounding moved the ends.
     """
 
     coordinate: str
@@ -21,6 +22,8 @@ class Domain:
     left_end: str
     right_end: str
     phase: float | None = None
+    left_slack: float = 0.0
+    right_slack: float = 0.0
 
     @property
     def is_ring(self) -> bool:

@@ -12,6 +12,7 @@ from numpy.typing import ArrayLike, NDArray
 from specterm.model import compose, term
 from specterm.model.arrays import Values
 from specterm.model.derivative import derivative
+from specterm.model.limits import limits
 from specterm.model.places import centres, edges, knots
 from specterm.model.rounding import rounding
 from specterm.model.scalar import Scalar, written
@@ -53,12 +54,20 @@ class Function:
 
     def _raw(self, places: NDArray[np.float64]) -> Values:
         values = np.asarray(self._tape(places))
-        lost = np.isnan(values)
+        lost = np.isnan(values) & np.isfinite(places)
         if lost.any() and values.shape == places.shape:
-            rescued = lost & np.isfinite(places)
             values = values.astype(complex if np.iscomplexobj(values) else float)
-            values[rescued] = evaluate(self.term, places[rescued])[0]
+            values[lost] = self._rescued(places[lost])[0]
         return values
+
+    def _rescued(self, places: NDArray[np.float64]) -> tuple[Values, NDArray[np.float64]]:
+        """Return values and error bounds where double precision met inf/inf, 0*inf or 0/0."""
+        values, bounds = evaluate(self.term, places)
+        lost = np.isnan(values)
+        if lost.any():
+            values, bounds = np.array(values), np.array(bounds)
+            values[lost], bounds[lost] = limits(self.term, places[lost])
+        return values, bounds
 
     def derivative(self) -> Function:
         """Return the derivative; where the function jumps it holds an edge, which stays formal and cannot be evaluated."""
@@ -103,7 +112,7 @@ class Function:
         bounds = rounding(self.term, places)
         lost = np.isnan(bounds) & np.isfinite(places)
         if lost.any() and not self.term.broken:
-            bounds[lost] = evaluate(self.term, places[lost])[1]
+            bounds[lost] = self._rescued(places[lost])[1]
         return bounds
 
     def conj(self) -> Function:

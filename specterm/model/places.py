@@ -75,8 +75,15 @@ def crossings(difference: Term, root: Term, left: float, right: float) -> Places
 
 
 def _sign_changes(term: Term, sample: Places) -> Places:
+    """Return where a term changes sign: of the two neighbouring numbers the one where it is smaller."""
     values = _values(term)
-    return _changes(lambda x: np.sign(values(x)), sample)
+    high = _changes(lambda x: _is_positive(values(x)), sample)
+    low = np.nextafter(high, -np.inf)
+    return np.where(np.abs(values(low)) < np.abs(values(high)), low, high)
+
+
+def _is_positive(values: Places) -> Places:
+    return np.where(np.isnan(values), np.nan, values >= 0)
 
 
 def _values(term: Term) -> Key:
@@ -87,10 +94,7 @@ def _values(term: Term) -> Key:
 
 
 def _changes(key: Key, sample: Places) -> Places:
-    """Return the places where key changes between neighbours of the sample, found by bisection down to the last bit.
-
-    A zero of a sign counts with the side to its left, so that a zero on a sample point is found once.
-    """
+    """Return the places where key changes between neighbours of the sample: the first number of the new state."""
     states = key(sample)
     changed = np.flatnonzero((states[1:] != states[:-1]) & ~np.isnan(states[1:]) & ~np.isnan(states[:-1]))
     low, high = sample[changed], sample[changed + 1]
