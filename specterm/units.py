@@ -23,7 +23,7 @@ UNIT_ERRORS: dict[str, tuple[str, str, tuple[str, ...]]] = {
     "unknown-unit": (
         "unknown unit '{unit}'",
         "{near}units are written like `meV`, `kV/cm`, `m/s^2`, `cm^-1`",
-        ("units: energy eV, length nm, mass m_e\nx in (0, 1)\nH = p^2 + 3 ‸[stone]",),
+        ("units: energy eV, length nm, mass m_e\nx in (0, 1)\nH = p^2 + ‸3 [stone]",),
     ),
     "no-units": (
         "the unit [{unit}] means nothing here: the sheet has no units",
@@ -188,7 +188,7 @@ CONSTANTS: dict[str, tuple[Decimal, Dimension]] = {
     "R_inf": (Decimal("10973731.568157"), LENGTH**-1),
 }
 
-_RYDBERG = _times(CONSTANTS["R_inf"][0], _H, _LIGHT)
+_RYDBERG = _C.divide(CONSTANTS["E_h"][0], Decimal(2))
 _UNITS: dict[str, tuple[Decimal, Dimension]] = {
     **{name: CONSTANTS[name] for name in ("e", "m_e", "m_p", "m_n", "u", "k_B", "c", "hbar", "a_0", "E_h", "Phi_0", "mu_B")},
     "me": CONSTANTS["m_e"],

@@ -77,7 +77,7 @@ _EXPRESSIONS = {
         "V = (lambda‸: 3)",
         "diagonalise‸",
         "x in‸",
-        "state s‸ x",
+        "state s ‸x",
         "units: energy‸, length nm",
     ),
     "empty-brackets": _row("there is nothing between the brackets", "put a value there", "V = sin(‸)", "V = 2*(‸)"),

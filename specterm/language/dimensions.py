@@ -59,7 +59,7 @@ class Dimensions:
         uses: dict[str, list[Node]] = {}
         ends = {domain.coordinate: [end for end in (domain.left, domain.right) if end] for domain in sheet.domains}
         for block in sheet.layers:
-            ends.setdefault(block.coordinate, [])
+            ends.setdefault(block.coordinate, []).extend([block.start] if block.start else [])
         for coordinate in ends:
             for letter in ("p", "D", "p" + coordinate, "D" + coordinate):
                 rules[letter], uses[letter] = partial(self._derivative, letter[0], coordinate), [Name(Span(0, 0), coordinate)]
