@@ -1,0 +1,32 @@
+"""The terminal interface; `run` starts it and imports it only then."""
+
+from __future__ import annotations
+
+import os
+from pathlib import Path
+
+from specterm.tui.options import Options
+from specterm.tui.terminal import give_back, own_stream, settle, usable
+
+__all__ = ["Options", "run", "usable"]
+
+
+def run(text: str, path: Path | None = None, options: Options | None = None) -> int:
+    """Show a sheet full screen until the user leaves; return the exit status.
+
+    `path` is the sheet's file, or None. Call `usable` first: without a terminal there is nothing to show it on.
+    """
+    settle(os.environ)
+    from dataclasses import replace  # noqa: PLC0415 - the environment is settled first
+
+    from specterm.session.rescue import folder  # noqa: PLC0415 - as above
+    from specterm.tui.app import make_app  # noqa: PLC0415 - as above
+
+    chosen = replace(options or Options(), guarded=True)
+    stream = own_stream(folder() / "log")
+    try:
+        app = make_app(text, path, chosen)
+        status = app.run(mouse=chosen.mouse)
+        return app.return_code or status or 0
+    finally:
+        give_back(stream)

@@ -113,7 +113,7 @@ class Canvas:
             return ()
         table = _CHARACTERS[self.glyphs]
         characters = [table[mask] for mask in masks[number].tolist()]
-        styles = [self.names[index] for index in self.style[number].tolist()]
+        styles = [self.names[index] for index in _carried(self.style[number], masks[number] > 0)]
         for (row, place), (character, style) in self.letters.items():
             if row == number:
                 characters[place], styles[place] = character, style
@@ -138,6 +138,12 @@ class Canvas:
             for places, heights in _pieces(column, np.clip(row, -2.0, self.rows + 1.0)):
                 _cover(low, high, *_dense(places, heights, self.columns))
         return _rows_between(low, high)
+
+
+def _carried(style: NDArray[np.int16], drawn: NDArray[np.bool_]) -> list[int]:
+    """Return the styles of one row with blank cells taking the style before them, so that a row has few runs."""
+    last = np.maximum.accumulate(np.where(drawn, np.arange(len(style)), -1))
+    return [int(index) for index in np.where(last >= 0, style[np.maximum(last, 0)], 0)]
 
 
 def _rows_between(low: NDArray[np.float64], high: NDArray[np.float64]) -> tuple[NDArray[np.int64], NDArray[np.int64]]:

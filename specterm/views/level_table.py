@@ -116,9 +116,9 @@ def _heading(columns: Sequence[_Column], width: int, weighing: Weighing | None, 
     text = " " + _cells(columns, [column.heading for column in columns])
     if not weighing or not tail:
         return fit_row(((text, "axis"),), width, mark)
-    words = f"{weighing.state} {percent(weighing.captured).strip()} captured"
-    if width_of(words) > tail - 1:
-        words = f"{weighing.state} {percent(weighing.captured).strip()}"
+    amount = percent(weighing.captured).strip()
+    choices = (f"{weighing.state} {amount} captured", f"{weighing.state} {amount}", f"{amount} {weighing.state}")
+    words = next((words for words in choices if width_of(words) < tail), choices[-1])
     head = fit_row(((text, "axis"),), width - tail, mark)
     return (*head, *fit_row(((" " + cut(words, tail - 1, mark), "weight"),), tail, mark))
 

@@ -41,19 +41,24 @@ def state_line(level: Level | None, units: Units, width: int, *, moments: Moment
     if level.parity:
         parts.append(level.parity)
     if moments is not None:
-        name = units.coordinate
-        parts += [
-            f"<{name}> {_amount(moments.x, moments.spread_x, units.length)}",
-            f"spread {with_unit(short(moments.spread_x, 4), units.length)}",
-            f"<p> {_amount(moments.p, moments.spread_p, units.momentum)}",
-            f"spread {with_unit(short(moments.spread_p, 4), units.momentum)}",
-        ]
-    return ((join(parts, width, mark), "chosen"),)
+        parts += moment_parts(moments, units)
+    line = join(parts, width, mark)
+    head = "  ".join(parts[:2])
+    if line.startswith(head) and len(line) > len(head):
+        return ((head, "chosen"), (line[len(head) :], "plain"))
+    return ((line, "chosen"),)
 
 
-def _amount(value: float, spread: float, unit: str) -> str:
+def moment_parts(moments: MomentsText, units: Units) -> tuple[str, ...]:
+    """Return expectation and spread of place and momentum, each pair sharing its unit."""
+    places = f"<{units.coordinate}> {_amount(moments.x, moments.spread_x)} spread {short(moments.spread_x, 4)}"
+    momenta = f"<p> {_amount(moments.p, moments.spread_p)} spread {short(moments.spread_p, 4)}"
+    return with_unit(places, units.length), with_unit(momenta, units.momentum)
+
+
+def _amount(value: float, spread: float) -> str:
     """Return an expectation; one that is nothing beside its spread is shown as 0."""
-    return with_unit("0" if abs(value) < 1e-9 * abs(spread) else short(value, 5), unit)
+    return "0" if abs(value) < 1e-9 * abs(spread) else short(value, 5)
 
 
 def join(parts: Sequence[str], width: int, mark: str = "…", gap: str = "  ") -> str:

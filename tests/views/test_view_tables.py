@@ -93,7 +93,7 @@ def test_state_line_with_moments():
     """The line of the chosen state has value, kind, nodes, parity, expectations and spreads with units; noise around 0 is 0."""
     line = plain([state_line(LEVELS[2], UNITS, 140, moments=MomentsText(1e-17, 1.5811, 0.0, 1.5811))])
     assert line == (
-        "level 2  2.500000000000(4) meV  bound  2 nodes  even  <x> 0 nm  spread 1.581 nm  <p> 0 hbar/nm  spread 1.581 hbar/nm"
+        "level 2  2.500000000000(4) meV  bound  2 nodes  even  <x> 0 spread 1.581 nm  <p> 0 spread 1.581 hbar/nm"
     )
 
 

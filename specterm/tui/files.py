@@ -1,0 +1,150 @@
+"""Opening, saving and leaving: the dialogs around the document."""
+
+from __future__ import annotations
+
+import os
+from collections.abc import Callable
+from pathlib import Path
+from typing import TYPE_CHECKING
+
+from specterm.errors import SheetError
+from specterm.session import presets, rescue
+from specterm.session.document import Document, load, save, shown
+from specterm.tui.dialogs import Chooser, Entry, Question
+
+if TYPE_CHECKING:
+    from specterm.tui.app import Specterm
+
+_MOST = 500
+
+
+class Files:
+    """The document's way in and out of one app."""
+
+    def __init__(self, app: Specterm) -> None:
+        """Serve `app`."""
+        self.app = app
+
+    def save(self, then: Callable[[], None] | None = None) -> None:
+        """Write the document to its file, or ask for a name; `then` follows when it is written."""
+        document = self.app.document
+        if document.path is None:
+            self.save_as(then)
+            return
+        self._write(document.path, then)
+
+    def save_as(self, then: Callable[[], None] | None = None) -> None:
+        """Ask for a name and write the document under it; an existing file of another name is asked about."""
+        path = self.app.document.path
+        start = str(path) if path else "untitled.sheet"
+
+        def named(answer: str | None) -> None:
+            if answer is None:
+                self.app.say("not saved", "warn")
+                return
+            target = Path(os.path.expanduser(answer))
+            if target != path and target.exists():
+                question = Question(f"{shown(target)} exists. Replace it?", {"y": "replace it", "n": "keep it"})
+                self.app.push_screen(question, lambda letter: self._write(target, then) if letter == "y" else None)
+            else:
+                self._write(target, then)
+
+        self.app.push_screen(Chooser("Save the sheet as", (), free=True, text=start), named)
+
+    def _write(self, path: Path, then: Callable[[], None] | None) -> None:
+        """Write the document and say so."""
+        try:
+            document = save(self.app.document, path)
+        except SheetError as error:
+            self.app.say(f"{error.message}; {error.mend}", "warn")
+            return
+        rescue.drop(self.app.document.path)
+        self.app.adopt(document)
+        self.app.say(f"saved {shown(path)}", "good")
+        if then is not None:
+            then()
+
+    def open(self) -> None:
+        """Choose a sheet of the document's folder, or type a path, and open it."""
+        folder = self.app.document.folder
+        found = sorted(folder.glob("*.sheet"))[:_MOST]
+        entries = [Entry(str(path), shown(Path(path.name))) for path in found]
+
+        def chosen(answer: str | None) -> None:
+            if answer is not None:
+                path = Path(os.path.expanduser(answer))
+                self._guarded(lambda: self._load(path if path.is_absolute() or path in found else folder / path))
+
+        self.app.push_screen(Chooser(f"Open a sheet of {shown(folder.resolve())}, or type a path", entries, free=True), chosen)
+
+    def _load(self, path: Path) -> None:
+        """Open the sheet at `path`."""
+        try:
+            document = load(path)
+        except SheetError as error:
+            self.app.say(f"{error.message}; {error.mend}", "warn")
+            return
+        self.app.replace_document(document)
+
+    def preset(self) -> None:
+        """Choose a preset and start from its text."""
+        try:
+            known = presets.presets()
+        except SheetError as error:
+            self.app.say(error.message, "warn")
+            return
+        if not known:
+            self.app.say("there are no presets", "warn")
+            return
+
+        def chosen(answer: str | None) -> None:
+            if answer is not None:
+                self._guarded(lambda: self._start(answer))
+
+        entries = [Entry(preset.name, preset.name, preset.title) for preset in known]
+        self.app.push_screen(Chooser("Start from a preset", entries), chosen)
+
+    def _start(self, name: str) -> None:
+        """Start from the preset called `name`, as a document without a file; tables beside the preset stay reachable."""
+        try:
+            preset = presets.find(name)
+            text = load(preset.path).text
+        except SheetError as error:
+            self.app.say(error.message, "warn")
+            return
+        self.app.replace_document(Document(text, None, text), folder=preset.path.parent)
+
+    def _guarded(self, go_on: Callable[[], None]) -> None:
+        """Go on at once when all is saved, else ask first."""
+        if not self.app.document.changed:
+            go_on()
+            return
+        answers = {"w": "save it first", "d": "drop the changes", "n": "go back"}
+
+        def answered(letter: str | None) -> None:
+            if letter == "w":
+                self.save(go_on)
+            elif letter == "d":
+                rescue.drop(self.app.document.path)
+                go_on()
+
+        self.app.push_screen(Question(f"{self.app.document.name} has unsaved text.", answers), answered)
+
+    def leave(self) -> None:
+        """End the session; asks when there is unsaved text."""
+        self._guarded(lambda: self.app.exit(0))
+
+    def offer_rescued(self) -> None:
+        """Offer unsaved text of an earlier session, if there is any."""
+        text = rescue.found(self.app.document)
+        if text is None:
+            return
+
+        def answered(letter: str | None) -> None:
+            if letter == "r":
+                self.app.take_text(text)
+            elif letter == "d":
+                rescue.drop(self.app.document.path)
+
+        words = f"Unsaved text of {self.app.document.name} was kept earlier."
+        self.app.push_screen(Question(words, {"r": "take that text", "d": "drop it", "n": "decide later"}), answered)

@@ -1,0 +1,145 @@
+"""Saving, opening, presets and leaving, by key."""
+
+import pytest
+from fake import SHEET, app, lines, settled
+
+from specterm.session import presets, rescue
+from specterm.session.document import Document
+
+
+async def pressed(pilot, *keys):
+    """Press keys and wait until all they started is done."""
+    await pilot.press(*keys)
+    await settled(pilot)
+
+
+@pytest.fixture
+def sheet(tmp_path):
+    """Return the path of a sheet."""
+    path = tmp_path / "well.sheet"
+    path.write_text(SHEET)
+    return path
+
+
+@pytest.mark.parametrize("keys", [["tab", "w"], ["ctrl+s"]])
+async def test_saving_to_its_file(sheet, keys):
+    """w, or ctrl+s while typing, writes the file; the heading then no longer says unsaved."""
+    async with app(SHEET, sheet).run_test(size=(120, 40)) as pilot:
+        await settled(pilot)
+        assert lines(pilot)[0].startswith(" well.sheet ")
+        await pressed(pilot, "e", *"# ")
+        assert "well.sheet  unsaved" in lines(pilot)[0]
+        await pressed(pilot, *keys)
+        assert sheet.read_text() == "# " + SHEET
+        assert "unsaved" not in lines(pilot)[0]
+        assert "saved " in "\n".join(lines(pilot))
+
+
+async def test_saving_under_a_new_name(tmp_path):
+    """A sheet without a file asks for a name; an existing file is asked about before it is replaced."""
+    target = tmp_path / "new.sheet"
+    async with app().run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "w", *["backspace"] * 14, *str(target), "enter")
+        assert target.read_text() == SHEET
+        assert pilot.app.document.path == target
+        other = tmp_path / "other.sheet"
+        other.write_text("mine")
+        await pressed(pilot, "a", *["backspace"] * len(str(target)), *str(other), "enter")
+        assert "Replace it?" in "\n".join(lines(pilot))
+        await pressed(pilot, "n")
+        assert other.read_text() == "mine"
+        await pressed(pilot, "a", *["backspace"] * len(str(target)), *str(other), "enter", "y")
+        assert other.read_text() == SHEET
+
+
+async def test_a_save_that_fails_says_why(tmp_path):
+    """A folder that is not there is named; the text stays unsaved."""
+    async with app().run_test(size=(120, 40)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "w", *["backspace"] * 14, *str(tmp_path / "no" / "a"), "enter")
+        assert "cannot write" in "\n".join(lines(pilot))
+
+
+async def test_opening_another_sheet(sheet, tmp_path):
+    """o lists the sheets of the folder, typing narrows the list, Enter opens; Tab goes back without."""
+    (tmp_path / "trap.sheet").write_text("# A trap\nH = p^2\n")
+    async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "o")
+        text = "\n".join(lines(pilot))
+        assert "trap.sheet" in text
+        assert "well.sheet" in text
+        await pressed(pilot, "tab", "o", *"trap", "enter")
+        assert pilot.app.document.name == "trap.sheet"
+        assert pilot.app.engine.solved[-1][0] == "# A trap\nH = p^2\n"
+
+
+async def test_opening_what_is_no_sheet(sheet):
+    """A missing file is named in the message line and nothing changes."""
+    async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "o", *"./nowhere", "enter")
+        assert "cannot read" in "\n".join(lines(pilot))
+        assert pilot.app.document.path == sheet
+
+
+async def test_starting_from_a_preset(tmp_path, monkeypatch):
+    """n lists the presets with their titles; the chosen one's text becomes a new sheet without a file."""
+    (tmp_path / "bench.sheet").write_text("# Bench well (invented)\nH = p^2\n")
+    monkeypatch.setattr(presets, "folder", lambda: tmp_path)
+    async with app().run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "n")
+        assert "Bench well (invented)" in "\n".join(lines(pilot))
+        await pressed(pilot, "enter")
+        assert pilot.app.document == Document("# Bench well (invented)\nH = p^2\n", None, "# Bench well (invented)\nH = p^2\n")
+        assert pilot.app.folder == tmp_path
+
+
+@pytest.mark.parametrize("key", ["q", "ctrl+q"])
+async def test_leaving_at_once_when_saved(key):
+    """Without unsaved text q leaves."""
+    async with app().run_test() as pilot:
+        await settled(pilot)
+        await pilot.press(key)
+    assert pilot.app.return_value == 0
+
+
+async def test_leaving_asks_when_unsaved(sheet):
+    """With unsaved text q asks: n goes back, w saves and leaves."""
+    async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "e", "#", "tab", "q")
+        assert "well.sheet has unsaved text." in "\n".join(lines(pilot))
+        await pressed(pilot, "n")
+        assert "psi, level 0" in "\n".join(lines(pilot))
+        await pressed(pilot, "q", "left")
+        assert "psi, level 0" in "\n".join(lines(pilot))
+        await pilot.press("q", "w")
+    assert pilot.app.return_value == 0
+    assert sheet.read_text() == "#" + SHEET
+
+
+async def test_dropping_changes(sheet):
+    """d leaves without saving, and what was kept for a crash goes too."""
+    async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "e", "#", "tab")
+        assert rescue.place(sheet).read_text() == "#" + SHEET
+        await pilot.press("q", "d")
+    assert sheet.read_text() == SHEET
+    assert not rescue.place(sheet).exists()
+
+
+async def test_rescued_text_is_offered(sheet):
+    """Text kept from a session that broke off is offered, taken as an edit that can be undone."""
+    rescue.keep(Document("# rescued\n", sheet, SHEET))
+    async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        assert "was kept earlier" in "\n".join(lines(pilot))
+        await pressed(pilot, "r")
+        assert pilot.app.document.text == "# rescued\n"
+        assert pilot.app.document.changed
+        await pressed(pilot, "u")
+        assert pilot.app.document.text == SHEET
