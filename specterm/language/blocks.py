@@ -39,11 +39,10 @@ def parse_layers(cursor: Cursor, stream: Lines) -> LayersBlock:
     coordinate = cursor.take()
     if coordinate.text in WORDS:
         raise refuse("reserved-word", coordinate.span, name=coordinate.text)
-    start = None
-    if cursor.accept("name", "from"):
-        start = expression(cursor)
+    start = expression(cursor) if cursor.accept("name", "from") else None
     if not cursor.accept("op", ":"):
-        raise leftover(cursor, "':' and the names of the columns")
+        wanted = "':' and the names of the columns"
+        raise cursor.unexpected(wanted) if start is None else leftover(cursor, wanted)
     columns = _columns(cursor)
     rows: list[tuple[Node, ...]] = []
     end = cursor.before.end

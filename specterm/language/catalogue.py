@@ -69,7 +69,7 @@ _TEXT = {
 _EXPRESSIONS = {
     "expected": _row(
         "expected {wanted}{after}{found}",
-        "complete the statement",
+        "{how}",
         "H = p^2 +‸",
         "H = 2*‸/x",
         "H =‸",
@@ -77,6 +77,7 @@ _EXPRESSIONS = {
         "V = (lambda‸: 3)",
         "diagonalise‸",
         "x in‸",
+        "x in (0, 1) ‸free",
         "state s ‸x",
         "units: energy‸, length nm",
     ),
@@ -84,10 +85,20 @@ _EXPRESSIONS = {
     "missing-operator": _row(
         "expected an operator between '{left}' and '{right}'",
         "write `{factor}` if a product is meant",
-        "H = 2‸x",
         "H = 2‸(x + 1)",
-        "H = p ‸p",
         "H = (x)‸(x)",
+    ),
+    "missing-operator-call": _row(
+        "expected an operator between '{left}' and '{right}'",
+        "write `{factor}` for a product, `{left}({right})` for a function",
+        "H = p ‸p",
+        "V = sin ‸x",
+    ),
+    "missing-operator-unit": _row(
+        "expected an operator between '{left}' and '{right}'",
+        "write `{factor}` for a product, `{left} [{right}]` for a unit",
+        "H = 2‸x",
+        "V = 5 ‸meV",
     ),
     "second-equals": _row(
         "a second '=' in one statement", "to compare, write '=='; else end the first statement", "a = b ‸= 3"
@@ -96,6 +107,7 @@ _EXPRESSIONS = {
         "a comma stands only between the arguments of a function",
         "a decimal number has a point; a domain is written `x in (a, b)`",
         "x = (0‸, 1)",
+        "a = 3‸,5",
     ),
     "loose-not": _row(
         "`not` binds looser than what stands before it", "put `not ...` in brackets", "V = 1 + ‸not x", "V = -‸not x"
@@ -181,7 +193,10 @@ _STATEMENTS = {
     ),
     "name-with-blank": _row("'{found}': a name has no blank in it", "join the words with '_'", "‸my x in (0, 1)"),
     "units-form": _row(
-        "the units are not given as they should be", "write `units: energy meV, length nm, mass m_e`", "‸units(energy meV)"
+        "the units are not given as they should be",
+        "write `units: energy meV, length nm, mass m_e`",
+        "‸units(energy meV)",
+        "units: energy meV; ‸length nm",
     ),
     "layers-form": _row(
         "the layers are not given as they should be",

@@ -40,6 +40,8 @@ def fold(level: int, operators: list[str], items: list[Item]) -> Item:
 
 def _halved(operators: list[str], items: list[Item]) -> Item:
     """Return the tree of a left-grouping chain, cut in two near the middle where it is long."""
+    if len(items) == 2:
+        return _join(operators[0], *items)
     cut = _cut(operators) if len(items) > MAX_CHAIN else None
     if cut is None:
         whole = items[0]

@@ -60,7 +60,10 @@ class Cursor:
         """Return the error that `wanted` should stand here."""
         after = f" after '{self.shown(self.before)}'" if self.at else ""
         found = "" if self.now.kind == "end" else f", found '{self.shown(self.now)}'"
-        return refuse("expected", self.now.span, wanted=wanted, after=after, found=found)
+        how = f"put {wanted} there"
+        if "the end" in wanted:
+            how = "put ',' before it, or delete it" if wanted[0] == "'" else "delete it, or complete what stands before it"
+        return refuse("expected", self.now.span, wanted=wanted, after=after, found=found, how=how)
 
     def shown(self, token: Token) -> str:
         """Return a token as the user wrote it."""

@@ -34,7 +34,7 @@ def parse_domain(cursor: Cursor) -> DomainStatement:
     while cursor.accept("op", ","):
         _option(cursor, shape, options)
     if not cursor.done():
-        raise leftover(cursor, "',' or the end of the statement")
+        raise cursor.unexpected("',' or the end of the statement")
     return DomainStatement(
         coordinate.text,
         shape,
@@ -92,6 +92,8 @@ def _option(cursor: Cursor, shape: str, options: _Options) -> None:
         if options.phase is not None:
             raise refuse("option-twice", token.span, name="phase")
         options.phase = expression(cursor)
+        if not (cursor.done() or cursor.sees("op", ",")):
+            raise leftover(cursor, "',' or the end of the statement")
     elif token.text == "free":
         if shape == "ring":
             raise refuse("free-ring", token.span)

@@ -25,13 +25,14 @@ _TOKEN = re.compile(
     |(?P<string>"[^"\n]*")
     |(?P<unit>\[[^\[\]\n]*\])
     |(?P<power>[⁺⁻]?[{_SUPERSCRIPTS}]+)
-    |(?P<op>\*\*|==|!=|<=|>=|[-+*/^()=<>,:;−·⋅×≤≥≠∞])""",
+    |(?P<op>\*\*|==|!=|<=|>=|[-+*/^()=<>,:;−·⋅×≤≥≠∞∈])""",
     re.VERBOSE,
 )
 _CONTROL = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\ud800-\udfff]|\r(?!\n)")
 _OPERATORS = {"**": "^", "−": "-", "·": "*", "⋅": "*", "×": "*", "≤": "<=", "≥": ">=", "≠": "!="}
 _NAMES = {"π": "pi", "ħ": "hbar"}
-_WORDS_FOR = {"&": "and", "|": "or", "!": "not", "~": "not"}
+_SIGNS = {"∞": "inf", "∈": "in"}
+_WORDS_FOR = {"&": "and", "|": "or`, or `abs(...)", "!": "not", "~": "not"}
 _TO_DIGITS = str.maketrans(_SUPERSCRIPTS, "0123456789")
 
 
@@ -89,9 +90,9 @@ def lines(text: str) -> Iterator[Line]:
         if not tokens:
             indent = len(text[begin:start].expandtabs(8)) if fresh else -1
         fresh = False
-        for token in _tokens(str(kind), match[0], start, at):
-            _match_bracket(token, opened, text)
-            tokens.append(token)
+        if kind == "op" and match[0] in "()=":
+            _match_bracket(Token("op", match[0], start, at), opened, text)
+        tokens += _tokens(str(kind), match[0], start, at)
         if len(tokens) > MAX_TOKENS:
             raise refuse("too-many-nodes", tokens[0].span, limit="10,000")
     if opened:
@@ -106,23 +107,29 @@ def _line(tokens: list[Token], indent: int) -> Line:
     return Line([*tokens, Token("end", "", last, last + 1)], indent)
 
 
-def _tokens(kind: str, raw: str, start: int, end: int) -> Iterator[Token]:
-    """Yield the token, or the tokens, that a piece of text stands for."""
-    if kind == "name":
-        yield Token(kind, _name(raw, start), start, end)
-    elif kind == "op":
-        yield Token("name", "inf", start, end) if raw == "∞" else Token(kind, _OPERATORS.get(raw, raw), start, end)
+def _tokens(kind: str, raw: str, start: int, end: int) -> list[Token]:
+    """Return the token, or the tokens, that a piece of text stands for."""
+    if kind == "power":
+        return _power(raw, start, end)
+    if kind == "op":
+        kind, text = ("name", _SIGNS[raw]) if raw in _SIGNS else (kind, _OPERATORS.get(raw, raw))
+    elif kind == "name":
+        text = _name(raw, start)
     elif kind == "number":
         if len(raw) > MAX_DIGITS:
             raise refuse("number-too-long", Span(start, end), limit=MAX_DIGITS)
-        yield Token(kind, raw, start, end)
-    elif kind in {"string", "unit"}:
-        yield Token(kind, raw[1:-1].strip() if kind == "unit" else raw[1:-1], start, end)
+        text = raw
     else:
-        yield Token("op", "^", start, end)
-        if raw[0] in "⁺⁻":
-            yield Token("op", "-" if raw[0] == "⁻" else "+", start, end)
-        yield Token("number", raw.lstrip("⁺⁻").translate(_TO_DIGITS), start, end)
+        text = raw[1:-1].strip() if kind == "unit" else raw[1:-1]
+    return [Token(kind, text, start, end)]
+
+
+def _power(raw: str, start: int, end: int) -> list[Token]:
+    """Return the tokens of a raised number: `^`, the sign, the digits."""
+    sign = {"⁺": "+", "⁻": "-"}.get(raw[0])
+    digits = raw.lstrip("⁺⁻").translate(_TO_DIGITS)
+    signs = [Token("op", sign, start, end)] if sign else []
+    return [Token("op", "^", start, end), *signs, *_tokens("number", digits, start, end)]
 
 
 def _name(raw: str, start: int) -> str:
@@ -138,8 +145,6 @@ def _name(raw: str, start: int) -> str:
 
 def _match_bracket(token: Token, opened: list[Token], text: str) -> None:
     """Keep the stack of open brackets; refuse one that closes nothing, is never closed, or lies too deep."""
-    if token.kind != "op":
-        return
     if token.text == "(":
         opened.append(token)
         if len(opened) > MAX_NESTING:

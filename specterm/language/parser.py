@@ -243,10 +243,14 @@ def leftover(cursor: Cursor, wanted: str) -> SheetError:
     token, before = cursor.now, cursor.before
     if token.kind == "unit":
         return refuse("unit-place", token.span, unit=token.text)
-    if token.kind == "op" and token.text == "=":
-        return refuse("second-equals", token.span)
+    if token.kind == "op" and token.text in "=,":
+        return refuse("second-equals" if token.text == "=" else "stray-comma", token.span)
     if token.kind in {"number", "name"} or (token.kind == "op" and token.text == "("):
         left, right = cursor.shown(before), cursor.shown(token)
         factor = f"{left}*{right}" + ("...)" if right == "(" else "")
-        return refuse("missing-operator", token.span, left=left, right=right, factor=factor)
+        kinds = (before.kind, token.kind)
+        key = "missing-operator" + {("number", "name"): "-unit", ("name", "name"): "-call", ("name", "number"): "-call"}.get(
+            kinds, ""
+        )
+        return refuse(key, token.span, left=left, right=right, factor=factor)
     return cursor.unexpected(wanted)

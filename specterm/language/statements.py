@@ -201,6 +201,8 @@ def _no_statement(cursor: Cursor) -> SheetError:
     shown, near = cursor.shown(first), nearest(first.text, _KEYWORDS)
     if first.text in {"units", "layers", "state"}:
         return refuse(f"{first.text}-form", first.span)
+    if first.text in QUANTITIES and second.kind == "name":
+        return refuse("units-form", first.span)
     if second.kind == "name":
         if cursor.ahead(2).text == "in" or near is None:
             return refuse("name-with-blank", first.span, found=f"{shown} {cursor.shown(second)}")

@@ -53,7 +53,7 @@ def test_the_example_of_the_design():
     [
         ("x in (a, b)", "interval", ("a", "b"), (False, False), None),
         ("x in (-inf, inf)", "interval", ("-inf", "inf"), (False, False), None),
-        ("x in (−∞, ∞)", "interval", ("-inf", "inf"), (False, False), None),
+        ("x ∈ (−∞, ∞)", "interval", ("-inf", "inf"), (False, False), None),
         ("x in (0, 1), free", "interval", ("0", "1"), (True, True), None),
         ("x in (0, 1), free left", "interval", ("0", "1"), (True, False), None),
         ("x in (0, 1), free right", "interval", ("0", "1"), (False, True), None),
