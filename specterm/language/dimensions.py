@@ -49,6 +49,14 @@ class Dimensions:
         """Return the dimension of an expression over the sheet's names, None where it is free; refuse a mismatch in it."""
         return _known(self._term(node)) if self.units.energy else None
 
+    def carries(self, node: Node) -> bool:
+        """Say whether an expression has a unit in it already, so that the unit of its column must not be applied again.
+
+        True where it would have a dimension if all numbers without a unit were plain: `5 [nm]`, `2*gap` with `gap = 5 [nm]`.
+        """
+        kind = self._term(node) if self.units.energy else None
+        return kind is not None and bool(kind.dimension)
+
     def named(self, name: str) -> Dimension | None:
         """Return the dimension of a name of the sheet, None where it is free."""
         return _known(self.kinds.get(name))

@@ -112,6 +112,14 @@ def test_nothing_is_checked_without_units():
     assert found.of(parse_expression("x + p")) is None
 
 
+@pytest.mark.parametrize(
+    ("cell", "carries"), [("5[angstrom]", True), ("2*gap", True), ("gap/2+1", True), ("5", False), ("2*n", False)]
+)
+def test_cells_that_carry_a_unit(cell, carries):
+    """A cell has a unit already where a number in it, or a name it uses, was given one."""
+    assert dimensions("gap = 5 [nm]; n = 3").carries(parse_expression(cell)) is carries
+
+
 def test_expression_over_the_sheet():
     """The dimension of an expression over the sheet's names is found, or the expression refused."""
     found = dimensions("x in (0, 9 [nm]); V = 3 [meV]")
