@@ -62,7 +62,7 @@ async def test_a_save_that_fails_says_why(tmp_path):
 
 
 async def test_opening_another_sheet(sheet, tmp_path):
-    """o lists the sheets of the folder, typing narrows the list, Enter opens; Tab goes back without."""
+    """The key o lists the sheets of the folder, typing narrows the list, Enter opens; Tab goes back without."""
     (tmp_path / "trap.sheet").write_text("# A trap\nH = p^2\n")
     async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
         await settled(pilot)
@@ -85,7 +85,7 @@ async def test_opening_what_is_no_sheet(sheet):
 
 
 async def test_starting_from_a_preset(tmp_path, monkeypatch):
-    """n lists the presets with their titles; the chosen one's text becomes a new sheet without a file."""
+    """The key n lists the presets with their titles; the chosen one's text becomes a new sheet without a file."""
     (tmp_path / "bench.sheet").write_text("# Bench well (invented)\nH = p^2\n")
     monkeypatch.setattr(presets, "folder", lambda: tmp_path)
     async with app().run_test(size=(80, 24)) as pilot:
@@ -122,7 +122,7 @@ async def test_leaving_asks_when_unsaved(sheet):
 
 
 async def test_dropping_changes(sheet):
-    """d leaves without saving, and what was kept for a crash goes too."""
+    """The key d leaves without saving, and what was kept for a crash goes too."""
     async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
         await settled(pilot)
         await pressed(pilot, "e", "#", "tab")

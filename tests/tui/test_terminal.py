@@ -1,0 +1,171 @@
+"""The whole interface in a real pseudo-terminal: what reaches the terminal, and how it is left."""
+
+import os
+import re
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pexpect
+import pyte
+import pytest
+
+from specterm.tui import terminal
+
+CHILD = Path(__file__).parent / "child.py"
+REPO = CHILD.parent.parent.parent
+SHEET = "H = p^2/2 + x^2/2\nx in (-inf, inf)\n"
+
+
+class Session:
+    """A child in a pseudo-terminal, with its screen read through pyte."""
+
+    def __init__(self, folder, size=(80, 24), **environ):
+        """Start the child on a sheet in `folder`."""
+        self.path = folder / "well.sheet"
+        self.path.write_text(SHEET)
+        self.state = folder / "state"
+        env = {**os.environ, "TERM": "xterm-256color", "LANG": "C.UTF-8", "PYTHONPATH": str(REPO), **environ}
+        env["XDG_STATE_HOME"] = str(self.state)
+        columns, rows = size
+        arguments = [str(CHILD), str(self.path)]
+        self.child = pexpect.spawn(sys.executable, arguments, dimensions=(rows, columns), env=env, timeout=30)
+        self.screen = pyte.Screen(columns, rows)
+        self.stream = pyte.ByteStream(self.screen)
+        self.raw = b""
+
+    def until(self, words, seconds=30.0):
+        """Read until `words` stand on the screen; fail with the screen when they do not come."""
+        end = time.monotonic() + seconds
+        while time.monotonic() < end:
+            try:
+                data = self.child.read_nonblocking(65536, timeout=0.1)
+            except pexpect.TIMEOUT:
+                data = b""
+            except pexpect.EOF:
+                break
+            self.raw += data
+            if b"\x1b[?2026$p" in data:
+                self.child.send(b"\x1b[?2026;2$y")
+            self.stream.feed(re.sub(rb"\x1b\[[<>][0-9;]*u|\x1b\[\?[0-9;]*\$p", b"", data))
+            if words in "\n".join(self.screen.display):
+                return
+        pytest.fail(f"{words!r} did not come:\n" + "\n".join(self.screen.display))
+
+    def end(self):
+        """Wait for the end; return exit status and the last bytes."""
+        rest = self.child.read()
+        self.child.wait()
+        return self.child.exitstatus, self.raw + rest
+
+    def sane(self, raw):
+        """Return whether the terminal was given back: no alternate screen, cursor shown, cooked mode."""
+        return raw.rindex(b"\x1b[?1049l") > raw.rindex(b"\x1b[?1049h") and raw.rindex(b"\x1b[?25h") > raw.rindex(b"\x1b[?25l")
+
+
+def test_start_step_and_quit(tmp_path):
+    """A session starts, steps, quits with q and status 0, and the terminal is as it was; the mouse stays off."""
+    session = Session(tmp_path, size=(120, 40))
+    session.until("psi, level 0")
+    session.until("complete")
+    session.child.send("k")
+    session.until("psi, level 1")
+    session.child.send("\x1b[A")
+    session.until("psi, level 2")
+    session.child.send("q")
+    status, raw = session.end()
+    assert status == 0
+    assert session.sane(raw)
+    assert b"\x1b[?1000h" not in raw
+    assert b"\x1b[?1003h" not in raw
+
+
+def test_typing_in_a_real_terminal(tmp_path):
+    """Letters typed in the sheet reach the file on ctrl+s, flow control notwithstanding."""
+    session = Session(tmp_path)
+    session.until("complete")
+    session.child.send("e")
+    session.until("Tab back")
+    session.child.send("# hi \x13")
+    session.until(" saved /")
+    assert session.path.read_text() == "# hi " + SHEET
+    session.child.send("\tq")
+    assert session.end()[0] == 0
+
+
+@pytest.mark.parametrize(("number", "status"), [(signal.SIGTERM, 143), (signal.SIGHUP, 129)])
+def test_signals_keep_the_text_and_the_terminal(tmp_path, number, status):
+    """SIGTERM and SIGHUP end the session in order: unsaved text is kept, the terminal is given back."""
+    session = Session(tmp_path)
+    session.until("complete")
+    session.child.send("e")
+    session.until("Tab back")
+    session.child.send("#")
+    session.until("unsaved")
+    session.child.kill(number)
+    found, raw = session.end()
+    assert found == status
+    assert session.sane(raw)
+    assert session.path.read_text() == SHEET
+    (kept,) = (session.state / "specterm").glob("well-*.sheet")
+    assert kept.read_text() == "#" + SHEET
+
+
+def test_a_closed_connection_ends_the_session(tmp_path):
+    """When the terminal goes away the child ends, and unsaved text is kept."""
+    session = Session(tmp_path)
+    session.until("complete")
+    session.child.send("e")
+    session.until("Tab back")
+    session.child.send("#")
+    session.until("unsaved")
+    os.close(session.child.child_fd)
+    end = time.monotonic() + 20
+    while time.monotonic() < end and Path(f"/proc/{session.child.pid}/stat").read_text().rpartition(")")[2].split()[0] != "Z":
+        time.sleep(0.05)
+    assert Path(f"/proc/{session.child.pid}/stat").read_text().rpartition(")")[2].split()[0] == "Z"
+    (kept,) = (session.state / "specterm").glob("well-*.sheet")
+    assert kept.read_text() == "#" + SHEET
+    os.waitpid(session.child.pid, 0)
+
+
+def test_without_colour(tmp_path):
+    """With NO_COLOR no colour is sent, and everything is still there."""
+    session = Session(tmp_path, NO_COLOR="1")
+    session.until("complete")
+    session.child.send("q")
+    status, raw = session.end()
+    assert status == 0
+    assert not re.search(rb"\x1b\[[0-9;]*(3[0-7]|38;5|38;2|9[0-7])[;m]", raw)
+
+
+def test_no_terminal_is_told_apart(tmp_path):
+    """With a pipe, or with TERM=dumb, `usable` says no, before anything heavy is imported."""
+    (tmp_path / "a.sheet").write_text(SHEET)
+    env = {**os.environ, "PYTHONPATH": str(REPO), "TERM": "xterm"}
+    done = subprocess.run([sys.executable, CHILD, tmp_path / "a.sheet"], env=env, capture_output=True, text=True, check=False)
+    assert (done.returncode, done.stdout) == (2, "no terminal\n")
+    session = Session(tmp_path, TERM="dumb")
+    assert session.end()[0] == 2
+
+
+def test_importing_the_entry_is_light():
+    """Importing `specterm.tui` brings neither textual nor numpy with it."""
+    code = "import sys, specterm.tui; print([m for m in ('textual', 'numpy', 'rich', 'scipy') if m in sys.modules])"
+    env = {**os.environ, "PYTHONPATH": str(REPO)}
+    assert subprocess.run([sys.executable, "-c", code], env=env, capture_output=True, text=True, check=True).stdout == "[]\n"
+
+
+def test_environment_is_settled():
+    """Sizes are asked of the terminal, threads are one, GNU screen gets 256 colours and tmux keeps its own."""
+    environ = {"COLUMNS": "10", "LINES": "5", "TERM": "screen-256color", "STY": "1.a"}
+    terminal.settle(environ)
+    assert "COLUMNS" not in environ
+    assert environ["OPENBLAS_NUM_THREADS"] == "1"
+    assert environ["TEXTUAL_COLOR_SYSTEM"] == "256"
+    inside = {"TERM": "screen-256color", "TMUX": "x", "OMP_NUM_THREADS": "2"}
+    terminal.settle(inside)
+    assert "TEXTUAL_COLOR_SYSTEM" not in inside
+    assert inside["OMP_NUM_THREADS"] == "2"
