@@ -15,7 +15,7 @@ from pathlib import Path
 from mpmath import mp
 
 CASES = Path(__file__).parent / "cases"
-THEMES = {"first": "closed", "wells": "wells", "anharmonic": "anharmonic"}
+THEMES = {"first": "closed", "wells": "wells", "anharmonic": "anharmonic", "rings": "rings"}
 
 
 def main(names):

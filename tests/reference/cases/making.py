@@ -41,9 +41,10 @@ def shot(name, family, sheet, indices, source, pieces, floor, bottom, ends=("wal
     meshes = pair(sheet, pieces, ends, match)
     found = shooting.elements(shooting.mesh(Sheet(sheet), second or pieces, *(second_ends or ends)), max(indices) + 1, floor)
     bottom = lowest(meshes[1]) if bottom is None else bottom
-    values, digits = polish(meshes, {k: found[k] for k in indices}, found[0] - bottom)
-    agree(name, values, found, found[0] - bottom, tolerance)
-    return make(name, family, sheet, values, source, values.get(0, found[0]) - mpf(bottom), digits=digits, **more)
+    scale = float(rise(found[0], bottom))
+    values, digits = polish(meshes, {k: found[k] for k in indices}, scale)
+    agree(name, values, found, scale, tolerance)
+    return make(name, family, sheet, values, source, rise(values.get(0, found[0]), bottom), digits=digits, **more)
 
 
 def mirrored(name, family, sheet, count, source, pieces, floor, bottom, right="wall", tolerance=1e-9, **more):
@@ -59,8 +60,13 @@ def mirrored(name, family, sheet, count, source, pieces, floor, bottom, right="w
         digits = min(digits, figures)
     ordered = [values[k] for k in sorted(values)]
     if ordered != sorted(ordered):
-        raise ArithmeticError(f"{name}: levels out of order")
+        raise ArithmeticError(f"{name}: levels out of order: {[mp.nstr(v, 30) for v in ordered]}")
     return make(name, family, sheet, values, source, values[0] - mpf(bottom), digits=digits, **more)
+
+
+def rise(value, bottom):
+    """Distance from the potential's minimum; the size of the level itself where the minimum is (all but) bottomless."""
+    return value - mpf(bottom) if bottom > -1e6 else abs(value)
 
 
 def lowest(m):

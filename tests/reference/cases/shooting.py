@@ -143,7 +143,7 @@ def root(function, guess, nudge):
     """Secant root of a function near a guess."""
     a, b = mpf(guess), mpf(guess) + mpf(nudge)
     fa, fb = function(a), function(b)
-    for _ in range(40):
+    for _ in range(120):
         if fb == fa or b == a:
             return b
         a, b, fa = b, b - fb * (b - a) / (fb - fa), fb
@@ -194,7 +194,7 @@ def elements(m, count, floor, order=12, phase=None, smallest=1e-11):
         keep = slice(0 if m.left == "free" else 1, size if m.right == "free" else size - 1)
         A, M = A[keep, keep], diags(mass[keep])
     root_mass = diags(1 / np.sqrt(np.real(M.diagonal())))
-    return np.sort(eigsh((root_mass @ A @ root_mass).tocsc(), k=count, sigma=floor, return_eigenvectors=False))
+    return np.sort(eigsh((root_mass @ A @ root_mass).tocsc(), k=count, sigma=floor, v0=np.cos(np.arange(len(M.diagonal()))), return_eigenvectors=False))
 
 
 def lobatto(order):

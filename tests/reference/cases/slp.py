@@ -15,7 +15,7 @@ def regular():
     out = []
     for beta in (20, 33, 50):
         sheet = f"beta = {beta}\nH = p^2 - 2*beta*cos(2*x) + beta^2*sin(2*x)^2\nx in (-pi/2, pi/2)\n"
-        case = mirrored(f"coffey-evans-{beta}", "Coffey-Evans", sheet, 4, SRC + "; parity by halves; check-values section 10",
+        case = mirrored(f"coffey-evans-{beta}", "Coffey-Evans", sheet, 3, SRC + "; parity by halves; check-values section 10",
                         [(0, "pi/2", 90)], -150.0, -2 * beta, tolerance=1e-9)
         out.append(case)
     sheet = "H = p^2 + exp(x)\nx in (0, pi)\n"
