@@ -39,14 +39,14 @@ def hermitian(words: Sequence[Word], setting: Setting) -> NotHermitian | None:
 
 def _refusal(every: Sequence[Word], setting: Setting) -> NotHermitian:
     words = [w for w in every if w.adjoint() != w and not _partner(w, every)] or every
-    complex_slots = [s for w in words for s in _complex_slots(w)]
+    bad = [w for w in words if w.order] or words
+    complex_slots = [s for w in bad for s in _complex_slots(w)]
     if complex_slots:
         function = show(complex_slots[0], setting.coordinate, setting.labels)
         return NotHermitian(
             f"the operator is not Hermitian: the function {function} is complex",
             "use a real function, or add the conjugate: (A + dagger(A))/2 is Hermitian for every A",
         )
-    bad = [w for w in words if w.order] or words
     shown = show_word(bad[0].coefficient, bad[0].slots, setting)
     return NotHermitian(f"the operator is not Hermitian: {shown} is not its own adjoint", _mend(bad[0], setting))
 

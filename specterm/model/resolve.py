@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import cmath
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from typing import Any
@@ -97,11 +98,17 @@ def _placed(node: Node, values: list[Value], context: Context) -> Value:
     except SheetError as error:
         error.span = error.span or node.span
         raise
-    if isinstance(value, Term) and value.scalar is not None and not value.scalar.is_finite:
-        number = value.scalar.value
-        shown = "undefined" if number != number else "infinite"  # noqa: PLR0124
-        raise refuse("not-finite", node.span, what="this", value=shown)
+    if isinstance(value, Term):
+        _check_finite(value, node.span)
     return value
+
+
+def _check_finite(term: Term, span: Span) -> None:
+    """Refuse a constant, or a constant factor, that is infinite or undefined."""
+    numbers = term.data if term.kind == "sum" else (term.data,) if term.kind == "constant" else ()
+    lost = next((n for n in numbers if not n.is_finite), None)
+    if lost is not None:
+        raise refuse("not-finite", span, what="this", value="undefined" if cmath.isnan(lost.value) else "infinite")
 
 
 def _number(node: Number, units: UnitSystem) -> Term:

@@ -92,7 +92,8 @@ def _call(term: Term, inputs: list[Values], errors: list[Values], value: Values)
         return np.max(np.broadcast_arrays(*errors), axis=0)
     bound = _through(function.value, inputs, errors, value) + function.ulps * ULP * np.abs(value)
     if function.ulps >= 16:
-        bound = bound + _through(function.value, inputs, [16 * ULP * np.abs(v) for v in inputs], value, term.data in ORDERED)
+        inner = [function.ulps / 4 * ULP * np.abs(v) for v in inputs]
+        bound = bound + _through(function.value, inputs, inner, value, term.data in ORDERED)
     return bound
 
 

@@ -61,9 +61,10 @@ class Scalar:
 
 
 def written(value: complex | float) -> Scalar:
-    """Return a number as read from text: exact if it is a small integer, else off by at most half an ulp."""
+    """Return a number as read from text: exact if it is a multiple of 2^-20 below 2^30, else off by at most half an ulp."""
     value = tidy(value)
-    return Scalar(value, 0.0 if _small_integer(value) else ULP * abs(value))
+    exact = abs(value) < 2.0**30 and _small_integer(value * 2.0**20)
+    return Scalar(value, 0.0 if exact or _small_integer(value) else ULP * abs(value))
 
 
 def tidy(value: complex | float) -> complex | float:

@@ -12,6 +12,7 @@ from specterm.model.arrays import Values
 from specterm.model.scalar import ULP
 
 Floats = NDArray[np.float64]
+_ONE_PIECE = 99
 
 
 @dataclass(frozen=True)
@@ -83,7 +84,7 @@ class Spline:
 
 def linear(name: str, x: Floats, y: Floats, outside: str) -> Spline:
     """Return straight lines through the points."""
-    return Spline(name, x, np.array([y[:-1], np.diff(y) / np.diff(x)]), outside, 0, _sizes(y))
+    return Spline(name, x, np.array([y[:-1], np.diff(y) / np.diff(x)]), outside, 0 if len(x) > 2 else _ONE_PIECE, _sizes(y))
 
 
 def cubic(name: str, x: Floats, y: Floats, outside: str) -> Spline:
@@ -97,7 +98,7 @@ def cubic(name: str, x: Floats, y: Floats, outside: str) -> Spline:
     h, d = np.diff(x), np.diff(y) / np.diff(x)
     second = (3 * d - 2 * slopes[:-1] - slopes[1:]) / h
     third = (slopes[:-1] + slopes[1:] - 2 * d) / h**2
-    return Spline(name, x, np.array([y[:-1], slopes[:-1], second, third]), outside, 2, _sizes(y))
+    return Spline(name, x, np.array([y[:-1], slopes[:-1], second, third]), outside, 2 if len(x) > 3 else _ONE_PIECE, _sizes(y))
 
 
 def _sizes(y: Floats) -> Floats:

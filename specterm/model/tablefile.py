@@ -39,18 +39,20 @@ def read_table(folder: Path | None, path: str, span: Span) -> TableText:
     full = (folder or Path()) / path
     try:
         found = os.stat(full)
-        if not stat.S_ISREG(found.st_mode):
-            raise refuse("file-special", span, path=shown)
-        if found.st_size > LARGEST_FILE:
-            raise refuse("file-too-large", span, path=shown, found=f"{found.st_size} bytes", limit=f"{LARGEST_FILE} bytes")
+        _check_file(found, shown, span)
         with open(full, "rb") as file:
-            data = file.read(LARGEST_FILE + 1)
+            return _cut(shown, file.read(LARGEST_FILE + 1), span)
     except FileNotFoundError:
         raise refuse("file-missing", span, path=shown) from None
-    except (OSError, ValueError) as error:
-        reason = getattr(error, "strerror", None) or "no such name can be"
-        raise refuse("file-unreadable", span, path=shown, reason=reason) from None
-    return _cut(shown, data, span)
+    except OSError as error:
+        raise refuse("file-unreadable", span, path=shown, reason=error.strerror) from None
+
+
+def _check_file(found: os.stat_result, shown: str, span: Span) -> None:
+    if not stat.S_ISREG(found.st_mode):
+        raise refuse("file-special", span, path=shown)
+    if found.st_size > LARGEST_FILE:
+        raise refuse("file-too-large", span, path=shown, found=f"{found.st_size} bytes", limit=f"{LARGEST_FILE} bytes")
 
 
 def _cut(path: str, data: bytes, span: Span) -> TableText:

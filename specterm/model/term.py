@@ -61,7 +61,7 @@ def _code(data: Data) -> int:
     if isinstance(data, str):
         return int.from_bytes(data.encode(), "little") % _PRIME
     if isinstance(data, complex):
-        return int.from_bytes(struct.pack("<dd", data.real, data.imag), "little") % _PRIME
+        return int.from_bytes(struct.pack("<dd", data.real + 0.0, data.imag + 0.0), "little") % _PRIME
     if isinstance(data, float):
         return int.from_bytes(struct.pack("<d", data + 0.0), "little")
     if isinstance(data, int):
