@@ -15,7 +15,7 @@ from pathlib import Path
 from mpmath import mp
 
 CASES = Path(__file__).parent / "cases"
-THEMES = {"first": "closed", "wells": "wells", "anharmonic": "anharmonic", "rings": "rings"}
+THEMES = {"first": "closed", "wells": "wells", "anharmonic": "anharmonic", "sturm": "slp", "rings": "rings", "tables": "tables"}
 
 
 def main(names):

@@ -29,7 +29,6 @@ def oscillators():
     out.append(checked("ho-200", "harmonic", sheet, values, OSC + " - F^2/2w^2", R("0.355"), [(-28, 27, 110)], -0.2, 1e-9))
     values = {n: R("0.71") * (n + R("0.5")) - R("0.045") / R("0.71") ** 2 for n in (999, 1000, 1001)}
     out.append(make("ho-near", "harmonic", sheet, values, OSC + " - F^2/2w^2", R("0.355"), near=710.2, n=5))
-    values = {n: R("3.5") * (n + R("0.5")) for n in range(0, 12, 2)}
     sheet = "H = p^2/2 + 3.5^2*x^2/2\nx in (0, inf), free\n"
     values = {n: R("3.5") * (2 * n + R("0.5")) for n in (0, 1, 2, 3, 10)}
     out.append(checked("ho-half-free", "harmonic", sheet, values, OSC + ", even levels", R("1.75"), [(0, 8, 40)], 0.0, left="free"))
@@ -161,10 +160,14 @@ def radial():
     energy, length, mass = (R(v) for v in SYSTEMS["energy meV, length nm, mass m_e"])
     ry = R("0.067") * R("110.77") ** 2 / (2 * HBAR**2 / (length**2 * mass * energy))
     levels = {n: -ry / (n + R("0.5")) ** 2 for n in (0, 1, 2, 4)}
-    out.append(make("exciton-2d", "radial", sheet, levels, "closed form -Ry/(n + 1/2)^2; CODATA 2022", ry * 4, digits=12, threshold=0.0))
+    out.append(make("exciton-2d", "radial", sheet, levels, "closed form -Ry/(n + 1/2)^2; CODATA 2022", ry * 4, digits=24, threshold=0.0))
     w = R("1.83")
     sheet = "w = 1.83\nrho in (0, inf)\nH = p^2/2 - 1/(8*rho^2) + w^2*rho^2/2\n"
     out.append(make("osc-2d", "inverse-square", sheet, {n: w * (2 * n + 1) for n in (0, 1, 2, 3, 8)}, "closed form w(2n + 1)", w))
+    for name, nu, A in (("critical-box", R(0), "-1/8"), ("bessel-third-box", R(1) / 3, "-5/72"), ("bessel-half-box", R("2.5"), "3")):
+        levels = {n: mp.besseljzero(nu, n + 1) ** 2 / (2 * R("2.6") ** 2) for n in (0, 1, 2, 3, 9)}
+        sheet = f"A = {A}\nH = p^2/2 + A/r^2\nr in (0, 2.6)\n"
+        out.append(make(name, "inverse-square", sheet, levels, "zeros of a Bessel function", levels[0] - (3 / R("2.6") ** 2 if A == "3" else 0)))
     for name, g, hb in (("isotonic", "3.71", "0.4"), ("isotonic-near-half", "-0.1249", "1"), ("isotonic-attr", "-0.11", "1")):
         nu = mp.sqrt(R(g) * 2 / R(hb) ** 2 + R("0.25"))
         levels = {n: R(hb) * (2 * n + 1 + nu) for n in (0, 1, 2, 3, 7)}
@@ -202,13 +205,12 @@ def others():
     sheet = "a = 2.4\nH = p*(a^2*x^2)*p/2 + 3\nx in (0.5, 8)\n"
     levels = {n: R("2.88") * (nu(n, 16) ** 2 + R("0.25")) + 3 for n in (0, 1, 2, 3, 12)}
     out.append(checked("euler-wide", fam, sheet, levels, "closed form", 4, [(0.5, 8, 40, "log")], 0.0))
-    M = R("1.7")
     for name, text, mu in (("legendre-m1", "1", 1), ("legendre-m2.5", "2.5", R("2.5"))):
         sheet = f"m = {text}\nH = -D*(1 - x^2)*D + m^2/(1 - x^2)\nx in (-1, 1), free\n"
         out.append(make(name, fam, sheet, {n: (mu + n) * (mu + n + 1) for n in (0, 1, 2, 3, 10)}, "closed form (m + n)(m + n + 1)", mu))
     c = R("1.35")
     sheet = "a = 0.8\nb = 1.9\nH = p*(1 - x^2)*p + a^2/(2*(1 - x)) + b^2/(2*(1 + x))\nx in (-1, 1), free\n"
-    out.append(make("jacobi", fam, sheet, {n: (n + c) * (n + c + 1) for n in (0, 1, 2, 5, 14)}, "closed form, Jacobi polynomials", 1))
+    out.append(make("jacobi", fam, sheet, {n: (n + c) * (n + c + 1) for n in (0, 1, 2, 5, 14)}, "closed form, Jacobi polynomials", c))
     w = mp.sqrt(R("1.21") - R("0.64"))
     sheet = "H = (p^2 + 1.21*x^2)/2 + 0.8*(x*p + p*x)/2 + 0.5*p\nx in (-inf, inf)\n"
     shift = R("1.21") * R("0.25") / (2 * w**2)
