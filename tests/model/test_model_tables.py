@@ -133,14 +133,14 @@ def test_special_files(tmp_path):
     """Missing files, folders, pipes, devices and files above 50 MB are refused before they are read."""
     os.mkfifo(tmp_path / "pipe")
     (tmp_path / "sub").mkdir()
-    with open(tmp_path / "large", "wb") as file:
+    with open(tmp_path / "heavy", "wb") as file:
         file.truncate(50_000_001)
     for name, words in (
         ("none", "no file"),
         ("pipe", "regular"),
         ("sub", "regular"),
         ("/dev/zero", "regular"),
-        ("large", "large"),
+        ("heavy", "too large"),
     ):
         with pytest.raises(SheetError, match=words):
             table(tmp_path, PLAIN, f'table("{name}", 1, 2)')
