@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from pathlib import Path
+from typing import TYPE_CHECKING
 
 from specterm.errors import SheetError
 from specterm.language.catalogue import refuse
@@ -21,6 +21,9 @@ from specterm.model.scope import Scope
 from specterm.model.state import State, build_state
 from specterm.model.term import Term
 from specterm.units import UnitSystem
+
+if TYPE_CHECKING:
+    from pathlib import Path
 
 
 def build(sheet: Sheet, *, folder: Path | None = None, overrides: Mapping[str, str] | None = None) -> Model:

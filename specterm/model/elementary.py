@@ -11,7 +11,7 @@ import numpy as np
 from specterm.model.arrays import Values
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Elementary:
     """One function. `value` maps arrays (or numbers) to arrays; real arguments give real results, nan where there is none.
 

@@ -14,7 +14,7 @@ from specterm.model.word import Word, gathered
 from specterm.model.wordtext import show_word
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class NotHermitian:
     """Why an operator is not Hermitian (`reason`) and the form to use instead (`mend`)."""
 

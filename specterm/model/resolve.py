@@ -18,7 +18,7 @@ from specterm.model.values import Value, as_real, negated, power_of, product_of,
 from specterm.units import UnitSystem
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Context:
     """What names and tables mean where an expression stands."""
 

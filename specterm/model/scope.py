@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import replace
-from pathlib import Path
+from typing import TYPE_CHECKING
 
 from specterm.language.catalogue import refuse
 from specterm.language.nodes import Definition, LayersBlock, Name, Node, Sheet, Table
@@ -20,6 +20,9 @@ from specterm.model.table import build_table
 from specterm.model.term import COORDINATE, Term, constant
 from specterm.model.values import Value, as_number, as_real
 from specterm.units import UnitSystem
+
+if TYPE_CHECKING:
+    from pathlib import Path
 
 _BLOCK = "layers "
 

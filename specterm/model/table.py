@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass
-from pathlib import Path
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
@@ -16,6 +16,9 @@ from specterm.model.spline import cubic, linear
 from specterm.model.tablefile import TableText, column, read_table
 from specterm.model.term import Term, make
 from specterm.units import UnitSystem
+
+if TYPE_CHECKING:
+    from pathlib import Path
 
 Floats = NDArray[np.float64]
 

@@ -6,7 +6,7 @@ import os
 import re
 import stat
 from dataclasses import dataclass
-from pathlib import Path
+from typing import TYPE_CHECKING
 
 import numpy as np
 from numpy.typing import NDArray
@@ -14,6 +14,9 @@ from numpy.typing import NDArray
 from specterm.errors import Span, printable
 from specterm.language.catalogue import refuse
 from specterm.language.suggest import nearest
+
+if TYPE_CHECKING:
+    from pathlib import Path
 
 LARGEST_FILE = 50_000_000
 MOST_ROWS = 1_000_000
@@ -36,7 +39,7 @@ class TableText:
 def read_table(folder: Path | None, path: str, span: Span) -> TableText:
     """Return the cells of a file; `path` starts at `folder`. Only regular files up to 50 MB and 1,000,000 rows are read."""
     shown = printable(path)
-    full = (folder or Path()) / path
+    full = path if folder is None else os.path.join(folder, path)
     try:
         found = os.stat(full)
         _check_file(found, shown, span)

@@ -16,7 +16,7 @@ from specterm.model.term import UNIT, Term
 from specterm.model.walk import leaves_first
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Instruction:
     """One call: `run(*inputs)` gives register `out`; `done` are the registers nobody needs afterwards."""
 
@@ -26,7 +26,7 @@ class Instruction:
     done: tuple[int, ...]
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Tape:
     """A compiled term. Registers 0.. hold constants at the start; `place` is the register of the coordinate, or -1."""
 

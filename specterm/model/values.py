@@ -16,7 +16,7 @@ from specterm.model.term import UNIT, Term, divide, linear, multiply, negative
 from specterm.model.word import LARGEST_ORDER
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class LevelPart:
     """A coefficient (number or function) times level `index` of the sheet at `path` (None: this sheet)."""
 
@@ -25,7 +25,7 @@ class LevelPart:
     path: str | None
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Levels:
     """A sum of levels with coefficients."""
 

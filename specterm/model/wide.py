@@ -22,7 +22,7 @@ _LOG2E = 1.4426950408889634
 _FAR = 1e300
 
 
-@dataclass(frozen=True, slots=True)
+@dataclass(frozen=True)
 class Wide:
     """Arrays of m * 2^e."""
 
