@@ -89,8 +89,8 @@ def checked(text: str, source: str) -> str:
 def save(document: Document, path: Path | None = None) -> Document:
     """Write the text to `path` (or to its own file) and return the document as saved.
 
-    The file is replaced whole or not at all: the text goes to a new file beside it, is forced to the disk and takes the old one's
-    place and mode. Raises SheetError when that fails; the old file is then untouched.
+    The file is replaced whole or not at all: the text goes to a new file beside it, is forced to the disk and takes the old
+    one's place and mode. Raises SheetError when that fails; the old file is then untouched.
     """
     target = path or document.path
     if target is None:

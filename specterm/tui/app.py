@@ -79,6 +79,7 @@ class Specterm(App[int]):
         self.found: dict[int | str, MomentsText | Weighed | None] = {}
         self._pause: Timer | None = None
         self._drawing = False
+        self._drawn: dict[str, tuple[object, ...]] = {}
 
     def compose(self) -> ComposeResult:
         """Put the panes in their order; the style sheet places them."""
@@ -138,7 +139,9 @@ class Specterm(App[int]):
         with self.batch_update():
             for name, draw in (("figure", figure_rows), ("levels", level_rows)):
                 pane = base.query_one(f"#{name}", CellPane)
-                if pane.size.width and pane.size.height and pane.display:
+                of = (shown.look, shown.outcome, shown.weighed, pane.size)
+                if pane.size.width and pane.size.height and pane.display and self._drawn.get(name) != of:
+                    self._drawn[name] = of
                     pane.show(draw(shown, *pane.size))
             width = self.size.width
             lines = (("message", message_row), ("chosen", chosen_row), ("trust", trusted_row))
@@ -177,11 +180,16 @@ class Specterm(App[int]):
 
     # What the text brings
 
-    def on_text_area_changed(self, event: TextArea.Changed) -> None:
-        """Take the text typed and compute when the typing pauses."""
-        if event.text_area.text == self.document.text:
+    def on_text_area_changed(self, _: TextArea.Changed) -> None:
+        """Compute the text typed when the typing pauses."""
+        self.take_typed()
+
+    def take_typed(self) -> None:
+        """Take the text of the pane into the document; its messages may be on their way still."""
+        text = self.sheet.text.text
+        if text == self.document.text:
             return
-        self.document = self.document.edited(event.text_area.text)
+        self.document = self.document.edited(text)
         if self._pause is not None:
             self._pause.stop()
         self._pause = self.set_timer(_PAUSE, self._solve)
@@ -235,7 +243,6 @@ class Specterm(App[int]):
 
     def on_sheet_text_left(self, _: SheetText.Left) -> None:
         """Come back from typing."""
-        self.screen_stack[0].set_focus(None)
         self._arrange()
         self.redraw()
 

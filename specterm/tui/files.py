@@ -27,14 +27,15 @@ class Files:
 
     def save(self, then: Callable[[], None] | None = None) -> None:
         """Write the document to its file, or ask for a name; `then` follows when it is written."""
-        document = self.app.document
-        if document.path is None:
+        self.app.take_typed()
+        if self.app.document.path is None:
             self.save_as(then)
             return
-        self._write(document.path, then)
+        self._write(self.app.document.path, then)
 
     def save_as(self, then: Callable[[], None] | None = None) -> None:
         """Ask for a name and write the document under it; an existing file of another name is asked about."""
+        self.app.take_typed()
         path = self.app.document.path
         start = str(path) if path else "untitled.sheet"
 
@@ -116,6 +117,7 @@ class Files:
 
     def _guarded(self, go_on: Callable[[], None]) -> None:
         """Go on at once when all is saved, else ask first."""
+        self.app.take_typed()
         if not self.app.document.changed:
             go_on()
             return

@@ -26,7 +26,9 @@ class SheetText(TextArea):
     """The text of the sheet; Tab leaves it."""
 
     BINDINGS: ClassVar[list[Binding]] = [  # type: ignore[assignment]
-        Binding(key.keys, key.action, key.verb, id=key.id, tooltip=key.tooltip) for key in TYPING if key.action == "done"
+        Binding(key.keys, key.action, key.verb, id=key.id, tooltip=key.tooltip, priority=True)
+        for key in TYPING
+        if key.action == "done"
     ]
 
     class Left(Message):
@@ -40,7 +42,8 @@ class SheetText(TextArea):
         self._marks: dict[int, tuple[int, int]] = {}
 
     def action_done(self) -> None:
-        """Leave the text."""
+        """Leave the text at once, so that the next key is no text any more."""
+        self.screen.set_focus(None)
         self.post_message(self.Left())
 
     def mark(self, span: Span | None) -> None:

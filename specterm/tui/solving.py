@@ -84,7 +84,7 @@ class Request:
     overrides: Mapping[str, str] = field(default_factory=dict)
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Outcome:
     """What came of a request: `origin` holds the spectrum and what its figure needs, `error` why there is none.
 
@@ -165,7 +165,7 @@ def units_of(model: Any) -> Units:  # noqa: ANN401 - a model
     return Units(units.energy, units.length, momentum, model.domain.coordinate)
 
 
-@dataclass(frozen=True)
+@dataclass(frozen=True, eq=False)
 class Weighed:
     """The weights of a prepared state with its wave, or the error that stands in their way."""
 

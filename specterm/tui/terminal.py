@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 import os
 import sys
 from collections.abc import MutableMapping
@@ -70,6 +71,7 @@ def _log(path: Path) -> int:
 
 def give_back(stream: TextIO) -> None:
     """Turn descriptor 2 back to the terminal."""
-    stream.flush()
+    with contextlib.suppress(OSError):
+        stream.flush()
     os.dup2(stream.fileno(), 2)
     _draw_on(sys.stderr)

@@ -28,6 +28,7 @@ def watch_signals(app: Specterm, guarded: bool) -> None:
 
 def _end(app: Specterm, status: int) -> None:
     """Keep the text and close the app."""
+    app.take_typed()
     rescue.keep(app.document)
     app.exit(status, return_code=status)
 
