@@ -1,8 +1,9 @@
 #!/usr/bin/env python3
-"""Compute the reference cases beside this file: `make_cases.py [THEME ...]` writes cases/THEME.json for the themes named (all without).
+"""Compute the reference cases beside this file: `make_cases.py [THEME ...]` writes
+cases/THEME.json for the themes named (all without).
 
-Values come from closed forms, transcendental equations and Taylor steps in high precision (mpmath), and are held against a second
-method where there is one; nothing of specterm is used. Deterministic.
+Values come from closed forms, transcendental equations and Taylor steps in high precision (mpmath), and are held against
+a second method where there is one; nothing of specterm is used. Deterministic.
 """
 
 from __future__ import annotations

@@ -2,16 +2,27 @@
 
 from __future__ import annotations
 
+from itertools import pairwise
+
+import numpy as np
 import shooting
 from mpmath import mp, mpf
 from sheets import Nodes, Sheet
 
 
 def make(name, family, sheet, levels, source, scale, digits=26, **more):
-    """A case in the format of levels.json; `levels` maps index -> number, `scale` is lowest level minus potential's minimum."""
+    """Put a case as in levels.json; `levels` maps index -> number, `scale` is lowest level minus potential's minimum."""
     text = {str(k): decimal(v, digits) for k, v in sorted(levels.items())}
-    return {"id": name, "family": family, "sheet": sheet, "levels": text, "digits": digits,
-            "scale": float(mp.nstr(mpf(scale), 4)), **more, "source": source}
+    return {
+        "id": name,
+        "family": family,
+        "sheet": sheet,
+        "levels": text,
+        "digits": digits,
+        "scale": float(mp.nstr(mpf(scale), 4)),
+        **more,
+        "source": source,
+    }
 
 
 def decimal(value, digits):
@@ -20,7 +31,7 @@ def decimal(value, digits):
 
 
 def checked(name, family, sheet, levels, source, scale, pieces, floor, tolerance=1e-9, left="wall", right="wall", **more):
-    """A case with known values, held against Legendre elements in doubles."""
+    """Make a case with known values, held against Legendre elements in doubles."""
     m = shooting.mesh(Sheet(sheet), pieces, left, right)
     found = shooting.elements(m, max(levels) + 1, floor)
     agree(name, levels, found, scale, tolerance)
@@ -32,12 +43,28 @@ def agree(name, levels, found, scale, tolerance):
     for index, value in levels.items():
         off = abs(found[index] - float(value)) / max(abs(float(value)), float(scale))
         if not off < tolerance:
-            raise ArithmeticError(f"{name}: level {index} is {decimal(value, 20)}, elements give {found[index]:.15g} ({off:.1e})")
+            raise ArithmeticError(
+                f"{name}: level {index} is {decimal(value, 20)}, elements give {found[index]:.15g} ({off:.1e})"
+            )
 
 
-def shot(name, family, sheet, indices, source, pieces, floor, bottom, ends=("wall", "wall"), tolerance=1e-9, match=None,
-         second=None, second_ends=None, **more):
-    """A case whose values are shot: starts from elements (which give the index), polished with Taylor steps on two meshes."""
+def shot(
+    name,
+    family,
+    sheet,
+    indices,
+    source,
+    pieces,
+    floor,
+    bottom,
+    ends=("wall", "wall"),
+    tolerance=1e-9,
+    match=None,
+    second=None,
+    second_ends=None,
+    **more,
+):
+    """Make a case whose values are shot: starts from elements (which give the index), polished with Taylor steps on two."""
     meshes = pair(sheet, pieces, ends, match)
     found = shooting.elements(shooting.mesh(Sheet(sheet), second or pieces, *(second_ends or ends)), max(indices) + 1, floor)
     bottom = lowest(meshes[1]) if bottom is None else bottom
@@ -52,7 +79,9 @@ def mirrored(name, family, sheet, count, source, pieces, floor, bottom, right="w
     values, digits = {}, 24
     for odd, left in enumerate(("free", "wall")):
         meshes = pair(sheet, pieces, (left, right), None, grow_left=False)
-        found = shooting.elements(meshes[0] if right == "wall" else shooting.mesh(Sheet(sheet), reach(pieces), left, "wall"), count, floor)
+        found = shooting.elements(
+            meshes[0] if right == "wall" else shooting.mesh(Sheet(sheet), reach(pieces), left, "wall"), count, floor
+        )
         bottom = lowest(meshes[1]) if bottom is None else bottom
         part, figures = polish(meshes, dict(enumerate(found)), found[0] - bottom)
         agree(name, part, found, found[0] - bottom, tolerance)
@@ -71,10 +100,12 @@ def rise(value, bottom):
 
 def lowest(m):
     """Least value of the potential on the steps, sampled."""
-    import numpy as np
     grid = np.linspace(0, 1, 41)
     points = [float(st.s) + float(st.h) * grid for st in m.steps]
-    return min(float(np.min(m.sheet.at((np.exp(s) if st.log else s).view(Nodes), float)[1])) for st, s in zip(m.steps, points, strict=True))
+    return min(
+        float(np.min(m.sheet.at((np.exp(s) if st.log else s).view(Nodes), float)[1]))
+        for st, s in zip(m.steps, points, strict=True)
+    )
 
 
 def reach(pieces, far=40):
@@ -83,18 +114,8 @@ def reach(pieces, far=40):
     return [*pieces, (end, end + far, 20)]
 
 
-def tails(pieces, reach_out):
-    """Pieces continued on both sides by stretches that double, for elements in a well with a long tail."""
-    a, b = float(pieces[0][0]), float(pieces[-1][1])
-    out, length = list(pieces), b - a
-    while length < reach_out:
-        out = [(a - length, a, 3), *out, (b, b + length, 3)]
-        a, b, length = a - length, b + length, 2 * length
-    return out
-
-
 def pair(sheet, pieces, ends, match, grow_left=True):
-    """A mesh and a finer one, which also reaches farther where an end of the domain is open."""
+    """Return a mesh and a finer one, which also reaches farther where an end of the domain is open."""
     text = Sheet(sheet)
     finer = [(a, b, -(-n * 7 // 5), *how) for a, b, n, *how in pieces]
     inner = text.domain.split("ring")[0]
@@ -108,7 +129,7 @@ def pair(sheet, pieces, ends, match, grow_left=True):
 
 
 def apart(m, guess, size, known):
-    """A root near a guess, other than the known ones close by, which are divided out."""
+    """Find a root near a guess, other than the known ones close by, which are divided out."""
     near = [r for r in known if abs(r - guess) < 1e-6 * size]
     return shooting.root(lambda E: shooting.characteristic(m, E) / mp.fprod(E - r for r in near), guess, size * 1e-11)
 
@@ -127,6 +148,6 @@ def polish(meshes, starts, scale):
         raise ArithmeticError(f"meshes agree on {digits} figures only: {values}")
     values = dict(zip(sorted(values), sorted(values.values()), strict=True))
     ordered = sorted(values)
-    if any(values[a] >= values[b] for a, b in zip(ordered, ordered[1:], strict=False)):
+    if any(values[a] >= values[b] for a, b in pairwise(ordered)):
         raise ArithmeticError(f"levels out of order: {values}")
     return values, digits

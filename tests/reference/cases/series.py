@@ -42,7 +42,9 @@ class Series:
     def __mul__(self, other):
         a, b = self.c, Series.of(other).c
         n = min(len(a) + len(b) - 1, ORDER + 1)
-        return Series([mp.fsum(a[j] * b[k - j] for j in range(max(0, k - len(b) + 1), min(k, len(a) - 1) + 1)) for k in range(n)])
+        return Series(
+            [mp.fsum(a[j] * b[k - j] for j in range(max(0, k - len(b) + 1), min(k, len(a) - 1) + 1)) for k in range(n)]
+        )
 
     __radd__, __rmul__ = __add__, __mul__
 
@@ -149,9 +151,24 @@ def where(condition, yes, no):
 
 
 def step(x):
-    """Unit step, decided at the middle of the step."""
+    """Return the unit step, decided at the middle of the step."""
     return mpf(1) if Series.of(x).middle() > 0 else mpf(0)
 
 
-NAMES = {"exp": exp, "sin": sin, "cos": cos, "cosh": cosh, "sinh": sinh, "tanh": tanh, "sqrt": sqrt, "log": log, "ln": log,
-         "where": where, "step": step, "abs": abs, "pi": mp.pi, "inf": mp.inf, "sech": lambda x: 1 / cosh(x)}
+NAMES = {
+    "exp": exp,
+    "sin": sin,
+    "cos": cos,
+    "cosh": cosh,
+    "sinh": sinh,
+    "tanh": tanh,
+    "sqrt": sqrt,
+    "log": log,
+    "ln": log,
+    "where": where,
+    "step": step,
+    "abs": abs,
+    "pi": mp.pi,
+    "inf": mp.inf,
+    "sech": lambda x: 1 / cosh(x),
+}

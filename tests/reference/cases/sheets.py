@@ -8,9 +8,23 @@ import numpy as np
 import series
 from mpmath import mp, mpf
 
-FLOAT_NAMES = {"exp": np.exp, "sin": np.sin, "cos": np.cos, "cosh": np.cosh, "sinh": np.sinh, "tanh": np.tanh, "sqrt": np.sqrt,
-               "log": np.log, "ln": np.log, "where": series.where, "step": lambda x: float(middle_of(x) > 0), "abs": np.abs, "pi": np.pi,
-               "inf": np.inf, "sech": lambda x: 1 / np.cosh(x)}
+FLOAT_NAMES = {
+    "exp": np.exp,
+    "sin": np.sin,
+    "cos": np.cos,
+    "cosh": np.cosh,
+    "sinh": np.sinh,
+    "tanh": np.tanh,
+    "sqrt": np.sqrt,
+    "log": np.log,
+    "ln": np.log,
+    "where": series.where,
+    "step": lambda x: float(middle_of(x) > 0),
+    "abs": np.abs,
+    "pi": np.pi,
+    "inf": np.inf,
+    "sech": lambda x: 1 / np.cosh(x),
+}
 with mp.workdps(60):
     HBAR = mpf("6.62607015e-34") / (2 * mp.pi)
     # energy, length, mass: SI factors (CODATA 2022 masses; e and h are exact)

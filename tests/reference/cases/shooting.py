@@ -1,4 +1,4 @@
-"""Levels of -(K f')' + V f = E f: Taylor steps in fixed point (high precision), and Legendre elements in doubles as a second method."""
+"""Levels of -(K f')' + V f = E f: Taylor steps in fixed point (high precision), and Legendre elements in doubles."""
 
 from __future__ import annotations
 
@@ -9,6 +9,9 @@ from operator import mul
 
 import numpy as np
 from mpmath import mp, mpf
+from numpy.polynomial import legendre
+from scipy.sparse import coo_matrix, diags
+from scipy.sparse.linalg import eigsh
 from series import ORDER, Series, exp
 from sheets import Nodes, Sheet
 
@@ -32,7 +35,7 @@ class Step:
 
 @dataclass(frozen=True)
 class Mesh:
-    """The steps, the index of the matching step, and the two ends ("wall", "free", "plateau", or a power sigma: f ~ x^sigma)."""
+    """The steps, the matching step, and the two ends ("wall", "free", "plateau", or a power sigma: f ~ x^sigma)."""
 
     sheet: Sheet
     steps: list
@@ -47,23 +50,23 @@ def fixed(values):
 
 
 def make_step(sheet, s, h, log):
-    """The equation about the left end of a step."""
+    """Set up the equation about the left end of a step."""
+
     def expand():
         line = Series([s, h])
         x = exp(line) if log else line
         slope = x if log else Series([1])
         K, V = sheet.at(x, mpf)
         return slope / K, slope * V, slope
+
     return Step(s, h, log, expand)
 
 
 def mesh(sheet, pieces, left="wall", right="wall", match=None):
     """Divide pieces (a, b, steps[, "log"]) evenly (in ln x for "log")."""
     steps = []
-    for a, b, count, *how in pieces:
-        a, b = sheet.number(str(a)), sheet.number(str(b))
-        if how:
-            a, b = mp.log(a), mp.log(b)
+    for first, last, count, *how in pieces:
+        a, b = (mp.log(v) if how else v for v in (sheet.number(str(first)), sheet.number(str(last))))
         h = (b - a) / count
         steps += [make_step(sheet, a + k * h, h, bool(how)) for k in range(count)]
     where = len(steps) // 2 if match is None else next(k for k, st in enumerate(steps) if x_of(st) >= match)
@@ -83,8 +86,8 @@ def advance(step, E, f, g, sign):
         r, q = ([v if j % 2 else -v for j, v in enumerate(w)] for w in (r, q))
     cf, cg = [f], [g]
     for k in range(ORDER + 4):
-        nf = sum(map(mul, r, reversed(cg[-len(r):]))) >> BITS
-        ng = sum(map(mul, q, reversed(cf[-len(q):]))) >> BITS
+        nf = sum(map(mul, r, reversed(cg[-len(r) :]))) >> BITS
+        ng = sum(map(mul, q, reversed(cf[-len(q) :]))) >> BITS
         cf.append(nf // (k + 1))
         cg.append(ng // (k + 1))
     return sum(cf), sum(cg)
@@ -127,7 +130,7 @@ def start(m, E, end, step, back):
 
 
 def plateau_point(x, step, back):
-    """A point just outside the end, for functions decided by comparisons."""
+    """Return a point just outside the end, for functions decided by comparisons."""
     return Series([x.c[0] + (step.h if back else -step.h) / 1000]) if not step.log else x
 
 
@@ -135,7 +138,7 @@ def characteristic(m, E):
     """Wronskian of the two one-sided solutions at the matching point: an entire function of E."""
     fixed_E = fixed([E])[0]
     f, g, s = carry(m.steps[: m.match], fixed_E, *start(m, E, m.left, m.steps[0], False), False)
-    u, v, t = carry(m.steps[m.match:], fixed_E, *start(m, E, m.right, m.steps[-1], True), True)
+    u, v, t = carry(m.steps[m.match :], fixed_E, *start(m, E, m.right, m.steps[-1], True), True)
     return mp.ldexp(mpf(f * v - g * u), s + t - 2 * BITS)
 
 
@@ -163,9 +166,6 @@ def trace(m, E):
 
 def elements(m, count, floor, order=12, phase=None, smallest=1e-11):
     """Lowest levels by Gauss-Lobatto-Legendre elements in doubles on the same steps (walls where the ends are open)."""
-    from scipy.sparse import coo_matrix, diags
-    from scipy.sparse.linalg import eigsh
-
     xi, w, d = lobatto(order)
     rows, cols, vals, mass, at = [], [], [], {}, 0
     steps = [st for st in m.steps if x_of(st) >= smallest or not st.log]
@@ -194,17 +194,23 @@ def elements(m, count, floor, order=12, phase=None, smallest=1e-11):
         keep = slice(0 if m.left == "free" else 1, size if m.right == "free" else size - 1)
         A, M = A[keep, keep], diags(mass[keep])
     root_mass = diags(1 / np.sqrt(np.real(M.diagonal())))
-    return np.sort(eigsh((root_mass @ A @ root_mass).tocsc(), k=count, sigma=floor, v0=np.cos(np.arange(len(M.diagonal()))), return_eigenvectors=False))
+    return np.sort(
+        eigsh(
+            (root_mass @ A @ root_mass).tocsc(),
+            k=count,
+            sigma=floor,
+            v0=np.cos(np.arange(len(M.diagonal()))),
+            return_eigenvectors=False,
+        )
+    )
 
 
 def lobatto(order):
     """Nodes, weights and differentiation matrix on (-1, 1)."""
-    from numpy.polynomial import legendre as L
-
     c = np.zeros(order + 1)
     c[-1] = 1
-    x = np.concatenate([[-1], np.sort(L.legroots(L.legder(c)).real), [1]])
-    P = L.legval(x, c)
+    x = np.concatenate([[-1], np.sort(legendre.legroots(legendre.legder(c)).real), [1]])
+    P = legendre.legval(x, c)
     w = 2 / (order * (order + 1) * P**2)
     d = np.where(np.eye(order + 1), 0, P[:, None] / P[None, :] / (x[:, None] - x[None, :] + np.eye(order + 1)))
     d[0, 0], d[-1, -1] = -order * (order + 1) / 4, order * (order + 1) / 4
