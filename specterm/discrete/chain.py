@@ -123,11 +123,12 @@ def eliminate_ring(matrix: Chain) -> tuple[NDArray[np.int64], Array, list[tuple[
     return count, last, steps
 
 
-def twisted_vectors(matrix: Chain) -> tuple[Array, Array]:
+def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array]:
     """Return for each column the vector z that solves the tridiagonal system but for one row, and the misfit of that row.
 
-    Shapes (vertices, energies) and (energies,): T z = misfit e_r with z_r = 1 and |misfit| least over r, the twisted
-    factorisation (Parlett and Dhillon, Linear Algebra Appl. 267 (1997) 247).
+    Shapes (vertices, energies) and (energies,): T z = misfit e_r with z_r = 1 and |misfit|/weight_r least over r, the twisted
+    factorisation (Parlett and Dhillon, Linear Algebra Appl. 267 (1997) 247). `weight`, shaped like the diagonal, is the diagonal of the
+    mass: without it long elements would always win.
     """
     diagonal, side = matrix.diagonal, matrix.side
     vertices, columns = diagonal.shape
@@ -142,7 +143,7 @@ def twisted_vectors(matrix: Chain) -> tuple[Array, Array]:
             up[row][up[row] == 0] = tiny
             up[row - 1] -= squares[row - 1] / up[row]
     gamma = down + up - diagonal
-    twist = np.argmin(np.abs(gamma), axis=0)
+    twist = np.argmin(np.abs(gamma) / weight, axis=0)
     z = np.zeros_like(diagonal)
     take = np.arange(columns)
     z[twist, take] = 1.0

@@ -19,7 +19,7 @@ from numpy.typing import NDArray
 
 from specterm.discrete.mesh import Edge, Mesh
 from specterm.discrete.quadrature import gauss_jacobi, gauss_legendre
-from specterm.discrete.reference import SPARE, reference, tabulated
+from specterm.discrete.reference import SPARE, functions, tabulated
 
 Array = NDArray[np.float64]
 Coefficient = Callable[[Array], Array]
@@ -30,11 +30,13 @@ EXTRA_POINTS = 8
 
 @dataclass(frozen=True)
 class Coefficients:
-    """K, K' and V as functions of x (shape (n,) to (n,)); V is measured from `origin`."""
+    """K, K' and V as functions of x (shape (n,) to (n,)), and bounds of the rounding in V and K; V is measured from `origin`."""
 
     stiffness: Coefficient
     slope: Coefficient
     potential: Coefficient
+    noise_potential: Coefficient
+    noise_stiffness: Coefficient
     origin: float
 
 
@@ -98,8 +100,7 @@ def _powered(mesh: Mesh, coefficients: Coefficients, side: int, end: Edge) -> tu
     potential = coefficients.potential(x) - power * (power - 1) * stiffness / d**2 - power * slope / d
     inner = near + sign * h
     edge = power * coefficients.stiffness(np.array([inner]))[0] / h
-    element = reference(mesh.order)
-    values, slopes = element.values(sign * t), element.derivatives(sign * t)
+    values, slopes = functions(mesh.order, sign * t)
     weight = h / 2 * w / (1 + t) ** beta
     return x, weight, (d / h) ** power, stiffness, potential, edge, values, slopes
 
@@ -130,6 +131,8 @@ def condense(mesh: Mesh, here: Grid) -> Condensed:
     mass = _gram(values, here.mass)
     form[0, 1, 1] += here.edge[0]
     form[-1, 0, 0] += here.edge[1]
+    form[0, 0, 0] += mesh.left.pull
+    form[-1, 1, 1] += mesh.right.pull
     return _diagonalise(mesh, here, form, mass)
 
 

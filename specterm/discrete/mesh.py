@@ -16,12 +16,14 @@ class Edge:
 
     `fixed`: psi = 0 there (a wall, or the place where a decaying state was cut). `power`: psi behaves as d**power in the
     first element, d the distance from the end (None for a regular end); then the factor is taken out of the polynomials.
-    `alpha`: the coefficient between the momenta behaves as d**alpha there.
+    `alpha`: the coefficient between the momenta behaves as d**alpha there. `pull`: added to the form as pull |psi|^2 at the end
+    (what a tail beyond the mesh adds).
     """
 
     fixed: bool
     power: float | None = None
     alpha: float = 0.0
+    pull: float = 0.0
 
 
 @dataclass(frozen=True)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+import math
 from functools import lru_cache
 
 import numpy as np
@@ -16,47 +16,42 @@ SPARE = 4
 """How many bubbles beyond the order are kept to estimate what the order leaves out."""
 
 
-@dataclass(frozen=True)
-class Reference:
-    """Polynomials up to degree `order` (+ `SPARE`), as coefficients of Legendre polynomials.
+def functions(order: int, t: Array) -> tuple[Array, Array]:
+    """Return the functions and their derivatives at t, each of shape (points, order + 1 + SPARE).
 
-    Columns: left vertex, right vertex, then bubbles of degree 2 ... order + SPARE. `coefficients` has shape
-    (degrees, functions); `slopes` holds the derivatives the same way. Bubbles are orthonormal in L2(-1, 1).
+    Columns: left vertex (1 - t)/2, right vertex (1 + t)/2, then bubbles (1 - t^2) P_k^(2,2)(t) of degree 2 ... order + SPARE,
+    orthonormal in L2(-1, 1) (Jacobi polynomials; Abramowitz and Stegun, table 22.2). Tested to order 24.
     """
+    count = order + SPARE - 1
+    inner, outer = _jacobi(2, count, t), _jacobi(3, count, t)
+    values, slopes = np.empty((len(t), count + 2)), np.empty((len(t), count + 2))
+    values[:, 0], values[:, 1] = (1 - t) / 2, (1 + t) / 2
+    slopes[:, 0], slopes[:, 1] = -0.5, 0.5
+    for k in range(count):
+        norm = math.sqrt((2 * k + 5) * (k + 3) * (k + 4) / (32.0 * (k + 1) * (k + 2)))
+        steep = (k + 5) / 2 * outer[:, k - 1] if k else 0.0
+        values[:, k + 2] = norm * (1 - t) * (1 + t) * inner[:, k]
+        slopes[:, k + 2] = norm * ((1 - t) * (1 + t) * steep - 2 * t * inner[:, k])
+    return values, slopes
 
-    order: int
-    coefficients: Array
-    slopes: Array
 
-    def values(self, t: Array) -> Array:
-        """Return the functions at t, shape t.shape + (functions,)."""
-        return np.polynomial.legendre.legvander(t, self.coefficients.shape[0] - 1) @ self.coefficients
-
-    def derivatives(self, t: Array) -> Array:
-        """Return d/dt of the functions at t, shape t.shape + (functions,)."""
-        return np.polynomial.legendre.legvander(t, self.coefficients.shape[0] - 1) @ self.slopes
-
-
-@lru_cache(maxsize=16)
-def reference(order: int) -> Reference:
-    """Return the reference element of an order from 2 to 24."""
-    top = order + SPARE
-    t, w = gauss_legendre(top + 2)
-    legendre = np.polynomial.legendre.legvander(t, top)
-    raw = (1 - t**2)[:, None] * legendre[:, : top - 1]
-    orthogonal, triangle = np.linalg.qr(np.sqrt(w)[:, None] * raw)
-    bubbles = orthogonal * np.sign(np.diag(triangle)) / np.sqrt(w)[:, None]
-    vertices = np.stack([(1 - t) / 2, (1 + t) / 2], axis=1)
-    norms = (2 * np.arange(top + 1) + 1) / 2
-    coefficients = norms[:, None] * (legendre.T @ (w[:, None] * np.hstack([vertices, bubbles])))
-    slopes = np.zeros_like(coefficients)
-    slopes[:-1] = np.polynomial.legendre.legder(coefficients)
-    return Reference(order, coefficients, slopes)
+def _jacobi(a: int, count: int, t: Array) -> Array:
+    """Return the Jacobi polynomials P_k^(a,a) for k < count at t, shape (points, count), by their three-term recurrence."""
+    p = np.ones((len(t), max(count, 2)))
+    p[:, 1] = (a + 1) * t
+    for k in range(2, count):
+        upper = (2 * k + 2 * a - 1) * (k + a) * t * p[:, k - 1] - (k + a - 1) * (k + a) * p[:, k - 2]
+        p[:, k] = upper / (k * (k + 2 * a))
+    return p
 
 
 @lru_cache(maxsize=16)
 def tabulated(order: int, points: int) -> tuple[Array, Array]:
-    """Return values and slopes of the reference functions at the Gauss-Legendre points, shapes (points, functions)."""
-    t, _ = gauss_legendre(points)
-    element = reference(order)
-    return element.values(t), element.derivatives(t)
+    """Return `functions` at the Gauss-Legendre points."""
+    return functions(order, gauss_legendre(points)[0])
+
+
+@lru_cache(maxsize=16)
+def end_slopes(order: int) -> Array:
+    """Return the derivatives of the functions up to `order` at t = -1 and t = 1, shape (2, order + 1)."""
+    return functions(order, np.array([-1.0, 1.0]))[1][:, : order + 1]

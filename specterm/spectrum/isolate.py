@@ -25,12 +25,11 @@ class Group:
     high: float
 
 
-def isolate(count: Count, first: int, last: int, low: float, high: float) -> list[Group]:
+def isolate(count: Count, first: int, last: int, low: float, high: float, bottom: float) -> list[Group]:
     """Return groups that hold the levels first ... last, given count(low) <= first and count(high) > last.
 
-    Each bracket is cut at several energies at once, until it holds one level or is narrower than `CLOSE` of its distance to `low`.
+    Each bracket is cut at several energies at once, until it holds one level or is narrower than `CLOSE` of its distance to `bottom`.
     """
-    bottom = low
     ends = count(np.array([low, high]))
     todo = [Group(int(ends[0]), int(ends[1] - ends[0]), low, high)]
     done: list[Group] = []
@@ -47,7 +46,7 @@ def isolate(count: Count, first: int, last: int, low: float, high: float) -> lis
 def _settled(group: Group, bottom: float) -> bool:
     width = group.high - group.low
     middle = (group.high + group.low) / 2
-    narrow = width <= CLOSE * (middle - bottom) or width <= 8 * np.spacing(max(abs(group.low), abs(group.high)))
+    narrow = width <= CLOSE * abs(middle - bottom) or width <= 8 * np.spacing(max(abs(group.low), abs(group.high)))
     return group.size == 1 or narrow
 
 

@@ -9,11 +9,13 @@ from numpy.typing import NDArray
 
 from specterm.discrete.chain import Chain, chain, count_below, element_coefficients, twisted_vectors
 from specterm.discrete.elements import Condensed
-from specterm.spectrum.isolate import Group, isolate
+from specterm.spectrum.isolate import CLOSE, Group, isolate
 
 Array = NDArray[np.float64]
 Values = NDArray[np.generic]
 
+SETTLED = 1e-12
+"""Newton steps smaller than this share of the level end the iteration; a hundredth of `CLOSE`, so that no neighbour is mixed in."""
 DENSE = 700
 """Up to so many vertices groups are solved with a dense matrix."""
 
@@ -31,44 +33,75 @@ class Solved:
     kinetic: Array
 
 
-def solve_levels(condensed: Condensed, first: int, last: int, low: float, high: float) -> Solved:
-    """Return levels number first ... last of the mesh; there must be at least last + 1 below `high` and none below `low`."""
-    groups = isolate(lambda energies: count_below(condensed, energies), first, last, low, high)
+@dataclass(frozen=True)
+class Part:
+    """Some neighbouring levels on their way into `Solved`."""
+
+    first: int
+    values: Array
+    coefficients: Values
+    kinetic: Array
+
+
+def solve_levels(condensed: Condensed, first: int, last: int, low: float, high: float, bottom: float) -> Solved:
+    """Return levels number first ... last of the mesh.
+
+    There must be at least last + 1 levels below `high` and at most `first` below `low`. `bottom` is the energy from which
+    distances are judged: levels closer than a share `CLOSE` of theirs are solved together.
+    """
+    groups = isolate(lambda energies: count_below(condensed, energies), first, last, low, high, bottom)
     single = condensed.mesh.phase is None
     loners = [g for g in groups if g.size == 1 and single]
-    parts: list[tuple[int, Array, Values, Array]] = []
+    parts: list[Part] = []
     for start in range(0, len(loners), 64):
         some = loners[start : start + 64]
-        energies, z = _newton(condensed, some)
-        coefficients = element_coefficients(condensed, z, energies)
-        parts += _quotients(condensed, [g.first for g in some], coefficients)
-    for group in groups:
-        if group.size > 1 or not single:
-            parts.append(_group(condensed, group))
-    parts.sort(key=lambda part: part[0])
-    values = np.concatenate([p[1] for p in parts])
-    start = parts[0][0]
+        energies, z = _newton(condensed, some, bottom)
+        parts += _quotients(condensed, [g.first for g in some], element_coefficients(condensed, z, energies))
+    parts += [_group(condensed, g, bottom) for g in groups if g.size > 1 or not single]
+    parts = _merged(condensed, sorted(parts, key=lambda part: part.first), bottom)
+    start = parts[0].first
     take = slice(first - start, last + 1 - start)
-    coefficients = np.concatenate([p[2] for p in parts], axis=2)[:, :, take]
-    return Solved(condensed, first, values[take], coefficients, np.concatenate([p[3] for p in parts])[take])
+    values, kinetic = (np.concatenate([getattr(p, name) for p in parts])[take] for name in ("values", "kinetic"))
+    return Solved(condensed, first, values, np.concatenate([p.coefficients for p in parts], axis=2)[:, :, take], kinetic)
 
 
-def _newton(condensed: Condensed, groups: list[Group]) -> tuple[Array, Array]:
+def _merged(condensed: Condensed, parts: list[Part], bottom: float) -> list[Part]:
+    """Solve again, as one group, neighbours whose values came out closer than a count can tell apart."""
+    runs: list[list[Part]] = []
+    for part in parts:
+        close = runs and part.values[0] - runs[-1][-1].values[-1] <= 3 * CLOSE * abs(part.values[0] - bottom)
+        if close:
+            runs[-1].append(part)
+        else:
+            runs.append([part])
+    whole = []
+    for run in runs:
+        if len(run) == 1:
+            whole.append(run[0])
+            continue
+        values = np.concatenate([p.values for p in run])
+        size = sum(len(p.values) for p in run)
+        whole.append(_group(condensed, Group(run[0].first, size, float(values.min()), float(values.max())), bottom))
+    return whole
+
+
+def _newton(condensed: Condensed, groups: list[Group], bottom: float) -> tuple[Array, Array]:
     """Return energies and vertex vectors of single levels: Newton's method on the vertex matrix, kept inside each bracket."""
     low, high = np.array([g.low for g in groups]), np.array([g.high for g in groups])
     numbers = np.array([g.first for g in groups])
     energies = (low + high) / 2
-    for _ in range(60):
-        z, misfit = twisted_vectors(chain(condensed, energies))
+    slack = CLOSE * np.abs(energies - bottom)
+    for _ in range(40):
         weight = chain(condensed, energies, mass=True)
+        z, misfit = twisted_vectors(chain(condensed, energies), weight.diagonal)
         with np.errstate(all="ignore"):
             step = misfit / _quadratic(weight, z)
         trial = energies + step
-        inside = (trial > low) & (trial < high) & np.isfinite(step)
+        inside = (trial > low - slack) & (trial < high + slack) & np.isfinite(step)
         size = np.abs(np.where(inside, step, high - low))
-        settled = inside & (size <= 1e-8 * (trial - low.min()))
+        settled = inside & (size <= SETTLED * np.abs(trial - bottom))
         if settled.all():
-            return trial, z
+            return energies, z
         if not inside.all():
             below = count_below(condensed, energies) > numbers
             high, low = np.where(below, energies, high), np.where(below, low, energies)
@@ -82,19 +115,26 @@ def _quadratic(matrix: Chain, z: Array) -> Array:
     return total
 
 
-def _quotients(condensed: Condensed, numbers: list[int], coefficients: Values) -> list[tuple[int, Array, Values, Array]]:
-    """Normalise single eigenfunctions and return (number, value, coefficients, kinetic) of each."""
+def _quotients(condensed: Condensed, numbers: list[int], coefficients: Values) -> list[Part]:
+    """Normalise single eigenfunctions and return the part each makes."""
     here = condensed.grid
     n = condensed.mesh.order + 1
     scale = np.sqrt((np.abs(coefficients[:, :2]) ** 2).sum(axis=(0, 1)) + (np.abs(coefficients[:, 2:]) ** 2).sum(axis=(0, 1)))
     coefficients = coefficients / scale
     density = np.abs(here.values[..., :n] @ coefficients) ** 2
     slopes = np.abs(here.slopes[..., :n] @ coefficients) ** 2
-    mass = np.einsum("eq,eqn->n", here.mass, density)
-    kinetic = (np.einsum("eq,eqn->n", here.kinetic, slopes) + _edges(condensed, coefficients)) / mass
-    values = kinetic + np.einsum("eq,eqn->n", here.potential, density) / mass
+    mass = _integral(here.mass, density)
+    kinetic = (_integral(here.kinetic, slopes) + _edges(condensed, coefficients)) / mass
+    values = kinetic + _integral(here.potential, density) / mass
     coefficients = coefficients / np.sqrt(mass)
-    return [(number, values[k : k + 1], coefficients[:, :, k : k + 1], kinetic[k : k + 1]) for k, number in enumerate(numbers)]
+    return [Part(number, values[k : k + 1], coefficients[:, :, k : k + 1], kinetic[k : k + 1]) for k, number in enumerate(numbers)]
+
+
+def _integral(weights: Array, integrand: Array) -> Array:
+    """Return the integrals of (elements, points, levels) under weights (elements, points), summed pairwise over the elements."""
+    parts = np.einsum("eq,eqn->ne", weights, integrand)
+    total: Array = np.ascontiguousarray(parts).sum(axis=1)
+    return total
 
 
 def _edges(condensed: Condensed, coefficients: Values) -> Array:
@@ -104,9 +144,9 @@ def _edges(condensed: Condensed, coefficients: Values) -> Array:
     return total
 
 
-def _group(condensed: Condensed, group: Group) -> tuple[int, Array, Values, Array]:
+def _group(condensed: Condensed, group: Group, bottom: float) -> Part:
     """Return the levels of one group by inverse iteration on a block and a small Rayleigh-Ritz problem."""
-    z, energy = _block(condensed, group)
+    z, energy = _block(condensed, group, bottom)
     coefficients = element_coefficients(condensed, z, np.full(z.shape[1], energy))
     here = condensed.grid
     n = condensed.mesh.order + 1
@@ -121,15 +161,16 @@ def _group(condensed: Condensed, group: Group) -> tuple[int, Array, Values, Arra
     values, mix = np.linalg.eigh((inner + inner.conj().T) / 2)
     mix = white @ mix
     own = np.real(np.einsum("ki,kl,li->i", mix.conj(), kinetic, mix))
-    return group.first, energy + values, coefficients @ mix, own
+    return Part(group.first, energy + values, coefficients @ mix, own)
 
 
-def _block(condensed: Condensed, group: Group) -> tuple[Values, float]:
+def _block(condensed: Condensed, group: Group, bottom: float) -> tuple[Values, float]:
     """Return vertex vectors (vertices, size) spanning the group's space, and the energy they belong to."""
     energy = (group.low + group.high) / 2
+    slack = CLOSE * abs(energy - bottom)
     rng = np.random.default_rng(20)
     z: Values = np.empty((0, 0))
-    for sweep in range(8):
+    for sweep in range(12):
         matrix, weight = (chain(condensed, np.array([energy]), mass=m) for m in (False, True))
         solve, heavy = _solver(matrix), _matrix(weight)
         if sweep == 0:
@@ -137,10 +178,10 @@ def _block(condensed: Condensed, group: Group) -> tuple[Values, float]:
         z, _ = np.linalg.qr(solve(heavy @ z))
         ritz = np.linalg.eigvals(np.linalg.solve(z.conj().T @ (heavy @ z), z.conj().T @ (_matrix(matrix) @ z))).real
         step = float(np.mean(ritz))
-        settled = abs(step) <= 1e-9 * (group.high - group.low) or abs(step) <= 4 * np.spacing(abs(energy))
+        settled = abs(step) <= 1e-8 * abs(energy - bottom)
         if sweep >= 2 and (group.size > 1 or settled):
             break
-        if group.size == 1 and group.low < energy + step < group.high:
+        if group.size == 1 and group.low - slack < energy + step < group.high + slack:
             energy += step
     return z, energy
 
@@ -153,14 +194,14 @@ def _matrix(matrix: Chain):  # type: ignore[no-untyped-def]  # noqa: ANN202 - de
         kind = complex if np.iscomplexobj(corner) else float
         dense = (np.diag(diagonal) + np.diag(side, 1) + np.diag(side, -1)).astype(kind)
         if corner is not None:
-            dense[-1, 0] += np.conj(corner)
-            dense[0, -1] += corner
+            dense[-1, 0] += corner
+            dense[0, -1] += np.conj(corner)
         return dense
     from scipy.sparse import diags_array
 
     bands, offsets = [side, diagonal, side], [-1, 0, 1]
     if corner is not None:
-        bands, offsets = [*bands, np.array([np.conj(corner)]), np.array([corner])], [*offsets, 1 - len(diagonal), len(diagonal) - 1]
+        bands, offsets = [*bands, np.array([corner]), np.array([np.conj(corner)])], [*offsets, 1 - len(diagonal), len(diagonal) - 1]
     return diags_array(bands, offsets=offsets, shape=(len(diagonal), len(diagonal))).tocsc()
 
 

@@ -1,0 +1,195 @@
+"""What the coefficients do at the ends of the domain: singular ends, and the far ends of an open domain."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.discrete.problem import Problem
+from specterm.errors import PhysicsError
+
+Array = NDArray[np.float64]
+
+STEEP = 6.0
+"""From this power of the distance on, psi near a singular end is cut off where it has died instead of factored."""
+
+
+@dataclass(frozen=True)
+class NearEnd:
+    """A finite end. `kind`: "wall" (psi = 0), "free" (zero slope), "power" (psi ~ d**power, K ~ d**alpha) or "steep" (psi dies before it)."""
+
+    kind: str
+    power: float = 0.0
+    alpha: float = 0.0
+
+
+@dataclass(frozen=True)
+class FarEnd:
+    """An open end. `limit` is what V tends to (+inf where it confines). `reach` is the place beyond which V - limit is lost in rounding.
+
+    `tail` is (V - limit) x^2 / K at `reach`; `endless` says that infinitely many levels lie below the limit.
+    """
+
+    limit: float
+    reach: float
+    tail: float
+    endless: bool
+
+
+def near_end(problem: Problem, side: int) -> NearEnd:
+    """Classify the left (side 0) or right (side 1) finite end by the exponents of the equation there (Frobenius)."""
+    end, kind = (problem.left, problem.left_end) if side == 0 else (problem.right, problem.right_end)
+    sign = 1.0 if side == 0 else -1.0
+    room = _room(problem, end, side)
+    smallest = max(room * 2.0**-40, abs(end) * 2.0**-26)
+    d = np.geomspace(smallest, max(room * 2.0**-6, smallest * 4), 24)
+    x = end + sign * d
+    with np.errstate(all="ignore"):
+        stiffness, potential = problem.stiffness(x), problem.potential(x)
+        alpha = 0.0 if not np.isfinite(stiffness[0]) else _rounded(d[0] * sign * problem.slope(x[:1])[0] / stiffness[0])
+    blown = np.flatnonzero(~np.isfinite(potential))
+    if len(blown) and blown[-1] + 1 < len(d) and potential[blown[-1] + 1] > 1e100:
+        return NearEnd("steep")
+    if not np.isfinite(stiffness[0]) or len(blown):
+        raise PhysicsError(f"the operator has no value at the end x = {end:.6g} of the domain", mend="move the end of the domain")
+    if alpha < -1e-6 or alpha >= 2:
+        raise PhysicsError(f"the coefficient between the momenta is too singular at the end {end:.6g}", mend="move that end inwards")
+    strength = _strength(problem, end, sign, d, stiffness, potential)
+    growth = math.log2(abs(potential[0] / potential[8])) / math.log2(d[8] / d[0]) if potential[0] * potential[8] > 0 else 0.0
+    singular = growth > 0.2 and abs(potential[0]) > 4 * abs(potential[8]) * 0.999
+    if abs(alpha) < 1e-6 and not singular:
+        return NearEnd(kind)
+    if growth > 2.05 and abs(strength) > 1 and potential[0] > 0:
+        return NearEnd("steep")
+    lowest = -((1 - alpha) ** 2) / 4
+    if strength < lowest - 1e-9 * max(1.0, abs(lowest)) or (growth > 2.05 and potential[0] < 0):
+        raise PhysicsError(
+            f"the attraction at the end {end:.6g} is too strong: there the operator is not bounded below and has no lowest level",
+            mend=f"an inverse square needs a strength of at least {lowest:g} times the coefficient between the momenta",
+        )
+    root = math.sqrt(max(0.0, (1 - alpha) ** 2 + 4 * strength))
+    power = ((1 - alpha) + root) / 2
+    if power > STEEP:
+        return NearEnd("steep")
+    if kind == "free" and strength == 0 and alpha < 1:
+        return NearEnd("free")
+    return NearEnd("power", power, alpha)
+
+
+def _room(problem: Problem, end: float, side: int) -> float:
+    """Return the distance from an end to the next edge or centre inwards, or to the other end."""
+    marks = np.concatenate([problem.edges, problem.centres, [problem.left, problem.right]])
+    distance = marks - end if side == 0 else end - marks
+    distance = distance[np.isfinite(distance) & (distance > 1e-9 * abs(end))]
+    return float(distance.min()) if len(distance) else max(1.0, abs(end))
+
+
+def _strength(problem: Problem, end: float, sign: float, d: Array, stiffness: Array, potential: Array) -> float:
+    """Return the limit of V d^2 / K at the end: extrapolated from a short distance, or taken at the shortest."""
+    shortest = float(potential[0] * d[0] ** 2 / stiffness[0])
+    steps = d[-1] * np.arange(1, 9) / 8
+    with np.errstate(all="ignore"):
+        x = end + sign * steps
+        ratio = problem.potential(x) * steps**2 / problem.stiffness(x)
+    weights = np.array([(-1.0) ** (k + 1) * math.comb(8, k) for k in range(1, 9)])
+    smooth = float(weights @ ratio)
+    best = smooth if abs(smooth - shortest) <= 1e-3 * max(1e-3, abs(shortest)) else shortest
+    return _rounded(best)
+
+
+def _rounded(value: float) -> float:
+    """Return the nearest multiple of 1/4 where the value differs from it by rounding only."""
+    near = round(4 * value) / 4
+    return near if abs(value - near) <= 1e-8 * max(1.0, abs(near)) else value
+
+
+def far_end(problem: Problem, side: int) -> FarEnd:
+    """Classify an open end by the values of V far out; raise PhysicsError where V falls without limit or never settles."""
+    sign = -1.0 if side == 0 else 1.0
+    marks = np.concatenate([problem.edges, problem.centres, [e for e in (problem.left, problem.right) if np.isfinite(e)], [0.0]])
+    middle = float(marks.min() if side == 0 else marks.max())
+    d = np.exp2(np.arange(-130.0, 1000.0, 1.0))
+    d = d[d > 4 * np.spacing(abs(middle))]
+    x = middle + sign * d
+    with np.errstate(all="ignore"):
+        values, stiffness = problem.potential(x), problem.stiffness(x)
+        finite = np.isfinite(values) & np.isfinite(stiffness) & (stiffness > 0)
+    if not finite.any():
+        raise PhysicsError(f"the potential has no value beyond {middle:.6g}", mend="narrow the domain")
+    start = int(np.argmax(finite))
+    stop = len(d) if finite[start:].all() else start + int(np.argmin(finite[start:]))
+    first_lost = values[stop] if stop < len(d) else np.nan
+    values, d, stiffness = values[start:stop], d[start:stop], stiffness[start:stop]
+    verdict = _settles(values, d, first_lost)
+    where = "x -> -inf" if side == 0 else "x -> inf"
+    if verdict == "rises":
+        return FarEnd(math.inf, middle + sign * d[-1], math.inf, False)
+    if verdict == "falls":
+        raise PhysicsError(
+            f"the operator is not bounded below and has no lowest level: the potential falls without limit at {where}",
+            mend="narrow the domain with a wall, or say `outgoing` for resonances (not available yet)",
+        )
+    if verdict == "wanders":
+        raise PhysicsError(
+            f"the potential does not settle at {where}: the spectrum there is made of bands",
+            mend="use one period as a ring: x in ring(a, b), phase q",
+        )
+    return _tail(values, d, stiffness, middle, sign)
+
+
+def _settles(values: Array, d: Array, first_lost: float) -> str:
+    """Return "settles", "rises", "falls" or "wanders" for values at doubling distances."""
+    if np.isinf(first_lost):
+        return "rises" if first_lost > 0 else "falls"
+    late = np.diff(values)[-256:]
+    if _shrinking(late):
+        return "settles"
+    if (late > 0).all():
+        return "rises"
+    return "falls" if (late < 0).all() else "wanders"
+
+
+def _shrinking(steps: Array) -> bool:
+    """Say whether the later half of the steps is far smaller than the earlier half."""
+    half = len(steps) // 2
+    late, early = np.abs(steps[half:]).max(initial=0.0), np.abs(steps[:half]).max(initial=0.0)
+    return bool(late <= 0.1 * early)
+
+
+def _tail(values: Array, d: Array, stiffness: Array, middle: float, sign: float) -> FarEnd:
+    """Return the limit with what is left of the tail where it can last be told from rounding."""
+    limit = _limit(values)
+    rest = values - limit
+    seen = np.flatnonzero(np.abs(rest) > max(4e-16 * abs(limit), np.finfo(float).tiny * 1e10))
+    if len(seen) == 0:
+        return FarEnd(limit, middle, 0.0, False)
+    last = int(seen[-1])
+    clean = int(np.flatnonzero(np.abs(rest) > max(1e-7 * abs(limit), np.finfo(float).tiny * 1e10))[-1]) if limit else last
+    power = _fall(rest, d, clean)
+    pull = rest * d * (d / stiffness)
+    if power > 6:
+        return FarEnd(limit, middle + sign * d[min(last + 1, len(d) - 1)], 0.0, False)
+    endless = bool(rest[clean] < 0 and (power < 1.95 or (power < 2.05 and pull[clean] < -0.25)))
+    settled = np.abs(pull[: clean + 1] - (pull[clean] if abs(power - 2) < 0.05 else 0.0)) < 1e-9
+    place = int(np.argmax(settled & (np.arange(clean + 1) > np.argmax(np.abs(pull[: clean + 1]))))) or clean
+    return FarEnd(limit, middle + sign * d[place], float(pull[place]), endless)
+
+
+def _limit(values: Array) -> float:
+    """Return the limit of settling values by one step of Aitken's extrapolation."""
+    before, last = values[-2] - values[-3], values[-1] - values[-2]
+    if last == 0 or last == before:
+        return float(values[-1])
+    limit = float(values[-1] - last * (last / (last - before)))
+    return 0.0 if abs(limit) <= 1e-9 * abs(values[-1]) else limit
+
+
+def _fall(rest: Array, d: Array, last: int) -> float:
+    """Return the power with which the tail falls over the octave up to number `last`."""
+    first = max(0, last - 1)
+    if np.sign(rest[first]) != np.sign(rest[last]):
+        return math.inf
+    return float(-math.log2(rest[last] / rest[first]) / math.log2(d[last] / d[first]))

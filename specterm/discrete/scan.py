@@ -1,0 +1,147 @@
+"""A first look at K and V: values on a sample that covers every scale, and semiclassical estimates from it."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.discrete.problem import Problem
+from specterm.errors import PhysicsError
+
+Array = NDArray[np.float64]
+
+OCTAVES = 133
+"""Octaves covered above and below the unit of length around each centre of an open domain (1e-40 to 1e40)."""
+
+
+@dataclass(frozen=True)
+class Scan:
+    """Ascending places x inside the domain with K and V there, shapes (n,); V is +inf where it overflows."""
+
+    x: Array
+    stiffness: Array
+    potential: Array
+
+    def wave_number(self, energy: float) -> Array:
+        """Return sqrt((E - V) / K) where that is real, else 0."""
+        with np.errstate(all="ignore"):
+            return np.sqrt(np.maximum(energy - self.potential, 0) / self.stiffness)
+
+    def decay(self, energy: float) -> Array:
+        """Return sqrt((V - E) / K) where that is real, else 0."""
+        with np.errstate(all="ignore"):
+            return np.sqrt(np.maximum(self.potential - energy, 0) / self.stiffness)
+
+
+def scan(problem: Problem) -> Scan:
+    """Sample K and V; raise PhysicsError where K is not positive or V is not a number."""
+    x = _places(problem)
+    with np.errstate(all="ignore"):
+        stiffness, potential = problem.stiffness(x), problem.potential(x)
+    good = _trusted(x, stiffness, potential, problem)
+    x, stiffness, potential = x[good], stiffness[good], potential[good]
+    if np.isnan(potential).any():
+        place = x[np.flatnonzero(np.isnan(potential))[0]]
+        raise PhysicsError(f"the potential is not a number at {place:.6g}", mend="narrow the domain or mend the expression there")
+    if np.isnan(stiffness).any() or (stiffness <= 0).any():
+        place = x[np.flatnonzero(~(stiffness > 0))[0]]
+        raise PhysicsError(
+            f"the coefficient between the two momenta is not of one sign: it vanishes or changes sign near {place:.6g}",
+            mend="it must be positive all over the domain (zero only at an end)",
+        )
+    return Scan(x, stiffness, potential)
+
+
+def _trusted(x: Array, stiffness: Array, potential: Array, problem: Problem) -> NDArray[np.bool_]:
+    """Leave out the outermost places where only overflow makes K or V useless: far out on an open side, or at a steep end."""
+    bad = ~(np.isfinite(stiffness) & (stiffness > 0)) | np.isnan(potential) | np.isinf(potential)
+    good = np.ones(len(x), dtype=bool)
+    if not bad.any() or bad.all():
+        return good
+    first, last = int(np.argmin(bad)), len(bad) - 1 - int(np.argmin(bad[::-1]))
+    middle = float(np.median(np.concatenate([problem.centres, problem.edges, [0.0]])))
+    for end, inner, outer in ((problem.left_end, first, slice(0, first)), (problem.right_end, last, slice(last + 1, None))):
+        far = end == "open" and abs(x[inner] - middle) > 1e6 * max(1.0, abs(middle))
+        if far or potential[inner] > 1e100:
+            good[outer] = False
+    return good
+
+
+def _places(problem: Problem) -> Array:
+    """Return the sample: even between neighbouring marks, and geometric around every mark."""
+    finite = [end for end in (problem.left, problem.right) if np.isfinite(end)]
+    marks = np.unique(np.concatenate([problem.edges[:400], problem.centres[:60], finite]))
+    inside = problem.left <= 0 <= problem.right
+    marks = np.unique(np.append(marks, 0.0)) if inside and not np.isfinite(problem.right - problem.left) else marks
+    pieces = [marks]
+    if np.isfinite(problem.right - problem.left):
+        pieces.append(np.linspace(problem.left, problem.right, 257))
+    if len(marks) > 1:
+        per = int(np.clip(1024 // len(marks), 4, 64))
+        pieces.append((marks[:-1, None] + np.diff(marks)[:, None] * (np.arange(per) + 0.5) / per).ravel())
+    pieces += [_around(mark, problem, len(marks)) for mark in marks[:: max(1, len(marks) // 40)]]
+    x = np.unique(np.concatenate(pieces))
+    return x[(x > problem.left) & (x < problem.right)]
+
+
+def _around(mark: float, problem: Problem, marks: int) -> Array:
+    """Return places at geometric distances on both sides of a mark."""
+    span = problem.right - problem.left
+    top = np.log2(span) if np.isfinite(span) else float(OCTAVES)
+    bottom = max(-float(OCTAVES), np.log2(abs(mark)) - 46 if mark else -np.inf, top - 60 if np.isfinite(span) else -np.inf)
+    density = 4 if marks <= 8 else 2
+    distances = np.exp2(np.arange(bottom, top, 1 / density))
+    return np.concatenate([mark - distances, mark + distances])
+
+
+def semiclassical_count(look: Scan, energies: Array, extra: Array) -> Array:
+    """Return the phase integral over pi at each energy; `extra` (n,) is added to V (the Langer term at singular ends)."""
+    with np.errstate(all="ignore"):
+        level = look.potential + extra
+        k = np.sqrt(np.maximum(energies[:, None] - level, 0) / look.stiffness)
+    k[~np.isfinite(k)] = 0
+    count: Array = ((k[:, 1:] + k[:, :-1]) / 2 * np.diff(look.x)).sum(axis=1) / np.pi
+    return count
+
+
+def energy_for(look: Scan, count: float, extra: Array, floor: float, ceiling: float) -> float:
+    """Return an energy in (floor, ceiling] below which the phase integral promises `count` levels.
+
+    `ceiling` may be inf. Where even the ceiling does not reach the count, the ceiling is returned.
+    """
+    low = floor
+    step = _first_step(look, floor)
+    if np.isfinite(ceiling):
+        high = ceiling
+        if semiclassical_count(look, np.array([ceiling]), extra)[0] <= count:
+            return ceiling
+    else:
+        for _ in range(40):
+            rungs = floor + step * 4.0 ** np.arange(24)
+            reached = semiclassical_count(look, rungs, extra) > count
+            if reached.any():
+                first = int(np.argmax(reached))
+                low, high = (float(rungs[first - 1]) if first else floor), float(rungs[first])
+                break
+            step *= 4.0**24
+        else:
+            raise PhysicsError("the operator seems to have no such level: the phase integral stays finite at all energies")
+    for _ in range(8):
+        rungs = np.linspace(low, high, 18)
+        reached = semiclassical_count(look, rungs, extra) > count
+        first = max(1, int(np.argmax(reached))) if reached.any() else 17
+        low, high = float(rungs[first - 1]), float(rungs[first])
+        if high - low <= 0.01 * (high - floor):
+            break
+    return high
+
+
+def _first_step(look: Scan, floor: float) -> float:
+    """Return an energy small against the lowest level's: that of a packet as wide as its distance from the deepest place."""
+    deepest = look.x[int(np.argmin(np.where(np.isfinite(look.potential), look.potential, np.inf)))]
+    width = np.maximum(np.abs(look.x - deepest), (look.x[-1] - look.x[0]) * 1e-18)
+    with np.errstate(all="ignore"):
+        packet = look.stiffness / width**2 + np.maximum(look.potential - floor, 0)
+    return max(float(np.nanmin(packet)) / 64, np.finfo(float).tiny * 1e20)

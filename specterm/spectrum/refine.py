@@ -1,0 +1,164 @@
+"""Solve, estimate, refine: until every level asked for meets the tolerance or nothing more can be gained."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.discrete.chain import count_below
+from specterm.discrete.elements import Condensed, condense, grid
+from specterm.discrete.mesh import Mesh
+from specterm.discrete.meshing import MOST_ELEMENTS, Span, build, resolve
+from specterm.errors import PhysicsError, WorkStopped
+from specterm.spectrum.accuracy import SAFETY, Accuracy, accuracy
+from specterm.spectrum.setting import DEEP, Setting, span_at
+from specterm.spectrum.vectors import Solved, solve_levels
+
+Array = NDArray[np.float64]
+
+OVERSHOOT = 1e-3
+"""Levels are refined to this share of the tolerance: it costs little, and the error left is mostly rounding."""
+ROUNDS = 14
+
+
+@dataclass(frozen=True)
+class Request:
+    """Levels number `first` ... `last`, to `tolerance` times their distance to the floor."""
+
+    first: int
+    last: int
+    tolerance: float
+    should_stop: Callable[[], bool]
+    progress: Callable[[str], None]
+
+
+@dataclass(frozen=True)
+class Refined:
+    """Levels on the final mesh with their errors (levels,) and the span they were computed on."""
+
+    solved: Solved
+    error: Array
+    span: Span
+
+
+def refine(ready: Setting, request: Request, energy: float, span: Span | None) -> Refined:
+    """Return the levels asked for, with errors; `energy` is a guess above the highest, `span` is given where the box is fixed."""
+    fixed = span is not None
+    actions = (DEEP, DEEP)
+    energy, span, condensed = _first(ready, request, energy, span)
+    high = energy - ready.floor
+    for number in range(ROUNDS):
+        _report(request, number, condensed)
+        solved = solve_levels(condensed, request.first, request.last, _low(condensed, request.first, high), high, 0.0)
+        found = accuracy(ready, solved)
+        target = _targets(solved, request.tolerance, found)
+        coarse = _coarse(found, target, condensed)
+        wider, actions = (None, actions) if fixed else _wider(ready, found, target, solved, span, actions)
+        if (not coarse.any() and wider is None) or number == ROUNDS - 1:
+            return Refined(solved, found.total, span)
+        mesh = condensed.mesh.split(coarse)
+        if wider is not None:
+            span = wider
+            mesh = _widened(ready, mesh, wider, energy)
+        if len(mesh.places) > MOST_ELEMENTS:
+            return Refined(solved, found.total, span)
+        condensed = _without_poles(ready, mesh, energy)
+    raise AssertionError("the last round returns")
+
+
+def _report(request: Request, number: int, condensed: Condensed) -> None:
+    if request.should_stop():
+        raise WorkStopped("stopped")
+    request.progress(f"mesh {number + 1}: {condensed.mesh.unknowns} unknowns")
+
+
+def _first(ready: Setting, request: Request, energy: float, span: Span | None) -> tuple[float, Span, Condensed]:
+    """Return an energy with enough levels below it, and the span and mesh that go with it."""
+    fixed, depth = span, 0.3
+    wanted = request.last + 1
+    for _ in range(80):
+        if request.should_stop():
+            raise WorkStopped("stopped")
+        at_threshold = energy >= ready.threshold and fixed is None
+        below = ready.threshold - depth * (ready.threshold - ready.floor) / (wanted + 1) ** 2 if at_threshold else energy
+        span = fixed or span_at(ready, below)
+        if span is None:
+            raise PhysicsError("the states asked for reach farther out than numbers go", mend="ask for fewer levels, or narrow the domain")
+        condensed = _without_poles(ready, build(ready.problem, ready.look, ready.coefficients, span, energy), energy)
+        if count_below(condensed, np.array([energy - ready.floor]))[0] >= wanted:
+            return energy, span, condensed
+        if at_threshold:
+            depth /= 16
+        else:
+            energy = min(energy + 0.25 * (energy - ready.floor) + 1e-12 * abs(ready.floor), ready.threshold if fixed is None else np.inf)
+    raise PhysicsError("the levels asked for were not found", mend="ask for fewer levels")
+
+
+def _without_poles(ready: Setting, mesh: Mesh, energy: float) -> Condensed:
+    """Condense the mesh, splitting elements whose interior has a level of its own below the energy."""
+    high = energy - ready.floor
+    for _ in range(60):
+        condensed = condense(mesh, grid(mesh, ready.coefficients))
+        stiffness = (condensed.grid.kinetic / condensed.grid.mass).min(axis=1) / 4
+        low = condensed.poles[:, 0] <= high + 0.02 * np.pi**2 * stiffness
+        if not low.any():
+            return condensed
+        mesh = mesh.split(low)
+    return condensed
+
+
+def _low(condensed: Condensed, first: int, high: float) -> float:
+    """Return an energy with at most `first` levels below it, not far under the level of that number."""
+    least = float((condensed.grid.potential / condensed.grid.mass).min())
+    rungs = high - (high - least) * 1.0625 * 2.0 ** -np.arange(16.0)
+    counts = count_below(condensed, rungs)
+    good = np.flatnonzero(counts <= first)
+    return float(rungs[good].max()) if len(good) else least - abs(high - least)
+
+
+def _targets(solved: Solved, tolerance: float, found: Accuracy) -> Array:
+    """Return the error wanted for each level; never below what rounding leaves."""
+    scale = np.maximum(np.abs(solved.values), solved.kinetic)
+    return np.maximum(OVERSHOOT * tolerance * np.minimum(scale, 2 * np.abs(solved.kinetic) + np.abs(solved.values)), found.noise)
+
+
+def _coarse(found: Accuracy, target: Array, condensed: Condensed) -> NDArray[np.bool_]:
+    """Mark the elements that make up too much of the error of some level."""
+    over = SAFETY * found.share.sum(axis=0) > 0.5 * target
+    limit = 0.25 * target / (SAFETY * found.share.shape[0])
+    marked: NDArray[np.bool_] = (found.share > np.where(over, limit, np.inf)).any(axis=1)
+    tiny = condensed.mesh.lengths < 64 * np.spacing(np.abs(condensed.mesh.places).max() * np.finfo(float).eps)
+    return marked & ~tiny
+
+
+def _wider(
+    ready: Setting, found: Accuracy, target: Array, solved: Solved, span: Span, actions: tuple[float, float]
+) -> tuple[Span | None, tuple[float, float]]:
+    """Return a span cut farther out, where the cut costs some level more than its share of the error; else None."""
+    worst = found.cut / target
+    if worst.max() <= 0.125:
+        return None, actions
+    level = int(np.argmax(worst.max(axis=0)))
+    energy = min(float(solved.values[level]) + ready.floor, ready.threshold)
+    left, right = span.left, span.right
+    for _ in range(40):
+        actions = (actions[0] + 4 * (worst[0, level] > 0.125), actions[1] + 4 * (worst[1, level] > 0.125))
+        wider = span_at(ready, energy, actions)
+        if wider is None:
+            return None, actions
+        left, right = min(left, wider.left), max(right, wider.right)
+        if left < span.left or right > span.right:
+            return Span(left, right, wider.left_edge, wider.right_edge), actions
+    return None, actions
+
+
+def _widened(ready: Setting, mesh: Mesh, span: Span, energy: float) -> Mesh:
+    """Return a mesh of the wider span that keeps the places of the one refined so far."""
+    wide = build(ready.problem, ready.look, ready.coefficients, span, energy)
+    outer = wide.places[(wide.places < mesh.places[0]) | (wide.places > mesh.places[-1])]
+    places = np.unique(np.concatenate([outer, mesh.places, [span.left, span.right]]))
+    merged = Mesh(places, mesh.order, span.left_edge, span.right_edge, mesh.phase)
+    return resolve(merged, ready.coefficients, energy - ready.floor)
