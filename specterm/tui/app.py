@@ -27,6 +27,7 @@ from specterm.tui.options import Options
 from specterm.tui.rows import (
     WIDE,
     Shown,
+    as_text,
     bottom_row,
     chosen_row,
     figure_rows,
@@ -162,11 +163,14 @@ class Specterm(App[int]):
                 self.work.look(outcome, look.state)
             if look.moments and look.chosen not in self.found:
                 self.work.look(outcome, look.chosen)
-        return replace(
+        shown = replace(
             self.shown,
             weighed=weighed if isinstance(weighed, Weighed) else None,
             moments=moments if isinstance(moments, MomentsText) else None,
         )
+        if self.error is not None and not shown.message and not self.sheet.display:
+            return replace(shown, message=_sentence(self.error, self.document.text), message_style="warn")
+        return shown
 
     def say(self, words: str, style: str = "plain") -> None:
         """Put words on the message line; they go with the next key that changes what is shown."""
@@ -222,8 +226,7 @@ class Specterm(App[int]):
             look = self.shown.look.fitted(outcome.spectrum, outcome.states)
             self.shown = replace(self.shown, outcome=outcome, stale=False, look=look)
         self.sheet.complain(outcome.error)
-        words = _sentence(outcome.error, outcome.request.text) or "; ".join(outcome.notes)
-        self.say(words, "warn" if outcome.error else "plain")
+        self.say("" if outcome.error else "; ".join(outcome.notes))
         self.call_after_refresh(_settle_memory)
 
     def on_progressed(self, event: Progressed) -> None:
@@ -310,15 +313,22 @@ class Specterm(App[int]):
             self.say("the sheet has no prepared state: add a line  state NAME = expression", "warn")
 
     def action_edit(self) -> None:
-        """Type in the sheet."""
+        """Type in the sheet; an error is gone to."""
         self.screen_stack[0].add_class("typing")
         self.sheet.text.focus()
+        if self.error is not None and self.error.span is not None:
+            row, column = position(self.document.text, self.error.span.start)
+            self.sheet.text.move_cursor((row - 1, column - 1))
         self.redraw()
 
     def on_descendant_focus(self) -> None:
         """Arrange anew when typing starts."""
         self._arrange()
         self.redraw()
+
+    def action_copy(self) -> None:
+        """Write all that the screen shows as text to a file, and send it to the terminal's clipboard."""
+        self.files.copy(as_text(self._complete(), *self.screen_stack[0].query_one("#figure").size))
 
     def action_undo(self) -> None:
         """Take back the last edit."""

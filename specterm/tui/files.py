@@ -9,13 +9,14 @@ from typing import TYPE_CHECKING
 
 from specterm.errors import SheetError
 from specterm.session import presets, rescue
-from specterm.session.document import Document, load, save, shown
+from specterm.session.document import Document, load, save, shown, write_text
 from specterm.tui.dialogs import Chooser, Entry, Question
 
 if TYPE_CHECKING:
     from specterm.tui.app import Specterm
 
 _MOST = 500
+_CLIPBOARD = 50_000
 
 
 class Files:
@@ -131,6 +132,22 @@ class Files:
                 go_on()
 
         self.app.push_screen(Question(f"{self.app.document.name} has unsaved text.", answers), answered)
+
+    def copy(self, text: str) -> None:
+        """Write `text` to a file, whose path is said, and send it to the terminal's clipboard, which may or may not take it."""
+        if not text:
+            self.app.say("there is nothing to copy", "warn")
+            return
+        path = rescue.folder() / "copied.txt"
+        try:
+            path.parent.mkdir(mode=0o700, parents=True, exist_ok=True)
+            write_text(path, text)
+        except (SheetError, OSError) as error:
+            self.app.say(f"not written: {error}", "warn")
+            return
+        if len(text) < _CLIPBOARD:
+            self.app.copy_to_clipboard(text)
+        self.app.say(f"sent to the terminal's clipboard, and written to {shown(path)}", "good")
 
     def leave(self) -> None:
         """End the session; asks when there is unsaved text."""

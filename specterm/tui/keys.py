@@ -34,6 +34,7 @@ KEYS = (
     Key("level.moments", "m", "moments", "level", "Moments", "Show or hide means and spreads of place and momentum", "", "m"),
     Key("figure.view", "v", "view", "figure", "Next view", "psi, |psi|^2, or level lines only", "v view", "v"),
     Key("figure.glyphs", "g", "glyphs", "figure", "Next glyphs", "Braille, block or plain ASCII characters", "", "g"),
+    Key("figure.copy", "y", "copy", "figure", "Copy", "Levels and figure as text to a file and the clipboard", "", "y"),
     Key("weights.state", "s", "weigh", "weights", "Next state", "Weights of the next prepared state, or none", "s state", "s"),
     Key("sheet.edit", "e,enter", "edit", "sheet", "Edit", "Type in the sheet; Tab comes back", "e edit", "e enter"),
     Key("sheet.undo", "u", "undo", "sheet", "Undo", "Take back the last edit of the sheet", "", "u"),

@@ -8,9 +8,9 @@ from dataclasses import dataclass
 from specterm.session.document import Document
 from specterm.tui.look import Look
 from specterm.tui.solving import Outcome, Weighed
-from specterm.views.cells import MARKS, Row, Rows, cut, fit_row, width_of
+from specterm.views.cells import MARKS, Row, Rows, cut, fit_row, plain, width_of
 from specterm.views.level_figure import draw
-from specterm.views.level_table import table
+from specterm.views.level_table import table, text_table
 from specterm.views.numbers import short, with_unit
 from specterm.views.scene import Prepared, scene
 from specterm.views.status import MomentsText, join, moment_parts, state_line, trust_line
@@ -123,6 +123,18 @@ def message_row(shown: Shown, width: int) -> Row:
         return fit_row(((" " + join(parts, width - 1, shown.mark), "plain"),), width)
     notes = "; ".join(outcome.notes) if outcome else ""
     return fit_row(((" " + cut(notes, width - 1, shown.mark), "dim"),), width)
+
+
+def as_text(shown: Shown, width: int, height: int) -> str:
+    """Return the chosen level, the trust in it, the whole table and the figure as plain text."""
+    outcome = shown.outcome
+    if outcome is None or outcome.spectrum is None:
+        return ""
+    weighing = shown.weighed.weighing if shown.weighed else None
+    lines = plain([chosen_row(shown, 200), trusted_row(shown, 200)])
+    levels = text_table(outcome.spectrum.levels, outcome.units.energy, weighing, shown.look.glyphs)
+    figure = plain(figure_rows(shown, max(width, 60), max(height, 20)))
+    return f"{lines}\n\n{levels}\n\n{figure}\n"
 
 
 def bottom_row(texts: Sequence[str], width: int) -> Row:

@@ -159,10 +159,9 @@ def axes_of(model: Any) -> Axes:  # noqa: ANN401 - a model
 
 
 def units_of(model: Any) -> Units:  # noqa: ANN401 - a model
-    """Return the names of the units for tables and lines; a momentum is energy times time over length."""
+    """Return the names of the units for tables and lines; momenta are shown in hbar over the unit of length."""
     units = model.units
-    momentum = f"{units.energy} {units.time}/{units.length}" if units.energy and units.time and units.length else ""
-    return Units(units.energy, units.length, momentum, model.domain.coordinate)
+    return Units(units.energy, units.length, f"hbar/{units.length}" if units.length else "", model.domain.coordinate)
 
 
 @dataclass(frozen=True, eq=False)
@@ -202,4 +201,5 @@ def moments_of(engine: Engine, outcome: Outcome, place: int) -> MomentsText | No
         found = engine.moments(outcome.model, spectrum, spectrum.levels[place].index)
     except Exception:  # a line without moments is better than a session that ends
         return None
-    return MomentsText(found.x, found.spread_x, found.p, found.spread_p)
+    unit = outcome.model.hbar if outcome.units.momentum else 1.0
+    return MomentsText(found.x, found.spread_x, found.p / unit, found.spread_p / unit)

@@ -32,7 +32,7 @@ class FakeEngine:
         units = SimpleNamespace(energy="meV", length="nm", time="ps", mass="m_e")
         domain = SimpleNamespace(coordinate="x", left=-np.inf, right=np.inf, left_end="open", right_end="open")
         states = tuple(line.split()[1] for line in text.split("\n") if line.startswith("state "))
-        return SimpleNamespace(text=text, units=units, domain=domain, states=states, warnings=())
+        return SimpleNamespace(text=text, units=units, domain=domain, states=states, warnings=(), hbar=0.5)
 
     def solve(self, model, *, count, near, tolerance, should_stop, progress):
         """Return the oscillator's levels."""

@@ -97,6 +97,17 @@ async def test_starting_from_a_preset(tmp_path, monkeypatch):
         assert pilot.app.folder == tmp_path
 
 
+async def test_copying_the_screen():
+    """The key y writes all levels, the lines and the figure as text to a file, and says where it is."""
+    async with app().run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "up", "s", "y")
+        assert "sent to the terminal's clipboard" in "\n".join(lines(pilot))
+        text = (rescue.folder() / "copied.txt").read_text()
+    for words in ("level 1  1.500000000000(4) meV", "error <= 3e-12 meV", "5.500000000000(4) bound", "30.33%", "psi, level 1"):
+        assert words in text
+
+
 @pytest.mark.parametrize("key", ["q", "ctrl+q"])
 async def test_leaving_at_once_when_saved(key):
     """Without unsaved text q leaves."""

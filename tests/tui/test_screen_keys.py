@@ -115,7 +115,7 @@ async def test_m_hides_and_shows_the_moments(size):
     """The moments are there until m hides them."""
     async with app().run_test(size=size) as pilot:
         await settled(pilot)
-        words = "<x> 0 spread 0.7071 nm  <p> 0 spread 0.7071 meV ps/nm"
+        words = "<x> 0 spread 0.7071 nm  <p> 0 spread 1.414 hbar/nm"
         assert words in "\n".join(lines(pilot))
         await pressed(pilot, "m")
         assert words not in "\n".join(lines(pilot))
@@ -151,9 +151,15 @@ async def test_errors_are_marked_where_they_are(size):
         for words in ("line 5, column 3: unknown name 'bad'", "define it", "of the last text without errors", ">0 0.5000"):
             assert words in text
         assert pilot.app.sheet.text._marks == {4: (2, 5)}
+        assert text.count("unknown name") == 1
         strip = pilot.app.sheet.text.render_line(4)
         assert any(segment.text == "bad" and segment.style.underline for segment in strip)
-        await pressed(pilot, *["backspace"] * 5)
+        await pressed(pilot, "tab")
+        assert "unknown name 'bad'" in "\n".join(lines(pilot))
+        pilot.app.sheet.text.move_cursor((0, 0))
+        await pressed(pilot, "e")
+        assert pilot.app.sheet.text.cursor_location == (4, 2)
+        await pressed(pilot, "end", *["backspace"] * 5)
         text = "\n".join(lines(pilot))
         assert "unknown name" not in text
         assert "error <= 3e-12" in text
@@ -174,7 +180,7 @@ async def test_a_defect_below_does_not_end_the_session(size):
     """An exception that is nobody's message is shown as a defect, without a traceback."""
     async with app("# crash\nH = p^2").run_test(size=size) as pilot:
         await settled(pilot)
-        assert "specterm failed here (ZeroDivisionError: by zero)" in "\n".join(lines(pilot))
+        assert "specterm failed here (ZeroDivisionError:" in "\n".join(lines(pilot))
 
 
 async def test_u_takes_an_edit_back(size):
@@ -204,7 +210,7 @@ async def test_help_lists_the_live_keys(size, keys):
             await settled(pilot)
             await pressed(pilot, *keys)
             seen = "\n".join(lines(pilot))
-            for _ in range(4):
+            for _ in range(7):
                 await pressed(pilot, "pagedown")
                 seen += "\n".join(lines(pilot))
             assert all(key.tooltip in seen for key in KEYS + TYPING)
