@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 
 from specterm.language.catalogue import refuse
 from specterm.model.compose import call, imaginary_part, power, real_part, where
@@ -10,7 +10,7 @@ from specterm.model.elementary import FUNCTIONS
 from specterm.model.places import branches_meet
 from specterm.model.scalar import ONE, Scalar
 from specterm.model.slopes import slope_pairs
-from specterm.model.term import NIL, UNIT, Term, add, constant, divide, linear, make, multiply, scaled, subtract
+from specterm.model.term import NIL, UNIT, Term, add, constant, divide, linear, make, multiply, scaled, whole_powers
 from specterm.model.walk import leaves_first
 
 MOST_TERMS = 10_000
@@ -24,15 +24,17 @@ def derivative(root: Term) -> Term:
     slopes: dict[int, Term] = {}
     order = leaves_first(root)
     for term in order:
-        slopes[term.digest] = _slope(term, tuple(slopes[a.digest] for a in term.args)) if term.varies else NIL
+        slopes[term.digest] = _slope(term, slopes) if term.varies else NIL
     if len(order) > MOST_TERMS:
         raise refuse("too-many-terms", None, limit=MOST_TERMS)
     return slopes[root.digest]
 
 
-def _slope(term: Term, slopes: tuple[Term, ...]) -> Term:
-    """Return the derivative of one term, given those of the terms it is made of; by default it jumps."""
-    return _RULES.get(term.kind, _jump)(term, slopes)
+def _slope(term: Term, slopes: Mapping[int, Term]) -> Term:
+    """Return the derivative of one term, given those of the terms below it; by default it jumps."""
+    if term.kind == "quotient":
+        return _quotient(term, slopes)
+    return _RULES.get(term.kind, _jump)(term, tuple(slopes[a.digest] for a in term.args))
 
 
 def _jump(term: Term, _slopes: tuple[Term, ...]) -> Term:
@@ -51,11 +53,14 @@ def _product(term: Term, slopes: tuple[Term, ...]) -> Term:
     return add(*parts)
 
 
-def _quotient(term: Term, slopes: tuple[Term, ...]) -> Term:
-    """Return top'/bottom - top bottom'/bottom^2."""
+def _quotient(term: Term, slopes: Mapping[int, Term]) -> Term:
+    """Return top'/bottom minus n top base'/(bottom base) for each factor base^n of the bottom."""
     top, bottom = term.args
-    falling = divide(multiply(top, slopes[1]), power(bottom, constant(2.0)))
-    return subtract(divide(slopes[0], bottom), falling)
+    falling = [
+        (Scalar(-float(n)), divide(multiply(top, slopes[base.digest]), multiply(bottom, base)))
+        for base, n in whole_powers(bottom)
+    ]
+    return linear([(ONE, divide(slopes[top.digest], bottom)), *falling])
 
 
 def _power(term: Term, slopes: tuple[Term, ...]) -> Term:
@@ -97,7 +102,6 @@ _RULES: dict[str, Callable[[Term, tuple[Term, ...]], Term]] = {
     "coordinate": lambda _t, _s: UNIT,
     "sum": lambda t, s: linear(zip(t.data, s, strict=True)),
     "product": _product,
-    "quotient": _quotient,
     "power": _power,
     "raise": _raise,
     "real": _part,

@@ -17,6 +17,9 @@ from specterm.model.scalar import Scalar
 from specterm.model.term import NIL, Term, linear, multiply, spread
 from specterm.model.walk import leaves_first
 
+MOST_DERIVATIVES = 2_000
+"""So many different functions are differentiated for one operator before it counts as having too many terms."""
+
 Pairs = list[tuple[Scalar, Term]]
 Normal = dict[int, Pairs]
 """For every power of D the coefficient, a sum of (number, function)."""
@@ -53,6 +56,8 @@ def _derived(pairs: Pairs, slopes: dict[Term, Term]) -> Pairs:
     result: Pairs = []
     for c, t in pairs:
         if t not in slopes:
+            if len(slopes) > MOST_DERIVATIVES:
+                raise refuse("too-many-terms", None, limit=MOST_TERMS)
             slopes[t] = derivative(t)
         result.extend(pair for pair in spread(c, slopes[t]) if pair[1] != NIL)
     return result
@@ -68,7 +73,7 @@ def collect(pairs: Iterable[tuple[Scalar, Term]]) -> Pairs:
 
 
 def vanishes(pairs: Sequence[tuple[Scalar, Term]], domain: Domain | None, tolerance: float = 1e-10) -> bool:
-    """Say whether a sum of terms is zero: exactly, or on a sample to `tolerance` times the sum of |terms|.
+    """Say whether a sum of terms is zero: exactly, or to `tolerance` times the sum of |terms| on a sample where it has values.
 
     Formal derivatives of functions that jump take arbitrary fixed values, so they only vanish where they cancel.
     """
@@ -81,13 +86,13 @@ def vanishes(pairs: Sequence[tuple[Scalar, Term]], domain: Domain | None, tolera
     total: Any = 0.0
     size: Any = 0.0
     noise: Any = 0.0
-    for c, t in kept:
-        values, bound = generic_values(t, x)
-        total, size = total + c.value * values, size + abs(c.value) * np.abs(values)
-        noise = noise + abs(c.value) * bound
     with np.errstate(all="ignore"):
+        for c, t in kept:
+            values, bound = generic_values(t, x)
+            total, size = total + c.value * values, size + abs(c.value) * np.abs(values)
+            noise = noise + abs(c.value) * bound
         seen = np.isfinite(total) & np.isfinite(size)
-        return bool(np.all(np.abs(total)[seen] <= tolerance * size[seen] + noise[seen]))
+        return bool(np.any(seen) and np.all(np.abs(total)[seen] <= tolerance * size[seen] + noise[seen]))
 
 
 def generic_values(root: Term, x: NDArray[np.float64]) -> tuple[NDArray[Any], NDArray[np.float64]]:

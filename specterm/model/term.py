@@ -7,7 +7,7 @@ compares 127-bit digests (a polynomial hash modulo 2^127 - 1).
 from __future__ import annotations
 
 import struct
-from collections.abc import Iterable, Sequence
+from collections.abc import Collection, Iterable, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -171,26 +171,45 @@ def negative(a: Term) -> Term:
 
 
 def multiply(*terms: Term) -> Term:
-    """Return the product, constants pulled out in front and equal factors collected into whole powers."""
+    """Return the product, constants pulled out in front, equal factors and reciprocals collected into whole powers."""
     coefficient = ONE
     powers: dict[int, tuple[Term, int]] = {}
     for term in terms:
         inner, core = split(term)
         coefficient = coefficient * inner
-        for factor in core.args if core.kind == "product" else (core,):
-            if factor.kind == "constant":
-                coefficient = coefficient * factor.data
-                continue
-            base, exponent = (factor.args[0], factor.data) if factor.kind == "power" else (factor, 1)
+        for base, exponent in whole_powers(core):
             before = powers.get(base.digest, (base, 0))[1]
             powers[base.digest] = (base, before + exponent)
     if coefficient.value == 0:
         return NIL
-    factors = [_whole_power(base, n) for base, n in powers.values()]
-    return scaled(coefficient, _product(factors))
+    return scaled(coefficient, _product(powers.values()))
 
 
-def _product(factors: Sequence[Term]) -> Term:
+def whole_powers(core: Term) -> list[tuple[Term, int]]:
+    """Return the factors of a term without constant factor, as bases with whole exponents, below 0 for 1/b; none for 1."""
+    if core.kind == "constant":
+        return []
+    found: list[tuple[Term, int]] = []
+    for factor in core.args if core.kind == "product" else (core,):
+        if factor.kind == "power":
+            found.append((factor.args[0], factor.data))
+        elif factor.kind == "quotient" and factor.args[0] == UNIT:
+            found += [(base, -n) for base, n in whole_powers(factor.args[1])]
+        else:
+            found.append((factor, 1))
+    return found
+
+
+def _product(powers: Collection[tuple[Term, int]]) -> Term:
+    """Return the product of bases with whole exponents; those below 0 stand together in one reciprocal."""
+    above = [base if n == 1 else make("power", (base,), n) for base, n in powers if n > 0]
+    below = [base if n == -1 else make("power", (base,), -n) for base, n in powers if n < 0]
+    factors = [*above, make("quotient", (UNIT, _gathered(below)))] if below else above
+    return _gathered(factors)
+
+
+def _gathered(factors: Sequence[Term]) -> Term:
+    """Return the plain product of factors that have nothing in common."""
     if not factors:
         return UNIT
     if len(factors) == 1:
@@ -198,12 +217,8 @@ def _product(factors: Sequence[Term]) -> Term:
     return make("product", tuple(factors), key=_mix(sorted(f.digest for f in factors)))
 
 
-def _whole_power(base: Term, exponent: int) -> Term:
-    return base if exponent == 1 else make("power", (base,), exponent)
-
-
 def divide(a: Term, b: Term) -> Term:
-    """Return a / b; stacked quotients are gathered into one."""
+    """Return a / b; stacked quotients are gathered into one, common factors cancel."""
     top, upper = split(a)
     bottom, lower = split(b)
     factor = top / bottom
@@ -217,4 +232,18 @@ def divide(a: Term, b: Term) -> Term:
     if upper.kind == "quotient":
         upper, lower = upper.args[0], multiply(upper.args[1], lower)
         return scaled(factor, divide(upper, lower))
-    return scaled(factor, make("quotient", (upper, lower)))
+    above, below = _cancelled(upper, lower)
+    return scaled(factor, above if below is UNIT else make("quotient", (above, below)))
+
+
+def _cancelled(upper: Term, lower: Term) -> tuple[Term, Term]:
+    """Return numerator and denominator without their common whole powers."""
+    powers = {base.digest: (base, n) for base, n in whole_powers(upper)}
+    below: list[tuple[Term, int]] = []
+    for base, n in whole_powers(lower):
+        held = powers.get(base.digest, (base, 0))[1]
+        common = min(held, n)
+        if common > 0:
+            powers[base.digest] = (base, held - common)
+        below.append((base, n - max(common, 0)))
+    return _product(powers.values()), _product(below)
