@@ -123,12 +123,12 @@ def eliminate_ring(matrix: Chain) -> tuple[NDArray[np.int64], Array, list[tuple[
     return count, last, steps
 
 
-def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array]:
-    """Return for each column the vector z that solves the tridiagonal system but for one row, and the misfit of that row.
+def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array, NDArray[np.int64]]:
+    """Return for each column the vector z that solves the tridiagonal system but for one row, the misfit of that row, and the inertia.
 
     Shapes (vertices, energies) and (energies,): T z = misfit e_r with z_r = 1 and |misfit|/weight_r least over r, the twisted
     factorisation (Parlett and Dhillon, Linear Algebra Appl. 267 (1997) 247). `weight`, shaped like the diagonal, is the diagonal of the
-    mass: without it long elements would always win.
+    mass: without it long elements would always win. The inertia (energies,) is the number of negative pivots.
     """
     diagonal, side = matrix.diagonal, matrix.side
     vertices, columns = diagonal.shape
@@ -153,7 +153,7 @@ def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array]:
         z[row] = np.where(row < twist, upward[row] * z[row + 1], z[row])
     for row in range(vertices - 1):
         z[row + 1] = np.where(row >= twist, downward[row] * z[row], z[row + 1])
-    return z, gamma[twist, take]
+    return z, gamma[twist, take], np.count_nonzero(down < 0, axis=0)
 
 
 def full_vertices(condensed: Condensed, z: NDArray[np.generic]) -> NDArray[np.generic]:

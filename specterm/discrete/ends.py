@@ -49,7 +49,7 @@ def near_end(problem: Problem, side: int) -> NearEnd:
     x = end + sign * d
     with np.errstate(all="ignore"):
         stiffness, potential = problem.stiffness(x), problem.potential(x)
-        alpha = 0.0 if not np.isfinite(stiffness[0]) else _rounded(d[0] * sign * problem.slope(x[:1])[0] / stiffness[0])
+        alpha = 0.0 if not np.isfinite(stiffness[0]) else _power(d[0] * sign * problem.slope(x[:1])[0] / stiffness[0])
     blown = np.flatnonzero(~np.isfinite(potential))
     if len(blown) and blown[-1] + 1 < len(d) and potential[blown[-1] + 1] > 1e100:
         return NearEnd("steep")
@@ -57,7 +57,7 @@ def near_end(problem: Problem, side: int) -> NearEnd:
         raise PhysicsError(f"the operator has no value at the end x = {end:.6g} of the domain", mend="move the end of the domain")
     if alpha < -1e-6 or alpha >= 2:
         raise PhysicsError(f"the coefficient between the momenta is too singular at the end {end:.6g}", mend="move that end inwards")
-    strength = _strength(problem, end, sign, d, stiffness, potential)
+    strength = _strength(problem, end, sign, d, stiffness, potential, (1 - alpha) ** 2)
     growth = math.log2(abs(potential[0] / potential[8])) / math.log2(d[8] / d[0]) if potential[0] * potential[8] > 0 else 0.0
     singular = growth > 0.2 and abs(potential[0]) > 4 * abs(potential[8]) * 0.999
     if abs(alpha) < 1e-6 and not singular:
@@ -87,8 +87,14 @@ def _room(problem: Problem, end: float, side: int) -> float:
     return float(distance.min()) if len(distance) else max(1.0, abs(end))
 
 
-def _strength(problem: Problem, end: float, sign: float, d: Array, stiffness: Array, potential: Array) -> float:
-    """Return the limit of V d^2 / K at the end: extrapolated from a short distance, or taken at the shortest."""
+def _strength(
+    problem: Problem, end: float, sign: float, d: Array, stiffness: Array, potential: Array, critical: float
+) -> float:
+    """Return the limit of V d^2 / K at the end: extrapolated from a short distance, or taken at the shortest.
+
+    A multiple of 1/4 is taken where only rounding tells the limit from it; more strictly near the critical -critical/4, where the power
+    of psi goes with the square root of the difference.
+    """
     shortest = float(potential[0] * d[0] ** 2 / stiffness[0])
     steps = d[-1] * np.arange(1, 9) / 8
     with np.errstate(all="ignore"):
@@ -97,13 +103,20 @@ def _strength(problem: Problem, end: float, sign: float, d: Array, stiffness: Ar
     weights = np.array([(-1.0) ** (k + 1) * math.comb(8, k) for k in range(1, 9)])
     smooth = float(weights @ ratio)
     best = smooth if abs(smooth - shortest) <= 1e-3 * max(1e-3, abs(shortest)) else shortest
-    return _rounded(best)
+    if end == 0:
+        pair = sign * d[0] * np.array([1.0, 2.0])
+        once, twice = problem.potential(pair) * pair**2 / problem.stiffness(pair)
+        straight = float(2 * once - twice)
+        best = straight if abs(straight - best) <= 1e-9 * max(1.0, abs(best)) else best
+    near = round(4 * best) / 4
+    slack = 1e-9 if critical + 4 * near > 0.01 else 4e-14
+    return near if abs(best - near) <= slack * max(1.0, abs(near)) else best
 
 
-def _rounded(value: float) -> float:
-    """Return the nearest multiple of 1/4 where the value differs from it by rounding only."""
+def _power(value: float) -> float:
+    """Return the nearest multiple of 1/4 of a power read off at a short distance, if it is that near."""
     near = round(4 * value) / 4
-    return near if abs(value - near) <= 1e-8 * max(1.0, abs(near)) else value
+    return near if abs(value - near) <= 1e-6 else value
 
 
 def far_end(problem: Problem, side: int) -> FarEnd:
@@ -118,6 +131,8 @@ def far_end(problem: Problem, side: int) -> FarEnd:
         values, stiffness = problem.potential(x), problem.stiffness(x)
         finite = np.isfinite(values) & np.isfinite(stiffness) & (stiffness > 0)
     if not finite.any():
+        if (values == np.inf).any():
+            return FarEnd(math.inf, middle + sign * d[-1], math.inf, False)
         raise PhysicsError(f"the potential has no value beyond {middle:.6g}", mend="narrow the domain")
     start = int(np.argmax(finite))
     stop = len(d) if finite[start:].all() else start + int(np.argmin(finite[start:]))

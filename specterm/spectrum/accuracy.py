@@ -80,16 +80,48 @@ def _cut(ready: Setting, solved: Solved) -> Array:
 
 
 def _noise(ready: Setting, solved: Solved) -> Array:
-    """Return a bound on the rounding in each value: of the quotient itself, and of K and V as evaluated."""
-    problem, origin = ready.problem, ready.floor
+    """Return a bound on the rounding in each value: of the quotient, of K and V as evaluated, and of the places of ends and jumps."""
+    problem = ready.problem
     here = solved.condensed.grid
     n = solved.condensed.mesh.order + 1
     density = here.mass[:, :, None] * np.abs(here.values[..., :n] @ solved.coefficients) ** 2
     slopes = here.kinetic[:, :, None] * np.abs(here.slopes[..., :n] @ solved.coefficients) ** 2
     with np.errstate(all="ignore"):
         potential = problem.noise_potential(here.x.ravel()).reshape(here.x.shape)
-        stiffness = problem.noise_stiffness(here.x.ravel()).reshape(here.x.shape) / problem.stiffness(here.x.ravel()).reshape(here.x.shape)
+        stiffness = problem.noise_stiffness(here.x.ravel()) / problem.stiffness(here.x.ravel())
         size = np.abs(here.potential / here.mass)
     height = np.einsum("eq,eqn->n", NOISE * size + potential, density)
-    motion = np.einsum("eq,eqn->n", NOISE + stiffness, slopes)
-    return height + motion + EPS * np.abs(solved.values + origin)
+    motion = np.einsum("eq,eqn->n", NOISE + stiffness.reshape(here.x.shape), slopes)
+    least = EPS * np.abs(solved.values + ready.floor) + 1e-3 * EPS * np.abs(solved.values).max(initial=0.0)
+    return height + motion + least + _misplaced(ready, solved, density, slopes) + _mispowered(solved, slopes)
+
+
+def _misplaced(ready: Setting, solved: Solved, density: Array, slopes: Array) -> Array:
+    """Return what the rounding of the places of finite ends and jumps does: dE/da = K psi'^2 + (E - V) psi^2 on either side."""
+    here, mesh = solved.condensed.grid, solved.condensed.mesh
+    places = np.concatenate([ready.problem.edges, [e for e in (ready.problem.left, ready.problem.right) if np.isfinite(e)]])
+    flat = np.abs(here.potential / here.mass)[:, :, None] + np.abs(solved.values)
+    weight = here.mass[:, :, None] / here.factor[:, :, None] ** 2
+    flux = (slopes + flat * density) / weight
+    total = np.zeros(len(solved.values))
+    for place in places:
+        vertex = int(np.searchsorted(mesh.places, place))
+        if vertex < len(mesh.places) and mesh.places[vertex] == place:
+            beside = [flux[e, q] for e, q in ((vertex - 1, -1), (vertex, 0)) if 0 <= e < len(flux)]
+            total += 2 * EPS * abs(place) * np.max(beside, axis=0)
+    return total
+
+
+def _mispowered(solved: Solved, slopes: Array) -> Array:
+    """Return what the rounding of an inverse square's strength does, which Gauss rules see too little of: dE/dc = <K/d^2>."""
+    mesh, here = solved.condensed.mesh, solved.condensed.grid
+    total = np.zeros(slopes.shape[2])
+    for side, vertex, end, place in ((0, 0, mesh.left, mesh.places[0]), (-1, 1, mesh.right, mesh.places[-1])):
+        spread = 2 * (end.power or 0.0) + end.alpha - 1
+        if end.power is not None and spread > 1e-9:
+            stiffness = float(np.abs(here.kinetic[side] / here.mass[side]).max()) * (mesh.lengths[side] / 2) ** 2
+            rounding = 4 * EPS if place == 0 else 256 * EPS
+            strength = rounding * max(0.25, abs(end.power * (end.power - 1)))
+            share = stiffness * np.abs(solved.coefficients[side, vertex]) ** 2 / (mesh.lengths[side] * spread)
+            total += strength * share
+    return total

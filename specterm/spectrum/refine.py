@@ -122,7 +122,7 @@ def _low(condensed: Condensed, first: int, high: float) -> float:
 def _targets(solved: Solved, tolerance: float, found: Accuracy) -> Array:
     """Return the error wanted for each level; never below what rounding leaves."""
     scale = np.maximum(np.abs(solved.values), solved.kinetic)
-    return np.maximum(OVERSHOOT * tolerance * np.minimum(scale, 2 * np.abs(solved.kinetic) + np.abs(solved.values)), found.noise)
+    return np.maximum(OVERSHOOT * tolerance * np.maximum(scale, 1e-3 * scale.max()), found.noise)
 
 
 def _coarse(found: Accuracy, target: Array, condensed: Condensed) -> NDArray[np.bool_]:

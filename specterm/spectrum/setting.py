@@ -23,7 +23,8 @@ DEEP = 20.0
 
 @dataclass(frozen=True)
 class Setting:
-    """Ends classified, the scan, the Langer term `extra` (n,) on the scan's places, `floor` (an energy below all levels, roughly the
+    """Ends classified, the scan, the Langer term `extra` (n,) on the scan's places (K/4d^2 at a singular
+    end, twice that where psi falls off slower than d), `floor` (an energy below all levels, roughly the
     minimum of V) and `threshold` (inf where the spectrum is discrete)."""
 
     problem: Problem
@@ -66,7 +67,8 @@ def setting(problem: Problem) -> Setting:
     extra = np.zeros(len(look.x))
     for end, place in zip(ends, (problem.left, problem.right), strict=True):
         if isinstance(end, NearEnd) and end.kind in ("power", "steep"):
-            extra = extra + look.stiffness / (4 * (look.x - place) ** 2)
+            share = 0.5 if end.kind == "power" and end.power < 1 else 0.25
+            extra = extra + share * look.stiffness / (look.x - place) ** 2
     height = (look.potential + extra)[np.isfinite(look.potential)]
     floor = float(height.min())
     if not ends[0] and not ends[1]:

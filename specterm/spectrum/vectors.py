@@ -16,6 +16,8 @@ Values = NDArray[np.generic]
 
 SETTLED = 1e-12
 """Newton steps smaller than this share of the level end the iteration; a hundredth of `CLOSE`, so that no neighbour is mixed in."""
+STRAY = 1e-9
+"""A Rayleigh quotient this share of the level away from where Newton's method ended has a bad vector: solved again as a group."""
 DENSE = 700
 """Up to so many vertices groups are solved with a dense matrix."""
 
@@ -55,8 +57,12 @@ def solve_levels(condensed: Condensed, first: int, last: int, low: float, high: 
     parts: list[Part] = []
     for start in range(0, len(loners), 64):
         some = loners[start : start + 64]
-        energies, z = _newton(condensed, some, bottom)
-        parts += _quotients(condensed, [g.first for g in some], element_coefficients(condensed, z, energies))
+        energies, z = _newton(condensed, some, bottom, high)
+        found = _quotients(condensed, [g.first for g in some], element_coefficients(condensed, z, energies))
+        parts += [
+            part if abs(part.values[0] - energy) <= STRAY * abs(energy - bottom) else _group(condensed, group, bottom)
+            for part, energy, group in zip(found, energies, some, strict=True)
+        ]
     parts += [_group(condensed, g, bottom) for g in groups if g.size > 1 or not single]
     parts = _merged(condensed, sorted(parts, key=lambda part: part.first), bottom)
     start = parts[0].first
@@ -85,27 +91,32 @@ def _merged(condensed: Condensed, parts: list[Part], bottom: float) -> list[Part
     return whole
 
 
-def _newton(condensed: Condensed, groups: list[Group], bottom: float) -> tuple[Array, Array]:
-    """Return energies and vertex vectors of single levels: Newton's method on the vertex matrix, kept inside each bracket."""
+def _newton(condensed: Condensed, groups: list[Group], bottom: float, top: float) -> tuple[Array, Array]:
+    """Return energies and vertex vectors of single levels: Newton's method on the vertex matrix, kept inside shrinking brackets.
+
+    A step must be small against the level and against its distance to `top`, where a continuum may begin. Every third step halves
+    the bracket, so that the iteration ends whatever the start.
+    """
     low, high = np.array([g.low for g in groups]), np.array([g.high for g in groups])
     numbers = np.array([g.first for g in groups])
     energies = (low + high) / 2
-    slack = CLOSE * np.abs(energies - bottom)
-    for _ in range(40):
+    slack = 1e-3 * SETTLED * np.abs(energies - bottom)
+    for number in range(120):
         weight = chain(condensed, energies, mass=True)
-        z, misfit = twisted_vectors(chain(condensed, energies), weight.diagonal)
+        z, misfit, inertia = twisted_vectors(chain(condensed, energies), weight.diagonal)
+        below = inertia + np.count_nonzero(condensed.poles[:, :, None] < energies, axis=(0, 1)) > numbers
+        high, low = np.where(below, energies, high), np.where(below, low, energies)
         with np.errstate(all="ignore"):
             step = misfit / _quadratic(weight, z)
         trial = energies + step
         inside = (trial > low - slack) & (trial < high + slack) & np.isfinite(step)
-        size = np.abs(np.where(inside, step, high - low))
-        settled = inside & (size <= SETTLED * np.abs(trial - bottom))
+        fine = np.minimum(SETTLED * np.abs(trial - bottom), 1e-4 * np.abs(top - trial))
+        fine = np.maximum(fine, 4 * np.spacing(np.abs(energies)))
+        settled = (inside & (np.abs(step) <= fine)) | (high - low <= fine)
         if settled.all():
-            return energies, z
-        if not inside.all():
-            below = count_below(condensed, energies) > numbers
-            high, low = np.where(below, energies, high), np.where(below, low, energies)
-        energies = np.where(inside, trial, (low + high) / 2)
+            break
+        halve = ~inside | ((number % 3 == 2) & ~settled)
+        energies = np.where(settled, energies, np.where(halve, (low + high) / 2, trial))
     return energies, z
 
 
