@@ -105,7 +105,7 @@ def scene(
     ring = axes.left_end == "ring"
     closed = (np.isfinite(axes.left) and axes.left_end != "open", np.isfinite(axes.right) and axes.right_end != "open")
     focus = kept.index(chosen) if chosen is not None and chosen in kept else None
-    shown = x_window(origin.found[kept], focus, left, right, closed, whole=ring)
+    shown = x_window(_telling(origin.found, levels, kept, chosen), focus, left, right, closed, whole=ring)
     x = np.linspace(max(shown[0], left), min(shown[1], right), max(2, samples))
     potential = np.asarray(origin.potential(x), dtype=np.float64)
     states: Any = spectrum.states if spectrum else None
@@ -118,6 +118,13 @@ def scene(
         energy_window(values, potential, threshold, from_top=from_top), from_top,
         (prepared.name, prepared.mean, np.asarray(prepared.wave(x))) if prepared else None,
     )
+
+
+def _telling(found: Floats, levels: tuple[Level, ...], kept: list[int], chosen: int | None) -> Floats:
+    """Return where the kept states live, NaN for those that fill the box only because there is one; the chosen one counts."""
+    told = found[kept]
+    real = np.array([levels[place].kind != "box" or place == chosen for place in kept], dtype=bool)
+    return np.where(real[:, None], told, np.nan) if real.any() else told
 
 
 def _ends(axes: Axes, spectrum: Spectrum | None) -> Window:

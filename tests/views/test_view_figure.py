@@ -35,6 +35,16 @@ def test_a_long_tail_is_not_shown():
     assert 2 < high < 8
 
 
+def test_box_levels_do_not_widen_the_window():
+    """States that fill the box only because there is one do not decide what is shown, unless one of them is chosen."""
+    data = spectrum(3)
+    levels = (data.levels[0], *(dataclasses.replace(level, kind="box", error=None) for level in data.levels[1:]))
+    boxed = source(dataclasses.replace(data, levels=levels), potential, AXES)
+    alone = scene(source(spectrum(1), potential, AXES), 0).window
+    assert scene(boxed, 0).window == pytest.approx(alone, rel=0.02)
+    assert scene(boxed, 2).window[1] > 1.2 * alone[1]
+
+
 def test_extents_hold_all_but_a_thousandth():
     """The interval of the oscillator's ground state has 99.9 % of exp(-x^2)/sqrt(pi) (erfinv(0.999) from memory)."""
     (low, high), = extents(lambda x: np.exp(-(x[None, :] ** 2)) / np.sqrt(np.pi), -40.0, 40.0)
