@@ -7,7 +7,7 @@ from dataclasses import dataclass
 
 from specterm.errors import PhysicsError
 from specterm.model.function import Function
-from specterm.model.normal import Pairs, collect, normal_order, vanishes
+from specterm.model.normal import Ordering, Pairs, collect, vanishes
 from specterm.model.scalar import ONE, Scalar
 from specterm.model.setting import Setting
 from specterm.model.term import UNIT, Term, linear, multiply, spread
@@ -43,8 +43,9 @@ def form(words: Sequence[Word], setting: Setting) -> Form:
     vanish at walls and on rings and are the natural condition of free ends.
     """
     total: dict[tuple[int, int], Pairs] = {}
+    ordering = Ordering()
     for word in words:
-        choices = _best_splits(word)
+        choices = _best_splits(word, ordering)
         share = Scalar(1.0 / len(choices))
         for split in choices:
             for key, pairs in split.items():
@@ -57,12 +58,16 @@ def form(words: Sequence[Word], setting: Setting) -> Form:
 Split = dict[tuple[int, int], Pairs]
 
 
-def _best_splits(word: Word) -> list[Split]:
+def _best_splits(word: Word, ordering: Ordering) -> list[Split]:
+    """Return the cheapest splits, tried from the even one outwards until one differentiates no jump."""
     best: tuple[tuple[int, int, int], list[Split]] | None = None
-    for moved in range(word.order + 1):
-        split = _split(word.slots, moved)
+    for moved in sorted(range(word.order + 1), key=lambda m: max(m, word.order - m)):
+        highest = max(moved, word.order - moved)
+        if best is not None and best[0][0] == 0 and best[0][1] < highest:
+            break
+        split = _split(word.slots, moved, ordering)
         pairs = [t for part in split.values() for _, t in part]
-        cost = (int(any(t.broken for t in pairs)), max(moved, word.order - moved), len(pairs))
+        cost = (int(any(t.broken for t in pairs)), highest, len(pairs))
         if best is None or cost < best[0]:
             best = (cost, [split])
         elif cost == best[0]:
@@ -70,12 +75,13 @@ def _best_splits(word: Word) -> list[Split]:
     return best[1] if best else []
 
 
-def _split(slots: tuple[Term, ...], moved: int) -> Split:
+def _split(slots: tuple[Term, ...], moved: int, ordering: Ordering) -> Split:
     """Return the word with its first `moved` derivatives taken to the left side by parts."""
-    left = normal_order([(Scalar((-1.0) ** moved), (UNIT, *reversed(slots[:moved])))] if moved else [(ONE, (UNIT,))])
-    right = normal_order([(ONE, (UNIT, *slots[moved + 1 :]))] if moved < len(slots) - 1 else [(ONE, (UNIT,))])
+    left = ordering.word((UNIT, *reversed(slots[:moved])))
+    right = ordering.word((UNIT, *slots[moved + 1 :]))
+    sign = Scalar((-1.0) ** moved)
     return {
-        (j, k): [(a * b, multiply(s, slots[moved], t)) for a, s in pairs for b, t in others]
+        (j, k): [(sign * a * b, multiply(s, slots[moved], t)) for a, s in pairs for b, t in others]
         for j, pairs in left.items()
         for k, others in right.items()
     }

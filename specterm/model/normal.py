@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, field
 from typing import Any
 
 import numpy as np
@@ -17,7 +18,7 @@ from specterm.model.scalar import Scalar
 from specterm.model.term import NIL, Term, linear, multiply, spread
 from specterm.model.walk import leaves_first
 
-MOST_DERIVATIVES = 2_000
+MOST_DERIVATIVES = 3_000
 """So many different functions are differentiated for one operator before it counts as having too many terms."""
 
 Pairs = list[tuple[Scalar, Term]]
@@ -25,42 +26,55 @@ Normal = dict[int, Pairs]
 """For every power of D the coefficient, a sum of (number, function)."""
 
 
-def normal_order(words: Iterable[tuple[Scalar, tuple[Term, ...]]]) -> Normal:
+@dataclass(frozen=True)
+class Ordering:
+    """Normal orders and derivatives found so far, so that words with a common right end share the work."""
+
+    normals: dict[tuple[Term, ...], Normal] = field(default_factory=dict)
+    slopes: dict[Term, Term] = field(default_factory=dict)
+
+    def word(self, slots: tuple[Term, ...]) -> Normal:
+        """Return f0 D f1 ... D fn with all D on the right, built from its right end. Raises SheetError above 10,000 terms."""
+        current: Normal = {0: [(Scalar(1.0), slots[-1])]}
+        for k in range(len(slots) - 2, -1, -1):
+            known = self.normals.get(slots[k:])
+            current = self._lengthened(slots[k], current) if known is None else known
+            self.normals[slots[k:]] = current
+        return current
+
+    def _lengthened(self, slot: Term, tail: Normal) -> Normal:
+        """Return slot D tail."""
+        moved: Normal = {}
+        for power, pairs in tail.items():
+            moved.setdefault(power + 1, []).extend(pairs)
+            moved.setdefault(power, []).extend(self._derived(pairs))
+        result = {k: [(c, multiply(slot, t)) for c, t in collect(pairs)] for k, pairs in moved.items()}
+        if sum(map(len, result.values())) > MOST_TERMS:
+            raise refuse("too-many-terms", None, limit=MOST_TERMS)
+        return result
+
+    def _derived(self, pairs: Pairs) -> Pairs:
+        result: Pairs = []
+        for c, t in pairs:
+            if t not in self.slopes:
+                if len(self.slopes) > MOST_DERIVATIVES:
+                    raise refuse("too-many-terms", None, limit=MOST_TERMS)
+                self.slopes[t] = derivative(t)
+            result.extend(pair for pair in spread(c, self.slopes[t]) if pair[1] != NIL)
+        return result
+
+
+def normal_order(words: Iterable[tuple[Scalar, tuple[Term, ...]]], ordering: Ordering | None = None) -> Normal:
     """Return the sum of words f0 D f1 ... D fn with all D on the right, equal terms collected.
 
     Raises SheetError above 10,000 terms.
     """
     total: Normal = {}
-    slopes: dict[Term, Term] = {}
+    ordering = ordering or Ordering()
     for coefficient, slots in words:
-        for power, pairs in _one_word(slots, slopes).items():
+        for power, pairs in ordering.word(slots).items():
             total.setdefault(power, []).extend((coefficient * c, t) for c, t in pairs)
     return {k: collected for k, pairs in total.items() if (collected := collect(pairs))}
-
-
-def _one_word(slots: tuple[Term, ...], slopes: dict[Term, Term]) -> Normal:
-    """Return the normal order of one word, built from its right end."""
-    current: Normal = {0: [(Scalar(1.0), slots[-1])]}
-    for slot in reversed(slots[:-1]):
-        moved: Normal = {}
-        for power, pairs in current.items():
-            moved.setdefault(power + 1, []).extend(pairs)
-            moved.setdefault(power, []).extend(_derived(pairs, slopes))
-        current = {k: [(c, multiply(slot, t)) for c, t in collect(pairs)] for k, pairs in moved.items()}
-        if sum(map(len, current.values())) > MOST_TERMS:
-            raise refuse("too-many-terms", None, limit=MOST_TERMS)
-    return current
-
-
-def _derived(pairs: Pairs, slopes: dict[Term, Term]) -> Pairs:
-    result: Pairs = []
-    for c, t in pairs:
-        if t not in slopes:
-            if len(slopes) > MOST_DERIVATIVES:
-                raise refuse("too-many-terms", None, limit=MOST_TERMS)
-            slopes[t] = derivative(t)
-        result.extend(pair for pair in spread(c, slopes[t]) if pair[1] != NIL)
-    return result
 
 
 def collect(pairs: Iterable[tuple[Scalar, Term]]) -> Pairs:
