@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import sys
 from pathlib import Path
 
 from specterm.tui.options import Options
@@ -27,6 +28,8 @@ def run(text: str, path: Path | None = None, options: Options | None = None) -> 
     try:
         app = make_app(text, path, chosen)
         status = app.run(mouse=chosen.mouse)
-        return app.return_code or status or 0
     finally:
         give_back(stream)
+    if app.last_words:
+        print(app.last_words, file=sys.stderr)
+    return app.return_code or status or 0

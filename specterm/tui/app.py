@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import gc
+import os
+import traceback
 from dataclasses import replace
 from pathlib import Path
 from typing import ClassVar
@@ -15,6 +17,7 @@ from textual.timer import Timer
 from textual.widgets import TextArea
 
 from specterm.errors import SpectermError, WorkStopped, position, printable
+from specterm.session import rescue
 from specterm.session.document import Document
 from specterm.spectrum.result import Spectrum
 from specterm.tui import help as help_text
@@ -30,6 +33,7 @@ from specterm.tui.rows import (
     as_text,
     bottom_row,
     chosen_row,
+    drawn_safely,
     figure_rows,
     heading_row,
     level_rows,
@@ -79,6 +83,7 @@ class Specterm(App[int]):
         self.error: SpectermError | None = None
         self.found: dict[int | str, MomentsText | Weighed | None] = {}
         self._pause: Timer | None = None
+        self.last_words = ""
         self._drawing = False
         self._drawn: dict[str, tuple[object, ...]] = {}
 
@@ -143,7 +148,7 @@ class Specterm(App[int]):
                 of = (shown.look, shown.outcome, shown.weighed, pane.size)
                 if pane.size.width and pane.size.height and pane.display and self._drawn.get(name) != of:
                     self._drawn[name] = of
-                    pane.show(draw(shown, *pane.size))
+                    pane.show(drawn_safely(draw, shown, *pane.size))
             width = self.size.width
             lines = (("message", message_row), ("chosen", chosen_row), ("trust", trusted_row))
             for name, line in lines:
@@ -381,6 +386,18 @@ class Specterm(App[int]):
     async def action_quit(self) -> None:
         """End the session in the same way."""
         self.files.leave()
+
+    def _fatal_error(self) -> None:
+        """Leave after a defect of the screen itself: the text is kept, the details go to the log, the user gets plain words."""
+        if not self.options.guarded:
+            super()._fatal_error()
+            return
+        os.write(2, traceback.format_exc().encode("utf-8", "replace"))
+        kept = rescue.keep(self.document)
+        self.last_words = f"specterm failed; details are in {rescue.folder() / 'log'}"
+        if kept is not None:
+            self.last_words += f"\nunsaved text is kept in {kept} and offered when the sheet is opened again"
+        self._close_messages_no_wait()
 
     def action_help_quit(self) -> None:
         """Answer ctrl+c with the way out."""

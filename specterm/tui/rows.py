@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
+from specterm.errors import printable
 from specterm.session.document import Document
 from specterm.tui.look import Look
 from specterm.tui.solving import Outcome, Weighed
@@ -84,6 +85,15 @@ def figure_rows(shown: Shown, width: int, height: int) -> Rows:
     chosen = shown.look.chosen if spectrum and spectrum.levels else None
     view = scene(outcome.origin, chosen, samples=max(100, 8 * width), prepared=shown.prepared)
     return draw(view, width, height, mode=shown.look.mode, glyphs=shown.look.glyphs)
+
+
+def drawn_safely(draw: Callable[[Shown, int, int], Rows], shown: Shown, width: int, height: int) -> Rows:
+    """Return what `draw` returns, or words in its place where a wave or potential cannot be evaluated."""
+    try:
+        return draw(shown, width, height)
+    except Exception as error:  # the edge of the screen: what cannot be drawn must not end the session
+        words = f" cannot be drawn: {printable(str(error))}".replace("\n", " ")
+        return (fit_row(((words, "warn"),), width, shown.mark),) + (((" " * width, "plain"),),) * (height - 1)
 
 
 def chosen_row(shown: Shown, width: int) -> Row:

@@ -77,7 +77,7 @@ class Painter:
         """Return where the level is allowed by dot column, shape (columns,)."""
         columns = np.arange(self.canvas.columns)
         nearest = np.clip(np.searchsorted(self.across, columns), 0, len(self.across) - 1)
-        inside = (columns >= self.across[0] - 1) & (columns <= self.across[-1] + 1)
+        inside = (columns >= self.across[0] - 0.5) & (columns <= self.across[-1] + 0.5)
         return np.asarray(self.allowed(energy)[nearest] & inside)
 
     def shape_of(self, wave: NDArray[Any]) -> tuple[Floats, Floats]:

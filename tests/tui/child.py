@@ -20,6 +20,8 @@ def main() -> int:
     from specterm.tui import app  # noqa: PLC0415 - as above
 
     app.BuiltIn = fake.FakeEngine
+    if "SPECTERM_TEST_DEFECT" in os.environ:
+        app.Specterm.action_view = lambda _: 1 / 0
     path = Path(sys.argv[1])
     return tui.run(path.read_text(), path, tui.Options(glyphs="ascii"))
 

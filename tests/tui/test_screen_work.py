@@ -8,7 +8,7 @@ from standin import spectrum
 
 from specterm.errors import SheetError, Span
 from specterm.tui.look import Look, usual_glyphs
-from specterm.tui.rows import Shown, bottom_row, chosen_row, figure_rows, level_rows, message_row, trusted_row
+from specterm.tui.rows import Shown, bottom_row, chosen_row, drawn_safely, figure_rows, level_rows, message_row, trusted_row
 from specterm.tui.sheet_pane import complaint, marks_of
 from specterm.tui.solving import Request, compute, weigh
 from specterm.views.cells import plain, row_width
@@ -144,6 +144,17 @@ def test_complaints_fit_their_rows():
     assert all(row_width(row) == 30 for row in rows)
     assert "…" in plain(rows)
     assert plain(complaint(SheetError("a", mend="b"), "", 30)) == "a\nb"
+
+
+def test_what_cannot_be_drawn_says_so():
+    """A wave that cannot be evaluated leaves words in its pane and the right size."""
+
+    def failing(*_):
+        raise ValueError("no\x1b number")
+
+    rows = drawn_safely(failing, Shown(Look()), 40, 3)
+    assert plain(rows) == " cannot be drawn: no\N{REPLACEMENT CHARACTER} number\n\n"
+    assert [row_width(row) for row in rows] == [40] * 3
 
 
 def test_rows_without_an_outcome_are_blank():

@@ -131,6 +131,26 @@ def test_a_closed_connection_ends_the_session(tmp_path):
     os.waitpid(session.child.pid, 0)
 
 
+def test_a_defect_leaves_words_and_the_text(tmp_path):
+    """A defect of the screen itself shows no traceback, keeps unsaved text and says where it and the details are."""
+    session = Session(tmp_path, SPECTERM_TEST_DEFECT="1")
+    session.until("complete")
+    session.child.send("e")
+    session.until("Tab back")
+    session.child.send("#")
+    session.until("unsaved")
+    session.child.send("\tv")
+    status, raw = session.end()
+    assert status == 1
+    assert session.sane(raw)
+    said = raw[raw.rindex(b"\x1b[?1049l") :]
+    assert b"specterm failed; details are in" in said
+    assert b"Traceback" not in raw
+    assert "ZeroDivisionError" in (session.state / "specterm" / "log").read_text()
+    (kept,) = (session.state / "specterm").glob("well-*.sheet")
+    assert str(kept).encode() in said.replace(b"\r\n", b"\n")
+
+
 def test_without_colour(tmp_path):
     """With NO_COLOR no colour is sent, and everything is still there."""
     session = Session(tmp_path, NO_COLOR="1")
