@@ -20,7 +20,7 @@ class Problem:
     where there is none). Ends are "wall", "free", "open" or "ring"; `phase` is the whole phase of phi around the ring in radians.
     `noise_stiffness` and `noise_potential` bound the rounding of K and V as evaluated. `edges` are places where a
     coefficient or a derivative of it jumps, `centres` places around which it may vary on any scale. `sign` is -1 where the
-    operator was turned over because it has a highest level instead of a lowest one.
+    operator was turned over because it has a highest level instead of a lowest one. `bloch` says that the sheet gives a Bloch phase.
     """
 
     stiffness: Coefficient
@@ -38,6 +38,7 @@ class Problem:
     phase: float | None = None
     twist: Coefficient | None = None
     sign: int = 1
+    bloch: bool = False
 
     @property
     def ring(self) -> bool:

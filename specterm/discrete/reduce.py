@@ -38,7 +38,7 @@ def problem_of(model: Model) -> Problem:
         centres=np.unique(np.concatenate([f.centres(*ends) for f in functions])),
         knots=sum(f.knots() for f in functions),
         phase=_phase(model, twist) if domain.is_ring else None,
-        twist=twist, sign=sign,
+        twist=twist, sign=sign, bloch=domain.phase is not None,
     )  # fmt: skip
 
 

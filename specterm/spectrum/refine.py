@@ -37,10 +37,11 @@ class Request:
 
 @dataclass(frozen=True)
 class Refined:
-    """Levels on the final mesh with their errors (levels,) and the span they were computed on."""
+    """Levels on the final mesh with their errors (levels,), the errors of their states in norm (levels,), and the span."""
 
     solved: Solved
     error: Array
+    vector_error: Array
     span: Span
 
 
@@ -48,7 +49,7 @@ def refine(ready: Setting, request: Request, energy: float, span: Span | None) -
     """Return the levels asked for, with errors; `energy` is a guess above the highest, `span` is given where the box is fixed."""
     fixed = span is not None
     actions = (DEEP, DEEP)
-    energy, span, condensed = _first(ready, request, energy, span)
+    energy, span, condensed = first_mesh(ready, request, energy, span)
     high = energy - ready.floor
     for number in range(ROUNDS):
         _report(request, number, condensed)
@@ -58,15 +59,28 @@ def refine(ready: Setting, request: Request, energy: float, span: Span | None) -
         coarse = _coarse(found, target, condensed)
         wider, actions = (None, actions) if fixed else _wider(ready, found, target, solved, span, actions)
         if (not coarse.any() and wider is None) or number == ROUNDS - 1:
-            return Refined(solved, found.total, span)
+            return Refined(solved, found.total, _vector_error(solved, found), span)
         mesh = condensed.mesh.split(coarse)
         if wider is not None:
             span = wider
             mesh = _widened(ready, mesh, wider, energy)
         if len(mesh.places) > MOST_ELEMENTS:
-            return Refined(solved, found.total, span)
+            return Refined(solved, found.total, _vector_error(solved, found), span)
         condensed = _without_poles(ready, mesh, energy)
     raise AssertionError("the last round returns")
+
+
+def _vector_error(solved: Solved, found: Accuracy) -> Array:
+    """Return a bound on the error of each state in norm, from the error of its value and the distance to its neighbours."""
+    values = solved.values
+    gap = np.full(len(values), np.inf)
+    steps = np.diff(values)
+    gap[:-1] = np.minimum(gap[:-1], steps)
+    gap[1:] = np.minimum(gap[1:], steps)
+    gap = np.where(np.isfinite(gap), gap, np.abs(values) + np.abs(solved.kinetic))
+    with np.errstate(all="ignore"):
+        off = np.sqrt(np.maximum(found.total - found.noise, 0) / gap) + found.noise / gap
+    return np.where(np.isfinite(off), np.minimum(off, 1.0), 1.0)
 
 
 def _report(request: Request, number: int, condensed: Condensed) -> None:
@@ -75,7 +89,7 @@ def _report(request: Request, number: int, condensed: Condensed) -> None:
     request.progress(f"mesh {number + 1}: {condensed.mesh.unknowns} unknowns")
 
 
-def _first(ready: Setting, request: Request, energy: float, span: Span | None) -> tuple[float, Span, Condensed]:
+def first_mesh(ready: Setting, request: Request, energy: float, span: Span | None) -> tuple[float, Span, Condensed]:
     """Return an energy with enough levels below it, and the span and mesh that go with it."""
     fixed, depth = span, 0.3
     wanted = request.last + 1

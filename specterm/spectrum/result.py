@@ -63,3 +63,4 @@ class Spectrum:
     notes: tuple[str, ...] = ()
     from_top: bool = False
     values: NDArray[np.float64] = field(default_factory=lambda: np.empty(0))
+    vector_error: NDArray[np.float64] = field(default_factory=lambda: np.empty(0))

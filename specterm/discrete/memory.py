@@ -1,0 +1,43 @@
+"""How much memory this process may still take, and a refusal before more is taken."""
+
+from __future__ import annotations
+
+from pathlib import Path
+
+from specterm.errors import PhysicsError
+
+SHARE = 0.5
+"""A computation may take this share of what the machine (or its control group) has left."""
+
+
+def memory_left() -> float:
+    """Return the bytes left to this process: the least of the machine's and the control group's; inf where neither tells."""
+    left = [_machine(), _group("memory.max", "memory.current", Path("/sys/fs/cgroup"))]
+    left.append(_group("memory.limit_in_bytes", "memory.usage_in_bytes", Path("/sys/fs/cgroup/memory")))
+    return min(left)
+
+
+def _machine() -> float:
+    try:
+        for line in Path("/proc/meminfo").read_text(encoding="ascii").splitlines():
+            if line.startswith("MemAvailable:"):
+                return 1024.0 * float(line.split()[1])
+    except (OSError, ValueError, IndexError):
+        return float("inf")
+    return float("inf")
+
+
+def _group(limit: str, used: str, folder: Path) -> float:
+    try:
+        return float((folder / limit).read_text(encoding="ascii")) - float((folder / used).read_text(encoding="ascii"))
+    except (OSError, ValueError):
+        return float("inf")
+
+
+def refuse_above(needed: float, what: str) -> None:
+    """Raise PhysicsError where `needed` bytes for `what` are more than the share of the memory left."""
+    left = memory_left()
+    if needed > SHARE * left:
+        raise PhysicsError(
+            f"{what} would take {needed / 1e9:.2g} GB, and {left / 1e9:.2g} GB are left", mend="ask for fewer levels, or use a larger machine"
+        )

@@ -1,0 +1,255 @@
+"""The engine's front: a model in, a certified spectrum out."""
+
+from __future__ import annotations
+
+import math
+import time
+from collections.abc import Callable
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.discrete.chain import count_below
+from specterm.discrete.elements import condense, grid
+from specterm.discrete.mesh import Edge, Mesh
+from specterm.discrete.meshing import Span
+from specterm.discrete.reduce import problem_of
+from specterm.discrete.scan import semiclassical_count
+from specterm.errors import PhysicsError
+from specterm.model import Model
+from specterm.spectrum.bound import bound_levels
+from specterm.spectrum.firstorder import running_levels
+from specterm.spectrum.fourier import dense_levels
+from specterm.spectrum.refine import Refined, Request, first_mesh, refine
+from specterm.spectrum.result import Level, Spectrum
+from specterm.spectrum.setting import Setting, setting, span_at
+from specterm.spectrum.states import ElementStates
+from specterm.spectrum.symmetry import parities
+from specterm.spectrum.vectors import Solved
+
+Array = NDArray[np.float64]
+
+USUAL = 10
+"""How many levels are computed when nobody says."""
+
+
+def solve(
+    model: Model,
+    *,
+    count: int | None = None,
+    near: float | None = None,
+    tolerance: float = 1e-8,
+    should_stop: Callable[[], bool] | None = None,
+    progress: Callable[[str], None] | None = None,
+) -> Spectrum:
+    """Return levels of the model's operator with errors and kinds.
+
+    Parameters
+    ----------
+    model
+        A sheet made ready.
+    count
+        How many levels; without it, up to `USUAL` of the true ones. When more are asked for than are bound, the rest are of kind "box".
+    near
+        Return the levels nearest to this energy instead of the lowest.
+    tolerance
+        Error asked for, as a share of each level's distance to the potential's minimum.
+    should_stop, progress
+        Asked now and then whether to give up (WorkStopped), and told in words how far the work is.
+
+    Raises
+    ------
+    PhysicsError
+        Where the operator is not Hermitian or not self-adjoint on the domain, has no lowest or highest level, or has no value somewhere.
+
+    Notes
+    -----
+    Spectral elements of order 12, condensed onto their vertices; levels bracketed by inertia counts, values as Rayleigh quotients by
+    element; error from a hierarchical estimate, the wall's force at each cut and a bound on rounding. Tested to n = 1000
+    levels, lengths and energies from 1e-9 to 1e9 and splittings to 1e-14 of the level.
+    """
+    start = time.perf_counter()
+    _refuse_bad(count, tolerance)
+    operator = model.operator
+    fault = operator.hermitian()
+    if fault is not None:
+        raise PhysicsError(fault.reason, mend=fault.mend)
+    stop, tell = should_stop or (lambda: False), progress or (lambda _: None)
+    if operator.order > 2:
+        found = _dense(model, count or USUAL, near, tolerance, stop)
+    elif operator.order < 2:
+        found = _running(model, count or USUAL, near, tolerance)
+    else:
+        found = _elements(model, count, near, tolerance, stop, tell)
+    return _timed(found, time.perf_counter() - start)
+
+
+def _refuse_bad(count: int | None, tolerance: float) -> None:
+    if count is not None and count < 1:
+        raise PhysicsError(f"{count} levels cannot be computed", mend="ask for 1 or more")
+    if not 0 < tolerance < 1:
+        raise PhysicsError(f"a tolerance of {tolerance:g} makes no sense", mend="use one between 0 and 1, such as 1e-8")
+
+
+def _timed(spectrum: Spectrum, seconds: float) -> Spectrum:
+    return Spectrum(**{**spectrum.__dict__, "seconds": seconds})
+
+
+def _elements(
+    model: Model, count: int | None, near: float | None, tolerance: float, stop: Callable[[], bool], tell: Callable[[str], None]
+) -> Spectrum:
+    """Solve an operator of second order on spectral elements."""
+    ready = setting(problem_of(model))
+    bound = bound_levels(ready) if math.isfinite(ready.threshold) else None
+    finite = math.isfinite(ready.threshold) and bound is not None
+    wanted = count or (min(USUAL, bound) if bound is not None else USUAL)
+    true = min(wanted, bound) if bound is not None else wanted
+    notes = list(model.warnings)
+    if near is not None and not (finite and bound == 0):
+        first, true, energy = _nearest(ready, near * ready.problem.sign, wanted, bound)
+    else:
+        first, energy = 0, ready.energy(true + 1.5) if true else ready.threshold
+    request = Request(first, first + true - 1, tolerance, stop, tell)
+    refined = refine(ready, request, energy, None) if true else None
+    boxes = wanted - true if near is None else 0
+    if boxes > 0:
+        notes.append(f"{boxes} of the levels lie in the continuum: kind box, their place means nothing")
+        refined = _with_boxes(ready, request, refined, wanted)
+    if finite and not bound:
+        notes.append("no level is bound: the spectrum is a continuum from the threshold on")
+    if refined is None:
+        return _nothing(ready, tolerance, notes)
+    return _spectrum(ready, refined, first, bound, tolerance, notes)
+
+
+def _nearest(ready: Setting, near: float, wanted: int, bound: int | None) -> tuple[int, int, float]:
+    """Return the number of the first of the levels nearest to an energy, how many, and an energy above them all."""
+    if near >= ready.threshold:
+        raise PhysicsError("that energy lies in the continuum", mend=f"look below {ready.threshold:.6g}")
+    guess = max(0.0, float(semiclassical_count(ready.look, np.array([near]), ready.extra)[0]))
+    margin = wanted + 3 + 0.02 * guess
+    top = max(ready.energy(guess + margin), near)
+    top, _, condensed = first_mesh(ready, Request(0, 0, 1e-8, lambda: False, lambda _: None), top, None)
+    below = int(count_below(condensed, np.array([near - ready.floor]))[0])
+    most = int(count_below(condensed, np.array([top - ready.floor]))[0])
+    first = max(0, below - wanted)
+    last = min(below + wanted, most) - 1
+    if bound is not None:
+        last = min(last, bound - 1)
+    if last < first:
+        first = last = max(0, most - 1)
+    return first, last - first + 1, top
+
+
+def _with_boxes(ready: Setting, request: Request, refined: Refined | None, wanted: int) -> Refined:
+    """Return levels 0 ... wanted - 1 on one mesh, the span being that of the bound ones or the reach of the potential."""
+    span = refined.span if refined is not None else _reach(ready)
+    energy = ready.energy(wanted + 1.5, span)
+    whole = Request(0, wanted - 1, request.tolerance, request.should_stop, request.progress)
+    return refine(ready, whole, energy, span)
+
+
+def _reach(ready: Setting) -> Span:
+    """Return a span that holds all of the potential that differs from its limits, with as much room again."""
+    look = ready.look
+    deviation = np.abs(look.potential - ready.threshold)
+    near = deviation > 1e-3 * float(np.median(deviation[deviation > 0])) if (deviation > 0).any() else deviation == 0
+    finite = np.isfinite(look.potential) & near
+    marks = np.concatenate([ready.problem.edges, ready.problem.centres])
+    x = look.x[finite & (np.abs(look.x) < 1e6 * max(1.0, np.abs(marks).max(initial=1.0)))]
+    left, right = float(min(x.min(initial=-1), marks.min(initial=-1))), float(max(x.max(initial=1), marks.max(initial=1)))
+    width = right - left
+    base = span_at(ready, float(np.nanmax(np.where(np.isfinite(look.potential), look.potential, np.nan))) + 1, (1, 1))
+    open_left, open_right = ready.problem.left_end == "open", ready.problem.right_end == "open"
+    edges = (base.left_edge, base.right_edge) if base is not None else (Edge(True), Edge(True))
+    return Span(
+        left - width if open_left else ready.problem.left, right + width if open_right else ready.problem.right, edges[0], edges[1]
+    )
+
+
+def _nothing(ready: Setting, tolerance: float, notes: list[str]) -> Spectrum:
+    """Return the spectrum without levels of an operator that binds nothing."""
+    sign = ready.problem.sign
+    return Spectrum(
+        (), None, 0, sign * ready.threshold, True, ready.problem.left, ready.problem.right, "spectral elements", 0, tolerance,
+        notes=tuple(notes), from_top=sign < 0,
+    )  # fmt: skip
+
+
+def _spectrum(ready: Setting, refined: Refined, first: int, bound: int | None, tolerance: float, notes: list[str]) -> Spectrum:
+    """Dress the levels: kinds, nodes, parities, the independent count."""
+    solved, problem = refined.solved, ready.problem
+    values = problem.sign * (solved.values + ready.floor)
+    nodes_known = not problem.ring
+    parity = parities(problem, solved)
+    levels = []
+    for k, value in enumerate(values):
+        index = first + k
+        boxed = bound is not None and index >= bound
+        error = None if boxed else float(refined.error[k])
+        kind = "box" if boxed else _kind(problem.bloch, error, solved, k, tolerance)
+        levels.append(Level(index, float(value), error, kind, index if nodes_known else None, parity[k]))
+    complete = _complete(ready, refined, first, len(values))
+    if problem.sign < 0:
+        notes = [*notes, "the operator has a highest level and no lowest: levels are counted from the top"]
+    if any(level.kind == "unresolved" for level in levels):
+        notes = [*notes, "some levels do not reach the tolerance: kind unresolved"]
+    mesh = solved.condensed.mesh
+    threshold = problem.sign * ready.threshold if math.isfinite(ready.threshold) else None
+    return Spectrum(
+        tuple(levels), ElementStates(solved, problem.twist), bound, threshold, complete,
+        float(mesh.places[0]), float(mesh.places[-1]), f"spectral elements, {len(mesh.places) - 1} of order {mesh.order}",
+        mesh.unknowns, tolerance, notes=tuple(notes), from_top=problem.sign < 0, values=values, vector_error=refined.vector_error,
+    )  # fmt: skip
+
+
+def _kind(band: bool, error: float | None, solved: Solved, k: int, tolerance: float) -> str:
+    """Return the kind of a level that is not a box level."""
+    scale = max(abs(float(solved.values[k])), float(solved.kinetic[k]))
+    if error is None or not error <= tolerance * scale * (1 + 1e-6) + 1e-300:
+        return "unresolved"
+    return "band" if band else "bound"
+
+
+def _complete(ready: Setting, refined: Refined, first: int, count: int) -> bool:
+    """Count again on a finer mesh, between the highest level returned and the next: the numbers must agree."""
+    condensed = refined.solved.condensed
+    mesh = condensed.mesh
+    highest = float(refined.solved.values[-1])
+    gap = max(1e-9 * abs(highest), 4 * float(refined.error[-1]) if np.isfinite(refined.error[-1]) else 0.0)
+    finer = Mesh(mesh.places, mesh.order + 2, mesh.left, mesh.right, mesh.phase)
+    again = condense(finer, grid(finer, ready.coefficients))
+    return int(count_below(again, np.array([highest + gap]))[0]) >= first + count and int(
+        count_below(again, np.array([float(refined.solved.values[0]) - gap]))[0]
+    ) <= first
+
+
+def _dense(model: Model, count: int, near: float | None, tolerance: float, stop: Callable[[], bool]) -> Spectrum:
+    """Solve an operator of higher order in a Fourier basis."""
+    if near is not None:
+        raise PhysicsError("--near is not available for operators of order above two", mend="ask for enough levels with -n")
+    found = dense_levels(model, 0, count - 1, tolerance, stop)
+    floor = min(0.0, float(found.values[0]))
+    levels = []
+    for k, (value, error) in enumerate(zip(found.values, found.error, strict=True)):
+        good = error <= tolerance * max(abs(value), abs(value - floor), 1e-300)
+        kind = ("band" if model.domain.phase is not None else "bound") if good else "unresolved"
+        levels.append(Level(k, float(value), float(error), kind))
+    notes = (*model.warnings, *(["some levels do not reach the tolerance: kind unresolved"] if any(v.kind == "unresolved" for v in levels) else []))
+    return Spectrum(
+        tuple(levels), found.states, None, None, found.agree, found.box.left, found.box.right, f"Fourier basis, {found.box.points} waves",
+        found.box.points, tolerance, notes=notes, values=found.values,
+    )  # fmt: skip
+
+
+def _running(model: Model, count: int, near: float | None, tolerance: float) -> Spectrum:
+    """Solve an operator of first order on a ring in closed form."""
+    found = running_levels(model, count, near)
+    kind = "band" if model.domain.phase is not None else "bound"
+    levels = tuple(
+        Level(int(n), float(v), float(e), kind) for n, v, e in zip(found.numbers, found.values, found.error, strict=True)
+    )
+    return Spectrum(
+        levels, found.states, None, None, True, model.domain.left, model.domain.right, "closed form", count, tolerance,
+        notes=model.warnings, values=found.values,
+    )  # fmt: skip

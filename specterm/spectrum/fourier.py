@@ -1,0 +1,214 @@
+"""Levels of operators of higher order than two, where everything is smooth: a Fourier basis on a ring or on a wide box.
+
+Differentiation is exact in the basis; the box and the number of points follow from where the symbol h(x, k), the operator with d/dx
+replaced by i k, lies below the energy sought (Boyd, Chebyshev and Fourier Spectral Methods, 2nd ed. 2001, chapter 17).
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.errors import PhysicsError, WorkStopped
+from specterm.model import Form, Model
+
+Array = NDArray[np.float64]
+Complex = NDArray[np.complex128]
+
+MOST_POINTS = 3001
+EPS = float(np.finfo(float).eps)
+
+
+@dataclass(frozen=True)
+class FourierStates:
+    """States as coefficients (waves, states) of exp(i k x)/sqrt(length) on (left, right); 0 outside unless it is a ring."""
+
+    waves: Array
+    coefficients: Complex
+    left: float
+    right: float
+
+    @property
+    def places(self) -> Array:
+        """Return ascending places between which the states are smooth and hold few waves."""
+        return np.linspace(self.left, self.right, max(2, len(self.waves) // 4))
+
+    @property
+    def count(self) -> int:
+        """Return the number of states."""
+        return self.coefficients.shape[1]
+
+    def evaluate(self, x: Array, derivative: int = 0) -> Complex:
+        """Return psi or d psi/dx of every state at the places x: shape (states, len(x))."""
+        x = np.asarray(x, dtype=float)
+        waves = np.exp(1j * np.outer(x - self.left, self.waves)) / math.sqrt(self.right - self.left)
+        if derivative:
+            waves = waves * (1j * self.waves) ** derivative
+        psi = (waves @ self.coefficients).T
+        return np.where((x >= self.left) & (x <= self.right), psi, 0)
+
+
+@dataclass(frozen=True)
+class Box:
+    """The interval, the number of points (odd) and the Bloch phase in radians."""
+
+    left: float
+    right: float
+    points: int
+    phase: float = 0.0
+
+
+@dataclass(frozen=True)
+class DenseLevels:
+    """Values and errors (levels,), the states, and the box they were computed in; `agree` says that two boxes count alike."""
+
+    values: Array
+    error: Array
+    states: FourierStates
+    box: Box
+    agree: bool
+
+
+def dense_levels(model: Model, first: int, last: int, tolerance: float, should_stop: Callable[[], bool]) -> DenseLevels:
+    """Return levels first ... last of the model's operator, from the bottom; PhysicsError where there is no lowest one."""
+    form = model.operator.form()
+    box = _ring_box(model, last) if model.domain.is_ring else _open_box(model, form, last)
+    before = _solve(form, box, last)
+    for _ in range(6):
+        if should_stop():
+            raise WorkStopped("stopped")
+        wider = _more(box, model.domain.is_ring)
+        if wider.points > MOST_POINTS:
+            break
+        after = _solve(form, wider, last)
+        drift = np.abs(after[0][first : last + 1] - before[0][first : last + 1])
+        noise = 8 * EPS * np.abs(after[2]).max()
+        scale = np.abs(after[0][first : last + 1] - min(after[3], after[0][0] - abs(after[0][0]) * 1e-3))
+        box, before = wider, after
+        if (drift <= np.maximum(1e-2 * tolerance * scale, 4 * noise)).all():
+            break
+    values = before[0][first : last + 1]
+    states = FourierStates(_waves(box), _phased(before[1][:, first : last + 1], box), box.left, box.right)
+    top = values[-1] + 0.5 * (before[0][last + 1] - values[-1])
+    agree = int((_solve(form, _more(box, model.domain.is_ring), last, vectors=False)[0] < top).sum()) == last + 1
+    return DenseLevels(values, 2 * drift + noise, states, box, agree)
+
+
+def _more(box: Box, ring: bool) -> Box:
+    """Return a box with more points, and on an open line a wider one."""
+    points = int(box.points * (1.35 if ring else 1.6)) // 2 * 2 + 1
+    middle, half = (box.left + box.right) / 2, (box.right - box.left) / 2 * (1.0 if ring else 1.18)
+    return replace(box, left=box.left if ring else middle - half, right=box.right if ring else middle + half, points=points)
+
+
+def _waves(box: Box) -> Array:
+    """Return the wave numbers of the basis, shape (points,)."""
+    numbers = np.arange(box.points) - box.points // 2
+    waves: Array = (2 * math.pi * numbers + box.phase) / (box.right - box.left)
+    return waves
+
+
+def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> tuple[Array, Complex, Array, float]:
+    """Return all values, vectors in the wave basis, values of largest size, and the lowest value of the potential part."""
+    n = box.points
+    x = box.left + (box.right - box.left) * np.arange(n) / n
+    waves = _waves(box)
+    to_places = np.exp(1j * np.outer(x - box.left, waves)) / math.sqrt(n)
+    matrix = np.zeros((n, n), dtype=complex)
+    floor = 0.0
+    for (j, k), coefficient in form.terms:
+        values = coefficient(x)
+        if not np.isfinite(values).all():
+            raise PhysicsError(f"the operator has no finite value at {x[~np.isfinite(values)][0]:.6g}", mend="narrow the domain")
+        inner = (to_places.conj().T * values) @ to_places
+        matrix += np.conj((1j * waves) ** j)[:, None] * inner * (1j * waves) ** k
+        floor += float(np.min(values.real)) if j == k == 0 else 0.0
+    matrix = (matrix + matrix.conj().T) / 2
+    if not vectors:
+        return np.linalg.eigvalsh(matrix), matrix[:0], np.zeros(1), floor
+    values, states = np.linalg.eigh(matrix)
+    if last + 1 >= len(values):
+        raise PhysicsError("more levels are asked for than the basis holds", mend="ask for fewer levels")
+    return values, states, values[-1:], floor
+
+
+def _phased(states: Complex, box: Box) -> Complex:
+    """Return the states with phases that make them real where they can be, positive on the first lobe from the left."""
+    x = np.linspace(box.left, box.right, 4 * box.points)
+    psi = np.exp(1j * np.outer(x - box.left, _waves(box))) @ states
+    size = np.abs(psi)
+    largest = psi[np.argmax(size, axis=0), np.arange(psi.shape[1])]
+    psi = psi * np.abs(largest) / largest
+    first = np.argmax(size > 1e-4 * size.max(axis=0), axis=0)
+    sign = np.sign(psi[first, np.arange(psi.shape[1])].real)
+    return states * (np.abs(largest) / largest) * np.where(sign == 0, 1, sign)
+
+
+def _ring_box(model: Model, last: int) -> Box:
+    """Return the first box of a ring: some points for each level and for the coefficients."""
+    domain = model.domain
+    return Box(domain.left, domain.right, 2 * (last + 24) + 1, 2 * math.pi * (domain.phase or 0.0))
+
+
+def _open_box(model: Model, form: Form, last: int) -> Box:
+    """Return a box on the open line that holds the region where the symbol is below the energy of level `last`, with a margin."""
+    domain = model.domain
+    if domain.left_end != "open" or domain.right_end != "open":
+        raise PhysicsError(
+            "operators of higher order than two are available on the open line and on rings only: psi = 0 alone does not fix them at a wall",
+            mend="use x in (-inf, inf) or x in ring(a, b)",
+        )
+    marks = np.unique(np.concatenate([c.centres(domain.left, domain.right) for _, c in form.terms] or [np.zeros(1)]))
+    middle = float(np.median(marks)) if len(marks) else 0.0
+    spread = float(np.ptp(marks)) if len(marks) else 0.0
+    out = np.geomspace(1e-12 * max(spread, 1e-12 * abs(middle), 1e-18), 1e18, 400)
+    x = np.concatenate([middle - out[::-1], middle + out])
+    waves = np.concatenate([-np.geomspace(1e-14, 1e18, 260)[::-1], np.geomspace(1e-14, 1e18, 260)])
+    with np.errstate(all="ignore"):
+        symbol = _symbol(form, x, waves)
+    symbol = np.where(np.isnan(symbol), np.inf, symbol)
+    _refuse_falling(symbol)
+    energy = _energy(symbol, x, waves, last + 2.5)
+    inside = symbol <= energy
+    rows, columns = np.flatnonzero(inside.any(axis=1)), np.flatnonzero(inside.any(axis=0))
+    if rows[0] == 0 or rows[-1] == len(x) - 1:
+        raise PhysicsError(
+            "the operator has a continuous spectrum, which for orders above two is not available yet", mend="use a confining potential"
+        )
+    left, right = x[rows[0] - 1], x[rows[-1] + 1]
+    reach = np.abs(waves[columns]).max()
+    width = right - left
+    pad = 0.25 * width + 6 / reach
+    reach = 1.5 * reach + 6 / width
+    points = int((width + 2 * pad) * reach / math.pi) // 2 * 2 + 25
+    if points > MOST_POINTS:
+        raise PhysicsError(f"this needs {points} waves, more than the {MOST_POINTS} allowed", mend="ask for fewer levels")
+    return Box(left - pad, right + pad, points)
+
+
+def _symbol(form: Form, x: Array, waves: Array) -> Array:
+    """Return the real part of the symbol, shape (places, waves)."""
+    total = np.zeros((len(x), len(waves)), dtype=complex)
+    for (j, k), coefficient in form.terms:
+        total += coefficient(x)[:, None] * (np.conj((1j * waves) ** j) * (1j * waves) ** k)
+    return total.real
+
+
+def _refuse_falling(symbol: Array) -> None:
+    """Raise PhysicsError where the symbol is lowest at the border of the sample: there is no lowest level."""
+    border = min(symbol[0].min(), symbol[-1].min(), symbol[:, 0].min(), symbol[:, -1].min())
+    if border < 0 and border < -1e6 * (1 + abs(float(np.median(symbol[len(symbol) // 2])))):
+        raise PhysicsError("the operator is not bounded below and has no lowest level", mend="check the signs of the highest powers")
+
+
+def _energy(symbol: Array, x: Array, waves: Array, count: float) -> float:
+    """Return an energy below which the symbol covers 2 pi times `count` of the (x, k) plane."""
+    area = np.gradient(x)[:, None] * np.gradient(waves)[None, :] / (2 * math.pi)
+    order = np.argsort(symbol, axis=None)
+    covered = np.cumsum(area.ravel()[order])
+    place = int(np.searchsorted(covered, count))
+    return float(symbol.ravel()[order][min(place, len(order) - 1)])

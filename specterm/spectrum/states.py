@@ -1,0 +1,112 @@
+"""Eigenstates as functions: values and slopes anywhere, and on the engine's own points of integration."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from functools import cached_property
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.discrete.mesh import Mesh
+from specterm.discrete.problem import Coefficient
+from specterm.discrete.quadrature import gauss_legendre
+from specterm.discrete.reference import functions
+from specterm.spectrum.vectors import Solved
+
+Array = NDArray[np.float64]
+Values = NDArray[Any]
+
+
+@dataclass(frozen=True)
+class ElementStates:
+    """Eigenstates on a mesh of elements; `twist` is the slope of the phase put back into them (None: they are real, or Bloch states)."""
+
+    solved: Solved
+    twist: Coefficient | None
+
+    @property
+    def mesh(self) -> Mesh:
+        """Return the mesh."""
+        return self.solved.condensed.mesh
+
+    @property
+    def places(self) -> Array:
+        """Return ascending places between which the states are smooth."""
+        return self.mesh.places
+
+    @property
+    def count(self) -> int:
+        """Return the number of states."""
+        return self.solved.coefficients.shape[2]
+
+    def evaluate(self, x: Array, derivative: int = 0) -> Values:
+        """Return psi (derivative 0) or d psi/dx (1) of every state at the places x: shape (states, len(x)); 0 outside the mesh."""
+        x = np.asarray(x, dtype=float)
+        places = self.places
+        element = np.clip(np.searchsorted(places, x, side="right") - 1, 0, len(places) - 2)
+        inside = (x >= places[0]) & (x <= places[-1])
+        at = np.clip(2 * (x - places[element]) / self.mesh.lengths[element] - 1, -1, 1)
+        order = self.mesh.order
+        values, slopes = functions(order, at)
+        factor, growth = self._factor(x, element)
+        taken = self.solved.coefficients[element]
+        psi = np.einsum("xf,xfn->nx", values[:, : order + 1], taken) * factor
+        if derivative == 0 and self.twist is None:
+            return np.where(inside, psi * self._signs[:, None], 0)
+        slope = np.einsum("xf,xfn->nx", slopes[:, : order + 1] * (2 / self.mesh.lengths[element])[:, None], taken) * factor + growth * psi
+        if self.twist is not None:
+            turn = np.exp(1j * self._angle(x, element))
+            psi, slope = psi * turn, (slope + 1j * self.twist(x) * psi) * turn
+        return np.where(inside, (slope if derivative else psi) * self._signs[:, None], 0)
+
+    def _factor(self, x: Array, element: NDArray[np.int64]) -> tuple[Array, Array]:
+        """Return the power taken out of psi at each place, and its logarithmic derivative."""
+        factor, growth = np.ones_like(x), np.zeros_like(x)
+        lengths = self.mesh.lengths
+        for end, number, place, sign in (
+            (self.mesh.left, 0, self.places[0], 1.0),
+            (self.mesh.right, len(lengths) - 1, self.places[-1], -1.0),
+        ):
+            if end.power is not None:
+                here = element == number
+                d = np.maximum(np.abs(x[here] - place), np.finfo(float).tiny)
+                factor[here] = (d / lengths[number]) ** end.power
+                growth[here] = sign * end.power / d
+        return factor, growth
+
+    @cached_property
+    def _angles(self) -> Array:
+        """The phase at the left end of each element, from the left end of the mesh."""
+        twist = self.twist
+        if twist is None:
+            return np.zeros(len(self.places) - 1)
+        t, w = gauss_legendre(20)
+        half = self.mesh.lengths[:, None] / 2
+        pieces = (half * w * twist((self.places[:-1, None] + half * (1 + t)).ravel()).reshape(len(half), -1)).sum(axis=1)
+        angles: Array = np.concatenate([[0.0], np.cumsum(pieces)[:-1]])
+        middle = np.interp((self.places[0] + self.places[-1]) / 2, self.places[:-1], angles)
+        return angles - middle
+
+    def _angle(self, x: Array, element: NDArray[np.int64]) -> Array:
+        """Return the phase at the places x."""
+        if self.twist is None:
+            return np.zeros_like(x)
+        t, w = gauss_legendre(20)
+        start = self.places[element]
+        half = (x - start)[:, None] / 2
+        parts = half * w * self.twist((start[:, None] + half * (1 + t)).ravel()).reshape(len(x), -1)
+        angle: Array = self._angles[element] + parts.sum(axis=1)
+        return angle
+
+    @cached_property
+    def _signs(self) -> Values:
+        """Factors of modulus one that make each state positive on its first lobe from the left."""
+        here = self.solved.condensed.grid
+        n = self.mesh.order + 1
+        psi = ((here.values[..., :n] @ self.solved.coefficients) * here.factor[:, :, None]).reshape(-1, self.count)
+        size = np.abs(psi)
+        first = np.argmax(size > 1e-6 * size.max(axis=0), axis=0)
+        lead = psi[first, np.arange(self.count)]
+        return np.abs(lead) / lead
