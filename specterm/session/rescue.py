@@ -29,14 +29,14 @@ def place(path: Path | None) -> Path:
 
 
 def keep(document: Document) -> Path | None:
-    """Write the unsaved text, or remove the rescue file when all is saved; return the file written.
+    """Write the text if it is unsaved; return the file written, or None.
 
-    Never raises: a full disk must not stop the work; None then.
+    What was kept earlier stays when there is nothing unsaved now: it may not have been offered yet. Never raises: a full disk
+    must not stop the work.
     """
-    target = place(document.path)
     if not document.changed:
-        drop(document.path)
         return None
+    target = place(document.path)
     try:
         target.parent.mkdir(mode=0o700, parents=True, exist_ok=True)
         write_text(target, document.text)

@@ -166,4 +166,5 @@ class Files:
                 rescue.drop(self.app.document.path)
 
         words = f"Unsaved text of {self.app.document.name} was kept earlier."
-        self.app.push_screen(Question(words, {"r": "take that text", "d": "drop it", "n": "decide later"}), answered)
+        answers = {"r": "take that text", "d": "drop it", "n": "not now; it goes with the next edit"}
+        self.app.push_screen(Question(words, answers), answered)

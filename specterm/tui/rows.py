@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from specterm.errors import printable
 from specterm.session.document import Document
+from specterm.tui.layout import WIDE
 from specterm.tui.look import Look
 from specterm.tui.solving import Outcome, Weighed
 from specterm.views.cells import MARKS, Row, Rows, cut, fit_row, plain, width_of
@@ -15,8 +16,6 @@ from specterm.views.level_table import table, text_table
 from specterm.views.numbers import short, with_unit
 from specterm.views.scene import Prepared, scene
 from specterm.views.status import MomentsText, join, moment_parts, state_line, trust_line
-
-WIDE = 100
 
 
 @dataclass(frozen=True)

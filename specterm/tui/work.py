@@ -54,6 +54,7 @@ class Work:
         self.app, self.engine = app, engine
         self.number = 0
         self.busy = False
+        self._kept = False
         self._asked: set[tuple[int, int | str]] = set()
 
     def solve(self, request: Request, document: Document) -> None:
@@ -89,13 +90,21 @@ class Work:
     def _solve(self, request: Request, document: Document) -> None:
         """Do the work of a request; runs in a thread."""
         worker = get_current_worker()
-        rescue.keep(document)
+        self._keep(document)
 
         def should_stop() -> bool:
             return worker.is_cancelled or request.number != self.number
 
         outcome = compute(self.engine, request, should_stop, self._progress(request.number))
         self.app.post_message(Solved(outcome))
+
+    def _keep(self, document: Document) -> None:
+        """Keep unsaved text safe, and drop what this session kept once there is none."""
+        if document.changed:
+            self._kept = rescue.keep(document) is not None or self._kept
+        elif self._kept:
+            rescue.drop(document.path)
+            self._kept = False
 
     def _progress(self, number: int) -> Callable[[str], None]:
         """Return what reports progress, at most twice a second."""

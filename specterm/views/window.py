@@ -11,18 +11,21 @@ Floats = NDArray[np.float64]
 Window = tuple[float, float]
 _TAIL = 5e-4
 _WIDEST = 8.0
+_PEAKS = 8
 
 
 def extents(density: Callable[[Floats], Floats], left: float, right: float) -> Floats:
     """Return for every state the interval that holds all but 0.1 % of it, shape (levels, 2); NaN where it cannot be told.
 
     `density` maps places (n,) to |psi|^2, shape (levels, n). The places reach over many scales around zero, both ends and the
-    highest point of every state, so that a state far smaller than the domain computed on is found.
+    highest points of the states (8 of them at most), so that a state far smaller than the domain computed on is found.
     """
     if not (np.isfinite(left) and np.isfinite(right) and left < right):
         return np.full((len(density(np.array([0.0]))), 2), np.nan)
     first = _places(left, right, np.array([left, right, 0.0, (left + right) / 2]))
-    peaks = first[np.argmax(np.nan_to_num(density(first)), axis=1)] if len(first) else np.empty(0)
+    peaks = np.unique(first[np.argmax(np.nan_to_num(density(first)), axis=1)])
+    if len(peaks) > _PEAKS:
+        peaks = peaks[np.linspace(0, len(peaks) - 1, _PEAKS).astype(int)]
     places = np.union1d(first, _places(left, right, peaks))
     return np.array([_holding(places, row) for row in np.nan_to_num(density(places), posinf=0.0)]).reshape(-1, 2)
 

@@ -82,7 +82,7 @@ async def settled(pilot):
     app = pilot.app
     for _ in range(400):
         await pilot.pause()
-        if app._pause is None and not app.work.busy and not app._drawing and all(w.is_finished for w in app.workers):
+        if app._pause is None and not app.work.busy and not app.painter.waiting and all(w.is_finished for w in app.workers):
             break
         await asyncio.sleep(0.01)
     await pilot.pause()

@@ -149,6 +149,7 @@ async def test_rescued_text_is_offered(sheet):
     async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
         await settled(pilot)
         assert "was kept earlier" in "\n".join(lines(pilot))
+        assert rescue.place(sheet).read_text() == "# rescued\n"
         await pressed(pilot, "r")
         assert pilot.app.document.text == "# rescued\n"
         assert pilot.app.document.changed

@@ -1,0 +1,19 @@
+"""Where the panes stand: sheet over table beside the figure in a wide screen, table beside figure or sheet in a narrow one."""
+
+from __future__ import annotations
+
+WIDE = 100
+"""From this width on the sheet has a place of its own."""
+
+CSS = """
+Screen { layers: base; background: ansi_default; }
+#main { height: 1fr; width: 100%; }
+.wide #main { layout: grid; grid-size: 2 2; grid-columns: 2fr 3fr; grid-rows: 1fr 1fr; grid-gutter: 0 1; }
+.wide #figure { row-span: 2; }
+.narrow #main { layout: horizontal; }
+.narrow #levels { dock: left; width: 36; max-width: 50%; margin-right: 1; }
+.narrow #sheet { display: none; }
+.narrow.typing #sheet { display: block; }
+.narrow.typing #figure { display: none; }
+#figure, #levels { height: 1fr; width: 1fr; }
+"""

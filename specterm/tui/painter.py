@@ -1,0 +1,116 @@
+"""Draws the panes from what is shown, each only when what it shows has changed."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
+from textual.geometry import Size
+
+from specterm.errors import SpectermError, position, printable
+from specterm.tui.cell_pane import CellPane
+from specterm.tui.keys import KEYS, TYPING, bottom
+from specterm.tui.rows import (
+    Shown,
+    bottom_row,
+    chosen_row,
+    drawn_safely,
+    figure_rows,
+    heading_row,
+    level_rows,
+    message_row,
+    trusted_row,
+)
+from specterm.tui.solving import Weighed
+from specterm.views.status import MomentsText
+
+if TYPE_CHECKING:
+    from specterm.tui.app import Specterm
+
+_LINES = (("message", message_row), ("chosen", chosen_row), ("trust", trusted_row))
+_LARGE = (("figure", figure_rows), ("levels", level_rows))
+
+
+class Painter:
+    """The one place where an app is drawn, and where drawing can be paced."""
+
+    def __init__(self, app: Specterm) -> None:
+        """Draw `app`."""
+        self.app = app
+        self._waiting = False
+        self._drawn: dict[str, tuple[object, ...]] = {}
+
+    @property
+    def waiting(self) -> bool:
+        """Whether there is something still to be drawn."""
+        return self._waiting
+
+    def ask(self) -> None:
+        """Ask for the panes to be drawn, once for all keys and messages that are waiting."""
+        if not self._waiting:
+            self._waiting = True
+            self.app.call_after_refresh(self._draw)
+
+    def _draw(self) -> None:
+        """Draw every pane from what is shown now."""
+        self._waiting = False
+        if not self.app.is_running or not self.app.screen_stack:
+            return
+        shown = self.complete()
+        with self.app.batch_update():
+            for name, draw in _LARGE:
+                pane = self._pane(name)
+                of = (shown.look, shown.outcome, shown.weighed, pane.size)
+                if _visible(pane) and self._drawn.get(name) != of:
+                    self._drawn[name] = of
+                    pane.show(drawn_safely(draw, shown, *pane.size))
+            width = self.app.size.width
+            for name, line in _LINES:
+                self._pane(name).show((line(shown, width),))
+            typing = self.app.typing
+            self._pane("bottom").show((bottom_row(bottom(TYPING if typing else KEYS), width),))
+            heading = self.app.sheet.heading
+            row = heading_row(self.app.document, heading.size.width, typing=typing, glyphs=shown.look.glyphs)
+            heading.show((row,))
+
+    def _pane(self, name: str) -> CellPane:
+        """Return the pane called `name`."""
+        return self.app.screen_stack[0].query_one(f"#{name}", CellPane)
+
+    def figure_size(self) -> Size:
+        """Return the size of the figure."""
+        return self._pane("figure").size
+
+    def complete(self) -> Shown:
+        """Return what is shown with the weights and moments that have arrived; ask for those that have not."""
+        app, shown = self.app, self.app.shown
+        look, outcome = shown.look, shown.outcome
+        if outcome is not None and outcome.spectrum is not None and outcome.spectrum.levels:
+            if look.state and look.state not in app.found:
+                app.work.look(outcome, look.state)
+            if look.moments and look.chosen not in app.found:
+                app.work.look(outcome, look.chosen)
+        weighed = app.found.get(look.state) if look.state else None
+        moments = app.found.get(look.chosen)
+        shown = replace(
+            shown,
+            weighed=weighed if isinstance(weighed, Weighed) else None,
+            moments=moments if isinstance(moments, MomentsText) else None,
+        )
+        if app.error is not None and not shown.message and not app.sheet.display:
+            return replace(shown, message=printable(_sentence(app.error, app.document.text)), message_style="warn")
+        return shown
+
+
+def _visible(pane: CellPane) -> bool:
+    """Return whether a pane has room on the screen."""
+    return bool(pane.display and pane.size.width and pane.size.height)
+
+
+def _sentence(error: SpectermError, text: str) -> str:
+    """Return an error in one line."""
+    where = ""
+    if error.span is not None:
+        row, column = position(text, error.span.start)
+        where = f"line {row}, column {column}: "
+    return f"{where}{error.message}" + (f"; {error.mend}" if error.mend else "")
