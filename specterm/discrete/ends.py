@@ -79,6 +79,26 @@ def near_end(problem: Problem, side: int) -> NearEnd:
     return NearEnd("power", power, alpha)
 
 
+def refuse_inner_poles(problem: Problem) -> None:
+    """Raise PhysicsError where V grows as 1/d or faster towards an edge or centre inside the domain: what happens there is not fixed."""
+    marks = np.unique(np.concatenate([problem.edges[:400], problem.centres[:400]]))
+    marks = marks[(marks > problem.left) & (marks < problem.right)]
+    if len(marks) == 0:
+        return
+    room = np.minimum.reduce([np.diff(marks, prepend=-np.inf), np.diff(marks, append=np.inf)])
+    room = np.where(np.isfinite(room), room, np.maximum(1.0, np.abs(marks)))
+    d = room * np.array([[2.0**-12], [2.0**-18]])
+    for sign in (-1.0, 1.0):
+        with np.errstate(all="ignore"):
+            values = np.abs(problem.potential((marks + sign * d).ravel()).reshape(d.shape))
+            growth = np.log2(values[1] / values[0]) / 6
+        pole = np.isfinite(growth) & (growth > 0.9)
+        if pole.any():
+            raise PhysicsError(
+                f"the potential is singular at {marks[pole][0]:.9g}, inside the domain", mend="end the domain there: the two sides do not mix"
+            )
+
+
 def _room(problem: Problem, end: float, side: int) -> float:
     """Return the distance from an end to the next edge or centre inwards, or to the other end."""
     marks = np.concatenate([problem.edges, problem.centres, [problem.left, problem.right]])

@@ -61,8 +61,10 @@ def _first_places(problem: Problem, look: Scan, span: Span, energy: float) -> Ar
     if len(marks) == 2:
         pieces = np.maximum(pieces, 2)
     if pieces.sum() > MOST_ELEMENTS:
+        worst = x[int(np.argmax(np.diff(share)))]
         raise PhysicsError(
-            f"this needs about {pieces.sum():.2g} elements, more than the {MOST_ELEMENTS} allowed", mend="ask for fewer or lower levels"
+            f"this needs about {pieces.sum():.2g} elements, more than the {MOST_ELEMENTS} allowed, most of them near {worst:.6g}",
+            mend="ask for fewer or lower levels; if the potential is singular there, end the domain there",
         )
     if pieces.sum() == len(marks) - 1:
         return marks
@@ -136,10 +138,9 @@ def unresolved(mesh: Mesh, here: Grid, coefficients: Coefficients, energy: float
         decay = np.sqrt(np.maximum(potential, 0).min(axis=1) / stiffness.max(axis=1)) * mesh.lengths
         rough |= plain & ((phase > 1.3 * ALLOWED) | (decay > 2 * FORBIDDEN))
     if not np.isfinite(size).all():
-        place = here.x[~np.isfinite(size)][0]
-        bad = place[~np.isfinite(here.potential[~np.isfinite(size)][0])][:1]
+        rows = here.x[~np.isfinite(here.potential / here.mass) | ~np.isfinite(here.kinetic / here.mass)]
         raise PhysicsError(
-            f"the potential is not a finite number at {(bad if len(bad) else place)[0]:.9g}",
+            f"the potential is not a finite number at {rows[0] if rows.size else here.x[~np.isfinite(size)].flat[0]:.9g}",
             mend="narrow the domain: where the potential is infinite, say so with a wall",
         )
     return rough

@@ -24,11 +24,20 @@ NOISE = 12 * EPS
 
 @dataclass(frozen=True)
 class Accuracy:
-    """Parts of the error of each level: `share` (elements, levels) by element, `cut` (2, levels) by end, `noise` (levels,)."""
+    """Parts of the error of each level: `residual` and `unseen` (elements, levels) by element, `cut` (2, levels) by end, `noise` (levels,).
 
-    share: Array
+    `residual` and `cut` go with the square of the error of the state, `unseen` and `noise` with the coefficients.
+    """
+
+    residual: Array
+    unseen: Array
     cut: Array
     noise: Array
+
+    @property
+    def share(self) -> Array:
+        """Return what each element adds to the error of each level, shape (elements, levels)."""
+        return self.residual + self.unseen
 
     @property
     def total(self) -> Array:
@@ -38,9 +47,20 @@ class Accuracy:
 
 
 def accuracy(ready: Setting, solved: Solved) -> Accuracy:
-    """Estimate the error of every level solved."""
-    share = residual_share(solved.condensed, solved.coefficients, solved.values) + _unseen_share(ready, solved)
-    return Accuracy(share, _cut(ready, solved), _noise(ready, solved))
+    """Estimate the error of every level solved, in blocks of levels to bound the memory."""
+    blocks = [_block(ready, _part(solved, slice(k, k + 64))) for k in range(0, len(solved.values), 64)]
+    joined = (np.concatenate([getattr(b, name) for b in blocks], axis=-1) for name in ("residual", "unseen", "cut", "noise"))
+    return Accuracy(*joined)
+
+
+def _part(solved: Solved, some: slice) -> Solved:
+    """Return some of the levels."""
+    return Solved(solved.condensed, solved.first, solved.values[some], solved.coefficients[:, :, some], solved.kinetic[some])
+
+
+def _block(ready: Setting, solved: Solved) -> Accuracy:
+    residual = residual_share(solved.condensed, solved.coefficients, solved.values)
+    return Accuracy(residual, _unseen_share(ready, solved), _cut(ready, solved), _noise(ready, solved))
 
 
 def _unseen_share(ready: Setting, solved: Solved) -> Array:

@@ -51,7 +51,7 @@ def _reach(ready: Setting, end: FarEnd, side: int) -> float:
     marks = np.concatenate([ready.problem.edges, ready.problem.centres])
     marks = marks[np.isfinite(marks)]
     outer = (marks.min() if side == 0 else marks.max()) if len(marks) else 0.0
-    width = max(float(np.ptp(marks)) if len(marks) else 0.0, abs(end.reach - outer), 1e-300)
+    width = max(float(np.ptp(marks)) if len(marks) else 0.0, abs(end.reach - outer)) or 1.0
     return float(min(end.reach, outer - 0.1 * width) if side == 0 else max(end.reach, outer + 0.1 * width))
 
 

@@ -182,12 +182,13 @@ def _spectrum(ready: Setting, refined: Refined, first: int, bound: int | None, t
     values = problem.sign * (solved.values + ready.floor)
     nodes_known = not problem.ring
     parity = parities(problem, solved)
+    scales = _scales(solved)
     levels = []
     for k, value in enumerate(values):
         index = first + k
         boxed = bound is not None and index >= bound
         error = None if boxed else float(refined.error[k])
-        kind = "box" if boxed else _kind(problem.bloch, error, solved, k, tolerance)
+        kind = "box" if boxed else _kind(problem.bloch, error, scales[k], tolerance)
         levels.append(Level(index, float(value), error, kind, index if nodes_known else None, parity[k]))
     complete = _complete(ready, refined, first, len(values))
     if problem.sign < 0:
@@ -203,10 +204,18 @@ def _spectrum(ready: Setting, refined: Refined, first: int, bound: int | None, t
     )  # fmt: skip
 
 
-def _kind(band: bool, error: float | None, solved: Solved, k: int, tolerance: float) -> str:
+def _scales(solved: Solved) -> Array:
+    """Return what the error of each level is judged by: its distance to the potential's minimum, or to the next level if that is larger."""
+    scale = np.maximum(np.abs(solved.values), solved.kinetic)
+    steps = np.diff(solved.values)
+    scale[:-1] = np.maximum(scale[:-1], steps)
+    scale[1:] = np.maximum(scale[1:], steps)
+    return scale
+
+
+def _kind(band: bool, error: float | None, scale: float, tolerance: float) -> str:
     """Return the kind of a level that is not a box level."""
-    scale = max(abs(float(solved.values[k])), float(solved.kinetic[k]))
-    if error is None or not error <= tolerance * scale * (1 + 1e-6) + 1e-300:
+    if error is None or not error <= tolerance * scale:
         return "unresolved"
     return "band" if band else "bound"
 

@@ -20,7 +20,8 @@ Array = NDArray[np.float64]
 Complex = NDArray[np.complex128]
 
 MOST_POINTS = 3001
-EPS = float(np.finfo(float).eps)
+NOISE = 30 * float(np.finfo(float).eps)
+"""Rounding of a Rayleigh quotient relative to its parts."""
 
 
 @dataclass(frozen=True)
@@ -86,7 +87,7 @@ def dense_levels(model: Model, first: int, last: int, tolerance: float, should_s
             break
         after = _solve(form, wider, last)
         drift = np.abs(after[0][first : last + 1] - before[0][first : last + 1])
-        noise = 8 * EPS * np.abs(after[2]).max()
+        noise = after[2][first : last + 1]
         scale = np.abs(after[0][first : last + 1] - min(after[3], after[0][0] - abs(after[0][0]) * 1e-3))
         box, before = wider, after
         if (drift <= np.maximum(1e-2 * tolerance * scale, 4 * noise)).all():
@@ -113,17 +114,21 @@ def _waves(box: Box) -> Array:
 
 
 def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> tuple[Array, Complex, Array, float]:
-    """Return all values, vectors in the wave basis, values of largest size, and the lowest value of the potential part."""
+    """Return all values, vectors in the wave basis, bounds on the rounding in each value, and the lowest value of the function part.
+
+    The values up to `last` are Rayleigh quotients taken term by term, whose rounding goes with their parts, not with the largest wave.
+    """
     n = box.points
     x = box.left + (box.right - box.left) * np.arange(n) / n
     waves = _waves(box)
     to_places = np.exp(1j * np.outer(x - box.left, waves)) / math.sqrt(n)
     matrix = np.zeros((n, n), dtype=complex)
-    floor = 0.0
+    floor, terms = 0.0, []
     for (j, k), coefficient in form.terms:
         values = coefficient(x)
         if not np.isfinite(values).all():
             raise PhysicsError(f"the operator has no finite value at {x[~np.isfinite(values)][0]:.6g}", mend="narrow the domain")
+        terms.append((values, (1j * waves) ** j, (1j * waves) ** k))
         inner = (to_places.conj().T * values) @ to_places
         matrix += np.conj((1j * waves) ** j)[:, None] * inner * (1j * waves) ** k
         floor += float(np.min(values.real)) if j == k == 0 else 0.0
@@ -133,7 +138,11 @@ def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> tuple[Ar
     values, states = np.linalg.eigh(matrix)
     if last + 1 >= len(values):
         raise PhysicsError("more levels are asked for than the basis holds", mend="ask for fewer levels")
-    return values, states, values[-1:], floor
+    some = states[:, : last + 2]
+    parts = [(to_places @ (a[:, None] * some)).conj() * (c[:, None] * (to_places @ (b[:, None] * some))) for c, a, b in terms]
+    values[: last + 2] = np.sum([part.sum(axis=0).real for part in parts], axis=0)
+    noise = NOISE * np.sum([np.abs(part).sum(axis=0) for part in parts], axis=0)
+    return values, states, noise, floor
 
 
 def _phased(states: Complex, box: Box) -> Complex:

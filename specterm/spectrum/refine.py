@@ -79,7 +79,8 @@ def _vector_error(solved: Solved, found: Accuracy) -> Array:
     gap[1:] = np.minimum(gap[1:], steps)
     gap = np.where(np.isfinite(gap), gap, np.abs(values) + np.abs(solved.kinetic))
     with np.errstate(all="ignore"):
-        off = np.sqrt(np.maximum(found.total - found.noise, 0) / gap) + found.noise / gap
+        off = np.sqrt((SAFETY * found.residual.sum(axis=0) + 2 * found.cut.sum(axis=0)) / gap)
+        off = off + (SAFETY * found.unseen.sum(axis=0) + found.noise) / gap
     return np.where(np.isfinite(off), np.minimum(off, 1.0), 1.0)
 
 

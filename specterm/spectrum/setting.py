@@ -9,7 +9,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specterm.discrete.elements import Coefficients
-from specterm.discrete.ends import FarEnd, NearEnd, far_end, near_end
+from specterm.discrete.ends import FarEnd, NearEnd, far_end, near_end, refuse_inner_poles
 from specterm.discrete.mesh import Edge
 from specterm.discrete.meshing import Span
 from specterm.discrete.problem import Problem
@@ -63,6 +63,7 @@ def setting(problem: Problem) -> Setting:
     ends: tuple[NearEnd | FarEnd | None, ...] = (None, None)
     if not problem.ring:
         ends = tuple(_end(problem, side) for side in (0, 1))
+    refuse_inner_poles(problem)
     look = scan(problem)
     extra = np.zeros(len(look.x))
     for end, place in zip(ends, (problem.left, problem.right), strict=True):

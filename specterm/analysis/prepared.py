@@ -1,0 +1,163 @@
+"""Prepared states as normalised functions."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Callable
+from dataclasses import dataclass
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.analysis.quadrature import resolved_points
+from specterm.errors import SheetError
+from specterm.language import decode, parse
+from specterm.language.catalogue import refuse
+from specterm.model import Domain, Function, Model, State, build
+from specterm.model.function import number
+from specterm.spectrum import Spectrum, solve
+
+Array = NDArray[np.float64]
+Values = NDArray[Any]
+
+LARGEST_SHEET = 1_000_000
+
+
+@dataclass(frozen=True)
+class Prepared:
+    """A prepared state: `wave` maps places (n,) to values (n,), normalised; `x` and `w` (m,) integrate it and its products with eigenstates.
+
+    `missed` is the share of the norm the rule may have missed; `cut` the share of |psi|^2 pressed against the walls of the domain, as an
+    estimate of what they cut off.
+    """
+
+    name: str
+    wave: Callable[[Array], Values]
+    x: Array
+    w: Array
+    missed: float
+    cut: float = 0.0
+
+
+def prepare(model: Model, spectrum: Spectrum, name: str, folder: Path | None = None) -> Prepared:
+    """Return the state of that name, or of a level written `level(3)`.
+
+    Raises SheetError for an unknown name, a level not computed, and a state that cannot be normalised.
+    """
+    if name in model.states:
+        state = model.states[name]
+        if state.function is not None:
+            return _of_function(model, spectrum, state, state.function)
+        return _of_levels(model, spectrum, name, state.levels, folder)
+    level = re.fullmatch(r"\s*level\(\s*(\d+)\s*\)\s*", name)
+    if level:
+        return _of_levels(model, spectrum, name.strip(), ((number(1.0), int(level[1]), None),), folder)
+    known = ", ".join(model.states) or "none"
+    raise SheetError(f"the sheet has no state `{name}`", mend=f"states of the sheet: {known}; or a level, written level(0)")
+
+
+def _of_function(model: Model, spectrum: Spectrum, state: State, function: Function) -> Prepared:
+    """Return a state given by a function of the coordinate."""
+    hull = _hull(model.domain, function, spectrum)
+    if hull is None:
+        raise refuse("state-not-normalisable", state.span, name=state.name, reason="its square has no finite integral over the domain")
+    marks = [function.edges(*hull), function.centres(*hull), _inside(spectrum.states.places if spectrum.states else np.empty(0), hull)]
+    places = np.unique(np.concatenate([np.array(hull), *marks, np.linspace(*hull, 33)]))
+    x, w, missed = resolved_points(function, places)
+    values = np.nan_to_num(function(x))
+    norm = float(np.sqrt((w * np.abs(values) ** 2).sum()))
+    if not np.isfinite(norm) or norm == 0:
+        raise refuse("state-not-normalisable", state.span, name=state.name, reason="its square has no finite integral over the domain")
+    return Prepared(state.name, lambda y: function(y) / norm, x, w, missed, _pressed(model.domain, values, x, norm))
+
+
+def _inside(places: Array, hull: tuple[float, float]) -> Array:
+    return places[(places > hull[0]) & (places < hull[1])]
+
+
+def _hull(domain: Domain, function: Function, spectrum: Spectrum) -> tuple[float, float] | None:
+    """Return an interval outside which |f|^2 holds nothing, or None where its integral does not exist."""
+    left, right = domain.left, domain.right
+    centres = function.centres(left, right)
+    middle = float(np.median(np.concatenate([centres, [np.clip(0.0, left, right)]]))) if len(centres) else float(np.clip(0.0, left, right))
+    ends = [left, right]
+    for side, sign in ((0, -1.0), (1, 1.0)):
+        if np.isfinite(ends[side]):
+            continue
+        marks = [m for m in (*centres, spectrum.left, spectrum.right) if np.isfinite(m)]
+        start = (min(marks) if side == 0 else max(marks)) if marks else middle
+        d = np.exp2(np.arange(-60.0, 340.0, 0.25)) * max(1e-30, abs(spectrum.right - spectrum.left) if spectrum.unknowns else 1.0)
+        with np.errstate(all="ignore"):
+            values = np.abs(function(start + sign * d))
+            shares = values**2 * d
+        if not np.isfinite(shares[np.isfinite(values)]).all() or np.isinf(values).any() or np.isnan(values[:400]).any():
+            return None
+        shares = np.nan_to_num(shares)
+        total = float(np.abs(function(np.linspace(spectrum.left, spectrum.right, 400))).max() ** 2 * (spectrum.right - spectrum.left))
+        total = max(total, float(shares.max()))
+        if shares[-1] > 1e-12 * total:
+            return None
+        alive = np.flatnonzero(shares > 1e-34 * total)
+        ends[side] = start + sign * float(d[min(alive[-1] + 1, len(d) - 1)] if len(alive) else d[0])
+    return ends[0], ends[1]
+
+
+def _pressed(domain: Domain, values: Values, x: Array, norm: float) -> float:
+    """Return an estimate of the share of |f|^2 that walls cut off: the density at each wall over a hundredth of the domain."""
+    if domain.is_ring:
+        return 0.0
+    share = 0.0
+    for end, place in ((domain.left, 0), (domain.right, -1)):
+        if np.isfinite(end):
+            share += float(np.abs(values[place]) ** 2 / norm**2 * 0.01 * (x[-1] - x[0]))
+    return share
+
+
+def _of_levels(
+    model: Model, spectrum: Spectrum, name: str, parts: tuple[tuple[Function, int, str | None], ...], folder: Path | None
+) -> Prepared:
+    """Return a sum of levels, of this sheet or of others, with coefficients."""
+    terms = [(coefficient, *_level(model, spectrum, index, path, folder)) for coefficient, index, path in parts]
+
+    def raw(y: Array) -> Values:
+        return np.sum([coefficient(y) * states.evaluate(y)[row] for coefficient, states, row in terms], axis=0)
+
+    grids = [states.places for _, states, _ in terms] + ([spectrum.states.places] if spectrum.states else [])
+    low, high = max(model.domain.left, min(g[0] for g in grids)), min(model.domain.right, max(g[-1] for g in grids))
+    places = np.unique(np.concatenate([_inside(g, (low, high)) for g in grids] + [np.array([low, high])]))
+    x, w, missed = resolved_points(raw, places)
+    norm = float(np.sqrt((w * np.abs(raw(x)) ** 2).sum()))
+    if norm == 0 or not np.isfinite(norm):
+        raise SheetError(f"the state `{name}` cannot be normalised: it is zero on the domain", mend="check its coefficients")
+    return Prepared(name, lambda y: raw(y) / norm, x, w, missed)
+
+
+def _level(model: Model, spectrum: Spectrum, index: int, path: str | None, folder: Path | None) -> tuple[Any, int]:
+    """Return the states a level belongs to and its row there."""
+    if path is None:
+        rows = [row for row, level in enumerate(spectrum.levels) if level.index == index]
+        if not rows:
+            raise SheetError(f"level({index}) is not among the {len(spectrum.levels)} levels computed", mend="ask for more with -n")
+        return spectrum.states, rows[0]
+    place = (folder or Path()) / path
+    other = build(parse(_text(place)), folder=place.parent)
+    if other.domain.coordinate != model.domain.coordinate or _units(other) != _units(model):
+        raise SheetError(f"{path} has another coordinate or other units than this sheet", mend="give both sheets the same")
+    found = solve(other, count=index + 1)
+    return found.states, index
+
+
+def _units(model: Model) -> tuple[str, str, str]:
+    return model.units.energy, model.units.length, model.units.mass
+
+
+def _text(place: Path) -> str:
+    """Return the text of another sheet; SheetError where it is not a readable, regular, small file."""
+    try:
+        if not place.is_file() or place.stat().st_size > LARGEST_SHEET:
+            raise SheetError(f"there is no sheet {place.name} here, or it is larger than 1 MB", mend="the path starts at the sheet's folder")
+        return decode(place.read_bytes())
+    except OSError as error:
+        raise SheetError(f"{place.name} cannot be read: {error.strerror}", mend="check the path and its permissions") from None
