@@ -1,5 +1,6 @@
 """Computations behind the screen, sizes, and the pure steps from one look to the next."""
 
+import random
 import threading
 
 import pytest
@@ -7,6 +8,7 @@ from fake import SHEET, FakeEngine, app, lines, settled
 from standin import spectrum
 
 from specterm.errors import SheetError, Span
+from specterm.tui.keys import KEYS
 from specterm.tui.look import Look, usual_glyphs
 from specterm.tui.rows import Shown, bottom_row, chosen_row, drawn_safely, figure_rows, level_rows, message_row, trusted_row
 from specterm.tui.sheet_pane import complaint, marks_of
@@ -185,3 +187,20 @@ def test_weights_of_nothing():
     outcome = compute(FakeEngine(), Request(1, "# bad"), lambda: False, lambda _: None)
     assert outcome.error.message == "unknown name 'bad'"
     assert weigh(FakeEngine(), outcome, "packet").weighing is None
+
+
+@pytest.mark.parametrize("seed", [1, 2])
+async def test_any_keys_in_any_order(seed, tmp_path, monkeypatch):
+    """Random keys and sizes, from a fixed seed, end neither the session nor its panes."""
+    monkeypatch.chdir(tmp_path)
+    chance = random.Random(seed)
+    keys = [name for key in KEYS if key.action != "leave" for name in key.keys.split(",")]
+    keys += ["tab", "left", "right", "b", "backspace", "space", "n", "delete", "ctrl+z"]
+    async with app().run_test(size=(80, 24)) as pilot:
+        for _ in range(60):
+            if chance.random() < 0.06:
+                await pilot.resize_terminal(chance.choice([1, 20, 60, 100, 140]), chance.choice([1, 5, 20, 40]))
+            await pilot.press(chance.choice(keys))
+        await settled(pilot)
+        assert pilot.app.is_running
+        assert pilot.app.shown.outcome is not None
