@@ -12,9 +12,14 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specterm.discrete.elements import Condensed
+from specterm.discrete.mesh import Mesh
 
 Array = NDArray[np.float64]
 Complex = NDArray[np.complex128]
+
+
+BLOCK = 512
+"""Energies counted at once, to bound the memory taken."""
 
 
 @dataclass(frozen=True)
@@ -29,27 +34,42 @@ class Chain:
     corner: Complex | Array | None
 
 
-def vertex_terms(condensed: Condensed, energies: Array, *, mass: bool = False) -> Array:
-    """Return the condensed element matrices at the energies: (elements, 3, energies) for left-left, right-right, left-right.
+def chain(condensed: Condensed, energies: Array) -> Chain:
+    """Return the vertex matrix at the energies."""
+    inverse, pairs = _inverse(condensed, energies), _pairs(condensed)
+    terms: Array = -(pairs @ inverse)
+    for row, (a, b) in enumerate(((0, 0), (1, 1), (0, 1))):
+        terms[:, row] += condensed.stiff[:, a, b, None] - condensed.heavy[:, a, b, None] * energies
+    return _joined(condensed.mesh, terms)
 
-    With `mass`, minus the derivative with respect to the energy instead: the condensed mass.
-    """
+
+def chain_with_mass(condensed: Condensed, energies: Array) -> tuple[Chain, Chain]:
+    """Return the vertex matrix at the energies, and minus its derivative with respect to them: the condensed mass."""
+    inverse, pairs = _inverse(condensed, energies), _pairs(condensed)
+    terms: Array = -(pairs @ inverse)
+    heavy: Array = pairs @ (inverse * inverse)
+    for row, (a, b) in enumerate(((0, 0), (1, 1), (0, 1))):
+        terms[:, row] += condensed.stiff[:, a, b, None] - condensed.heavy[:, a, b, None] * energies
+        heavy[:, row] += condensed.heavy[:, a, b, None]
+    return _joined(condensed.mesh, terms), _joined(condensed.mesh, heavy)
+
+
+def _inverse(condensed: Condensed, energies: Array) -> Array:
+    """Return 1/(pole - energy), shape (elements, bubbles, energies)."""
     gaps = condensed.poles[:, :, None] - energies
     gaps[gaps == 0] = np.finfo(float).tiny
-    inverse = 1 / gaps**2 if mass else -1 / gaps
+    inverse: Array = np.divide(1.0, gaps, out=gaps)
+    return inverse
+
+
+def _pairs(condensed: Condensed) -> Array:
+    """Return products of couplings, (elements, 3, bubbles), for left-left, right-right and left-right."""
     left, right = condensed.coupling[:, 0], condensed.coupling[:, 1]
-    pairs = np.stack([left * left, right * right, left * right], axis=1)
-    terms: Array = pairs @ inverse
-    for row, (a, b) in enumerate(((0, 0), (1, 1), (0, 1))):
-        heavy = condensed.heavy[:, a, b, None]
-        terms[:, row] += heavy if mass else condensed.stiff[:, a, b, None] - heavy * energies
-    return terms
+    return np.stack([left * left, right * right, left * right], axis=1)
 
 
-def chain(condensed: Condensed, energies: Array, *, mass: bool = False) -> Chain:
-    """Return the vertex matrix at the energies (or its condensed mass)."""
-    terms = vertex_terms(condensed, energies, mass=mass)
-    mesh = condensed.mesh
+def _joined(mesh: Mesh, terms: Array) -> Chain:
+    """Return the chain of element terms (elements, 3, energies)."""
     elements = terms.shape[0]
     diagonal = np.zeros((elements + 1, terms.shape[2]))
     diagonal[:-1] += terms[:, 0]
@@ -66,6 +86,8 @@ def chain(condensed: Condensed, energies: Array, *, mass: bool = False) -> Chain
 
 def count_below(condensed: Condensed, energies: Array) -> NDArray[np.int64]:
     """Return the number of levels of the mesh below each energy, by the inertia of the shifted matrix (Sylvester)."""
+    if len(energies) > BLOCK:
+        return np.concatenate([count_below(condensed, energies[k : k + BLOCK]) for k in range(0, len(energies), BLOCK)])
     matrix = chain(condensed, energies)
     below = np.count_nonzero(condensed.poles[:, :, None] < energies, axis=(0, 1))
     if matrix.corner is None:
@@ -83,11 +105,18 @@ def _negative(diagonal: Array, side: Array) -> NDArray[np.int64]:
     pivot = diagonal[0].copy()
     with np.errstate(over="ignore"):
         for row in range(len(side)):
-            pivot[pivot == 0] = -tiny
+            pivot = _nonzero(pivot, -tiny)
             count += pivot < 0
             pivot = diagonal[row + 1] - squares[row] / pivot
     count += pivot < 0
     return count
+
+
+def _nonzero(pivot: Array, tiny: float) -> Array:
+    """Return the pivots, in place, with exact zeros replaced."""
+    if not pivot.all():
+        pivot[pivot == 0] = tiny
+    return pivot
 
 
 def _negative_ring(matrix: Chain) -> NDArray[np.int64]:
@@ -137,11 +166,9 @@ def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array, NDArray
     squares = side * side
     with np.errstate(over="ignore"):
         for row in range(vertices - 1):
-            down[row][down[row] == 0] = tiny
-            down[row + 1] -= squares[row] / down[row]
+            down[row + 1] -= squares[row] / _nonzero(down[row], tiny)
         for row in range(vertices - 1, 0, -1):
-            up[row][up[row] == 0] = tiny
-            up[row - 1] -= squares[row - 1] / up[row]
+            up[row - 1] -= squares[row - 1] / _nonzero(up[row], tiny)
     gamma = down + up - diagonal
     twist = np.argmin(np.abs(gamma) / weight, axis=0)
     z = np.zeros_like(diagonal)
@@ -149,10 +176,12 @@ def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array, NDArray
     z[twist, take] = 1.0
     with np.errstate(over="ignore", invalid="ignore"):
         upward, downward = -side / np.where(down[:-1] == 0, tiny, down[:-1]), -side / np.where(up[1:] == 0, tiny, up[1:])
+    rows = np.arange(vertices - 1)[:, None]
+    keep_up, keep_down = rows < twist, rows >= twist
     for row in range(vertices - 2, -1, -1):
-        z[row] = np.where(row < twist, upward[row] * z[row + 1], z[row])
+        np.multiply(upward[row], z[row + 1], out=z[row], where=keep_up[row])
     for row in range(vertices - 1):
-        z[row + 1] = np.where(row >= twist, downward[row] * z[row], z[row + 1])
+        np.multiply(downward[row], z[row], out=z[row + 1], where=keep_down[row])
     return z, gamma[twist, take], np.count_nonzero(down < 0, axis=0)
 
 

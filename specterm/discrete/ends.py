@@ -86,8 +86,8 @@ def refuse_inner_poles(problem: Problem) -> None:
     if len(marks) == 0:
         return
     room = np.minimum.reduce([np.diff(marks, prepend=-np.inf), np.diff(marks, append=np.inf)])
-    room = np.where(np.isfinite(room), room, np.maximum(1.0, np.abs(marks)))
-    d = room * np.array([[2.0**-12], [2.0**-18]])
+    room = np.where(np.isfinite(room), room, 1.0) * 2.0**-34
+    d = np.maximum(room, np.abs(marks) * 2.0**-36) * np.array([[1.0], [2.0**-6]])
     for sign in (-1.0, 1.0):
         with np.errstate(all="ignore"):
             values = np.abs(problem.potential((marks + sign * d).ravel()).reshape(d.shape))

@@ -26,6 +26,8 @@ def bound_levels(ready: Setting) -> int | None:
     """
     if any(isinstance(end, FarEnd) and end.limit == ready.threshold and end.endless for end in ready.ends):
         return None
+    if ready.threshold - ready.floor <= MARGIN * abs(ready.threshold):
+        return 0
     places, edges = [], []
     for side in (0, 1):
         end = ready.ends[side]

@@ -14,6 +14,9 @@ Count = Callable[[Array], NDArray[np.int64]]
 CLOSE = 1e-10
 """Levels nearer to each other than this share of their distance to the bottom are handled as one group."""
 
+ALONE = 0.02
+"""A single level is bracketed to this share of the mean spacing before Newton's method takes over."""
+
 
 @dataclass(frozen=True)
 class Group:
@@ -32,28 +35,30 @@ def isolate(count: Count, first: int, last: int, low: float, high: float, bottom
     """
     ends = count(np.array([low, high]))
     todo = [Group(int(ends[0]), int(ends[1] - ends[0]), low, high)]
+    enough = ALONE * (high - low) / max(1, last - first + 1)
     done: list[Group] = []
     while todo:
         cuts = [_cuts(group, first, last) for group in todo]
         counts = np.split(count(np.concatenate(cuts)), np.cumsum([len(c) for c in cuts])[:-1])
         pieces = [piece for group, c, n in zip(todo, cuts, counts, strict=True) for piece in _pieces(group, c, n)]
         wanted = [g for g in pieces if g.first <= last and g.first + g.size > first]
-        todo = [g for g in wanted if not _settled(g, bottom)]
-        done += [g for g in wanted if _settled(g, bottom)]
+        todo = [g for g in wanted if not _settled(g, bottom, enough)]
+        done += [g for g in wanted if _settled(g, bottom, enough)]
     return sorted(done, key=lambda group: group.first)
 
 
-def _settled(group: Group, bottom: float) -> bool:
+def _settled(group: Group, bottom: float, enough: float) -> bool:
+    """Say whether a bracket is narrow: a single level to `enough`, several to where counts can no longer tell them apart."""
     width = group.high - group.low
     middle = (group.high + group.low) / 2
     narrow = width <= CLOSE * abs(middle - bottom) or width <= 8 * np.spacing(max(abs(group.low), abs(group.high)))
-    return group.size == 1 or narrow
+    return (group.size == 1 and width <= enough) or narrow
 
 
 def _cuts(group: Group, first: int, last: int) -> Array:
     """Return energies inside a bracket: several for each wanted level in it."""
     inside = min(group.first + group.size - 1, last) - max(group.first, first) + 1
-    pieces = int(min(512, max(8, 3 * inside)))
+    pieces = int(min(512, max(12, 3 * inside)))
     return np.linspace(group.low, group.high, pieces + 1)[1:-1]
 
 

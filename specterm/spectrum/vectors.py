@@ -7,7 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 from numpy.typing import NDArray
 
-from specterm.discrete.chain import Chain, chain, count_below, element_coefficients, twisted_vectors
+from specterm.discrete.chain import Chain, chain_with_mass, count_below, element_coefficients, twisted_vectors
 from specterm.discrete.elements import Condensed
 from specterm.spectrum.isolate import CLOSE, Group, isolate
 
@@ -94,7 +94,7 @@ def _merged(condensed: Condensed, parts: list[Part], bottom: float) -> list[Part
 def _newton(condensed: Condensed, groups: list[Group], bottom: float, top: float) -> tuple[Array, Array]:
     """Return energies and vertex vectors of single levels: Newton's method on the vertex matrix, kept inside shrinking brackets.
 
-    A step must be small against the level and against its distance to `top`, where a continuum may begin. Every third step halves
+    A step must be small against the level and against its distance to `top`, where a continuum may begin. Every fifth step halves
     the bracket, so that the iteration ends whatever the start.
     """
     low, high = np.array([g.low for g in groups]), np.array([g.high for g in groups])
@@ -102,8 +102,8 @@ def _newton(condensed: Condensed, groups: list[Group], bottom: float, top: float
     energies = (low + high) / 2
     slack = 1e-3 * SETTLED * np.abs(energies - bottom)
     for number in range(120):
-        weight = chain(condensed, energies, mass=True)
-        z, misfit, inertia = twisted_vectors(chain(condensed, energies), weight.diagonal)
+        matrix, weight = chain_with_mass(condensed, energies)
+        z, misfit, inertia = twisted_vectors(matrix, weight.diagonal)
         below = inertia + np.count_nonzero(condensed.poles[:, :, None] < energies, axis=(0, 1)) > numbers
         high, low = np.where(below, energies, high), np.where(below, low, energies)
         with np.errstate(all="ignore"):
@@ -115,7 +115,7 @@ def _newton(condensed: Condensed, groups: list[Group], bottom: float, top: float
         settled = (inside & (np.abs(step) <= fine)) | (high - low <= fine)
         if settled.all():
             break
-        halve = ~inside | ((number % 3 == 2) & ~settled)
+        halve = ~inside | ((number % 5 == 4) & ~settled)
         energies = np.where(settled, energies, np.where(halve, (low + high) / 2, trial))
     return energies, z
 
@@ -182,7 +182,7 @@ def _block(condensed: Condensed, group: Group, bottom: float) -> tuple[Values, f
     rng = np.random.default_rng(20)
     z: Values = np.empty((0, 0))
     for sweep in range(12):
-        matrix, weight = (chain(condensed, np.array([energy]), mass=m) for m in (False, True))
+        matrix, weight = chain_with_mass(condensed, np.array([energy]))
         solve, heavy = _solver(matrix), _matrix(weight)
         if sweep == 0:
             z = solve(heavy @ rng.standard_normal((heavy.shape[0], group.size)))
