@@ -176,25 +176,39 @@ def _group(condensed: Condensed, group: Group, bottom: float) -> Part:
 
 
 def _block(condensed: Condensed, group: Group, bottom: float) -> tuple[Values, float]:
-    """Return vertex vectors (vertices, size) spanning the group's space, and the energy they belong to."""
-    energy = (group.low + group.high) / 2
-    slack = CLOSE * abs(energy - bottom)
-    rng = np.random.default_rng(20)
-    z: Values = np.empty((0, 0))
-    for sweep in range(12):
+    """Return vertex vectors (vertices, size) spanning the group's space, and the energy they belong to.
+
+    Inverse iteration with a block; for a single level the energy follows its Rayleigh quotient, kept inside a bracket that
+    counts shrink.
+    """
+    low, high = group.low, group.high
+    energy = (low + high) / 2
+    slack = 1e-3 * SETTLED * abs(energy - bottom)
+    start = np.random.default_rng(20).standard_normal((_vertices(condensed), group.size))
+    z: Values = start
+    for sweep in range(80):
         matrix, weight = chain_with_mass(condensed, np.array([energy]))
         solve, heavy = _solver(matrix), _matrix(weight)
-        if sweep == 0:
-            z = solve(heavy @ rng.standard_normal((heavy.shape[0], group.size)))
         z, _ = np.linalg.qr(solve(heavy @ z))
         ritz = np.linalg.eigvals(np.linalg.solve(z.conj().T @ (heavy @ z), z.conj().T @ (_matrix(matrix) @ z))).real
         step = float(np.mean(ritz))
-        settled = abs(step) <= 1e-8 * abs(energy - bottom)
-        if sweep >= 2 and (group.size > 1 or settled):
+        if group.size > 1:
+            if sweep >= 3:
+                break
+            continue
+        if sweep >= 1 and abs(step) <= max(SETTLED * abs(energy - bottom), 4 * np.spacing(abs(energy))):
             break
-        if group.size == 1 and group.low - slack < energy + step < group.high + slack:
-            energy += step
+        below = count_below(condensed, np.array([energy]))[0] > group.first
+        low, high = (low, energy) if below else (energy, high)
+        inside = low - slack < energy + step < high + slack
+        energy = energy + step if inside and sweep % 5 != 4 else (low + high) / 2
     return z, energy
+
+
+def _vertices(condensed: Condensed) -> int:
+    """Return the number of free vertices."""
+    mesh = condensed.mesh
+    return len(mesh.places) - (1 if mesh.phase is not None else int(mesh.left.fixed) + int(mesh.right.fixed))
 
 
 def _matrix(matrix: Chain):  # type: ignore[no-untyped-def]  # noqa: ANN202 - dense array or scipy.sparse array, same operators
