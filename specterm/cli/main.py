@@ -1,0 +1,127 @@
+"""From the words on the command line to an exit status."""
+
+from __future__ import annotations
+
+import argparse
+import os
+import sys
+from collections.abc import Sequence
+
+from specterm.cli.arguments import LATER, VERBS, interface_parser, parser
+from specterm.cli.source import Source, overrides, read_source
+from specterm.errors import SpectermError, describe
+
+
+def main(words: Sequence[str]) -> int:
+    """Run one command; 0 done, 1 the physics says no, 2 bad input. Errors are told on standard error, never as a traceback."""
+    source: Source | None = None
+    try:
+        first = next((word for word in words if not word.startswith("-")), "")
+        if first in LATER and words[0] == first:
+            return _tell(f"specterm: {first} is not available yet\n  available: {', '.join(VERBS)}")
+        whole = words and (words[0] in VERBS or words[0] in ("-h", "--help", "--version"))
+        if whole:
+            arguments = parser().parse_args(words)
+            if arguments.version:
+                return _version()
+            if arguments.verb == "presets":
+                return _presets(arguments)
+            source = read_source(*_sheet_of(arguments))
+            return _run(arguments, source)
+        arguments = interface_parser().parse_args(words)
+        source = read_source(arguments.sheet, arguments.text) if arguments.sheet or arguments.text else None
+        return _interface(arguments, source)
+    except SpectermError as error:
+        return _tell(describe(error, source.text if source else "", source.name if source else "specterm"), error.exit_status)
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return 0
+    except KeyboardInterrupt:
+        return _tell("specterm: stopped", 130)
+    except MemoryError:
+        return _tell("specterm: out of memory\n  ask for fewer levels", 1)
+
+
+def _sheet_of(arguments: argparse.Namespace) -> tuple[str | None, str | None]:
+    """Return sheet and text; with -e the word that stands where the sheet would is the verb's own first argument."""
+    if arguments.text is not None and arguments.sheet is not None and getattr(arguments, "state", "") is None:
+        arguments.state, arguments.sheet = arguments.sheet, None
+    return arguments.sheet, arguments.text
+
+
+def _tell(words: str, status: int = 2) -> int:
+    """Say something on standard error."""
+    sys.stderr.write(words + "\n")
+    return status
+
+
+def _version() -> int:
+    from importlib.metadata import PackageNotFoundError, version  # noqa: PLC0415 - only asked for here
+
+    try:
+        sys.stdout.write(f"specterm {version('specterm')}\n")
+    except PackageNotFoundError:
+        sys.stdout.write("specterm, from a working copy\n")
+    return 0
+
+
+def _presets(arguments: argparse.Namespace) -> int:
+    from specterm.cli.output import deliver  # noqa: PLC0415 - not needed to open the interface
+    from specterm.cli.verbs import list_presets  # noqa: PLC0415
+
+    deliver(list_presets(arguments).text, arguments.output)
+    return 0
+
+
+def _run(arguments: argparse.Namespace, source: Source) -> int:
+    """Run a verb on a sheet."""
+    from specterm.cli import verbs  # noqa: PLC0415 - heavy
+    from specterm.cli.output import deliver  # noqa: PLC0415
+
+    answer = getattr(verbs, arguments.verb)(arguments, source)
+    deliver(answer.text, arguments.output)
+    for warning in dict.fromkeys(answer.warnings):
+        _tell(f"note: {warning}")
+    return int(answer.status)
+
+
+def _interface(arguments: argparse.Namespace, source: Source | None) -> int:
+    """Open the terminal interface, or print levels and figure where there is no terminal."""
+    from specterm.tui.terminal import usable  # noqa: PLC0415 - light, but not needed by the verbs
+
+    if usable() and arguments.output is None:
+        from specterm.tui import run  # noqa: PLC0415 - heavy
+        from specterm.tui.options import Options  # noqa: PLC0415
+
+        chosen = Options(
+            glyphs=arguments.glyphs,
+            count=arguments.count,
+            near=arguments.near,
+            tolerance=arguments.tol,
+            overrides=overrides(arguments.overrides),
+            folder=source.folder if source else None,
+            mouse=arguments.mouse,
+        )
+        return run(source.text if source else "", source.path if source else None, chosen)
+    if source is None:
+        raise SystemExit(parser().format_help())
+    return _as_text(arguments, source)
+
+
+def _as_text(arguments: argparse.Namespace, source: Source) -> int:
+    """Print levels and figure, and say why there is no screen."""
+    from specterm.cli import verbs  # noqa: PLC0415 - heavy
+    from specterm.cli.output import deliver  # noqa: PLC0415
+
+    model = verbs.model_of(arguments, source)
+    spectrum = verbs.solved(arguments, model)
+    options = argparse.Namespace(
+        levels=None, state=None, width=100, height=32, view="psi", glyphs=arguments.glyphs
+    )
+    parts = [verbs.levels_text(model, spectrum), "", verbs.figure_text(options, source, model, spectrum)]
+    deliver("\n".join(parts), arguments.output)
+    for warning in dict.fromkeys(spectrum.notes):
+        _tell(f"note: {warning}")
+    if arguments.output is None:
+        _tell("note: no terminal to draw on (or TERM says dumb): levels and figure as text")
+    return 0
