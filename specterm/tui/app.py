@@ -26,7 +26,7 @@ from specterm.tui.options import Options
 from specterm.tui.painter import Painter
 from specterm.tui.rows import Shown
 from specterm.tui.sheet_pane import SheetPane, SheetText
-from specterm.tui.solving import BuiltIn, Engine, Request, Weighed
+from specterm.tui.solving import BuiltIn, Engine, Outcome, Request, Weighed
 from specterm.tui.watch import watch_signals
 from specterm.tui.work import Looked, Progressed, Solved, Work
 from specterm.views.status import MomentsText
@@ -156,9 +156,19 @@ class Specterm(Keyed):
         if outcome is None or outcome.request.number != event.number:
             return
         self.found[event.key] = event.found
+        if event.key == self.shown.look.chosen:
+            self._look_ahead(outcome)
         if isinstance(event.found, Weighed) and event.found.error is not None and event.key == self.shown.look.state:
             self.say(event.found.error.message, "warn")
-        self.redraw()
+        if event.key in (self.shown.look.chosen, self.shown.look.state):
+            self.redraw()
+
+    def _look_ahead(self, outcome: Outcome) -> None:
+        """Find the moments of the levels a step away before they are asked for."""
+        count = len(outcome.spectrum.levels) if outcome.spectrum else 0
+        for place in (self.shown.look.chosen - 1, self.shown.look.chosen + 1):
+            if 0 <= place < count and place not in self.found:
+                self.work.look(outcome, place)
 
     def on_sheet_text_left(self, _: SheetText.Left) -> None:
         """Come back from typing."""

@@ -6,10 +6,11 @@ from typing import ClassVar
 
 from rich.segment import Segment
 from rich.style import Style
+from textual.geometry import Region
 from textual.strip import Strip
 from textual.widget import Widget
 
-from specterm.views.cells import Rows, row_width
+from specterm.views.cells import Row, Rows, row_width, width_of
 
 LOOKS: dict[str, Style] = {
     "plain": Style(),
@@ -31,6 +32,23 @@ LOOKS: dict[str, Style] = {
 """What each style of cell looks like, in the terminal's own sixteen colours."""
 
 
+def changed_columns(before: Row, after: Row) -> tuple[int, int] | None:
+    """Return the first column that differs between two rows and how many from there on may; None when they are the same."""
+    if before == after:
+        return None
+    if row_width(before) != row_width(after):
+        return 0, max(row_width(before), row_width(after))
+    differing = [place for place, pair in enumerate(zip(_cells(before), _cells(after), strict=True)) if pair[0] != pair[1]]
+    if not differing:
+        return 0, row_width(before)
+    return differing[0], differing[-1] - differing[0] + 1
+
+
+def _cells(row: Row) -> list[tuple[str, str]]:
+    """Return the row cell by cell, a wide character over two cells."""
+    return [(character, style) for text, style in row for character in text for _ in range(width_of(character))]
+
+
 class CellPane(Widget):
     """Shows rows of cells; `show` replaces them and asks for a repaint, never for a new layout."""
 
@@ -48,10 +66,18 @@ class CellPane(Widget):
         return self._rows
 
     def show(self, rows: Rows) -> None:
-        """Show other rows; nothing happens when they are the same."""
-        if rows != self._rows:
-            self._rows = rows
+        """Show other rows; only the cells that differ are sent to the terminal."""
+        before, self._rows = self._rows, rows
+        if len(before) != len(rows):
             self.refresh()
+            return
+        regions = []
+        for number, (old, new) in enumerate(zip(before, rows, strict=True)):
+            changed = changed_columns(old, new)
+            if changed is not None:
+                regions.append(Region(changed[0], number, changed[1], 1))
+        if regions:
+            self.refresh(*regions)
 
     def render_line(self, y: int) -> Strip:
         """Return one line for the screen."""

@@ -8,6 +8,7 @@ from fake import SHEET, FakeEngine, app, lines, settled
 from standin import spectrum
 
 from specterm.errors import SheetError, Span
+from specterm.tui.cell_pane import changed_columns
 from specterm.tui.keys import KEYS
 from specterm.tui.look import Look, usual_glyphs
 from specterm.tui.rows import Shown, bottom_row, chosen_row, drawn_safely, figure_rows, level_rows, message_row, trusted_row
@@ -127,6 +128,15 @@ def test_glyphs_follow_the_locale():
     assert usual_glyphs({"LC_ALL": "C", "LANG": "en_GB.UTF-8"}) == "ascii"
     assert usual_glyphs({"LANG": "de_DE.utf8", "TERM": "linux"}) == "block"
     assert usual_glyphs({}) == "braille"
+
+
+def test_only_what_differs_is_sent():
+    """The cells between the first and the last difference of a row are drawn anew, wide characters whole."""
+    assert changed_columns((("abcdef", "plain"),), (("abXdYf", "plain"),)) == (2, 3)
+    assert changed_columns((("ab", "x"), ("cd", "y")), (("abc", "x"), ("d", "y"))) == (2, 1)
+    assert changed_columns((("能b", "x"),), (("量b", "x"),)) == (0, 2)
+    assert changed_columns((("ab", "x"),), (("ab", "x"),)) is None
+    assert changed_columns((("ab", "x"),), (("abc", "x"),)) == (0, 3)
 
 
 def test_marks_cover_the_span():
