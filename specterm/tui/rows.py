@@ -82,7 +82,8 @@ def figure_rows(shown: Shown, width: int, height: int) -> Rows:
         return (((" " * max(0, width), "plain"),),) * height
     spectrum = outcome.origin.spectrum
     chosen = shown.look.chosen if spectrum and spectrum.levels else None
-    view = scene(outcome.origin, chosen, samples=max(100, 8 * width), prepared=shown.prepared)
+    zoom = shown.look.mode != "levels"
+    view = scene(outcome.origin, chosen, samples=max(100, 8 * width), prepared=shown.prepared, zoom=zoom)
     return draw(view, width, height, mode=shown.look.mode, glyphs=shown.look.glyphs)
 
 

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from specterm.views.canvas import DOTS
 from specterm.views.cells import Row, Rows, cut, fit_row, row_width, width_of
 from specterm.views.scene import Scene
 from specterm.views.ticks import Ticks, ticks
@@ -15,7 +16,10 @@ _LINES = {"braille": "│┤─┬└", "block": "│┤─┬└", "ascii": "|+
 
 @dataclass(frozen=True)
 class Frame:
-    """Sizes in cells: `columns` x `rows` for the canvas, `gutter` columns for the energies, `numbers` for the level numbers."""
+    """Sizes in cells: `columns` x `rows` for the canvas, `gutter` for the energies, `numbers` for the level numbers.
+
+    `dots` is the number of dots across and down a cell.
+    """
 
     width: int
     columns: int
@@ -24,12 +28,13 @@ class Frame:
     numbers: int
     energies: Ticks
     places: Ticks
+    dots: tuple[int, int]
     has_title: bool
     has_line: bool
     has_labels: bool
 
 
-def frame_for(scene: Scene, width: int, height: int) -> Frame:
+def frame_for(scene: Scene, width: int, height: int, glyphs: str) -> Frame:
     """Return the frame that leaves the canvas most of a small size and shows all its parts in a large one."""
     has_labels, has_title, has_line = height >= 5, height >= 7, height >= 9
     rows = max(0, height - has_labels - has_title - has_line)
@@ -40,7 +45,7 @@ def frame_for(scene: Scene, width: int, height: int) -> Frame:
         gutter = 0
     columns = max(0, width - gutter - numbers)
     places = ticks(*scene.window, max(1, columns // 8))
-    return Frame(width, columns, rows, gutter, numbers, energies, places, has_title, has_line, has_labels)
+    return Frame(width, columns, rows, gutter, numbers, energies, places, DOTS[glyphs], has_title, has_line, has_labels)
 
 
 def _numbers_width(scene: Scene) -> int:
@@ -93,8 +98,8 @@ def _title(scene: Scene, frame: Frame, words: Row) -> Row:
 def _row_of(scene: Scene, frame: Frame, energy: float) -> int | None:
     """Return the cell row of an energy, or None outside the canvas."""
     low, high = scene.energies
-    place = (high - energy) / (high - low) * frame.rows
-    return min(int(place), frame.rows - 1) if np.isfinite(place) and 0 <= place <= frame.rows else None
+    place = (high - energy) / (high - low)
+    return round(place * (frame.rows * frame.dots[1] - 1)) // frame.dots[1] if np.isfinite(place) and 0 <= place <= 1 else None
 
 
 def _energy_labels(scene: Scene, frame: Frame) -> dict[int, str]:
@@ -131,10 +136,10 @@ def _level_numbers(scene: Scene, frame: Frame) -> dict[int, Row]:
 def _column_of(scene: Scene, frame: Frame, place: float) -> int | None:
     """Return the cell column of a place, counted from the left edge of the figure, or None outside."""
     low, high = scene.window
-    column = (place - low) / (high - low) * frame.columns
-    if not (np.isfinite(column) and 0 <= column <= frame.columns):
+    column = (place - low) / (high - low)
+    if not (frame.columns and np.isfinite(column) and 0 <= column <= 1):
         return None
-    return frame.gutter + min(int(column), frame.columns - 1)
+    return frame.gutter + round(column * (frame.columns * frame.dots[0] - 1)) // frame.dots[0]
 
 
 def _bottom_line(scene: Scene, frame: Frame, lines: str) -> Row:

@@ -24,7 +24,7 @@ def draw(scene: Scene, width: int, height: int, *, mode: str = "psi", glyphs: st
     """Return the figure, `height` rows of `width` columns; `mode` is one of MODES, `glyphs` one of GLYPHS. Any size is fine."""
     if width <= 0 or height <= 0:
         return ((),) * max(0, height)
-    frame = frame_for(scene, width, height)
+    frame = frame_for(scene, width, height, glyphs)
     canvas = Canvas(frame.columns, frame.rows, glyphs)
     if canvas.columns and canvas.rows:
         _draw_all(Painter(scene, canvas, mode))
@@ -52,7 +52,9 @@ class Painter:
         low, high = scene.window
         self.across = (scene.x - low) / (high - low) * (canvas.columns - 1)
         self.bottom, self.top = scene.energies
-        self.reach = self._reach()
+        rows = self.rows_of(np.array([level.value for level in scene.levels]))
+        self.usual = _usual(rows, canvas.rows) * (1.0 if mode == "density" else 0.7)
+        self.room = _room(rows)
 
     def row(self, energy: float) -> float:
         """Return the dot row of an energy, row 0 at the top."""
@@ -91,13 +93,24 @@ class Painter:
         line = np.real(wave) / largest
         return line, size / largest if np.iscomplexobj(wave) and np.abs(wave.imag).max() > 0 else line
 
-    def _reach(self) -> float:
-        """Return how many dot rows a wave of size 1 reaches: near the usual distance of the levels."""
-        rows = self.rows_of(np.array([level.value for level in self.scene.levels]))
-        gaps = np.diff(np.sort(rows[np.isfinite(rows)]))
-        gaps = gaps[gaps > 1.0]
-        usual = 0.85 * float(np.median(gaps)) if len(gaps) else 0.25 * self.canvas.rows
-        return min(max(usual, 0.1 * self.canvas.rows, 2.0), 0.25 * self.canvas.rows) * (1.0 if self.mode == "density" else 0.7)
+    def reach(self, place: int) -> float:
+        """Return how many dot rows the wave at `place` reaches: the usual distance, less near neighbours, enough to be seen."""
+        return min(self.usual, max(0.9 * float(self.room[place]), 0.1 * self.canvas.rows, 2.0))
+
+
+def _usual(rows: Floats, height: int) -> float:
+    """Return the usual distance of the levels in dot rows, at least a tenth and at most a quarter of the canvas."""
+    gaps = np.diff(np.sort(rows[np.isfinite(rows)]))
+    gaps = gaps[gaps > 1.0]
+    usual = 0.85 * float(np.median(gaps)) if len(gaps) else 0.25 * height
+    return min(max(usual, 0.1 * height, 2.0), 0.25 * height)
+
+
+def _room(rows: Floats) -> Floats:
+    """Return for each level the distance to the nearer of its neighbours that are a dot row or more away, inf without any."""
+    known = np.nan_to_num(rows, nan=0.0, posinf=1e6, neginf=-1e6)
+    apart = np.abs(known[:, None] - known[None, :])
+    return np.asarray(np.where(apart > 1.0, apart, np.inf).min(axis=1, initial=np.inf))
 
 
 def _draw_all(painter: Painter) -> None:
@@ -109,7 +122,7 @@ def _draw_all(painter: Painter) -> None:
     if scene.prepared is not None:
         _, mean, wave = scene.prepared
         line, _ = painter.shape_of(wave)
-        canvas.curve(painter.across, painter.row(mean) - painter.reach * line, "weight")
+        canvas.curve(painter.across, painter.row(mean) - painter.usual * line, "weight")
     if scene.chosen is not None:
         _draw_hatch(painter, scene.chosen)
     canvas.curve(painter.across, painter.rows_of(scene.potential), "potential", over=True)
@@ -132,7 +145,7 @@ def _draw_others(painter: Painter) -> None:
         canvas.horizontal(rows[place], "other", dash=dash, where=painter.allowed_columns(level.value))
         if roomy and not stacked:
             line, _ = painter.shape_of(scene.waves[place])
-            canvas.curve(painter.across, rows[place] - painter.reach * line, "other")
+            canvas.curve(painter.across, rows[place] - painter.reach(place) * line, "other")
 
 
 def _draw_hatch(painter: Painter, place: int) -> None:
@@ -142,7 +155,7 @@ def _draw_hatch(painter: Painter, place: int) -> None:
         return
     base = painter.row(level.value)
     _, outline = painter.shape_of(painter.scene.waves[place])
-    inside = np.where(painter.allowed(level.value), base - painter.reach * outline, np.nan)
+    inside = np.where(painter.allowed(level.value), base - painter.reach(place) * outline, np.nan)
     painter.canvas.hatch(painter.across, inside, base, "chosen")
 
 
@@ -158,7 +171,7 @@ def _draw_chosen(painter: Painter, place: int) -> None:
     if painter.mode == "levels":
         return
     line, _ = painter.shape_of(painter.scene.waves[place])
-    rows = base - painter.reach * line
+    rows = base - painter.reach(place) * line
     canvas.curve(painter.across, rows, "forbidden")
     canvas.curve(painter.across, np.where(painter.allowed(level.value), rows, np.nan), "chosen")
 

@@ -84,7 +84,7 @@ def chart(
 
 def _figure(width: int, height: int) -> _Plotext:
     """Return a private figure that ignores the size of the real terminal."""
-    from plotext._figure import _figure_class  # type: ignore[import-untyped]  # noqa: PLC0415 - twenty milliseconds nobody pays who draws no chart
+    from plotext._figure import _figure_class  # noqa: PLC0415 - twenty milliseconds nobody pays who draws no chart
 
     figure = _figure_class()
     figure._limit_size(False, False)

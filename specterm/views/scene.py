@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specterm.spectrum.result import Level, Spectrum
-from specterm.views.window import Window, energy_window, extents, x_window
+from specterm.views.window import Window, energy_window, extents, x_window, zoomed
 
 Floats = NDArray[np.float64]
 MODES = ("psi", "density", "levels")
@@ -96,8 +96,12 @@ def scene(
     samples: int = 800,
     only: tuple[int, ...] | None = None,
     prepared: Prepared | None = None,
+    zoom: bool = True,
 ) -> Scene:
-    """Return the scene for the chosen level (its place in the spectrum, or None); `only` keeps levels with these indices."""
+    """Return the scene for the chosen level (its place in the spectrum, or None); `only` keeps levels with these indices.
+
+    `zoom` shows crowded levels around the chosen one alone, else all are in view.
+    """
     spectrum, axes = origin.spectrum, origin.axes
     left, right = _ends(axes, spectrum)
     levels = spectrum.levels if spectrum else ()
@@ -113,9 +117,12 @@ def scene(
     values = np.array([levels[place].value for place in kept] + ([prepared.mean] if prepared else []))
     threshold = spectrum.threshold if spectrum else None
     from_top = spectrum.from_top if spectrum else False
+    energies = energy_window(values, potential, threshold, from_top=from_top)
+    if zoom and focus is not None:
+        energies = zoomed(values, values[focus], energies)
     return Scene(
         axes, x, potential, tuple(levels[place] for place in kept), waves, focus, threshold, shown,
-        energy_window(values, potential, threshold, from_top=from_top), from_top,
+        energies, from_top,
         (prepared.name, prepared.mean, np.asarray(prepared.wave(x))) if prepared else None,
     )
 

@@ -10,8 +10,9 @@ from numpy.typing import NDArray
 Floats = NDArray[np.float64]
 Window = tuple[float, float]
 _TAIL = 5e-4
-_WIDEST = 8.0
+_WIDEST = 5.0
 _PEAKS = 8
+_NEIGHBOURS = 6
 
 
 def extents(density: Callable[[Floats], Floats], left: float, right: float) -> Floats:
@@ -54,7 +55,7 @@ def _holding(places: Floats, density: Floats) -> Window:
 def x_window(
     found: Floats, chosen: int | None, left: float, right: float, closed: tuple[bool, bool], *, whole: bool = False
 ) -> Window:
-    """Return the places to show: where the states of `found` (levels, 2) live, at most 8 times the chosen one's own interval.
+    """Return the places to show: where the states of `found` (levels, 2) live, at most 5 times the chosen one's own interval.
 
     `closed` says which ends are walls or a ring's seam; an end is shown when it is near, and the whole domain when `whole`
     is true or nothing is known of the states.
@@ -98,6 +99,22 @@ def energy_window(values: Floats, potential: Floats, threshold: float | None, *,
         if top < edge <= highest + 0.6 * room:
             top = edge + 0.05 * room
     return _spread(floor - 0.05 * room, top)
+
+
+def zoomed(values: Floats, chosen: float, whole: Window) -> Window:
+    """Return the part of an energy window around the chosen value that holds its neighbours, where that is far narrower.
+
+    Levels that crowd, as those below a threshold do, are told apart only so; a window less than three times as wide as that
+    part is kept whole.
+    """
+    distances = np.sort(np.abs(values[np.isfinite(values)] - chosen))
+    if not np.isfinite(chosen) or len(distances) <= _NEIGHBOURS:
+        return whole
+    half = 1.5 * float(distances[_NEIGHBOURS])
+    low, high = max(whole[0], chosen - half), min(whole[1], chosen + half)
+    if not half > 1e-12 * abs(chosen) or 3 * (high - low) > whole[1] - whole[0]:
+        return whole
+    return low, high
 
 
 def _floor(ground: Floats, lowest: float, highest: float) -> float:

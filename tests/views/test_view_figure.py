@@ -35,6 +35,17 @@ def test_a_long_tail_is_not_shown():
     assert 2 < high < 8
 
 
+def test_crowded_levels_are_zoomed_to():
+    """Among levels that crowd under a threshold the figure shows those around the chosen one; all of them without zoom."""
+    values = [-1 / n**2 for n in range(1, 21)]
+    crowd = source(spectrum(20, values=values), lambda x: -1 / (1 + np.abs(x)), AXES)
+    low, high = scene(crowd, 9).energies
+    assert low < values[9] < high < 0.05
+    assert low > -0.05
+    assert scene(crowd, 9, zoom=False).energies[0] < -1
+    assert scene(crowd, 0).energies[0] < -1
+
+
 def test_box_levels_do_not_widen_the_window():
     """States that fill the box only because there is one do not decide what is shown, unless one of them is chosen."""
     data = spectrum(3)
