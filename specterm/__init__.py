@@ -1,0 +1,1 @@
+"""specterm: levels of an operator, with the digits that can be trusted."""

@@ -26,12 +26,14 @@ def moments(model: Model, spectrum: Spectrum, index: int) -> Moments:
 
     Integrals by Gauss rules of 20 points between the places where the states are smooth; against closed forms to 1e-12.
     """
+    if spectrum.states is None:
+        raise KeyError(index)
     row = {level.index: k for k, level in enumerate(spectrum.levels)}[index]
     t, w = gauss_legendre(20)
     places = spectrum.states.places
     half = np.diff(places)[:, None] / 2
     x, weight = (places[:-1, None] + half * (1 + t)).ravel(), (half * w).ravel()
-    psi, slope = (spectrum.states.evaluate(x, order)[row] for order in (0, 1))
+    psi, slope = spectrum.states.evaluate(x)[row], spectrum.states.evaluate(x, 1)[row]
     density = weight * np.abs(psi) ** 2
     norm = float(density.sum())
     mean = float((density * x).sum()) / norm

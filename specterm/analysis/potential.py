@@ -3,16 +3,16 @@
 from __future__ import annotations
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array
 from specterm.model import Model
 
 
-def potential_curve(model: Model, x: NDArray[np.float64]) -> NDArray[np.float64]:
+def potential_curve(model: Model, x: Array) -> Array:
     """Return the effective potential of the main operator at the places x, in the sheet's unit of energy; shape (n,).
 
-    For an operator of second order that is what is left when the momentum is at its best, V - B^2/(4 K); for others the part without
-    derivatives. Non-finite values are possible.
+    For an operator of second order that is what is left when the momentum is at its best, V - B^2/(4 K); for others the part
+    without derivatives. Non-finite values are possible.
     """
     operator = model.operator
     if operator.order == 2 and operator.hermitian() is None:
@@ -24,5 +24,5 @@ def potential_curve(model: Model, x: NDArray[np.float64]) -> NDArray[np.float64]
             return np.zeros(len(x))
         function = plain
     with np.errstate(all="ignore"):
-        values: NDArray[np.float64] = np.real(function(x))
+        values: Array = np.real(function(x))
     return values

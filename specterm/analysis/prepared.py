@@ -9,9 +9,9 @@ from pathlib import Path
 from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
 from specterm.analysis.quadrature import resolved_points
+from specterm.arrays import Array, Values
 from specterm.errors import SheetError
 from specterm.language import decode, parse
 from specterm.language.catalogue import refuse
@@ -19,18 +19,15 @@ from specterm.model import Domain, Function, Model, State, build
 from specterm.model.function import number
 from specterm.spectrum import Spectrum, solve
 
-Array = NDArray[np.float64]
-Values = NDArray[Any]
-
 LARGEST_SHEET = 1_000_000
 
 
 @dataclass(frozen=True)
 class Prepared:
-    """A prepared state: `wave` maps places (n,) to values (n,), normalised; `x` and `w` (m,) integrate it and its products with eigenstates.
+    """A prepared state: `wave` maps places (n,) to values (n,), normalised; `x` and `w` (m,) integrate its products.
 
-    `missed` is the share of the norm the rule may have missed; `cut` the share of |psi|^2 pressed against the walls of the domain, as an
-    estimate of what they cut off.
+    `missed` is the share of the norm the rule may have missed; `cut` the share of |psi|^2 pressed against the walls of the
+    domain, as an estimate of what they cut off.
     """
 
     name: str
@@ -62,14 +59,22 @@ def _of_function(model: Model, spectrum: Spectrum, state: State, function: Funct
     """Return a state given by a function of the coordinate."""
     hull = _hull(model.domain, function, spectrum)
     if hull is None:
-        raise refuse("state-not-normalisable", state.span, name=state.name, reason="its square has no finite integral over the domain")
-    marks = [function.edges(*hull), function.centres(*hull), _inside(spectrum.states.places if spectrum.states else np.empty(0), hull)]
+        raise refuse(
+            "state-not-normalisable", state.span, name=state.name, reason="its square has no finite integral over the domain"
+        )
+    marks = [
+        function.edges(*hull),
+        function.centres(*hull),
+        _inside(spectrum.states.places if spectrum.states is not None else np.empty(0), hull),
+    ]
     places = np.unique(np.concatenate([np.array(hull), *marks, np.linspace(*hull, 33)]))
     x, w, missed = resolved_points(function, places)
     values = np.nan_to_num(function(x))
     norm = float(np.sqrt((w * np.abs(values) ** 2).sum()))
     if not np.isfinite(norm) or norm == 0:
-        raise refuse("state-not-normalisable", state.span, name=state.name, reason="its square has no finite integral over the domain")
+        raise refuse(
+            "state-not-normalisable", state.span, name=state.name, reason="its square has no finite integral over the domain"
+        )
     return Prepared(state.name, lambda y: function(y) / norm, x, w, missed, _pressed(model.domain, values, x, norm))
 
 
@@ -81,21 +86,29 @@ def _hull(domain: Domain, function: Function, spectrum: Spectrum) -> tuple[float
     """Return an interval outside which |f|^2 holds nothing, or None where its integral does not exist."""
     left, right = domain.left, domain.right
     centres = function.centres(left, right)
-    middle = float(np.median(np.concatenate([centres, [np.clip(0.0, left, right)]]))) if len(centres) else float(np.clip(0.0, left, right))
+    middle = (
+        float(np.median(np.concatenate([centres, [np.clip(0.0, left, right)]])))
+        if len(centres)
+        else float(np.clip(0.0, left, right))
+    )
     ends = [left, right]
     for side, sign in ((0, -1.0), (1, 1.0)):
         if np.isfinite(ends[side]):
             continue
         marks = [m for m in (*centres, spectrum.left, spectrum.right) if np.isfinite(m)]
         start = (min(marks) if side == 0 else max(marks)) if marks else middle
-        d = np.exp2(np.arange(-60.0, 340.0, 0.25)) * max(1e-30, abs(spectrum.right - spectrum.left) if spectrum.unknowns else 1.0)
+        d = np.exp2(np.arange(-60.0, 340.0, 0.25)) * max(
+            1e-30, abs(spectrum.right - spectrum.left) if spectrum.unknowns else 1.0
+        )
         with np.errstate(all="ignore"):
             values = np.abs(function(start + sign * d))
             shares = values**2 * d
         if not np.isfinite(shares[np.isfinite(values)]).all() or np.isinf(values).any() or np.isnan(values[:400]).any():
             return None
         shares = np.nan_to_num(shares)
-        total = float(np.abs(function(np.linspace(spectrum.left, spectrum.right, 400))).max() ** 2 * (spectrum.right - spectrum.left))
+        total = float(
+            np.abs(function(np.linspace(spectrum.left, spectrum.right, 400))).max() ** 2 * (spectrum.right - spectrum.left)
+        )
         total = max(total, float(shares.max()))
         if shares[-1] > 1e-12 * total:
             return None
@@ -124,7 +137,7 @@ def _of_levels(
     def raw(y: Array) -> Values:
         return np.sum([coefficient(y) * states.evaluate(y)[row] for coefficient, states, row in terms], axis=0)
 
-    grids = [states.places for _, states, _ in terms] + ([spectrum.states.places] if spectrum.states else [])
+    grids = [states.places for _, states, _ in terms] + ([spectrum.states.places] if spectrum.states is not None else [])
     low, high = max(model.domain.left, min(g[0] for g in grids)), min(model.domain.right, max(g[-1] for g in grids))
     places = np.unique(np.concatenate([_inside(g, (low, high)) for g in grids] + [np.array([low, high])]))
     x, w, missed = resolved_points(raw, places)
@@ -139,7 +152,9 @@ def _level(model: Model, spectrum: Spectrum, index: int, path: str | None, folde
     if path is None:
         rows = [row for row, level in enumerate(spectrum.levels) if level.index == index]
         if not rows:
-            raise SheetError(f"level({index}) is not among the {len(spectrum.levels)} levels computed", mend="ask for more with -n")
+            raise SheetError(
+                f"level({index}) is not among the {len(spectrum.levels)} levels computed", mend="ask for more with -n"
+            )
         return spectrum.states, rows[0]
     place = (folder or Path()) / path
     other = build(parse(_text(place)), folder=place.parent)
@@ -157,7 +172,9 @@ def _text(place: Path) -> str:
     """Return the text of another sheet; SheetError where it is not a readable, regular, small file."""
     try:
         if not place.is_file() or place.stat().st_size > LARGEST_SHEET:
-            raise SheetError(f"there is no sheet {place.name} here, or it is larger than 1 MB", mend="the path starts at the sheet's folder")
+            raise SheetError(
+                f"there is no sheet {place.name} here, or it is larger than 1 MB", mend="the path starts at the sheet's folder"
+            )
         return decode(place.read_bytes())
     except OSError as error:
         raise SheetError(f"{place.name} cannot be read: {error.strerror}", mend="check the path and its permissions") from None

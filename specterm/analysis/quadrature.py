@@ -3,22 +3,18 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array, Values
 from specterm.discrete.quadrature import gauss_legendre
-
-Array = NDArray[np.float64]
-Values = NDArray[Any]
 
 POINTS = 20
 MOST_PIECES = 200_000
 
 
 def resolved_points(function: Callable[[Array], Values], places: Array, precision: float = 1e-13) -> tuple[Array, Array, float]:
-    """Return points and weights on the pieces between `places`, halved until `function` is a polynomial on each, and what is left.
+    """Return points and weights on pieces between `places`, halved until `function` is a polynomial on each, and the rest.
 
     Shapes (n,) and (n,); the last number bounds the integral of |f|^2 that the rule may have missed, as a share of the whole.
     """

@@ -5,15 +5,14 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
 from specterm.analysis.prepared import Prepared, prepare
+from specterm.arrays import Array, Values
 from specterm.model import Model
 from specterm.spectrum import Spectrum
-
+from specterm.spectrum.result import States
 
 ROUNDING = 1e-12
 """Rounding of an eigenstate in norm; the largest seen against closed forms is half of it."""
@@ -34,7 +33,8 @@ class Weight:
 class Weights:
     """The weights of a state, how much of it they hold (`captured`), mean and spread of the operator over the levels held.
 
-    `mean` and `spread` are those of the captured part, in the sheet's unit of energy; `wave` maps places (n,) to the state (n,).
+    `mean` and `spread` are those of the captured part, in the sheet's unit of energy; `wave` maps places (n,) to the state
+    (n,).
     """
 
     state: str
@@ -43,7 +43,7 @@ class Weights:
     mean: float
     spread: float
     notes: tuple[str, ...]
-    wave: Callable[[NDArray[np.float64]], NDArray[Any]]
+    wave: Callable[[Array], Values]
 
 
 def project(model: Model, spectrum: Spectrum, name: str, folder: Path | None = None) -> Weights:
@@ -55,7 +55,7 @@ def project(model: Model, spectrum: Spectrum, name: str, folder: Path | None = N
     prepared = prepare(model, spectrum, name, folder)
     if spectrum.states is None:
         return Weights(name, (), 0.0, float("nan"), float("nan"), ("no level to project on",), prepared.wave)
-    amplitudes = _amplitudes(spectrum, prepared)
+    amplitudes = _amplitudes(spectrum.states, len(spectrum.levels), prepared)
     errors = _errors(spectrum, prepared, amplitudes)
     values = np.array([level.value for level in spectrum.levels])
     shares = np.abs(amplitudes) ** 2
@@ -69,22 +69,22 @@ def project(model: Model, spectrum: Spectrum, name: str, folder: Path | None = N
     return Weights(name, weights, captured, mean, spread, _notes(spectrum, prepared, captured), prepared.wave)
 
 
-def _amplitudes(spectrum: Spectrum, prepared: Prepared) -> NDArray[np.complex128]:
+def _amplitudes(states: States, count: int, prepared: Prepared) -> Values:
     """Return <n|psi> for every level, in blocks of points."""
-    total = np.zeros(len(spectrum.levels), dtype=complex)
+    total = np.zeros(count, dtype=complex)
     for start in range(0, len(prepared.x), 4096):
         part = slice(start, start + 4096)
         x = prepared.x[part]
-        total += spectrum.states.evaluate(x).conj() @ (prepared.w[part] * np.nan_to_num(prepared.wave(x)))
+        total += states.evaluate(x).conj() @ (prepared.w[part] * np.nan_to_num(prepared.wave(x)))
     return total
 
 
-def _errors(spectrum: Spectrum, prepared: Prepared, amplitudes: NDArray[np.complex128]) -> NDArray[np.float64]:
+def _errors(spectrum: Spectrum, prepared: Prepared, amplitudes: Values) -> Array:
     """Return bounds on the errors of the weights: from the eigenstate's own error, the rule of integration and rounding."""
     off = spectrum.vector_error if len(spectrum.vector_error) else np.full(len(amplitudes), 1e-10)
     size = np.abs(amplitudes)
     slip = off + np.sqrt(max(prepared.missed, 0.0)) + ROUNDING
-    errors: NDArray[np.float64] = 2 * size * slip + slip**2
+    errors: Array = 2 * size * slip + slip**2
     return errors
 
 

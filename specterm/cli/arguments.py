@@ -29,7 +29,9 @@ def parser() -> argparse.ArgumentParser:
     _with_sheet(verbs.add_parser("levels", help="the levels, with error and kind"), solving=True)
     weights = _with_sheet(verbs.add_parser("weights", help="projection weights of a prepared state"), solving=True)
     weights.add_argument("state", metavar="STATE", help="a state of the sheet, or 'level(3)'")
-    figure = _with_sheet(verbs.add_parser("figure", help="potential, levels and eigenstates as a text figure"), solving=True, data=False)
+    figure = _with_sheet(
+        verbs.add_parser("figure", help="potential, levels and eigenstates as a text figure"), solving=True, data=False
+    )
     figure.add_argument("--levels", metavar="I,J", type=_indices, help="only these levels")
     figure.add_argument("--state", metavar="STATE", help="draw this prepared state too")
     figure.add_argument("--view", choices=("psi", "density", "levels"), default="psi", help="what is drawn at each level")
@@ -59,7 +61,9 @@ def _with_sheet(one: argparse.ArgumentParser, *, solving: bool, data: bool = Tru
     if solving:
         one.add_argument("-n", dest="count", type=_size(1), metavar="COUNT", help="how many levels")
         one.add_argument("--near", type=_number, metavar="E", help="the levels nearest to this energy")
-        one.add_argument("--tol", type=_tolerance, default=1e-8, metavar="T", help="error wanted, as a share of the level (1e-8)")
+        one.add_argument(
+            "--tol", type=_tolerance, default=1e-8, metavar="T", help="error wanted, as a share of the level (1e-8)"
+        )
     _with_output(one, data=data)
     return one
 

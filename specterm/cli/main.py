@@ -12,7 +12,7 @@ from specterm.cli.source import Source, overrides, read_source
 from specterm.errors import SpectermError, describe
 
 
-def main(words: Sequence[str]) -> int:
+def main(words: Sequence[str]) -> int:  # noqa: PLR0911 - one return for each way out
     """Run one command; 0 done, 1 the physics says no, 2 bad input. Errors are told on standard error, never as a traceback."""
     source: Source | None = None
     try:
@@ -115,9 +115,7 @@ def _as_text(arguments: argparse.Namespace, source: Source) -> int:
 
     model = verbs.model_of(arguments, source)
     spectrum = verbs.solved(arguments, model)
-    options = argparse.Namespace(
-        levels=None, state=None, width=100, height=32, view="psi", glyphs=arguments.glyphs
-    )
+    options = argparse.Namespace(levels=None, state=None, width=100, height=32, view="psi", glyphs=arguments.glyphs)
     parts = [verbs.levels_text(model, spectrum), "", verbs.figure_text(options, source, model, spectrum)]
     deliver("\n".join(parts), arguments.output)
     for warning in dict.fromkeys(spectrum.notes):

@@ -154,12 +154,15 @@ def _weights_text(model: Model, spectrum: Spectrum, found: Any) -> str:  # noqa:
     from specterm.views.level_table import Weighing, text_table  # noqa: PLC0415 - only text needs the views
     from specterm.views.numbers import short, with_unit  # noqa: PLC0415
 
-    weighing = Weighing(found.state, {w.index: w.weight for w in found.weights}, {w.index: w.error for w in found.weights}, found.captured)
+    weighing = Weighing(
+        found.state, {w.index: w.weight for w in found.weights}, {w.index: w.error for w in found.weights}, found.captured
+    )
     energy = model.units.energy
+    mean, spread = with_unit(short(found.mean), energy), with_unit(short(found.spread), energy)
     lines = [
         f"{found.state} on {expression_of(model)}",
         text_table(spectrum.levels, energy, weighing, glyphs_of(None)),
-        f"captured {found.captured:.10g}   mean {with_unit(short(found.mean), energy)}   spread {with_unit(short(found.spread), energy)}",
+        "   ".join([f"captured {found.captured:.10g}", f"mean {mean}", f"spread {spread}"]),
     ]
     return "\n".join(lines)
 
@@ -206,7 +209,7 @@ def glyphs_of(wanted: str | None) -> str:
 
 
 def check(arguments: argparse.Namespace, source: Source) -> Answer:
-    """Answer `check`: is the sheet well formed, the operator Hermitian, bounded below, with levels of its own?"""
+    """Answer `check`: whether the sheet is well formed, the operator Hermitian, bounded below, with levels of its own."""
     problems: list[dict[str, Any]] = []
     status, model = 0, None
     try:

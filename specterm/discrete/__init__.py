@@ -1,0 +1,1 @@
+"""Operator and domain to matrices: elements, their meshes, and what the coefficients do at the ends."""

@@ -1,7 +1,7 @@
 """The matrix left on the vertices at an energy: levels below it, and vectors near it.
 
-On a mesh with two ends the matrix is tridiagonal, on a ring it has one more coupling between last and first vertex, eliminated last.
-All functions take many energies at once.
+On a mesh with two ends the matrix is tridiagonal, on a ring it has one more coupling between last and first vertex, eliminated
+last. All functions take many energies at once.
 """
 
 from __future__ import annotations
@@ -9,14 +9,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array, Counts, Values
 from specterm.discrete.elements import Condensed
 from specterm.discrete.mesh import Mesh
-
-Array = NDArray[np.float64]
-Complex = NDArray[np.complex128]
-
 
 BLOCK = 512
 """Energies counted at once, to bound the memory taken."""
@@ -31,7 +27,7 @@ class Chain:
 
     diagonal: Array
     side: Array
-    corner: Complex | Array | None
+    corner: Values | None
 
 
 def chain(condensed: Condensed, energies: Array) -> Chain:
@@ -84,7 +80,7 @@ def _joined(mesh: Mesh, terms: Array) -> Chain:
     return Chain(diagonal[first:last], side[first : last - 1], None)
 
 
-def count_below(condensed: Condensed, energies: Array) -> NDArray[np.int64]:
+def count_below(condensed: Condensed, energies: Array) -> Counts:
     """Return the number of levels of the mesh below each energy, by the inertia of the shifted matrix (Sylvester)."""
     if len(energies) > BLOCK:
         return np.concatenate([count_below(condensed, energies[k : k + BLOCK]) for k in range(0, len(energies), BLOCK)])
@@ -95,7 +91,7 @@ def count_below(condensed: Condensed, energies: Array) -> NDArray[np.int64]:
     return below + _negative_ring(matrix)
 
 
-def _negative(diagonal: Array, side: Array) -> NDArray[np.int64]:
+def _negative(diagonal: Array, side: Array) -> Counts:
     """Return the number of negative pivots of tridiagonal matrices, all columns at once."""
     tiny = np.finfo(float).tiny ** 0.5
     count = np.zeros(diagonal.shape[1], dtype=np.int64)
@@ -119,17 +115,17 @@ def _nonzero(pivot: Array, tiny: float) -> Array:
     return pivot
 
 
-def _negative_ring(matrix: Chain) -> NDArray[np.int64]:
+def _negative_ring(matrix: Chain) -> Counts:
     """Return the number of negative pivots with the first vertex eliminated last."""
-    if len(matrix.diagonal) == 1:
+    if len(matrix.diagonal) == 1 and matrix.corner is not None:
         closed = matrix.diagonal[0] + 2 * np.real(matrix.corner)
         return (closed < 0).astype(np.int64)
     count, last, _ = eliminate_ring(matrix)
     return count + (last < 0)
 
 
-def eliminate_ring(matrix: Chain) -> tuple[NDArray[np.int64], Array, list[tuple[Array, Complex]]]:
-    """Eliminate all vertices but the first: negative pivots, what is left of the first, and (pivot, link to the first) of each."""
+def eliminate_ring(matrix: Chain) -> tuple[Counts, Array, list[tuple[Array, Values]]]:
+    """Eliminate all vertices but the first: return negative pivots, what is left of the first, (pivot, link) of each."""
     tiny = np.finfo(float).tiny ** 0.5
     vertices = len(matrix.diagonal)
     count = np.zeros(matrix.diagonal.shape[1], dtype=np.int64)
@@ -152,12 +148,12 @@ def eliminate_ring(matrix: Chain) -> tuple[NDArray[np.int64], Array, list[tuple[
     return count, last, steps
 
 
-def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array, NDArray[np.int64]]:
-    """Return for each column the vector z that solves the tridiagonal system but for one row, the misfit of that row, and the inertia.
+def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array, Counts]:
+    """Return the vectors z that solve the tridiagonal systems but for one row, the misfit of that row, and the inertia.
 
     Shapes (vertices, energies) and (energies,): T z = misfit e_r with z_r = 1 and |misfit|/weight_r least over r, the twisted
-    factorisation (Parlett and Dhillon, Linear Algebra Appl. 267 (1997) 247). `weight`, shaped like the diagonal, is the diagonal of the
-    mass: without it long elements would always win. The inertia (energies,) is the number of negative pivots.
+    factorisation (Parlett and Dhillon, Linear Algebra Appl. 267 (1997) 247). `weight`, shaped like the diagonal, is the
+    diagonal of the mass: without it long elements would always win. The inertia (energies,) is the number of negative pivots.
     """
     diagonal, side = matrix.diagonal, matrix.side
     vertices, columns = diagonal.shape
@@ -185,7 +181,7 @@ def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array, NDArray
     return z, gamma[twist, take], np.count_nonzero(down < 0, axis=0)
 
 
-def full_vertices(condensed: Condensed, z: NDArray[np.generic]) -> NDArray[np.generic]:
+def full_vertices(condensed: Condensed, z: Values) -> Values:
     """Return vertex values at both ends of each element, (elements, 2, levels), from those of the free vertices."""
     mesh = condensed.mesh
     elements = len(mesh.places) - 1
@@ -199,7 +195,7 @@ def full_vertices(condensed: Condensed, z: NDArray[np.generic]) -> NDArray[np.ge
     return np.stack([whole[:-1], whole[1:]], axis=1)
 
 
-def element_coefficients(condensed: Condensed, z: NDArray[np.generic], energies: Array) -> NDArray[np.generic]:
+def element_coefficients(condensed: Condensed, z: Values, energies: Array) -> Values:
     """Return the eigenfunctions' coefficients of the reference functions, (elements, functions, levels), not normalised."""
     ends = full_vertices(condensed, z)
     gaps = condensed.poles[:, :, None] - energies

@@ -1,12 +1,12 @@
 """From coefficients and a mesh to element matrices, condensed onto the vertices.
 
-The form  sum of integrals of K |psi'|^2 + V |psi|^2  is assembled element by element with Gauss rules of more points than
-the polynomials need. The interior of each element is diagonalised once, so that the matrix left on the vertices is known in closed
-form at every energy below the lowest interior eigenvalue (dynamic condensation; Wittrick and Williams, Q. J. Mech. Appl.
-Math. 24 (1971) 263, count the levels the same way).
+The form  sum of integrals of K |psi'|^2 + V |psi|^2  is assembled element by element with Gauss rules of more points than the
+polynomials need. The interior of each element is diagonalised once, so that the matrix left on the vertices is known in closed
+form at every energy below the lowest interior eigenvalue (dynamic condensation; Wittrick and Williams, Q. J. Mech. Appl. Math.
+24 (1971) 263, count the levels the same way).
 
-Where psi behaves as d**s at an end, psi = (d/h)**s phi is put into the first element; by partial integration the form becomes
-K phi'^2 + (V - s(s-1)K/d^2 - sK'/d) phi^2, both under the weight (d/h)**(2s), plus s K(h)/h phi(h)^2: no large terms cancel.
+Where psi behaves as d**s at an end, psi = (d/h)**s phi is put into the first element; by partial integration the form becomes K
+phi'^2 + (V - s(s-1)K/d^2 - sK'/d) phi^2, both under the weight (d/h)**(2s), plus s K(h)/h phi(h)^2: no large terms cancel.
 """
 
 from __future__ import annotations
@@ -15,13 +15,12 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array
 from specterm.discrete.mesh import Edge, Mesh
 from specterm.discrete.quadrature import gauss_jacobi, gauss_legendre
 from specterm.discrete.reference import SPARE, functions, tabulated
 
-Array = NDArray[np.float64]
 Coefficient = Callable[[Array], Array]
 
 EXTRA_POINTS = 8
@@ -30,7 +29,7 @@ EXTRA_POINTS = 8
 
 @dataclass(frozen=True)
 class Coefficients:
-    """K, K' and V as functions of x (shape (n,) to (n,)), and bounds of the rounding in V and K; V is measured from `origin`."""
+    """K, K' and V at places (n,), and bounds of the rounding in V and K; V is measured from `origin`."""
 
     stiffness: Coefficient
     slope: Coefficient
@@ -45,8 +44,8 @@ class Grid:
     """Where the integrals are taken, and the coefficients there; shapes (elements, points) unless said.
 
     `x` places, `factor` the power taken out (1 in ordinary elements), `kinetic`, `potential` and `mass` the weights under
-    phi_t^2, phi^2 and phi^2 (t runs from -1 to 1), quadrature weights and factors included; `edge` of shape (2,) is added to the
-    outer vertex terms of the first and last element; `values` and `slopes` of shape (elements or 1, points, functions).
+    phi_t^2, phi^2 and phi^2 (t runs from -1 to 1), quadrature weights and factors included; `edge` of shape (2,) is added to
+    the outer vertex terms of the first and last element; `values` and `slopes` of shape (elements or 1, points, functions).
     """
 
     x: Array
@@ -109,8 +108,8 @@ def _powered(mesh: Mesh, coefficients: Coefficients, side: int, end: Edge) -> tu
 class Condensed:
     """Element matrices with diagonal interiors.
 
-    `poles` (elements, bubbles): interior eigenvalues; `coupling` (elements, 2, bubbles); `stiff` and `heavy` (elements, 2, 2): the
-    vertex parts of form and mass; `basis` (elements, functions, functions): columns are the new functions (two vertex
+    `poles` (elements, bubbles): interior eigenvalues; `coupling` (elements, 2, bubbles); `stiff` and `heavy` (elements, 2, 2):
+    the vertex parts of form and mass; `basis` (elements, functions, functions): columns are the new functions (two vertex
     functions without mass overlap with the interior, then interior eigenfunctions) in terms of the reference functions.
     """
 
@@ -173,7 +172,9 @@ def residual_share(condensed: Condensed, coefficients: Array, values: Array) -> 
     spare, spare_slopes = here.values[..., n : n + SPARE], here.slopes[..., n : n + SPARE]
     psi, slope = here.values[..., :n] @ coefficients, here.slopes[..., :n] @ coefficients
     flat = here.potential[:, :, None] - values * here.mass[:, :, None]
-    residual = np.swapaxes(spare_slopes, -1, -2) @ (here.kinetic[:, :, None] * slope) + np.swapaxes(spare, -1, -2) @ (flat * psi)
+    residual = np.swapaxes(spare_slopes, -1, -2) @ (here.kinetic[:, :, None] * slope) + np.swapaxes(spare, -1, -2) @ (
+        flat * psi
+    )
     own = np.einsum("eqm,eq->em", spare_slopes**2, here.kinetic, optimize=False)
     share = np.abs(residual) ** 2 / np.maximum(own, np.finfo(float).tiny)[:, :, None]
     total: Array = share.sum(axis=1)

@@ -6,12 +6,10 @@ import math
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array
 from specterm.discrete.problem import Problem
 from specterm.errors import PhysicsError
-
-Array = NDArray[np.float64]
 
 STEEP = 6.0
 """From this power of the distance on, psi near a singular end is cut off where it has died instead of factored."""
@@ -19,7 +17,10 @@ STEEP = 6.0
 
 @dataclass(frozen=True)
 class NearEnd:
-    """A finite end. `kind`: "wall" (psi = 0), "free" (zero slope), "power" (psi ~ d**power, K ~ d**alpha) or "steep" (psi dies before it)."""
+    """A finite end.
+
+    `kind`: "wall" (psi = 0), "free" (zero slope), "power" (psi ~ d**power, K ~ d**alpha) or "steep" (psi dies before it).
+    """
 
     kind: str
     power: float = 0.0
@@ -28,8 +29,9 @@ class NearEnd:
 
 @dataclass(frozen=True)
 class FarEnd:
-    """An open end. `limit` is what V tends to (+inf where it confines). `reach` is the place beyond which V - limit is lost in rounding.
+    """An open end.
 
+    `limit` is what V tends to (+inf where it confines), `reach` the place beyond which V - limit is lost in rounding.
     `tail` is (V - limit) x^2 / K at `reach`; `endless` says that infinitely many levels lie below the limit.
     """
 
@@ -54,9 +56,13 @@ def near_end(problem: Problem, side: int) -> NearEnd:
     if len(blown) and blown[-1] + 1 < len(d) and potential[blown[-1] + 1] > 1e100:
         return NearEnd("steep")
     if not np.isfinite(stiffness[0]) or len(blown):
-        raise PhysicsError(f"the operator has no value at the end x = {end:.6g} of the domain", mend="move the end of the domain")
+        raise PhysicsError(
+            f"the operator has no value at the end x = {end:.6g} of the domain", mend="move the end of the domain"
+        )
     if alpha < -1e-6 or alpha >= 2:
-        raise PhysicsError(f"the coefficient between the momenta is too singular at the end {end:.6g}", mend="move that end inwards")
+        raise PhysicsError(
+            f"the coefficient between the momenta is too singular at the end {end:.6g}", mend="move that end inwards"
+        )
     strength = _strength(problem, end, sign, d, stiffness, potential, (1 - alpha) ** 2)
     growth = math.log2(abs(potential[0] / potential[8])) / math.log2(d[8] / d[0]) if potential[0] * potential[8] > 0 else 0.0
     singular = growth > 0.2 and abs(potential[0]) > 4 * abs(potential[8]) * 0.999
@@ -67,7 +73,7 @@ def near_end(problem: Problem, side: int) -> NearEnd:
     lowest = -((1 - alpha) ** 2) / 4
     if strength < lowest - 1e-9 * max(1.0, abs(lowest)) or (growth > 2.05 and potential[0] < 0):
         raise PhysicsError(
-            f"the attraction at the end {end:.6g} is too strong: there the operator is not bounded below and has no lowest level",
+            f"the attraction at the end {end:.6g} is too strong: the operator is not bounded below, it has no lowest level",
             mend=f"an inverse square needs a strength of at least {lowest:g} times the coefficient between the momenta",
         )
     root = math.sqrt(max(0.0, (1 - alpha) ** 2 + 4 * strength))
@@ -80,7 +86,7 @@ def near_end(problem: Problem, side: int) -> NearEnd:
 
 
 def refuse_inner_poles(problem: Problem) -> None:
-    """Raise PhysicsError where V grows as 1/d or faster towards an edge or centre inside the domain: what happens there is not fixed."""
+    """Raise PhysicsError where V grows as 1/d or faster towards a place inside the domain: what happens there is not fixed."""
     marks = np.unique(np.concatenate([problem.edges[:400], problem.centres[:400]]))
     marks = marks[(marks > problem.left) & (marks < problem.right)]
     if len(marks) == 0:
@@ -95,7 +101,8 @@ def refuse_inner_poles(problem: Problem) -> None:
         pole = np.isfinite(growth) & (growth > 0.9)
         if pole.any():
             raise PhysicsError(
-                f"the potential is singular at {marks[pole][0]:.9g}, inside the domain", mend="end the domain there: the two sides do not mix"
+                f"the potential is singular at {marks[pole][0]:.9g}, inside the domain",
+                mend="end the domain there: the two sides do not mix",
             )
 
 
@@ -112,8 +119,8 @@ def _strength(
 ) -> float:
     """Return the limit of V d^2 / K at the end: extrapolated from a short distance, or taken at the shortest.
 
-    A multiple of 1/4 is taken where only rounding tells the limit from it; more strictly near the critical -critical/4, where the power
-    of psi goes with the square root of the difference.
+    A multiple of 1/4 is taken where only rounding tells the limit from it; more strictly near the critical -critical/4, where
+    the power of psi goes with the square root of the difference.
     """
     shortest = float(potential[0] * d[0] ** 2 / stiffness[0])
     steps = d[-1] * np.arange(1, 9) / 8
@@ -142,7 +149,9 @@ def _power(value: float) -> float:
 def far_end(problem: Problem, side: int) -> FarEnd:
     """Classify an open end by the values of V far out; raise PhysicsError where V falls without limit or never settles."""
     sign = -1.0 if side == 0 else 1.0
-    marks = np.concatenate([problem.edges, problem.centres, [e for e in (problem.left, problem.right) if np.isfinite(e)], [0.0]])
+    marks = np.concatenate(
+        [problem.edges, problem.centres, [e for e in (problem.left, problem.right) if np.isfinite(e)], [0.0]]
+    )
     middle = float(marks.min() if side == 0 else marks.max())
     d = np.exp2(np.arange(-130.0, 1000.0, 1.0))
     d = d[d > 4 * np.spacing(abs(middle))]
@@ -158,7 +167,7 @@ def far_end(problem: Problem, side: int) -> FarEnd:
     stop = len(d) if finite[start:].all() else start + int(np.argmin(finite[start:]))
     first_lost = values[stop] if stop < len(d) else np.nan
     values, d, stiffness = values[start:stop], d[start:stop], stiffness[start:stop]
-    verdict = _settles(values, d, first_lost)
+    verdict = _settles(values, first_lost)
     where = "x -> -inf" if side == 0 else "x -> inf"
     if verdict == "rises":
         return FarEnd(math.inf, middle + sign * d[-1], math.inf, False)
@@ -175,7 +184,7 @@ def far_end(problem: Problem, side: int) -> FarEnd:
     return _tail(values, d, stiffness, middle, sign)
 
 
-def _settles(values: Array, d: Array, first_lost: float) -> str:
+def _settles(values: Array, first_lost: float) -> str:
     """Return "settles", "rises", "falls" or "wanders" for values at doubling distances."""
     if np.isinf(first_lost):
         return "rises" if first_lost > 0 else "falls"
@@ -216,7 +225,7 @@ def _tail(values: Array, d: Array, stiffness: Array, middle: float, sign: float)
 def _limit(values: Array) -> float:
     """Return the limit of settling values by one step of Aitken's extrapolation."""
     before, last = values[-2] - values[-3], values[-1] - values[-2]
-    if last == 0 or last == before:
+    if last in {0, before}:
         return float(values[-1])
     limit = float(values[-1] - last * (last / (last - before)))
     return 0.0 if abs(limit) <= 1e-9 * abs(values[-1]) else limit

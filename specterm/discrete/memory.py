@@ -39,5 +39,6 @@ def refuse_above(needed: float, what: str) -> None:
     left = memory_left()
     if needed > SHARE * left:
         raise PhysicsError(
-            f"{what} would take {needed / 1e9:.2g} GB, and {left / 1e9:.2g} GB are left", mend="ask for fewer levels, or use a larger machine"
+            f"{what} would take {needed / 1e9:.2g} GB, and {left / 1e9:.2g} GB are left",
+            mend="ask for fewer levels, or use a larger machine",
         )

@@ -5,9 +5,8 @@ from __future__ import annotations
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
-Array = NDArray[np.float64]
+from specterm.arrays import Array, Flags
 
 
 @dataclass(frozen=True)
@@ -52,7 +51,7 @@ class Mesh:
         vertices = elements if self.phase is not None else elements + 1 - self.left.fixed - self.right.fixed
         return elements * (self.order - 1) + vertices
 
-    def split(self, which: NDArray[np.bool_]) -> Mesh:
+    def split(self, which: Flags) -> Mesh:
         """Return the mesh with the marked elements cut in two; an element with a power in it is cut nearer to its end."""
         index = np.flatnonzero(which)
         share = np.full(len(index), 0.5)

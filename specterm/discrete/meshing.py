@@ -1,20 +1,18 @@
-"""Choosing a mesh for an energy: lengths follow the local wavelength and decay length, and the coefficients must be resolved."""
+"""Choosing a mesh for an energy: lengths follow wavelength and decay length, and the coefficients must be resolved."""
 
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array, Flags
 from specterm.discrete.elements import Coefficients, Grid, grid
 from specterm.discrete.mesh import Edge, Mesh
 from specterm.discrete.problem import Problem
 from specterm.discrete.quadrature import gauss_jacobi, gauss_legendre
 from specterm.discrete.scan import Scan
 from specterm.errors import PhysicsError
-
-Array = NDArray[np.float64]
 
 ALLOWED = 2.0
 """Phase of the wave in one element, in radians; below pi, so that interiors have no level under the energies sought."""
@@ -55,7 +53,9 @@ def _first_places(problem: Problem, look: Scan, span: Span, energy: float) -> Ar
     rate = np.where(np.isfinite(rate), rate, scale)
     rate = np.concatenate([rate[:1], rate, rate[-1:]]) if len(rate) else np.full(2, scale)
     share = np.concatenate([[0.0], np.cumsum((rate[1:] + rate[:-1]) / 2 * np.diff(x))])
-    marks = np.concatenate([[span.left], problem.edges[(problem.edges > span.left) & (problem.edges < span.right)], [span.right]])
+    marks = np.concatenate(
+        [[span.left], problem.edges[(problem.edges > span.left) & (problem.edges < span.right)], [span.right]]
+    )
     at = np.interp(marks, x, share)
     pieces = np.maximum(1, np.ceil(np.diff(at) - 1e-9)).astype(int)
     if len(marks) == 2:
@@ -63,12 +63,14 @@ def _first_places(problem: Problem, look: Scan, span: Span, energy: float) -> Ar
     if pieces.sum() > MOST_ELEMENTS:
         worst = x[int(np.argmax(np.diff(share)))]
         raise PhysicsError(
-            f"this needs about {pieces.sum():.2g} elements, more than the {MOST_ELEMENTS} allowed, most of them near {worst:.6g}",
+            f"this needs some {pieces.sum():.2g} elements, more than the {MOST_ELEMENTS} allowed, most near {worst:.6g}",
             mend="ask for fewer or lower levels; if the potential is singular there, end the domain there",
         )
     if pieces.sum() == len(marks) - 1:
         return marks
-    fresh = [np.interp(a + (b - a) * np.arange(1, n) / n, share, x) for a, b, n in zip(at[:-1], at[1:], pieces, strict=True) if n > 1]
+    fresh = [
+        np.interp(a + (b - a) * np.arange(1, n) / n, share, x) for a, b, n in zip(at[:-1], at[1:], pieces, strict=True) if n > 1
+    ]
     return np.unique(np.concatenate([marks, *fresh]))
 
 
@@ -82,7 +84,7 @@ def _without_powers(look: Scan, span: Span) -> Scan:
 
 
 def graded(places: Array) -> Array:
-    """Return places with more between them, so that no element is much longer than its neighbours: tails of any length are held."""
+    """Return places with more between them, so that no element is much longer than its neighbours and tails are held."""
     while True:
         lengths = np.diff(places)
         beside = np.minimum(np.append(lengths[1:], np.inf), np.append(np.inf, lengths[:-1]))
@@ -109,7 +111,7 @@ def resolve(mesh: Mesh, coefficients: Coefficients, energy: float, look: Scan | 
     raise PhysicsError("the coefficients vary too fast to be resolved", mend="narrow the domain or smooth the potential")
 
 
-def _refuse_poles(mesh: Mesh, rough: NDArray[np.bool_]) -> None:
+def _refuse_poles(mesh: Mesh, rough: Flags) -> None:
     """Raise PhysicsError where an element inside the domain has shrunk to rounding: the potential has a pole there."""
     reach = np.maximum(np.abs(mesh.places[:-1]), np.abs(mesh.places[1:]))
     lost = rough & (mesh.lengths < 64 * np.spacing(reach))
@@ -117,10 +119,13 @@ def _refuse_poles(mesh: Mesh, rough: NDArray[np.bool_]) -> None:
     lost[-1] &= mesh.right.power is None
     if lost.any():
         place = mesh.places[int(np.argmax(lost))]
-        raise PhysicsError(f"the potential is singular at {place:.9g}, inside the domain", mend="end the domain there: the two sides do not mix")
+        raise PhysicsError(
+            f"the potential is singular at {place:.9g}, inside the domain",
+            mend="end the domain there: the two sides do not mix",
+        )
 
 
-def unresolved(mesh: Mesh, here: Grid, coefficients: Coefficients, energy: float) -> NDArray[np.bool_]:
+def unresolved(mesh: Mesh, here: Grid, coefficients: Coefficients, energy: float) -> Flags:
     """Say of each element whether its coefficients, or waves of this energy, are too rough for its length and order."""
     with np.errstate(all="ignore"):
         potential = here.potential / here.mass - energy
@@ -155,12 +160,14 @@ def unseen(mesh: Mesh, here: Grid, coefficients: Coefficients) -> tuple[Array, A
     with np.errstate(all="ignore"):
         potential, stiffness = here.potential / here.mass, here.kinetic / here.mass
         parts = [_high(potential), _high(stiffness)]
-        for part, noise, scale in zip(
-            parts, (coefficients.noise_potential, coefficients.noise_stiffness), (1.0, (2 / mesh.lengths[:, None]) ** 2), strict=True
+        steep = np.ones(here.x.shape), np.broadcast_to((2 / mesh.lengths[:, None]) ** 2, here.x.shape)
+        for part, noise, scale in (
+            (parts[0], coefficients.noise_potential, steep[0]),
+            (parts[1], coefficients.noise_stiffness, steep[1]),
         ):
             seen = part > 0
             if seen.any():
-                level = (noise(here.x[seen].ravel()).reshape(-1, here.x.shape[1]) * np.broadcast_to(scale, here.x.shape)[seen]).max(axis=1)
+                level = (noise(here.x[seen].ravel()).reshape(-1, here.x.shape[1]) * scale[seen]).max(axis=1)
                 part[seen] = np.maximum(0, part[seen] - 2 * level)
         for side, end, place in ((0, mesh.left, mesh.places[0]), (-1, mesh.right, mesh.places[-1])):
             if end.power is not None:
@@ -191,7 +198,7 @@ def _high_powered(values: Array, beta: float) -> float:
     return float(max(0.0, np.abs(coefficients[-4:]).max() - 16 * np.finfo(float).eps * np.abs(coefficients).max()))
 
 
-def _missed(mesh: Mesh, here: Grid, look: Scan, origin: float, energy: float) -> NDArray[np.bool_]:
+def _missed(mesh: Mesh, here: Grid, look: Scan, origin: float, energy: float) -> Flags:
     """Mark elements in which the scan saw values of V far from what the Gauss points of the element tell."""
     rough = np.zeros(len(mesh.lengths), dtype=bool)
     inside = (look.x > mesh.places[0]) & (look.x < mesh.places[-1]) & np.isfinite(look.potential)
@@ -199,7 +206,9 @@ def _missed(mesh: Mesh, here: Grid, look: Scan, origin: float, energy: float) ->
     element = np.searchsorted(mesh.places, x, side="right") - 1
     plain = np.ones(len(rough), dtype=bool)
     plain[0], plain[-1] = mesh.left.power is None, mesh.right.power is None
-    near = np.minimum(x - mesh.places[element], mesh.places[element + 1] - x) < 1e-12 * np.maximum(np.abs(x), mesh.lengths[element])
+    near = np.minimum(x - mesh.places[element], mesh.places[element + 1] - x) < 1e-12 * np.maximum(
+        np.abs(x), mesh.lengths[element]
+    )
     keep = plain[element] & ~near
     x, v, element = x[keep], v[keep], element[keep]
     local = here.potential / here.mass - energy

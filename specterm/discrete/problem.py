@@ -5,10 +5,8 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 
-import numpy as np
-from numpy.typing import NDArray
+from specterm.arrays import Array
 
-Array = NDArray[np.float64]
 Coefficient = Callable[[Array], Array]
 
 
@@ -16,11 +14,12 @@ Coefficient = Callable[[Array], Array]
 class Problem:
     """The form  integral of K |psi'|^2 + V |psi|^2  on (left, right), with K > 0.
 
-    A first-order term has been taken into V and the phase of psi (`twist`, d theta/dx with psi = exp(i theta) phi, phi real; None
-    where there is none). Ends are "wall", "free", "open" or "ring"; `phase` is the whole phase of phi around the ring in radians.
-    `noise_stiffness` and `noise_potential` bound the rounding of K and V as evaluated. `edges` are places where a
+    A first-order term has been taken into V and the phase of psi (`twist`, d theta/dx with psi = exp(i theta) phi, phi real;
+    None where there is none). Ends are "wall", "free", "open" or "ring"; `phase` is the whole phase of phi around the ring in
+    radians. `noise_stiffness` and `noise_potential` bound the rounding of K and V as evaluated. `edges` are places where a
     coefficient or a derivative of it jumps, `centres` places around which it may vary on any scale. `sign` is -1 where the
-    operator was turned over because it has a highest level instead of a lowest one. `bloch` says that the sheet gives a Bloch phase.
+    operator was turned over because it has a highest level instead of a lowest one. `bloch` says that the sheet gives a Bloch
+    phase.
     """
 
     stiffness: Coefficient

@@ -6,9 +6,8 @@ import math
 from functools import lru_cache
 
 import numpy as np
-from numpy.typing import NDArray
 
-Array = NDArray[np.float64]
+from specterm.arrays import Array
 
 
 @lru_cache(maxsize=64)

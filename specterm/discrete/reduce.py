@@ -5,20 +5,19 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array
 from specterm.discrete.problem import Problem
 from specterm.discrete.quadrature import gauss_legendre
 from specterm.errors import PhysicsError
 from specterm.model import Function, Model
 
-Array = NDArray[np.float64]
-
 
 def problem_of(model: Model) -> Problem:
     """Return the problem of the model's main operator, which must be Hermitian and of second order.
 
-    A first-order term B is taken into V as -B^2/(4 K), and into the phase of psi as the integral of -B/(2 K) (a gauge transformation).
+    A first-order term B is taken into V as -B^2/(4 K), and into the phase of psi as the integral of -B/(2 K) (a gauge
+    transformation).
     """
     sturm = model.operators[model.main].sturm()
     stiffness, potential, twist = sturm.K, sturm.V, None

@@ -6,11 +6,9 @@ import math
 from functools import lru_cache
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array
 from specterm.discrete.quadrature import gauss_legendre
-
-Array = NDArray[np.float64]
 
 SPARE = 4
 """How many bubbles beyond the order are kept to estimate what the order leaves out."""

@@ -5,12 +5,10 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array, Flags
 from specterm.discrete.problem import Problem
 from specterm.errors import PhysicsError
-
-Array = NDArray[np.float64]
 
 OCTAVES = 133
 """Octaves covered above and below the unit of length around each centre of an open domain (1e-40 to 1e40)."""
@@ -44,7 +42,9 @@ def scan(problem: Problem) -> Scan:
     x, stiffness, potential = x[good], stiffness[good], potential[good]
     if np.isnan(potential).any():
         place = x[np.flatnonzero(np.isnan(potential))[0]]
-        raise PhysicsError(f"the potential is not a number at {place:.6g}", mend="narrow the domain or mend the expression there")
+        raise PhysicsError(
+            f"the potential is not a number at {place:.6g}", mend="narrow the domain or mend the expression there"
+        )
     if np.isnan(stiffness).any() or (stiffness <= 0).any():
         place = x[np.flatnonzero(~(stiffness > 0))[0]]
         raise PhysicsError(
@@ -54,7 +54,7 @@ def scan(problem: Problem) -> Scan:
     return Scan(x, stiffness, potential)
 
 
-def _trusted(x: Array, stiffness: Array, potential: Array, problem: Problem) -> NDArray[np.bool_]:
+def _trusted(x: Array, stiffness: Array, potential: Array, problem: Problem) -> Flags:
     """Leave out the outermost places where only overflow makes K or V useless: far out on an open side, or at a steep end."""
     bad = ~(np.isfinite(stiffness) & (stiffness > 0)) | np.isnan(potential) | np.isinf(potential)
     good = np.ones(len(x), dtype=bool)
@@ -120,7 +120,7 @@ def energy_for(look: Scan, count: float, extra: Array, floor: float, ceiling: fl
     else:
         for _ in range(40):
             rungs = floor + step * 4.0 ** np.arange(24)
-            reached = semiclassical_count(look, rungs, extra) > count
+            reached = semiclassical_count(look, np.asarray(rungs, dtype=np.float64), extra) > count
             if reached.any():
                 first = int(np.argmax(reached))
                 low, high = (float(rungs[first - 1]) if first else floor), float(rungs[first])
@@ -130,7 +130,7 @@ def energy_for(look: Scan, count: float, extra: Array, floor: float, ceiling: fl
             raise PhysicsError("the operator seems to have no such level: the phase integral stays finite at all energies")
     for _ in range(8):
         rungs = np.linspace(low, high, 18)
-        reached = semiclassical_count(look, rungs, extra) > count
+        reached = semiclassical_count(look, np.asarray(rungs, dtype=np.float64), extra) > count
         first = max(1, int(np.argmax(reached))) if reached.any() else 17
         low, high = float(rungs[first - 1]), float(rungs[first])
         if high - low <= 0.01 * (high - floor):

@@ -5,18 +5,16 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array
 from specterm.discrete.elements import residual_share
 from specterm.discrete.meshing import unseen
 from specterm.discrete.reference import end_slopes
 from specterm.spectrum.setting import Setting
 from specterm.spectrum.vectors import Solved
 
-Array = NDArray[np.float64]
-
 SAFETY = 4.0
-"""Factor on the hierarchical estimate: what lies beyond the spare bubbles, and the coupling between elements, which it leaves out."""
+"""Factor on the hierarchical estimate, for what it leaves out: higher degrees, and the coupling between elements."""
 EPS = float(np.finfo(float).eps)
 NOISE = 12 * EPS
 """Rounding of a Rayleigh quotient relative to its parts; three times the largest seen over the reference cases."""
@@ -24,8 +22,9 @@ NOISE = 12 * EPS
 
 @dataclass(frozen=True)
 class Accuracy:
-    """Parts of the error of each level: `residual` and `unseen` (elements, levels) by element, `cut` (2, levels) by end, `noise` (levels,).
+    """Parts of the error of each level.
 
+    `residual` and `unseen` (elements, levels) are by element, `cut` (2, levels) by end, `noise` (levels,).
     `residual` and `cut` go with the square of the error of the state, `unseen` and `noise` with the coefficients.
     """
 
@@ -64,7 +63,7 @@ def _block(ready: Setting, solved: Solved) -> Accuracy:
 
 
 def _unseen_share(ready: Setting, solved: Solved) -> Array:
-    """Return by how much each value may be off because the Gauss rule did not see the coefficients whole: (elements, levels)."""
+    """Return how far each value may be off as the Gauss rule did not see the coefficients whole: (elements, levels)."""
     here = solved.condensed.grid
     n = solved.condensed.mesh.order + 1
     density = np.einsum("eq,eqn->en", here.mass, np.abs(here.values[..., :n] @ solved.coefficients) ** 2)
@@ -77,7 +76,8 @@ def _unseen_share(ready: Setting, solved: Solved) -> Array:
 def _cut(ready: Setting, solved: Solved) -> Array:
     """Return by how much each value would sink if psi were not held at zero where an open end was cut.
 
-    The value moves with the wall as dE/dX = -K psi'(X)^2 (Hadamard's formula); beyond the cut psi' falls at least as exp(-kappa x).
+    The value moves with the wall as dE/dX = -K psi'(X)^2 (Hadamard's formula); beyond the cut psi' falls at least as exp(-kappa
+    x).
     """
     problem, look, origin = ready.problem, ready.look, ready.floor
     mesh = solved.condensed.mesh
@@ -100,7 +100,7 @@ def _cut(ready: Setting, solved: Solved) -> Array:
 
 
 def _noise(ready: Setting, solved: Solved) -> Array:
-    """Return a bound on the rounding in each value: of the quotient, of K and V as evaluated, and of the places of ends and jumps."""
+    """Return a bound on the rounding in each value: of the quotient, of K and V, of the places of ends and jumps."""
     problem = ready.problem
     here = solved.condensed.grid
     n = solved.condensed.mesh.order + 1

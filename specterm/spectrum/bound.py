@@ -20,9 +20,9 @@ MARGIN = 1e-13
 def bound_levels(ready: Setting) -> int | None:
     """Return how many levels lie below the threshold, or None where there are infinitely many.
 
-    A tail that falls faster than 1/x^2 lets a function go to zero at no cost far out, so the form on the mesh with free ends has as many
-    negative directions as the whole one has (Sylvester); a 1/x^2 tail of strength c adds its least cost, -K s/X with
-    s = (1 - sqrt(1 + 4 c))/2, at the end X.
+    A tail that falls faster than 1/x^2 lets a function go to zero at no cost far out, so the form on the mesh with free ends
+    has as many negative directions as the whole one has (Sylvester); a 1/x^2 tail of strength c adds its least cost, -K s/X
+    with s = (1 - sqrt(1 + 4 c))/2, at the end X.
     """
     if any(isinstance(end, FarEnd) and end.limit == ready.threshold and end.endless for end in ready.ends):
         return None

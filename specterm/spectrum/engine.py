@@ -7,8 +7,8 @@ import time
 from collections.abc import Callable
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array
 from specterm.discrete.chain import count_below
 from specterm.discrete.elements import condense, grid
 from specterm.discrete.mesh import Edge, Mesh
@@ -26,8 +26,6 @@ from specterm.spectrum.setting import Setting, setting, span_at
 from specterm.spectrum.states import ElementStates
 from specterm.spectrum.symmetry import parities
 from specterm.spectrum.vectors import Solved
-
-Array = NDArray[np.float64]
 
 USUAL = 10
 """How many levels are computed when nobody says."""
@@ -49,7 +47,8 @@ def solve(
     model
         A sheet made ready.
     count
-        How many levels; without it, up to `USUAL` of the true ones. When more are asked for than are bound, the rest are of kind "box".
+        How many levels; without it, up to `USUAL` of the true ones. When more are asked for than are bound, the rest are of
+        kind "box".
     near
         Return the levels nearest to this energy instead of the lowest.
     tolerance
@@ -60,13 +59,14 @@ def solve(
     Raises
     ------
     PhysicsError
-        Where the operator is not Hermitian or not self-adjoint on the domain, has no lowest or highest level, or has no value somewhere.
+        Where the operator is not Hermitian or not self-adjoint on the domain, has no lowest or highest level, or has no value
+        somewhere.
 
     Notes
     -----
-    Spectral elements of order 12, condensed onto their vertices; levels bracketed by inertia counts, values as Rayleigh quotients by
-    element; error from a hierarchical estimate, the wall's force at each cut and a bound on rounding. Tested to n = 1000
-    levels, lengths and energies from 1e-9 to 1e9 and splittings to 1e-14 of the level.
+    Spectral elements of order 12, condensed onto their vertices; levels bracketed by inertia counts, values as Rayleigh
+    quotients by element; error from a hierarchical estimate, the wall's force at each cut and a bound on rounding. Tested to n
+    = 1000 levels, lengths and energies from 1e-9 to 1e9 and splittings to 1e-14 of the level.
     """
     start = time.perf_counter()
     _refuse_bad(count, tolerance)
@@ -163,7 +163,10 @@ def _reach(ready: Setting) -> Span:
     open_left, open_right = ready.problem.left_end == "open", ready.problem.right_end == "open"
     edges = (base.left_edge, base.right_edge) if base is not None else (Edge(True), Edge(True))
     return Span(
-        left - width if open_left else ready.problem.left, right + width if open_right else ready.problem.right, edges[0], edges[1]
+        left - width if open_left else ready.problem.left,
+        right + width if open_right else ready.problem.right,
+        edges[0],
+        edges[1],
     )
 
 
@@ -200,12 +203,13 @@ def _spectrum(ready: Setting, refined: Refined, first: int, bound: int | None, t
     return Spectrum(
         tuple(levels), ElementStates(solved, problem.twist), bound, threshold, complete,
         float(mesh.places[0]), float(mesh.places[-1]), f"spectral elements, {len(mesh.places) - 1} of order {mesh.order}",
-        mesh.unknowns, tolerance, notes=tuple(notes), from_top=problem.sign < 0, values=values, vector_error=refined.vector_error,
+        mesh.unknowns, tolerance, notes=tuple(notes), from_top=problem.sign < 0, values=values,
+        vector_error=refined.vector_error,
     )  # fmt: skip
 
 
 def _scales(solved: Solved) -> Array:
-    """Return what the error of each level is judged by: its distance to the potential's minimum, or to the next level if that is larger."""
+    """Return what the errors are judged by: the distance to the potential's minimum, or to the next level if larger."""
     scale = np.maximum(np.abs(solved.values), solved.kinetic)
     steps = np.diff(solved.values)
     scale[:-1] = np.maximum(scale[:-1], steps)
@@ -228,9 +232,10 @@ def _complete(ready: Setting, refined: Refined, first: int, count: int) -> bool:
     gap = max(1e-9 * abs(highest), 4 * float(refined.error[-1]) if np.isfinite(refined.error[-1]) else 0.0)
     finer = Mesh(mesh.places, mesh.order + 2, mesh.left, mesh.right, mesh.phase)
     again = condense(finer, grid(finer, ready.coefficients))
-    return int(count_below(again, np.array([highest + gap]))[0]) >= first + count and int(
-        count_below(again, np.array([float(refined.solved.values[0]) - gap]))[0]
-    ) <= first
+    return (
+        int(count_below(again, np.array([highest + gap]))[0]) >= first + count
+        and int(count_below(again, np.array([float(refined.solved.values[0]) - gap]))[0]) <= first
+    )
 
 
 def _dense(model: Model, count: int, near: float | None, tolerance: float, stop: Callable[[], bool]) -> Spectrum:
@@ -244,10 +249,13 @@ def _dense(model: Model, count: int, near: float | None, tolerance: float, stop:
         good = error <= tolerance * max(abs(value), abs(value - floor), 1e-300)
         kind = ("band" if model.domain.phase is not None else "bound") if good else "unresolved"
         levels.append(Level(k, float(value), float(error), kind))
-    notes = (*model.warnings, *(["some levels do not reach the tolerance: kind unresolved"] if any(v.kind == "unresolved" for v in levels) else []))
+    notes = (
+        *model.warnings,
+        *(["some levels do not reach the tolerance: kind unresolved"] if any(v.kind == "unresolved" for v in levels) else []),
+    )
     return Spectrum(
-        tuple(levels), found.states, None, None, found.agree, found.box.left, found.box.right, f"Fourier basis, {found.box.points} waves",
-        found.box.points, tolerance, notes=notes, values=found.values,
+        tuple(levels), found.states, None, None, found.agree, found.box.left, found.box.right,
+        f"Fourier basis, {found.box.points} waves", found.box.points, tolerance, notes=notes, values=found.values,
     )  # fmt: skip
 
 

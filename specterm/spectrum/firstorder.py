@@ -4,18 +4,14 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
-from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array, Counts, Values
 from specterm.discrete.quadrature import gauss_legendre
 from specterm.discrete.reduce import integral
 from specterm.errors import PhysicsError
 from specterm.model import Function, Model
-
-Array = NDArray[np.float64]
-Values = NDArray[Any]
 
 
 @dataclass(frozen=True)
@@ -45,7 +41,7 @@ class RunningStates:
         growth = self.rate.derivative()(x) / (2 * self.rate(x))
         return psi * (growth + 1j * (np.outer(self.values, self.rate(x)) - self.drift(x)))
 
-    def _phases(self, x: Array, element: NDArray[np.int64]) -> tuple[Array, Array]:
+    def _phases(self, x: Array, element: Counts) -> tuple[Array, Array]:
         """Return the integrals of 1/B and V/B from the left end to x."""
         t, w = gauss_legendre(20)
         results = []
@@ -63,7 +59,7 @@ class RunningStates:
 class RunningLevels:
     """Quantum numbers, values and errors (levels,) and the states."""
 
-    numbers: NDArray[np.int64]
+    numbers: Counts
     values: Array
     error: Array
     states: RunningStates
@@ -89,7 +85,7 @@ def running_levels(model: Model, count: int, near: float | None) -> RunningLevel
     turn = domain.phase or 0.0
     centre = round((near * around - offset) / (2 * math.pi) - turn)
     numbers = centre + np.arange(-count - 1, count + 2)
-    values = (2 * math.pi * (numbers + turn) + offset) / around
+    values: Array = np.asarray((2 * math.pi * (numbers + turn) + offset) / around, dtype=np.float64)
     nearest = np.sort(np.argsort(np.abs(values - near), kind="stable")[:count])
     numbers, values = numbers[nearest], values[nearest]
     order = np.argsort(values)

@@ -1,7 +1,7 @@
 """Levels of operators of higher order than two, where everything is smooth: a Fourier basis on a ring or on a wide box.
 
-Differentiation is exact in the basis; the box and the number of points follow from where the symbol h(x, k), the operator with d/dx
-replaced by i k, lies below the energy sought (Boyd, Chebyshev and Fourier Spectral Methods, 2nd ed. 2001, chapter 17).
+Differentiation is exact in the basis; the box and the number of points follow from where the symbol h(x, k), the operator with
+d/dx replaced by i k, lies below the energy sought (Boyd, Chebyshev and Fourier Spectral Methods, 2nd ed. 2001, chapter 17).
 """
 
 from __future__ import annotations
@@ -11,13 +11,10 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array, Values
 from specterm.errors import PhysicsError, WorkStopped
 from specterm.model import Form, Model
-
-Array = NDArray[np.float64]
-Complex = NDArray[np.complex128]
 
 MOST_POINTS = 3001
 NOISE = 30 * float(np.finfo(float).eps)
@@ -29,7 +26,7 @@ class FourierStates:
     """States as coefficients (waves, states) of exp(i k x)/sqrt(length) on (left, right); 0 outside unless it is a ring."""
 
     waves: Array
-    coefficients: Complex
+    coefficients: Values
     left: float
     right: float
 
@@ -43,7 +40,7 @@ class FourierStates:
         """Return the number of states."""
         return self.coefficients.shape[1]
 
-    def evaluate(self, x: Array, derivative: int = 0) -> Complex:
+    def evaluate(self, x: Array, derivative: int = 0) -> Values:
         """Return psi or d psi/dx of every state at the places x: shape (states, len(x))."""
         x = np.asarray(x, dtype=float)
         waves = np.exp(1j * np.outer(x - self.left, self.waves)) / math.sqrt(self.right - self.left)
@@ -109,14 +106,14 @@ def _more(box: Box, ring: bool) -> Box:
 def _waves(box: Box) -> Array:
     """Return the wave numbers of the basis, shape (points,)."""
     numbers = np.arange(box.points) - box.points // 2
-    waves: Array = (2 * math.pi * numbers + box.phase) / (box.right - box.left)
-    return waves
+    return np.asarray((2 * math.pi * numbers + box.phase) / (box.right - box.left), dtype=np.float64)
 
 
-def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> tuple[Array, Complex, Array, float]:
-    """Return all values, vectors in the wave basis, bounds on the rounding in each value, and the lowest value of the function part.
+def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> tuple[Array, Values, Array, float]:
+    """Return all values, vectors in the wave basis, bounds on the rounding in each, and the least of the function part.
 
-    The values up to `last` are Rayleigh quotients taken term by term, whose rounding goes with their parts, not with the largest wave.
+    The values up to `last` are Rayleigh quotients taken term by term, whose rounding goes with their parts, not with the
+    largest wave.
     """
     n = box.points
     x = box.left + (box.right - box.left) * np.arange(n) / n
@@ -127,14 +124,16 @@ def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> tuple[Ar
     for (j, k), coefficient in form.terms:
         values = coefficient(x)
         if not np.isfinite(values).all():
-            raise PhysicsError(f"the operator has no finite value at {x[~np.isfinite(values)][0]:.6g}", mend="narrow the domain")
+            raise PhysicsError(
+                f"the operator has no finite value at {x[~np.isfinite(values)][0]:.6g}", mend="narrow the domain"
+            )
         terms.append((values, (1j * waves) ** j, (1j * waves) ** k))
         inner = (to_places.conj().T * values) @ to_places
         matrix += np.conj((1j * waves) ** j)[:, None] * inner * (1j * waves) ** k
         floor += float(np.min(values.real)) if j == k == 0 else 0.0
     matrix = (matrix + matrix.conj().T) / 2
     if not vectors:
-        return np.linalg.eigvalsh(matrix), matrix[:0], np.zeros(1), floor
+        return np.asarray(np.linalg.eigvalsh(matrix), dtype=np.float64), matrix[:0], np.zeros(1), floor
     values, states = np.linalg.eigh(matrix)
     if last + 1 >= len(values):
         raise PhysicsError("more levels are asked for than the basis holds", mend="ask for fewer levels")
@@ -145,7 +144,7 @@ def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> tuple[Ar
     return values, states, noise, floor
 
 
-def _phased(states: Complex, box: Box) -> Complex:
+def _phased(states: Values, box: Box) -> Values:
     """Return the states with phases that make them real where they can be, positive on the first lobe from the left."""
     x = np.linspace(box.left, box.right, 4 * box.points)
     psi = np.exp(1j * np.outer(x - box.left, _waves(box))) @ states
@@ -164,11 +163,11 @@ def _ring_box(model: Model, last: int) -> Box:
 
 
 def _open_box(model: Model, form: Form, last: int) -> Box:
-    """Return a box on the open line that holds the region where the symbol is below the energy of level `last`, with a margin."""
+    """Return a box on the open line with a margin around the region where the symbol is below the energy of level `last`."""
     domain = model.domain
     if domain.left_end != "open" or domain.right_end != "open":
         raise PhysicsError(
-            "operators of higher order than two are available on the open line and on rings only: psi = 0 alone does not fix them at a wall",
+            "operators of order above two are available on the open line and on rings only: psi = 0 alone fixes no wall",
             mend="use x in (-inf, inf) or x in ring(a, b)",
         )
     marks = np.unique(np.concatenate([c.centres(domain.left, domain.right) for _, c in form.terms] or [np.zeros(1)]))
@@ -186,7 +185,8 @@ def _open_box(model: Model, form: Form, last: int) -> Box:
     rows, columns = np.flatnonzero(inside.any(axis=1)), np.flatnonzero(inside.any(axis=0))
     if rows[0] == 0 or rows[-1] == len(x) - 1:
         raise PhysicsError(
-            "the operator has a continuous spectrum, which for orders above two is not available yet", mend="use a confining potential"
+            "the operator has a continuous spectrum, which for orders above two is not available yet",
+            mend="use a confining potential",
         )
     left, right = x[rows[0] - 1], x[rows[-1] + 1]
     reach = np.abs(waves[columns]).max()
@@ -211,7 +211,9 @@ def _refuse_falling(symbol: Array) -> None:
     """Raise PhysicsError where the symbol is lowest at the border of the sample: there is no lowest level."""
     border = min(symbol[0].min(), symbol[-1].min(), symbol[:, 0].min(), symbol[:, -1].min())
     if border < 0 and border < -1e6 * (1 + abs(float(np.median(symbol[len(symbol) // 2])))):
-        raise PhysicsError("the operator is not bounded below and has no lowest level", mend="check the signs of the highest powers")
+        raise PhysicsError(
+            "the operator is not bounded below and has no lowest level", mend="check the signs of the highest powers"
+        )
 
 
 def _energy(symbol: Array, x: Array, waves: Array, count: float) -> float:

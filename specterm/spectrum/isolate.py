@@ -6,10 +6,10 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
-Array = NDArray[np.float64]
-Count = Callable[[Array], NDArray[np.int64]]
+from specterm.arrays import Array, Counts
+
+Count = Callable[[Array], Counts]
 
 CLOSE = 1e-10
 """Levels nearer to each other than this share of their distance to the bottom are handled as one group."""
@@ -31,7 +31,8 @@ class Group:
 def isolate(count: Count, first: int, last: int, low: float, high: float, bottom: float) -> list[Group]:
     """Return groups that hold the levels first ... last, given count(low) <= first and count(high) > last.
 
-    Each bracket is cut at several energies at once, until it holds one level or is narrower than `CLOSE` of its distance to `bottom`.
+    Each bracket is cut at several energies at once, until it holds one level or is narrower than `CLOSE` of its distance to
+    `bottom`.
     """
     ends = count(np.array([low, high]))
     todo = [Group(int(ends[0]), int(ends[1] - ends[0]), low, high)]
@@ -62,10 +63,12 @@ def _cuts(group: Group, first: int, last: int) -> Array:
     return np.linspace(group.low, group.high, pieces + 1)[1:-1]
 
 
-def _pieces(group: Group, cuts: Array, counts: NDArray[np.int64]) -> list[Group]:
+def _pieces(group: Group, cuts: Array, counts: Counts) -> list[Group]:
     """Return the non-empty parts of a bracket; a count that rounding made fall is raised to the one below it."""
     places = np.concatenate([[group.low], cuts, [group.high]])
-    numbers = np.concatenate([[group.first], np.clip(counts, group.first, group.first + group.size), [group.first + group.size]])
+    numbers = np.concatenate(
+        [[group.first], np.clip(counts, group.first, group.first + group.size), [group.first + group.size]]
+    )
     numbers = np.maximum.accumulate(numbers)
     rise = np.flatnonzero(np.diff(numbers))
     return [Group(int(numbers[k]), int(numbers[k + 1] - numbers[k]), float(places[k]), float(places[k + 1])) for k in rise]

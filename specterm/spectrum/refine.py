@@ -6,8 +6,8 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array, Flags
 from specterm.discrete.chain import count_below
 from specterm.discrete.elements import Condensed, condense, grid
 from specterm.discrete.mesh import Mesh
@@ -16,8 +16,6 @@ from specterm.errors import PhysicsError, WorkStopped
 from specterm.spectrum.accuracy import SAFETY, Accuracy, accuracy
 from specterm.spectrum.setting import DEEP, Setting, span_at
 from specterm.spectrum.vectors import Solved, solve_levels
-
-Array = NDArray[np.float64]
 
 OVERSHOOT = 1e-3
 """Levels are refined to this share of the tolerance: it costs little, and the error left is mostly rounding."""
@@ -46,7 +44,7 @@ class Refined:
 
 
 def refine(ready: Setting, request: Request, energy: float, span: Span | None) -> Refined:
-    """Return the levels asked for, with errors; `energy` is a guess above the highest, `span` is given where the box is fixed."""
+    """Return the levels asked for, with errors; `energy` is a guess above them, `span` is given where the box is fixed."""
     fixed = span is not None
     actions = (DEEP, DEEP)
     energy, span, condensed = first_mesh(ready, request, energy, span)
@@ -101,14 +99,18 @@ def first_mesh(ready: Setting, request: Request, energy: float, span: Span | Non
         below = ready.threshold - depth * (ready.threshold - ready.floor) / (wanted + 1) ** 2 if at_threshold else energy
         span = fixed or span_at(ready, below)
         if span is None:
-            raise PhysicsError("the states asked for reach farther out than numbers go", mend="ask for fewer levels, or narrow the domain")
+            raise PhysicsError(
+                "the states asked for reach farther out than numbers go", mend="ask for fewer levels, or narrow the domain"
+            )
         condensed = _without_poles(ready, build(ready.problem, ready.look, ready.coefficients, span, energy), energy)
         if count_below(condensed, np.array([energy - ready.floor]))[0] >= wanted:
             return energy, span, condensed
         if at_threshold:
             depth /= 16
         else:
-            energy = min(energy + 0.25 * (energy - ready.floor) + 1e-12 * abs(ready.floor), ready.threshold if fixed is None else np.inf)
+            energy = min(
+                energy + 0.25 * (energy - ready.floor) + 1e-12 * abs(ready.floor), ready.threshold if fixed is None else np.inf
+            )
     raise PhysicsError("the levels asked for were not found", mend="ask for fewer levels")
 
 
@@ -140,11 +142,11 @@ def _targets(solved: Solved, tolerance: float, found: Accuracy) -> Array:
     return np.maximum(OVERSHOOT * tolerance * np.maximum(scale, 1e-3 * scale.max()), found.noise)
 
 
-def _coarse(found: Accuracy, target: Array, condensed: Condensed) -> NDArray[np.bool_]:
+def _coarse(found: Accuracy, target: Array, condensed: Condensed) -> Flags:
     """Mark the elements that make up too much of the error of some level."""
     over = SAFETY * found.share.sum(axis=0) > 0.5 * target
     limit = 0.25 * target / (SAFETY * found.share.shape[0])
-    marked: NDArray[np.bool_] = (found.share > np.where(over, limit, np.inf)).any(axis=1)
+    marked: Flags = np.any(found.share > np.where(over, limit, np.inf), axis=1)
     tiny = condensed.mesh.lengths < 64 * np.spacing(np.abs(condensed.mesh.places).max() * np.finfo(float).eps)
     return marked & ~tiny
 

@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from typing import Protocol
 
 import numpy as np
-from numpy.typing import NDArray
+
+from specterm.arrays import Array, Values
 
 KINDS = ("bound", "box", "band", "resonance", "unresolved")
 
@@ -27,30 +29,30 @@ class Level:
     width: float | None = None
 
 
-@dataclass(frozen=True)
-class Wave:
-    """An eigenstate or a prepared state as a function: evaluate it anywhere on the domain.
+class States(Protocol):
+    """Eigenstates as functions, normalised; real where they can be, and positive on the first lobe from the left."""
 
-    `evaluate(x, derivative)` maps places of shape (n,) to values of shape (n,), real or complex; derivative is 0 or 1.
-    Outside the computed part of an open domain the value is 0. Normalised: the integral of |psi|^2 dx is 1.
-    """
+    @property
+    def places(self) -> Array:
+        """Return ascending places between which the states are smooth."""
 
-    evaluate: object
+    def evaluate(self, x: Array, derivative: int = 0) -> Values:
+        """Return psi (derivative 0) or d psi/dx (1) of every state at x, shape (states, len(x)); 0 off the mesh."""
 
 
 @dataclass(frozen=True)
 class Spectrum:
     """The levels of an operator with what is known about them.
 
-    `states.evaluate(x)` has shape (levels, n): every eigenstate at the places x. `bound` is None where the number of bound levels is
-    infinite or the spectrum is discrete anyway; `threshold` is None without a continuum. `counted` is the independent count
-    of the levels up to the highest one returned, `complete` says that it agrees. `left` and `right` are the ends of
-    the part of the domain computed on, `unknowns` the number of unknowns, `basis` says in words how it was
-    discretised, `seconds` is the wall time spent.
+    `states.evaluate(x)` has shape (levels, n): every eigenstate at the places x. `bound` is None where the number of bound
+    levels is infinite or the spectrum is discrete anyway; `threshold` is None without a continuum. `counted` is the independent
+    count of the levels up to the highest one returned, `complete` says that it agrees. `left` and `right` are the ends of the
+    part of the domain computed on, `unknowns` the number of unknowns, `basis` says in words how it was discretised, `seconds`
+    is the wall time spent.
     """
 
     levels: tuple[Level, ...]
-    states: object
+    states: States | None
     bound: int | None
     threshold: float | None
     complete: bool
@@ -62,5 +64,5 @@ class Spectrum:
     seconds: float = 0.0
     notes: tuple[str, ...] = ()
     from_top: bool = False
-    values: NDArray[np.float64] = field(default_factory=lambda: np.empty(0))
-    vector_error: NDArray[np.float64] = field(default_factory=lambda: np.empty(0))
+    values: Array = field(default_factory=lambda: np.empty(0))
+    vector_error: Array = field(default_factory=lambda: np.empty(0))

@@ -6,8 +6,8 @@ import math
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array
 from specterm.discrete.elements import Coefficients
 from specterm.discrete.ends import FarEnd, NearEnd, far_end, near_end, refuse_inner_poles
 from specterm.discrete.mesh import Edge
@@ -15,17 +15,18 @@ from specterm.discrete.meshing import Span
 from specterm.discrete.problem import Problem
 from specterm.discrete.scan import Scan, energy_for, scan
 
-Array = NDArray[np.float64]
-
 DEEP = 20.0
 """An open domain is cut where psi has fallen by exp(-DEEP) at least: what is lost then is of order exp(-2 DEEP) = 4e-18."""
 
 
 @dataclass(frozen=True)
 class Setting:
-    """Ends classified, the scan, the Langer term `extra` (n,) on the scan's places (K/4d^2 at a singular
-    end, twice that where psi falls off slower than d), `floor` (an energy below all levels, roughly the
-    minimum of V) and `threshold` (inf where the spectrum is discrete)."""
+    """A problem looked over.
+
+    Ends classified, the scan, the Langer term `extra` (n,) on the scan's places (K/4d^2 at a singular end, twice that
+    where psi falls off slower than d), `floor` (an energy below all levels, roughly the minimum of V) and `threshold` (inf
+    where the spectrum is discrete).
+    """
 
     problem: Problem
     look: Scan

@@ -4,24 +4,20 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 from functools import cached_property
-from typing import Any
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array, Counts, Values
 from specterm.discrete.mesh import Mesh
 from specterm.discrete.problem import Coefficient
 from specterm.discrete.quadrature import gauss_legendre
 from specterm.discrete.reference import functions
 from specterm.spectrum.vectors import Solved
 
-Array = NDArray[np.float64]
-Values = NDArray[Any]
-
 
 @dataclass(frozen=True)
 class ElementStates:
-    """Eigenstates on a mesh of elements; `twist` is the slope of the phase put back into them (None: they are real, or Bloch states)."""
+    """Eigenstates on a mesh of elements; `twist` is the slope of the phase put back into them, or None."""
 
     solved: Solved
     twist: Coefficient | None
@@ -42,7 +38,7 @@ class ElementStates:
         return self.solved.coefficients.shape[2]
 
     def evaluate(self, x: Array, derivative: int = 0) -> Values:
-        """Return psi (derivative 0) or d psi/dx (1) of every state at the places x: shape (states, len(x)); 0 outside the mesh."""
+        """Return psi (derivative 0) or d psi/dx (1) of every state at x, shape (states, len(x)); 0 outside the mesh."""
         x = np.asarray(x, dtype=float)
         places = self.places
         element = np.clip(np.searchsorted(places, x, side="right") - 1, 0, len(places) - 2)
@@ -55,13 +51,16 @@ class ElementStates:
         psi = np.einsum("xf,xfn->nx", values[:, : order + 1], taken) * factor
         if derivative == 0 and self.twist is None:
             return np.where(inside, psi * self._signs[:, None], 0)
-        slope = np.einsum("xf,xfn->nx", slopes[:, : order + 1] * (2 / self.mesh.lengths[element])[:, None], taken) * factor + growth * psi
+        slope = (
+            np.einsum("xf,xfn->nx", slopes[:, : order + 1] * (2 / self.mesh.lengths[element])[:, None], taken) * factor
+            + growth * psi
+        )
         if self.twist is not None:
             turn = np.exp(1j * self._angle(x, element))
             psi, slope = psi * turn, (slope + 1j * self.twist(x) * psi) * turn
         return np.where(inside, (slope if derivative else psi) * self._signs[:, None], 0)
 
-    def _factor(self, x: Array, element: NDArray[np.int64]) -> tuple[Array, Array]:
+    def _factor(self, x: Array, element: Counts) -> tuple[Array, Array]:
         """Return the power taken out of psi at each place, and its logarithmic derivative."""
         factor, growth = np.ones_like(x), np.zeros_like(x)
         lengths = self.mesh.lengths
@@ -89,7 +88,7 @@ class ElementStates:
         middle = np.interp((self.places[0] + self.places[-1]) / 2, self.places[:-1], angles)
         return angles - middle
 
-    def _angle(self, x: Array, element: NDArray[np.int64]) -> Array:
+    def _angle(self, x: Array, element: Counts) -> Array:
         """Return the phase at the places x."""
         if self.twist is None:
             return np.zeros_like(x)

@@ -5,26 +5,25 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 import numpy as np
-from numpy.typing import NDArray
 
+from specterm.arrays import Array, Values
 from specterm.discrete.chain import Chain, chain_with_mass, count_below, element_coefficients, twisted_vectors
 from specterm.discrete.elements import Condensed
 from specterm.spectrum.isolate import CLOSE, Group, isolate
 
-Array = NDArray[np.float64]
-Values = NDArray[np.generic]
-
 SETTLED = 1e-12
-"""Newton steps smaller than this share of the level end the iteration; a hundredth of `CLOSE`, so that no neighbour is mixed in."""
+"""Newton steps smaller than this share of the level end the iteration: so far below `CLOSE` that no neighbour is mixed in."""
 STRAY = 1e-9
-"""A Rayleigh quotient this share of the level away from where Newton's method ended has a bad vector: solved again as a group."""
+"""A Rayleigh quotient this share of the level away from where Newton's method ended: a bad vector, solved again."""
 DENSE = 700
 """Up to so many vertices groups are solved with a dense matrix."""
 
 
 @dataclass(frozen=True)
 class Solved:
-    """Levels `first` ... on one mesh: `values` (n,), normalised `coefficients` (elements, functions, n), and `kinetic` (n,), the mean of
+    """Levels `first` ... on one mesh.
+
+    `values` (n,), normalised `coefficients` (elements, functions, n), and `kinetic` (n,), the mean of
     the part of the form with derivatives. Values are measured from the origin of the potential.
     """
 
@@ -92,10 +91,10 @@ def _merged(condensed: Condensed, parts: list[Part], bottom: float) -> list[Part
 
 
 def _newton(condensed: Condensed, groups: list[Group], bottom: float, top: float) -> tuple[Array, Array]:
-    """Return energies and vertex vectors of single levels: Newton's method on the vertex matrix, kept inside shrinking brackets.
+    """Return energies and vertex vectors of single levels by Newton's method, kept inside shrinking brackets.
 
-    A step must be small against the level and against its distance to `top`, where a continuum may begin. Every fifth step halves
-    the bracket, so that the iteration ends whatever the start.
+    A step must be small against the level and against its distance to `top`, where a continuum may begin. Every fifth step
+    halves the bracket, so that the iteration ends whatever the start.
     """
     low, high = np.array([g.low for g in groups]), np.array([g.high for g in groups])
     numbers = np.array([g.first for g in groups])
@@ -138,11 +137,13 @@ def _quotients(condensed: Condensed, numbers: list[int], coefficients: Values) -
     kinetic = (_integral(here.kinetic, slopes) + _edges(condensed, coefficients)) / mass
     values = kinetic + _integral(here.potential, density) / mass
     coefficients = coefficients / np.sqrt(mass)
-    return [Part(number, values[k : k + 1], coefficients[:, :, k : k + 1], kinetic[k : k + 1]) for k, number in enumerate(numbers)]
+    return [
+        Part(number, values[k : k + 1], coefficients[:, :, k : k + 1], kinetic[k : k + 1]) for k, number in enumerate(numbers)
+    ]
 
 
 def _integral(weights: Array, integrand: Array) -> Array:
-    """Return the integrals of (elements, points, levels) under weights (elements, points), summed pairwise over the elements."""
+    """Return the integrals of (elements, points, levels) under weights (elements, points), summed pairwise."""
     parts = np.einsum("eq,eqn->ne", weights, integrand)
     total: Array = np.ascontiguousarray(parts).sum(axis=1)
     return total
@@ -216,17 +217,20 @@ def _matrix(matrix: Chain):  # type: ignore[no-untyped-def]  # noqa: ANN202 - de
     diagonal, side = matrix.diagonal[:, 0], matrix.side[:, 0]
     corner = None if matrix.corner is None else matrix.corner[0]
     if len(diagonal) <= DENSE:
-        kind = complex if np.iscomplexobj(corner) else float
+        kind = complex if corner is not None and np.iscomplexobj(corner) else float
         dense = (np.diag(diagonal) + np.diag(side, 1) + np.diag(side, -1)).astype(kind)
         if corner is not None:
             dense[-1, 0] += corner
             dense[0, -1] += np.conj(corner)
         return dense
-    from scipy.sparse import diags_array
+    from scipy.sparse import diags_array  # noqa: PLC0415 - only large groups need it
 
     bands, offsets = [side, diagonal, side], [-1, 0, 1]
     if corner is not None:
-        bands, offsets = [*bands, np.array([corner]), np.array([np.conj(corner)])], [*offsets, 1 - len(diagonal), len(diagonal) - 1]
+        bands, offsets = (
+            [*bands, np.array([corner]), np.array([np.conj(corner)])],
+            [*offsets, 1 - len(diagonal), len(diagonal) - 1],
+        )
     return diags_array(bands, offsets=offsets, shape=(len(diagonal), len(diagonal))).tocsc()
 
 
@@ -243,6 +247,6 @@ def _solver(matrix: Chain):  # type: ignore[no-untyped-def]  # noqa: ANN202 - a 
                 return np.linalg.solve(whole + shake, right)
 
         return solve
-    from scipy.sparse.linalg import splu
+    from scipy.sparse.linalg import splu  # noqa: PLC0415 - as above
 
     return splu(whole).solve
