@@ -36,8 +36,7 @@ def build(sheet: Sheet, *, folder: Path | None = None, overrides: Mapping[str, s
     sheet = overridden(sheet, overrides or {})
     units = UnitSystem.dimensionless() if sheet.units is None else UnitSystem.make(sheet.units.pairs, sheet.units.span)
     statement = _domain_statement(sheet)
-    check_dimensions(sheet, units)
-    scope = Scope(sheet, units, folder, statement.coordinate)
+    scope = Scope(sheet, units, folder, statement.coordinate, check_dimensions(sheet, units).carries)
     _check_names(sheet, statement.coordinate)
     if "hbar" in scope.definitions:
         scope.set_hbar(_hbar(scope))

@@ -27,16 +27,21 @@ class Layers:
     columns: dict[str, Term]
 
 
-def build_layers(block: LayersBlock, units: UnitSystem, evaluate: Evaluate) -> Layers:
+def build_layers(block: LayersBlock, units: UnitSystem, evaluate: Evaluate, carries: Callable[[Node], bool]) -> Layers:
     """Return the functions of a block; `evaluate` gives the number a cell stands for (or raises SheetError).
 
-    The outermost layers go on beyond their boundaries; at a boundary the layer to its right counts.
+    A column's unit is for cells that do not carry one themselves (`carries`). The outermost layers go on beyond their boundaries; at a boundary the layer to its right counts.
     """
     factors = [written(1.0 if unit is None else units.parse(unit, span)[0]) for _, unit, span in block.columns]
+
+    def cell(row: tuple[Node, ...], column: int, what: str) -> Scalar:
+        value = evaluate(row[column], what)
+        return value if carries(row[column]) else value * factors[column]
+
     place = evaluate(block.start, "the start of the layers") if block.start is not None else ZERO
     places = [place]
     for row in block.rows:
-        thickness = evaluate(row[0], "the thickness of a layer") * factors[0]
+        thickness = cell(row, 0, "the thickness of a layer")
         if not thickness.value.real > 0:
             raise refuse("layer-thickness", row[0].span, found=f"{thickness.value:g}")
         place = place + thickness
@@ -45,7 +50,7 @@ def build_layers(block: LayersBlock, units: UnitSystem, evaluate: Evaluate) -> L
     _check_rising(boundaries, [row[0].span for row in block.rows])
     columns = {}
     for k, (name, _, _) in enumerate(block.columns[1:], 1):
-        cells = [evaluate(row[k], f"a cell of column `{name}`") * factors[k] for row in block.rows]
+        cells = [cell(row, k, f"a cell of column `{name}`") for row in block.rows]
         columns[name] = _column(name, boundaries, cells)
     return Layers(boundaries, columns)
 

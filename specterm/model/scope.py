@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
@@ -30,9 +30,11 @@ _BLOCK = "layers "
 class Scope:
     """Everything that has a name in one sheet. `values` holds what is resolved already, `used` the names met so far."""
 
-    def __init__(self, sheet: Sheet, units: UnitSystem, folder: Path | None, coordinate: str) -> None:
-        """Take the definitions of `sheet`; nothing is resolved yet."""
-        self.units, self.folder = units, folder
+    def __init__(
+        self, sheet: Sheet, units: UnitSystem, folder: Path | None, coordinate: str, carries: Callable[[Node], bool]
+    ) -> None:
+        """Take the definitions of `sheet`; nothing is resolved yet. `carries` says whether an expression has a unit in it."""
+        self.units, self.folder, self.carries = units, folder, carries
         self.labels: dict[int, str] = {}
         self.setting = Setting(written(units.hbar), coordinate, None, self.labels)
         self.definitions: dict[str, Definition] = {d.name: d for d in sheet.definitions}
@@ -112,7 +114,7 @@ class Scope:
 
     def _resolve(self, key: str) -> None:
         if key in self.blocks:
-            self.layers[key] = build_layers(self.blocks[key], self.units, self.scalar)
+            self.layers[key] = build_layers(self.blocks[key], self.units, self.scalar, self.carries)
             for name, term in self.layers[key].columns.items():
                 self._keep(name, term)
             return
