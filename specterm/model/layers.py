@@ -30,7 +30,8 @@ class Layers:
 def build_layers(block: LayersBlock, units: UnitSystem, evaluate: Evaluate, carries: Callable[[Node], bool]) -> Layers:
     """Return the functions of a block; `evaluate` gives the number a cell stands for (or raises SheetError).
 
-    A column's unit is for cells that do not carry one themselves (`carries`). The outermost layers go on beyond their boundaries; at a boundary the layer to its right counts.
+    A column's unit is for cells that do not carry one themselves (`carries`). The outermost layers go on beyond their
+    boundaries; at a boundary the layer to its right counts.
     """
     factors = [written(1.0 if unit is None else units.parse(unit, span)[0]) for _, unit, span in block.columns]
 
