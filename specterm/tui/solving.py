@@ -13,7 +13,7 @@ from numpy.typing import NDArray
 from specterm.errors import PhysicsError, SpectermError, WorkStopped
 from specterm.spectrum.result import Spectrum
 from specterm.views.level_table import Weighing
-from specterm.views.scene import Axes, Prepared, Source, source
+from specterm.views.scene import Prepared, Source, source
 from specterm.views.status import MomentsText, Units
 
 
@@ -124,6 +124,8 @@ def compute(engine: Engine, request: Request, should_stop: Callable[[], bool], p
         failure, origin = error, _origin_without(engine, model, error)
     except Exception as error:  # as above
         failure = _defect(error)
+    from specterm.views.of_model import units_of  # noqa: PLC0415 - it brings the engine, the first frame does not wait for it
+
     notes = (*model.warnings, *(spectrum.notes if spectrum else ()))
     return Outcome(request, model, origin, units_of(model), tuple(model.states), failure, notes)
 
@@ -136,6 +138,8 @@ def _defect(error: Exception) -> SpectermError:
 
 def _origin(engine: Engine, model: Any, spectrum: Spectrum | None) -> Source:  # noqa: ANN401 - a model
     """Return what the figure needs."""
+    from specterm.views.of_model import axes_of  # noqa: PLC0415 - it brings the engine, the first frame does not wait for it
+
     return source(spectrum, lambda x: engine.potential(model, x), axes_of(model))
 
 
@@ -149,19 +153,6 @@ def _origin_without(engine: Engine, model: Any, error: SpectermError) -> Source 
     except Exception:  # the reason why there are no levels is what the user must see
         return None
     return origin
-
-
-def axes_of(model: Any) -> Axes:  # noqa: ANN401 - a model
-    """Return names, units and ends for the figure."""
-    domain, units = model.domain, model.units
-    ends = (float(domain.left), float(domain.right))
-    return Axes(domain.coordinate, units.length, units.energy, *ends, domain.left_end, domain.right_end)
-
-
-def units_of(model: Any) -> Units:  # noqa: ANN401 - a model
-    """Return the names of the units for tables and lines; momenta are shown in hbar over the unit of length."""
-    units = model.units
-    return Units(units.energy, units.length, f"hbar/{units.length}" if units.length else "", model.domain.coordinate)
 
 
 @dataclass(frozen=True, eq=False)
@@ -186,10 +177,9 @@ def weigh(engine: Engine, outcome: Outcome, name: str) -> Weighed:
         return Weighed(name, error=error)
     except Exception as error:  # the edge of the screen: a defect below must not end the session
         return Weighed(name, error=_defect(error))
-    weights = {weight.index: weight.weight for weight in found.weights}
-    errors = {weight.index: weight.error for weight in found.weights}
-    weighing = Weighing(name, weights, errors, found.captured)
-    return Weighed(name, weighing, Prepared(name, found.mean, found.wave), found.mean, found.spread)
+    from specterm.views.of_model import prepared_of, weighing_of  # noqa: PLC0415 - as above
+
+    return Weighed(name, weighing_of(found), prepared_of(found), found.mean, found.spread)
 
 
 def moments_of(engine: Engine, outcome: Outcome, place: int) -> MomentsText | None:
