@@ -213,7 +213,8 @@ def _tail(values: Array, d: Array, stiffness: Array, middle: float, sign: float)
     last = int(seen[-1])
     clean = int(np.flatnonzero(np.abs(rest) > max(1e-7 * abs(limit), np.finfo(float).tiny * 1e10))[-1]) if limit else last
     power = _fall(rest, d, clean)
-    pull = rest * d * (d / stiffness)
+    with np.errstate(all="ignore"):
+        pull = rest * d * (d / stiffness)
     if power > 6:
         return FarEnd(limit, middle + sign * d[min(last + 1, len(d) - 1)], 0.0, False)
     endless = bool(rest[clean] < 0 and (power < 1.95 or (power < 2.05 and pull[clean] < -0.25)))

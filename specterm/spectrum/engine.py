@@ -111,6 +111,8 @@ def _elements(
         first, energy = 0, ready.energy(true + 1.5) if true else ready.threshold
     request = Request(first, first + true - 1, tolerance, stop, tell)
     refined = refine(ready, request, energy, None) if true else None
+    if near is not None and refined is not None:
+        first, refined = _nearest_of(refined, near * ready.problem.sign - ready.floor, wanted)
     boxes = wanted - true if near is None else 0
     if boxes > 0:
         notes.append(f"{boxes} of the levels lie in the continuum: kind box, their place means nothing")
@@ -139,6 +141,17 @@ def _nearest(ready: Setting, near: float, wanted: int, bound: int | None) -> tup
     if last < first:
         first = last = max(0, most - 1)
     return first, last - first + 1, top
+
+
+def _nearest_of(refined: Refined, near: float, wanted: int) -> tuple[int, Refined]:
+    """Return the number of the first of the `wanted` levels nearest to an energy measured from the floor, and those levels."""
+    solved = refined.solved
+    order = np.sort(np.argsort(np.abs(solved.values - near), kind="stable")[:wanted])
+    some = slice(int(order[0]), int(order[-1]) + 1)
+    kept = Solved(
+        solved.condensed, solved.first + some.start, solved.values[some], solved.coefficients[:, :, some], solved.kinetic[some]
+    )
+    return kept.first, Refined(kept, refined.error[some], refined.vector_error[some], refined.span)
 
 
 def _with_boxes(ready: Setting, request: Request, refined: Refined | None, wanted: int) -> Refined:

@@ -54,6 +54,10 @@ class Keyed(App[int]):
         """Compute the text as it stands."""
         raise NotImplementedError("the app computes")
 
+    def place(self, *, typing: bool) -> None:
+        """Show what the keys act on."""
+        raise NotImplementedError("the app places its panes")
+
     def _look(self, look: Look) -> None:
         """Show something else of the same spectrum."""
         self.shown = replace(self.shown, look=look, message="")
@@ -98,9 +102,9 @@ class Keyed(App[int]):
             self.say("the sheet has no prepared state: add a line  state NAME = expression", "warn")
 
     def action_edit(self) -> None:
-        """Type in the sheet; an error is gone to."""
-        self.screen_stack[0].add_class("typing")
-        self.sheet.text.focus()
+        """Type in the sheet, from the very next key on; an error is gone to."""
+        self.place(typing=True)
+        self.screen_stack[0].set_focus(self.sheet.text)
         if self.error is not None and self.error.span is not None:
             row, column = position(self.document.text, self.error.span.start)
             self.sheet.text.move_cursor((row - 1, column - 1))

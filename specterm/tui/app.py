@@ -91,7 +91,13 @@ class Specterm(Keyed):
         base = self.screen_stack[0]
         base.set_class(self.size.width >= WIDE, "wide")
         base.set_class(self.size.width < WIDE, "narrow")
-        base.set_class(self.typing, "typing")
+        self.place(typing=self.typing)
+
+    def place(self, *, typing: bool) -> None:
+        """Show sheet and figure side by side in a wide screen, else the one that is wanted."""
+        wide = self.size.width >= WIDE
+        self.sheet.display = wide or typing
+        self.screen_stack[0].query_one("#figure").display = wide or not typing
 
     def on_descendant_focus(self) -> None:
         """Arrange anew when typing starts."""

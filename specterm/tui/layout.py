@@ -12,8 +12,5 @@ Screen { layers: base; background: ansi_default; }
 .wide #figure { row-span: 2; }
 .narrow #main { layout: horizontal; }
 .narrow #levels { dock: left; width: 36; max-width: 50%; margin-right: 1; }
-.narrow #sheet { display: none; }
-.narrow.typing #sheet { display: block; }
-.narrow.typing #figure { display: none; }
 #figure, #levels { height: 1fr; width: 1fr; }
 """

@@ -83,12 +83,10 @@ def test_start_step_and_quit(tmp_path):
 
 
 def test_typing_in_a_real_terminal(tmp_path):
-    """Letters typed in the sheet reach the file on ctrl+s, flow control notwithstanding."""
+    """Letters typed at once after e are text, ctrl+s writes it, flow control notwithstanding, and q after Tab quits."""
     session = Session(tmp_path)
     session.until("complete")
-    session.child.send("e")
-    session.until("Tab back")
-    session.child.send("# hi \x13")
+    session.child.send("e# hi \x13")
     session.until(" saved /")
     assert session.path.read_text() == "# hi " + SHEET
     session.child.send("\tq")
