@@ -10,7 +10,7 @@ from specterm.arrays import Array, Flags
 from specterm.discrete.elements import Coefficients, Grid, grid
 from specterm.discrete.mesh import Edge, Mesh
 from specterm.discrete.problem import Problem
-from specterm.discrete.quadrature import gauss_jacobi, gauss_legendre
+from specterm.discrete.quadrature import gauss_jacobi, legendre_projector
 from specterm.discrete.scan import Scan
 from specterm.errors import PhysicsError
 
@@ -181,11 +181,7 @@ def unseen(mesh: Mesh, here: Grid, coefficients: Coefficients) -> tuple[Array, A
 def _high(values: Array) -> Array:
     """Return the size of the last Legendre coefficients of values at Gauss points (elements, points)."""
     points = values.shape[1]
-    t, w = gauss_legendre(points)
-    degrees = np.arange(points - 4, points)
-    legendre = np.polynomial.legendre.legvander(t, points - 1)[:, points - 4 :]
-    projector = w[:, None] * legendre * (2 * degrees + 1) / 2
-    tail = np.abs((values - values[:, points // 2, None]) @ projector).max(axis=1)
+    tail = np.abs((values - values[:, points // 2, None]) @ legendre_projector(points)[:, points - 4 :]).max(axis=1)
     noise: Array = np.where(tail > 4 * np.finfo(float).eps * np.abs(values).max(axis=1), tail, 0.0)
     return noise
 
@@ -212,11 +208,8 @@ def _missed(mesh: Mesh, here: Grid, look: Scan, origin: float, energy: float) ->
     keep = plain[element] & ~near
     x, v, element = x[keep], v[keep], element[keep]
     local = here.potential / here.mass - energy
-    t, _ = gauss_legendre(local.shape[1])
     at = 2 * (x - mesh.places[element]) / mesh.lengths[element] - 1
-    legendre = np.polynomial.legendre.legvander(t, 9)
-    _, w = gauss_legendre(local.shape[1])
-    coefficients = local @ (w[:, None] * legendre * (2 * np.arange(10) + 1) / 2)
+    coefficients = local @ legendre_projector(local.shape[1])[:, :10]
     guess = np.einsum("kn,kn->k", coefficients[element], np.polynomial.legendre.legvander(at, 9))
     size = np.abs(local).max(axis=1) + look.stiffness.min() * (np.pi / mesh.lengths) ** 2
     spread = np.ptp(local, axis=1)

@@ -17,6 +17,14 @@ def gauss_legendre(points: int) -> tuple[Array, Array]:
     return nodes, weights
 
 
+@lru_cache(maxsize=16)
+def legendre_projector(points: int) -> Array:
+    """Return the matrix (points, points) from values at the Gauss-Legendre points to Legendre coefficients."""
+    t, w = gauss_legendre(points)
+    projector: Array = w[:, None] * np.polynomial.legendre.legvander(t, points - 1) * (2 * np.arange(points) + 1) / 2
+    return projector
+
+
 @lru_cache(maxsize=64)
 def gauss_jacobi(points: int, beta: float) -> tuple[Array, Array]:
     """Return nodes and weights on (-1, 1) for the weight (1 + t)**beta, beta > -1; tested for beta to 60 against moments."""

@@ -111,31 +111,35 @@ def energy_for(look: Scan, count: float, extra: Array, floor: float, ceiling: fl
 
     `ceiling` may be inf. Where even the ceiling does not reach the count, the ceiling is returned.
     """
-    low = floor
-    step = _first_step(look, floor)
     if np.isfinite(ceiling):
-        high = ceiling
         if semiclassical_count(look, np.array([ceiling]), extra)[0] <= count:
             return ceiling
+        low, high = floor, ceiling
     else:
-        for _ in range(40):
-            rungs = floor + step * 4.0 ** np.arange(24)
-            reached = semiclassical_count(look, np.asarray(rungs, dtype=np.float64), extra) > count
-            if reached.any():
-                first = int(np.argmax(reached))
-                low, high = (float(rungs[first - 1]) if first else floor), float(rungs[first])
-                break
-            step *= 4.0**24
-        else:
-            raise PhysicsError("the operator seems to have no such level: the phase integral stays finite at all energies")
-    for _ in range(8):
-        rungs = np.linspace(low, high, 18)
-        reached = semiclassical_count(look, np.asarray(rungs, dtype=np.float64), extra) > count
-        first = max(1, int(np.argmax(reached))) if reached.any() else 17
+        low, high = _bracket(look, count, extra, floor)
+    with np.errstate(all="ignore"):
+        allowed = np.flatnonzero(look.potential + extra < high)
+    part = slice(max(0, int(allowed[0]) - 1), int(allowed[-1]) + 2)
+    look, extra = Scan(look.x[part], look.stiffness[part], look.potential[part]), extra[part]
+    while high - low > 0.03 * (high - floor):
+        rungs = np.linspace(low, high, 10)
+        reached = semiclassical_count(look, rungs, extra) > count
+        first = max(1, int(np.argmax(reached))) if reached.any() else len(rungs) - 1
         low, high = float(rungs[first - 1]), float(rungs[first])
-        if high - low <= 0.01 * (high - floor):
-            break
     return high
+
+
+def _bracket(look: Scan, count: float, extra: Array, floor: float) -> tuple[float, float]:
+    """Return two energies, a factor of four apart from the floor, between which the phase integral passes the count."""
+    step = _first_step(look, floor)
+    for _ in range(80):
+        rungs = np.asarray(floor + step * 4.0 ** np.arange(12), dtype=np.float64)
+        reached = semiclassical_count(look, rungs, extra) > count
+        if reached.any():
+            first = int(np.argmax(reached))
+            return (float(rungs[first - 1]) if first else floor), float(rungs[first])
+        step *= 4.0**12
+    raise PhysicsError("the operator seems to have no such level: the phase integral stays finite at all energies")
 
 
 def _first_step(look: Scan, floor: float) -> float:

@@ -26,7 +26,10 @@ class Keyed(App[int]):
     """The part of the app that answers keys; the attributes are set by the app itself."""
 
     BINDINGS: ClassVar[list[Binding]] = [  # type: ignore[assignment]
-        Binding(key.keys, key.action, f"{key.area}: {key.verb}", id=key.id, tooltip=key.tooltip) for key in KEYS
+        Binding(
+            key.keys, key.action, f"{key.area}: {key.verb}", id=key.id, tooltip=key.tooltip, priority=key.action == "edit"
+        )
+        for key in KEYS
     ]
 
     document: Document
@@ -100,6 +103,12 @@ class Keyed(App[int]):
         self._look(self.shown.look.next_state(states))
         if not states:
             self.say("the sheet has no prepared state: add a line  state NAME = expression", "warn")
+
+    def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
+        """Keep the key that starts typing, which comes before all others, out of texts and dialogs."""
+        if action == "edit" and (len(self.screen_stack) > 1 or self.screen.focused is not None):
+            return False
+        return super().check_action(action, parameters)
 
     def action_edit(self) -> None:
         """Type in the sheet, from the very next key on; an error is gone to."""
