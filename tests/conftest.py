@@ -1,0 +1,11 @@
+"""What all tests share: one thread for linear algebra, and random examples that are the same in every run."""
+
+import os
+
+for name in ("OMP_NUM_THREADS", "OPENBLAS_NUM_THREADS", "MKL_NUM_THREADS"):
+    os.environ.setdefault(name, "1")
+
+from hypothesis import settings
+
+settings.register_profile("repeatable", derandomize=True, deadline=None, database=None, print_blob=False)
+settings.load_profile("repeatable")
