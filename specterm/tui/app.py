@@ -147,7 +147,6 @@ class Specterm(Keyed):
             self.found = {}
             look = self.shown.look.fitted(outcome.spectrum, outcome.states)
             self.shown = replace(self.shown, outcome=outcome, stale=False, look=look)
-        self.sheet.complain(outcome.error)
         self.say("" if outcome.error else "; ".join(outcome.notes))
         self.call_after_refresh(_settle_memory)
 

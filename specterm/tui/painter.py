@@ -7,8 +7,8 @@ from typing import TYPE_CHECKING
 
 from textual.geometry import Size
 
-from specterm.errors import SpectermError, position, printable
 from specterm.tui.cell_pane import CellPane
+from specterm.tui.complaint import sentence
 from specterm.tui.keys import KEYS, TYPING, bottom
 from specterm.tui.rows import (
     Shown,
@@ -60,7 +60,7 @@ class Painter:
         with self.app.batch_update():
             for name, draw in _LARGE:
                 pane = self._pane(name)
-                of = (shown.look, shown.outcome, shown.weighed, pane.size)
+                of = (shown.look, shown.outcome, shown.weighed, shown.error, pane.size)
                 if _visible(pane) and self._drawn.get(name) != of:
                     self._drawn[name] = of
                     pane.show(drawn_safely(draw, shown, *pane.size))
@@ -72,6 +72,8 @@ class Painter:
             heading = self.app.sheet.heading
             row = heading_row(self.app.document, heading.size.width, typing=typing, glyphs=shown.look.glyphs)
             heading.show((row,))
+            if self.app.sheet.display:
+                self.app.sheet.complain(self.app.error)
 
     def _pane(self, name: str) -> CellPane:
         """Return the pane called `name`."""
@@ -97,20 +99,14 @@ class Painter:
             weighed=weighed if isinstance(weighed, Weighed) else None,
             moments=moments if isinstance(moments, MomentsText) else None,
         )
-        if app.error is not None and not shown.message and not app.sheet.display:
-            return replace(shown, message=printable(_sentence(app.error, app.document.text)), message_style="warn")
-        return shown
+        if app.error is None or app.sheet.display:
+            return shown
+        if outcome is None or outcome.spectrum is None:
+            return replace(shown, error=(app.error, app.document.text))
+        words = shown.message or sentence(app.error, app.document.text)
+        return replace(shown, message=words, message_style=shown.message_style if shown.message else "warn")
 
 
 def _visible(pane: CellPane) -> bool:
     """Return whether a pane has room on the screen."""
     return bool(pane.display and pane.size.width and pane.size.height)
-
-
-def _sentence(error: SpectermError, text: str) -> str:
-    """Return an error in one line."""
-    where = ""
-    if error.span is not None:
-        row, column = position(text, error.span.start)
-        where = f"line {row}, column {column}: "
-    return f"{where}{error.message}" + (f"; {error.mend}" if error.mend else "")

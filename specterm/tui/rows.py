@@ -5,8 +5,9 @@ from __future__ import annotations
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
-from specterm.errors import printable
+from specterm.errors import SpectermError, printable
 from specterm.session.document import Document
+from specterm.tui.complaint import complaint
 from specterm.tui.layout import WIDE
 from specterm.tui.look import Look
 from specterm.tui.solving import Outcome, Weighed
@@ -23,7 +24,7 @@ class Shown:
     """All that the panes are drawn from.
 
     `outcome` is the last one with a model, `stale` whether the text has moved on since; `weighed` and `moments` have arrived
-    for what `look` chooses, or are None.
+    for what `look` chooses, or are None; `error`, with the text it is about, has the place of the levels where there are none.
     """
 
     look: Look
@@ -31,6 +32,7 @@ class Shown:
     stale: bool = False
     weighed: Weighed | None = None
     moments: MomentsText | None = None
+    error: tuple[SpectermError, str] | None = None
     message: str = ""
     message_style: str = "plain"
 
@@ -57,7 +59,8 @@ def level_rows(shown: Shown, width: int, height: int) -> Rows:
     outcome = shown.outcome
     spectrum = outcome.spectrum if outcome else None
     if spectrum is None or outcome is None:
-        return (((" " * max(0, width), "plain"),),) * height
+        rows = complaint(*shown.error, max(1, width), max(2, height)) if shown.error else ()
+        return (rows + (((" " * max(0, width), "plain"),),) * height)[:height]
     flip = not spectrum.from_top
     levels = spectrum.levels[::-1] if flip else spectrum.levels
     chosen = len(levels) - 1 - shown.look.chosen if flip else shown.look.chosen

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import textwrap
 from typing import ClassVar
 
 from rich.style import Style
@@ -14,10 +13,10 @@ from textual.containers import Vertical
 from textual.message import Message
 from textual.widgets import TextArea
 
-from specterm.errors import Span, SpectermError, position, printable
+from specterm.errors import Span, SpectermError
 from specterm.tui.cell_pane import CellPane
+from specterm.tui.complaint import complaint
 from specterm.tui.keys import TYPING
-from specterm.views.cells import Row, fit_row
 
 _MARKED = Style(underline=True, bold=True, color="red")
 
@@ -88,7 +87,7 @@ def marks_of(text: str, span: Span | None) -> dict[int, tuple[int, int]]:
 
 
 class SheetPane(Vertical):
-    """A heading, the text, and up to four lines for what is wrong with it."""
+    """A heading, the text, and up to six lines for what is wrong with it."""
 
     DEFAULT_CSS = """
     SheetPane { width: 1fr; height: 1fr; }
@@ -117,17 +116,3 @@ class SheetPane(Vertical):
         if len(rows) != len(self.error.rows):
             self.error.styles.height = len(rows)
         self.error.show(rows)
-
-
-def complaint(error: SpectermError, text: str, width: int, most: int = 4) -> tuple[Row, ...]:
-    """Return what is wrong and how to mend it in at most `most` rows; what is cut leaves a mark."""
-    where = ""
-    if error.span is not None:
-        row, column = position(text, error.span.start)
-        where = f"line {row}, column {column}: "
-    said = textwrap.wrap(printable(where + error.message), width, max_lines=max(1, most - 1), placeholder=" …") or [where]
-    room = most - len(said)
-    mend = textwrap.wrap(printable(error.mend), width, max_lines=room, placeholder=" …") if room and error.mend else []
-    rows: list[Row] = [((line, "warn"),) for line in said]
-    rows += [((line, "plain"),) for line in mend]
-    return tuple(fit_row(row, width) for row in rows)

@@ -180,7 +180,7 @@ async def test_a_defect_below_does_not_end_the_session(size):
     """An exception that is nobody's message is shown as a defect, without a traceback."""
     async with app("# crash\nH = p^2").run_test(size=size) as pilot:
         await settled(pilot)
-        assert "specterm failed here (ZeroDivisionError:" in "\n".join(lines(pilot))
+        assert "(ZeroDivisionError: by zero)" in "\n".join(lines(pilot))
 
 
 async def test_u_takes_an_edit_back(size):
@@ -202,21 +202,22 @@ async def test_r_computes_again_and_x_has_nothing_to_stop(size):
         assert "nothing is running" in "\n".join(lines(pilot))
 
 
-@pytest.mark.parametrize("keys", [["question_mark"], ["h"], ["slash", *"app: help", "enter"]])
-async def test_help_lists_the_live_keys(size, keys):
+@pytest.mark.parametrize(
+    ("keys", "leave"), [(["question_mark"], "q"), (["h"], "left"), (["slash", *"app: help", "enter"], "enter")]
+)
+async def test_help_lists_the_live_keys(size, keys, leave):
     """The help has a line for every key, scrolls, and is left with a letter, an arrow or Enter."""
-    for leave in ("q", "left", "enter"):
-        async with app().run_test(size=size) as pilot:
-            await settled(pilot)
-            await pressed(pilot, *keys)
-            seen = "\n".join(lines(pilot))
-            for _ in range(7):
-                await pressed(pilot, "pagedown")
-                seen += "\n".join(lines(pilot))
-            assert all(key.tooltip in seen for key in KEYS + TYPING)
-            assert "goes back" in seen
-            await pressed(pilot, leave)
-            assert "psi, level 0" in "\n".join(lines(pilot))
+    async with app().run_test(size=size) as pilot:
+        await settled(pilot)
+        await pressed(pilot, *keys)
+        seen = "\n".join(lines(pilot))
+        for _ in range(3):
+            await pressed(pilot, "pagedown")
+            seen += "\n".join(lines(pilot))
+        assert all(key.tooltip in seen for key in KEYS + TYPING)
+        assert "goes back" in seen
+        await pressed(pilot, leave)
+        assert "psi, level 0" in "\n".join(lines(pilot))
 
 
 @pytest.mark.parametrize("key", ["slash", "colon", "ctrl+p"])

@@ -9,10 +9,11 @@ from standin import spectrum
 
 from specterm.errors import SheetError, Span
 from specterm.tui.cell_pane import changed_columns
+from specterm.tui.complaint import complaint
 from specterm.tui.keys import KEYS
 from specterm.tui.look import Look, usual_glyphs
 from specterm.tui.rows import Shown, bottom_row, chosen_row, drawn_safely, figure_rows, level_rows, message_row, trusted_row
-from specterm.tui.sheet_pane import complaint, marks_of
+from specterm.tui.sheet_pane import marks_of
 from specterm.tui.solving import Request, compute, weigh
 from specterm.views.cells import plain, row_width
 
@@ -149,10 +150,10 @@ def test_marks_cover_the_span():
 
 
 def test_complaints_fit_their_rows():
-    """What is wrong and how to mend it take at most four rows; what is cut leaves a mark."""
+    """What is wrong and how to mend it take at most six rows; what is cut leaves a mark."""
     error = SheetError("wrong " * 40, mend="mend " * 40, span=Span(0, 1))
     rows = complaint(error, "H = p", 30)
-    assert len(rows) == 4
+    assert len(rows) == 6
     assert all(row_width(row) == 30 for row in rows)
     assert "…" in plain(rows)
     assert plain(complaint(SheetError("a", mend="b"), "", 30)) == "a\nb"
