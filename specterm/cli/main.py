@@ -9,7 +9,7 @@ from collections.abc import Sequence
 
 from specterm.cli.arguments import LATER, VERBS, interface_parser, parser
 from specterm.cli.source import Source, overrides, read_source
-from specterm.errors import SpectermError, describe
+from specterm.errors import SpectermError, describe, printable
 
 
 def main(words: Sequence[str]) -> int:  # noqa: PLR0911 - one return for each way out
@@ -40,6 +40,10 @@ def main(words: Sequence[str]) -> int:  # noqa: PLR0911 - one return for each wa
         return _tell("specterm: stopped", 130)
     except MemoryError:
         return _tell("specterm: out of memory\n  ask for fewer levels", 1)
+    except Exception as error:  # the edge of the program: a defect must not show a traceback
+        return _tell(
+            printable(f"specterm failed here ({type(error).__name__}: {error})\n  this is a defect: please report it"), 1
+        )
 
 
 def _sheet_of(arguments: argparse.Namespace) -> tuple[str | None, str | None]:

@@ -25,6 +25,8 @@ def problem_of(model: Model) -> Problem:
         potential = potential - sturm.B * sturm.B / (4 * stiffness)
         twist = sturm.B / (-2 * stiffness)
     domain = model.domain
+    if domain.is_finite and not math.isfinite(domain.right - domain.left):
+        raise PhysicsError("the domain is wider than numbers go", mend="use open ends: x in (-inf, inf)")
     sign = _sign(stiffness, domain.left, domain.right)
     if sign < 0:
         stiffness, potential = -stiffness, -potential

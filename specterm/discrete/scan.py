@@ -40,6 +40,7 @@ def scan(problem: Problem) -> Scan:
         stiffness, potential = problem.stiffness(x), problem.potential(x)
     good = _trusted(x, stiffness, potential, problem)
     x, stiffness, potential = x[good], stiffness[good], potential[good]
+    _refuse_poles(problem, x, potential)
     if np.isnan(potential).any():
         place = x[np.flatnonzero(np.isnan(potential))[0]]
         raise PhysicsError(
@@ -52,6 +53,30 @@ def scan(problem: Problem) -> Scan:
             mend="it must be positive all over the domain (zero only at an end)",
         )
     return Scan(x, stiffness, potential)
+
+
+def _refuse_poles(problem: Problem, x: Array, potential: Array) -> None:
+    """Raise PhysicsError where |V| has a sharp maximum inside the sample that grows without end when looked at closer."""
+    size = np.where(np.isfinite(potential), np.abs(potential), 0.0)
+    peaks = np.flatnonzero((size[1:-1] > size[:-2]) & (size[1:-1] > size[2:]) & (size[1:-1] > 30 * np.median(size))) + 1
+    peaks = peaks[np.argsort(-size[peaks])][:24]
+    if len(peaks) == 0:
+        return
+    left, right, first = x[peaks - 1], x[peaks + 1], size[peaks]
+    with np.errstate(all="ignore"):
+        for _ in range(24):
+            places = left[:, None] + (right - left)[:, None] * np.arange(9) / 8
+            values = np.nan_to_num(np.abs(problem.potential(places.ravel()).reshape(places.shape)), posinf=1e300)
+            best = np.clip(np.argmax(values, axis=1), 1, 7)
+            rows = np.arange(len(peaks))
+            left, right = places[rows, best - 1], places[rows, best + 1]
+    grown = values.max(axis=1) > 1e8 * first
+    if grown.any():
+        place = float(left[grown][0])
+        raise PhysicsError(
+            f"the potential is singular near {place:.9g}, inside the domain",
+            mend="end the domain there: the two sides do not mix",
+        )
 
 
 def _trusted(x: Array, stiffness: Array, potential: Array, problem: Problem) -> Flags:

@@ -27,6 +27,8 @@ from specterm.spectrum.states import ElementStates
 from specterm.spectrum.symmetry import parities
 from specterm.spectrum.vectors import Solved
 
+FROM_TOP = "the operator has a highest level and no lowest: levels are counted from the top"
+MISSED = "some levels do not reach the tolerance: kind unresolved"
 USUAL = 10
 """How many levels are computed when nobody says."""
 
@@ -75,13 +77,22 @@ def solve(
     if fault is not None:
         raise PhysicsError(fault.reason, mend=fault.mend)
     stop, tell = should_stop or (lambda: False), progress or (lambda _: None)
-    if operator.order > 2:
+    with np.errstate(all="ignore"):
+        found = _by_order(model, count, near, tolerance, stop, tell)
+    return _timed(found, time.perf_counter() - start)
+
+
+def _by_order(
+    model: Model, count: int | None, near: float | None, tolerance: float, stop: Callable[[], bool], tell: Callable[[str], None]
+) -> Spectrum:
+    """Solve with what fits the order of the operator."""
+    if model.operator.order > 2:
         found = _dense(model, count or USUAL, near, tolerance, stop)
-    elif operator.order < 2:
+    elif model.operator.order < 2:
         found = _running(model, count or USUAL, near, tolerance)
     else:
         found = _elements(model, count, near, tolerance, stop, tell)
-    return _timed(found, time.perf_counter() - start)
+    return found
 
 
 def _refuse_bad(count: int | None, tolerance: float) -> None:
@@ -208,9 +219,8 @@ def _spectrum(ready: Setting, refined: Refined, first: int, bound: int | None, t
         levels.append(Level(index, float(value), error, kind, index if nodes_known else None, parity[k]))
     complete = _complete(ready, refined, first, len(values))
     if problem.sign < 0:
-        notes = [*notes, "the operator has a highest level and no lowest: levels are counted from the top"]
-    if any(level.kind == "unresolved" for level in levels):
-        notes = [*notes, "some levels do not reach the tolerance: kind unresolved"]
+        notes = [*notes, FROM_TOP]
+    notes = [*notes, *_unresolved(tuple(levels))]
     mesh = solved.condensed.mesh
     threshold = problem.sign * ready.threshold if math.isfinite(ready.threshold) else None
     return Spectrum(
@@ -255,21 +265,25 @@ def _dense(model: Model, count: int, near: float | None, tolerance: float, stop:
     """Solve an operator of higher order in a Fourier basis."""
     if near is not None:
         raise PhysicsError("--near is not available for operators of order above two", mend="ask for enough levels with -n")
-    found = dense_levels(model, 0, count - 1, tolerance, stop)
-    floor = min(0.0, float(found.values[0]))
-    levels = []
-    for k, (value, error) in enumerate(zip(found.values, found.error, strict=True)):
-        good = error <= tolerance * max(abs(value), abs(value - floor), 1e-300)
-        kind = ("band" if model.domain.phase is not None else "bound") if good else "unresolved"
-        levels.append(Level(k, float(value), float(error), kind))
-    notes = (
-        *model.warnings,
-        *(["some levels do not reach the tolerance: kind unresolved"] if any(v.kind == "unresolved" for v in levels) else []),
+    found = dense_levels(model, count - 1, tolerance, stop)
+    steps = np.append(np.abs(np.diff(found.values)), found.room)
+    scales = np.maximum(np.abs(found.values), np.maximum(steps, np.append(0.0, steps[:-1])))
+    band = model.domain.phase is not None
+    levels = tuple(
+        Level(k, float(value), float(error), _kind(band, float(error), float(scale), tolerance))
+        for k, (value, error, scale) in enumerate(zip(found.values, found.error, scales, strict=True))
     )
+    notes = [*model.warnings, *([FROM_TOP] if found.sign < 0 else []), *_unresolved(levels)]
     return Spectrum(
-        tuple(levels), found.states, None, None, found.agree, found.box.left, found.box.right,
-        f"Fourier basis, {found.box.points} waves", found.box.points, tolerance, notes=notes, values=found.values,
+        levels, found.states, None, None, found.agree, found.box.left, found.box.right,
+        f"Fourier basis, {found.box.points} waves", found.box.points, tolerance, notes=tuple(notes), from_top=found.sign < 0,
+        values=found.values,
     )  # fmt: skip
+
+
+def _unresolved(levels: tuple[Level, ...]) -> list[str]:
+    """Return a note where some level does not reach the tolerance."""
+    return [MISSED] if any(level.kind == "unresolved" for level in levels) else []
 
 
 def _running(model: Model, count: int, near: float | None, tolerance: float) -> Spectrum:

@@ -62,38 +62,98 @@ class Box:
 
 @dataclass(frozen=True)
 class DenseLevels:
-    """Values and errors (levels,), the states, and the box they were computed in; `agree` says that two boxes count alike."""
+    """Values and errors (levels,), the states, and the box they were computed in.
+
+    `agree` says that a finer box counts alike, `room` is the distance to the next level, `sign` -1 where levels are counted
+    from the top.
+    """
 
     values: Array
     error: Array
     states: FourierStates
     box: Box
     agree: bool
+    room: float
+    sign: int = 1
 
 
-def dense_levels(model: Model, first: int, last: int, tolerance: float, should_stop: Callable[[], bool]) -> DenseLevels:
-    """Return levels first ... last of the model's operator, from the bottom; PhysicsError where there is no lowest one."""
-    form = model.operator.form()
-    box = _ring_box(model, last) if model.domain.is_ring else _open_box(model, form, last)
+_Solution = tuple[Array, Values, Array, float]
+
+
+def dense_levels(model: Model, last: int, tolerance: float, should_stop: Callable[[], bool]) -> DenseLevels:
+    """Return levels 0 ... last of the model's operator, from the bottom, or from the top where there is no bottom.
+
+    Raises PhysicsError where there is neither a lowest nor a highest level.
+    """
+    form, sign = _turned(model, model.operator.form())
+    ring = model.domain.is_ring
+    box = _ring_box(model, last) if ring else _open_box(model, form, last)
     before = _solve(form, box, last)
+    best: DenseLevels | None = None
     for _ in range(6):
         if should_stop():
             raise WorkStopped("stopped")
-        wider = _more(box, model.domain.is_ring)
+        wider = _more(box, ring)
         if wider.points > MOST_POINTS:
             break
         after = _solve(form, wider, last)
-        drift = np.abs(after[0][first : last + 1] - before[0][first : last + 1])
-        noise = after[2][first : last + 1]
-        scale = np.abs(after[0][first : last + 1] - min(after[3], after[0][0] - abs(after[0][0]) * 1e-3))
+        found = _compared(before, after, wider, last)
         box, before = wider, after
-        if (drift <= np.maximum(1e-2 * tolerance * scale, 4 * noise)).all():
+        if best is None or found.error.max() < best.error.max():
+            best = found
+        elif found.error.max() > 30 * best.error.max():
             break
-    values = before[0][first : last + 1]
-    states = FourierStates(_waves(box), _phased(before[1][:, first : last + 1], box), box.left, box.right)
-    top = values[-1] + 0.5 * (before[0][last + 1] - values[-1])
-    agree = int((_solve(form, _more(box, model.domain.is_ring), last, vectors=False)[0] < top).sum()) == last + 1
-    return DenseLevels(values, 2 * drift + noise, states, box, agree)
+        scale = np.abs(found.values - min(after[3], found.values[0] - abs(found.values[0]) * 1e-3))
+        if (found.error <= np.maximum(1e-2 * tolerance * scale, 8 * after[2][: last + 1])).all():
+            break
+    if best is None:
+        raise PhysicsError(f"this needs more than the {MOST_POINTS} waves allowed", mend="ask for fewer levels")
+    finer = _more(best.box, ring)
+    agree = finer.points <= MOST_POINTS
+    if agree:
+        again = _solve(form, finer, last, vectors=False)[0]
+        top, bottom = best.values[-1] + 4 * best.error[-1], best.values[0] - 4 * best.error[0]
+        agree = bool((again <= top).sum() >= last + 1 and (again < bottom).sum() == 0)
+    return replace(best, values=sign * best.values, agree=agree, sign=sign)
+
+
+def _compared(before: _Solution, after: _Solution, box: Box, last: int) -> DenseLevels:
+    """Return the levels of the wider of two boxes, with the change from the other and rounding as their error."""
+    values = after[0][: last + 1]
+    error = 2 * np.abs(values - before[0][: last + 1]) + after[2][: last + 1]
+    states = FourierStates(_waves(box), _phased(after[1][:, : last + 1], box), box.left, box.right)
+    return DenseLevels(values, error, states, box, False, float(after[0][last + 1] - values[-1]))
+
+
+def _turned(model: Model, form: Form) -> tuple[Form, int]:
+    """Return the form and 1, or minus the form and -1 where it has a highest level only; PhysicsError where it has neither.
+
+    The symbol is compared over a wide and a much wider part of the (x, k) plane: what falls on between them has no bottom.
+    """
+    domain = model.domain
+    near, far = np.geomspace(1e-12, 1e6, 37), np.geomspace(1e7, 1e12, 11)
+    waves = np.concatenate([[0.0], near, far, -near, -far])
+    if domain.is_ring:
+        x = domain.left + (domain.right - domain.left) * np.linspace(0.01, 0.99, 37)
+        waves = waves / (domain.right - domain.left)
+        wide = np.ones(len(x), dtype=bool)
+    else:
+        x = np.concatenate([near, far, -near, -far])
+        wide = np.abs(x) <= 1e6
+    inner = np.abs(waves) <= np.abs(waves).max() * 1e-6 * (1 + 1e-9)
+    with np.errstate(all="ignore"):
+        symbol = np.nan_to_num(_symbol(form, x, waves), nan=0.0, posinf=1e300, neginf=-1e300)
+    middle = symbol[np.ix_(wide, inner)]
+    falls = symbol.min() < 10 * min(float(middle.min()), 0.0) and symbol.min() < 0
+    rises = symbol.max() > 10 * max(float(middle.max()), 0.0) and symbol.max() > 0
+    if not falls:
+        return form, 1
+    if not rises:
+        return Form(tuple((key, -coefficient) for key, coefficient in form.terms)), -1
+    raise PhysicsError(
+        "the operator is not bounded below and has no lowest level, nor a highest one",
+        mend="check the signs of the highest powers of p and of the coordinate",
+    )
 
 
 def _more(box: Box, ring: bool) -> Box:
@@ -109,7 +169,7 @@ def _waves(box: Box) -> Array:
     return np.asarray((2 * math.pi * numbers + box.phase) / (box.right - box.left), dtype=np.float64)
 
 
-def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> tuple[Array, Values, Array, float]:
+def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> _Solution:
     """Return all values, vectors in the wave basis, bounds on the rounding in each, and the least of the function part.
 
     The values up to `last` are Rayleigh quotients taken term by term, whose rounding goes with their parts, not with the
@@ -179,7 +239,6 @@ def _open_box(model: Model, form: Form, last: int) -> Box:
     with np.errstate(all="ignore"):
         symbol = _symbol(form, x, waves)
     symbol = np.where(np.isnan(symbol), np.inf, symbol)
-    _refuse_falling(symbol)
     energy = _energy(symbol, x, waves, last + 2.5)
     inside = symbol <= energy
     rows, columns = np.flatnonzero(inside.any(axis=1)), np.flatnonzero(inside.any(axis=0))
@@ -205,15 +264,6 @@ def _symbol(form: Form, x: Array, waves: Array) -> Array:
     for (j, k), coefficient in form.terms:
         total += coefficient(x)[:, None] * (np.conj((1j * waves) ** j) * (1j * waves) ** k)
     return total.real
-
-
-def _refuse_falling(symbol: Array) -> None:
-    """Raise PhysicsError where the symbol is lowest at the border of the sample: there is no lowest level."""
-    border = min(symbol[0].min(), symbol[-1].min(), symbol[:, 0].min(), symbol[:, -1].min())
-    if border < 0 and border < -1e6 * (1 + abs(float(np.median(symbol[len(symbol) // 2])))):
-        raise PhysicsError(
-            "the operator is not bounded below and has no lowest level", mend="check the signs of the highest powers"
-        )
 
 
 def _energy(symbol: Array, x: Array, waves: Array, count: float) -> float:
