@@ -112,7 +112,8 @@ def dense_levels(model: Model, last: int, tolerance: float, should_stop: Callabl
     agree = finer.points <= MOST_POINTS
     if agree:
         again = _solve(form, finer, last, vectors=False)[0]
-        top, bottom = best.values[-1] + 4 * best.error[-1], best.values[0] - 4 * best.error[0]
+        slack = 4 * best.error + NOISE * np.abs(again).max()
+        top, bottom = best.values[-1] + slack[-1], best.values[0] - slack[0]
         agree = bool((again <= top).sum() >= last + 1 and (again < bottom).sum() == 0)
     return replace(best, values=sign * best.values, agree=agree, sign=sign)
 

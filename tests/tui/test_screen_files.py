@@ -13,6 +13,13 @@ async def pressed(pilot, *keys):
     await settled(pilot)
 
 
+async def named(pilot, key, path):
+    """Press the key that asks for a name, put `path` there and take it."""
+    await pressed(pilot, key)
+    pilot.app.screen.field.value = str(path)
+    await pressed(pilot, "enter")
+
+
 @pytest.fixture
 def sheet(tmp_path):
     """Return the path of a sheet."""
@@ -40,16 +47,17 @@ async def test_saving_under_a_new_name(tmp_path):
     target = tmp_path / "new.sheet"
     async with app().run_test(size=(80, 24)) as pilot:
         await settled(pilot)
-        await pressed(pilot, "w", *["backspace"] * 14, *str(target), "enter")
+        await named(pilot, "w", target)
         assert target.read_text() == SHEET
         assert pilot.app.document.path == target
         other = tmp_path / "other.sheet"
         other.write_text("mine")
-        await pressed(pilot, "a", *["backspace"] * len(str(target)), *str(other), "enter")
+        await named(pilot, "a", other)
         assert "Replace it?" in "\n".join(lines(pilot))
         await pressed(pilot, "n")
         assert other.read_text() == "mine"
-        await pressed(pilot, "a", *["backspace"] * len(str(target)), *str(other), "enter", "y")
+        await named(pilot, "a", other)
+        await pressed(pilot, "y")
         assert other.read_text() == SHEET
 
 
@@ -57,7 +65,7 @@ async def test_a_save_that_fails_says_why(tmp_path):
     """A folder that is not there is named; the text stays unsaved."""
     async with app().run_test(size=(120, 40)) as pilot:
         await settled(pilot)
-        await pressed(pilot, "w", *["backspace"] * 14, *str(tmp_path / "no" / "a"), "enter")
+        await named(pilot, "w", tmp_path / "no" / "a")
         assert "cannot write" in "\n".join(lines(pilot))
 
 

@@ -180,7 +180,7 @@ async def test_a_defect_below_does_not_end_the_session(size):
     """An exception that is nobody's message is shown as a defect, without a traceback."""
     async with app("# crash\nH = p^2").run_test(size=size) as pilot:
         await settled(pilot)
-        assert "(ZeroDivisionError: by zero)" in "\n".join(lines(pilot))
+        assert "specterm failed here (ZeroDivisionError: by zero)" in " ".join("\n".join(lines(pilot)).split())
 
 
 async def test_u_takes_an_edit_back(size):
