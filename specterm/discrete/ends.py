@@ -31,13 +31,15 @@ class NearEnd:
 class FarEnd:
     """An open end.
 
-    `limit` is what V tends to (+inf where it confines), `reach` the place beyond which V - limit is lost in rounding.
-    `tail` is (V - limit) x^2 / K at `reach`; `endless` says that infinitely many levels lie below the limit.
+    `limit` is what V tends to (+inf where it confines), `reach` the place beyond which V - limit is lost in rounding. `local`
+    is the distance to there measured by the integral of dx/sqrt(K), `tail` is (V - limit) times its square; `endless` says
+    that infinitely many levels lie below the limit.
     """
 
     limit: float
     reach: float
     tail: float
+    local: float
     endless: bool
 
 
@@ -147,7 +149,7 @@ def _power(value: float) -> float:
 
 
 def far_end(problem: Problem, side: int) -> FarEnd:
-    """Classify an open end by the values of V far out; raise PhysicsError where V falls without limit or never settles."""
+    """Classify an open end by the effective potential far out; PhysicsError where it falls without limit or never settles."""
     sign = -1.0 if side == 0 else 1.0
     marks = np.concatenate(
         [problem.edges, problem.centres, [e for e in (problem.left, problem.right) if np.isfinite(e)], [0.0]]
@@ -157,20 +159,20 @@ def far_end(problem: Problem, side: int) -> FarEnd:
     d = d[d > 4 * np.spacing(abs(middle))]
     x = middle + sign * d
     with np.errstate(all="ignore"):
-        values, stiffness = problem.potential(x), problem.stiffness(x)
-        finite = np.isfinite(values) & np.isfinite(stiffness) & (stiffness > 0)
+        values, stiffness = problem.effective(x), problem.stiffness(x)
+        finite = np.isfinite(values) & (stiffness > 1e-100) & (stiffness < 1e100)
     if not finite.any():
         if (values == np.inf).any():
-            return FarEnd(math.inf, middle + sign * d[-1], math.inf, False)
+            return FarEnd(math.inf, middle + sign * d[-1], math.inf, math.inf, False)
         raise PhysicsError(f"the potential has no value beyond {middle:.6g}", mend="narrow the domain")
     start = int(np.argmax(finite))
     stop = len(d) if finite[start:].all() else start + int(np.argmin(finite[start:]))
-    first_lost = values[stop] if stop < len(d) else np.nan
+    first_lost = values[stop] if stop < len(d) and 1e-100 < stiffness[stop] < 1e100 else np.nan
     values, d, stiffness = values[start:stop], d[start:stop], stiffness[start:stop]
     verdict = _settles(values, first_lost)
     where = "x -> -inf" if side == 0 else "x -> inf"
     if verdict == "rises":
-        return FarEnd(math.inf, middle + sign * d[-1], math.inf, False)
+        return FarEnd(math.inf, middle + sign * d[-1], math.inf, math.inf, False)
     if verdict == "falls":
         raise PhysicsError(
             f"the operator is not bounded below and has no lowest level: the potential falls without limit at {where}",
@@ -181,7 +183,13 @@ def far_end(problem: Problem, side: int) -> FarEnd:
             f"the potential does not settle at {where}: the spectrum there is made of bands",
             mend="use one period as a ring: x in ring(a, b), phase q",
         )
-    return _tail(values, d, stiffness, middle, sign)
+    return _tail(values, d, _local_lengths(d, stiffness), middle, sign)
+
+
+def _local_lengths(d: Array, stiffness: Array) -> Array:
+    """Return the integral of dx/sqrt(K) from the middle out to each distance: d/sqrt(K) where K is constant."""
+    pieces = np.diff(d, prepend=0.0) / np.sqrt(stiffness)
+    return np.cumsum(pieces)
 
 
 def _settles(values: Array, first_lost: float) -> str:
@@ -191,9 +199,10 @@ def _settles(values: Array, first_lost: float) -> str:
     late = np.diff(values)[-256:]
     if _shrinking(late):
         return "settles"
-    if (late > 0).all():
+    last = late[-int(np.clip(len(values) // 16, 4, 256)) :]
+    if (last > 0).all():
         return "rises"
-    return "falls" if (late < 0).all() else "wanders"
+    return "falls" if (last < 0).all() else "wanders"
 
 
 def _shrinking(steps: Array) -> bool:
@@ -203,24 +212,24 @@ def _shrinking(steps: Array) -> bool:
     return bool(late <= 0.1 * early)
 
 
-def _tail(values: Array, d: Array, stiffness: Array, middle: float, sign: float) -> FarEnd:
+def _tail(values: Array, d: Array, local: Array, middle: float, sign: float) -> FarEnd:
     """Return the limit with what is left of the tail where it can last be told from rounding."""
     limit = _limit(values)
     rest = values - limit
     seen = np.flatnonzero(np.abs(rest) > max(4e-16 * abs(limit), np.finfo(float).tiny * 1e10))
     if len(seen) == 0:
-        return FarEnd(limit, middle, 0.0, False)
+        return FarEnd(limit, middle, 0.0, 1.0, False)
     last = int(seen[-1])
     clean = int(np.flatnonzero(np.abs(rest) > max(1e-7 * abs(limit), np.finfo(float).tiny * 1e10))[-1]) if limit else last
-    power = _fall(rest, d, clean)
+    power = _fall(rest, local, clean)
     with np.errstate(all="ignore"):
-        pull = rest * d * (d / stiffness)
+        pull = rest * local * local
     if power > 6:
-        return FarEnd(limit, middle + sign * d[min(last + 1, len(d) - 1)], 0.0, False)
+        return FarEnd(limit, middle + sign * d[min(last + 1, len(d) - 1)], 0.0, 1.0, False)
     endless = bool(rest[clean] < 0 and (power < 1.95 or (power < 2.05 and pull[clean] < -0.25)))
     settled = np.abs(pull[: clean + 1] - (pull[clean] if abs(power - 2) < 0.05 else 0.0)) < 1e-9
     place = int(np.argmax(settled & (np.arange(clean + 1) > np.argmax(np.abs(pull[: clean + 1]))))) or clean
-    return FarEnd(limit, middle + sign * d[place], float(pull[place]), endless)
+    return FarEnd(limit, middle + sign * d[place], float(pull[place]), float(local[place]), endless)
 
 
 def _limit(values: Array) -> float:

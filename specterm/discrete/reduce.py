@@ -30,11 +30,17 @@ def problem_of(model: Model) -> Problem:
     sign = _sign(stiffness, domain.left, domain.right)
     if sign < 0:
         stiffness, potential = -stiffness, -potential
+    effective = potential
+    if stiffness.constant is None and "open" in {domain.left_end, domain.right_end}:
+        slope = stiffness.derivative()
+        bend = slope.derivative()
+        if not slope.has_edge and not bend.has_edge:
+            effective = potential + bend / 4 - slope * slope / (16 * stiffness)
     functions = [f for f in (stiffness, potential, twist) if f is not None]
     ends = (domain.left, domain.right)
     return Problem(
         stiffness, stiffness.derivative() if stiffness.constant is None and not stiffness.derivative().has_edge else _flat,
-        potential, stiffness.rounding, potential.rounding, *ends, domain.left_end, domain.right_end,
+        potential, effective, stiffness.rounding, potential.rounding, *ends, domain.left_end, domain.right_end,
         edges=np.unique(np.concatenate([f.edges(*ends) for f in functions])),
         centres=np.unique(np.concatenate([f.centres(*ends) for f in functions])),
         knots=sum(f.knots() for f in functions),

@@ -89,7 +89,7 @@ def _trusted(x: Array, stiffness: Array, potential: Array, problem: Problem) -> 
     middle = float(np.median(np.concatenate([problem.centres, problem.edges, [0.0]])))
     for end, inner, outer in ((problem.left_end, first, slice(0, first)), (problem.right_end, last, slice(last + 1, None))):
         far = end == "open" and abs(x[inner] - middle) > 1e6 * max(1.0, abs(middle))
-        if far or potential[inner] > 1e100:
+        if far or potential[inner] > 1e100 or stiffness[inner] < 1e-290:
             good[outer] = False
     return good
 

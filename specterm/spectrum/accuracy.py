@@ -79,7 +79,7 @@ def _cut(ready: Setting, solved: Solved) -> Array:
     The value moves with the wall as dE/dX = -K psi'(X)^2 (Hadamard's formula); beyond the cut psi' falls at least as exp(-kappa
     x).
     """
-    problem, look, origin = ready.problem, ready.look, ready.floor
+    problem, look, origin = ready.problem, ready.outer, ready.floor
     mesh = solved.condensed.mesh
     cut = np.zeros((2, len(solved.values)))
     slopes = end_slopes(mesh.order)
@@ -90,7 +90,7 @@ def _cut(ready: Setting, solved: Solved) -> Array:
         slope = np.abs(slopes[row] @ solved.coefficients[element]) * 2 / mesh.lengths[element]
         stiffness = problem.stiffness(np.array([place]))[0]
         beyond = look.x < place if row == 0 else look.x > place
-        here = problem.potential(np.array([place]))[0]
+        here = problem.effective(np.array([place]))[0]
         height = min(here, float(np.min(look.potential[beyond], initial=np.inf))) - origin
         with np.errstate(all="ignore"):
             kappa = np.sqrt(np.maximum(height - solved.values, 0) / stiffness)

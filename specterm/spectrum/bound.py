@@ -22,7 +22,7 @@ def bound_levels(ready: Setting) -> int | None:
 
     A tail that falls faster than 1/x^2 lets a function go to zero at no cost far out, so the form on the mesh with free ends
     has as many negative directions as the whole one has (Sylvester); a 1/x^2 tail of strength c adds its least cost, -K s/X
-    with s = (1 - sqrt(1 + 4 c))/2, at the end X.
+    with s = (1 - sqrt(1 + 4 c))/2, at the end X (lengths by the integral of dx/sqrt(K)).
     """
     if any(isinstance(end, FarEnd) and end.limit == ready.threshold and end.endless for end in ready.ends):
         return None
@@ -33,10 +33,8 @@ def bound_levels(ready: Setting) -> int | None:
         end = ready.ends[side]
         if isinstance(end, FarEnd) and end.limit == ready.threshold:
             place = _reach(ready, end, side)
-            stiffness = float(ready.problem.stiffness(np.array([place]))[0])
-            power = (1 - math.sqrt(max(0.0, 1 + 4 * end.tail))) / 2
             places.append(place)
-            edges.append(Edge(False, pull=-stiffness * power / max(abs(place), np.finfo(float).tiny)))
+            edges.append(Edge(False, pull=_pull(ready, end, place, side)))
         else:
             one = _other(ready, side)
             places.append(one[0])
@@ -46,6 +44,14 @@ def bound_levels(ready: Setting) -> int | None:
     condensed = condense(mesh, grid(mesh, ready.coefficients))
     height = ready.threshold - ready.floor
     return int(count_below(condensed, np.array([height * (1 - MARGIN)]))[0])
+
+
+def _pull(ready: Setting, end: FarEnd, place: float, side: int) -> float:
+    """Return the least cost of a tail beyond the place, times |psi|^2 there: sqrt(K) w'/w and K'/4, psi = w/K^(1/4)."""
+    at = np.array([place])
+    stiffness, slope = float(ready.problem.stiffness(at)[0]), float(ready.problem.slope(at)[0])
+    power = (1 - math.sqrt(max(0.0, 1 + 4 * end.tail))) / 2
+    return -math.sqrt(stiffness) * power / end.local + (slope if side == 1 else -slope) / 4
 
 
 def _reach(ready: Setting, end: FarEnd, side: int) -> float:
@@ -59,7 +65,7 @@ def _reach(ready: Setting, end: FarEnd, side: int) -> float:
 
 def _other(ready: Setting, side: int) -> tuple[float, Edge]:
     """Return place and edge of an end above the threshold (cut where psi has died) or of a finite end."""
-    apart = Setting(ready.problem, ready.look, _alone(ready, side), ready.extra, ready.floor, ready.threshold)
+    apart = Setting(ready.problem, ready.look, ready.outer, _alone(ready, side), ready.extra, ready.floor, ready.threshold)
     span = span_at(apart, ready.threshold, (2 * DEEP, 2 * DEEP))
     if span is None:
         raise ArithmeticError("an end above the threshold must close")

@@ -23,13 +23,14 @@ DEEP = 20.0
 class Setting:
     """A problem looked over.
 
-    Ends classified, the scan, the Langer term `extra` (n,) on the scan's places (K/4d^2 at a singular end, twice that
-    where psi falls off slower than d), `floor` (an energy below all levels, roughly the minimum of V) and `threshold` (inf
-    where the spectrum is discrete).
+    The scan, the same with the effective potential for what happens far out (`outer`), the ends classified, the Langer term
+    `extra` (n,) on the scan's places (K/4d^2 at a singular end, twice that where psi falls off slower than d), `floor` (an
+    energy below all levels, roughly the minimum of V) and `threshold` (inf where the spectrum is discrete).
     """
 
     problem: Problem
     look: Scan
+    outer: Scan
     ends: tuple[NearEnd | FarEnd | None, NearEnd | FarEnd | None]
     extra: Array
     floor: float
@@ -76,7 +77,10 @@ def setting(problem: Problem) -> Setting:
     if not ends[0] and not ends[1]:
         floor = float(look.potential.min())
     limits = [end.limit for end in ends if isinstance(end, FarEnd)]
-    return Setting(problem, look, (ends[0], ends[1]), extra, floor, min(limits, default=math.inf))
+    outer = look
+    if problem.effective is not problem.potential:
+        outer = Scan(look.x, look.stiffness, problem.effective(look.x))
+    return Setting(problem, look, outer, (ends[0], ends[1]), extra, floor, min(limits, default=math.inf))
 
 
 def _end(problem: Problem, side: int) -> NearEnd | FarEnd:
@@ -108,7 +112,7 @@ def span_at(ready: Setting, energy: float, actions: tuple[float, float] = (DEEP,
 
 def _death(ready: Setting, energy: float, side: int, action: float) -> float | None:
     """Return where the decay outward from the outermost turning point reaches `action` powers of e."""
-    look = ready.look
+    look = ready.outer
     decay = look.decay(energy)
     decay[~np.isfinite(decay)] = 1e300
     allowed = np.flatnonzero(look.potential < energy)
