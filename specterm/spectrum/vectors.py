@@ -100,6 +100,7 @@ def _newton(condensed: Condensed, groups: list[Group], bottom: float, top: float
     numbers = np.array([g.first for g in groups])
     energies = (low + high) / 2
     slack = 1e-3 * SETTLED * np.abs(energies - bottom)
+    near = np.zeros(len(groups), dtype=bool)
     for number in range(120):
         matrix, weight = chain_with_mass(condensed, energies)
         z, misfit, inertia = twisted_vectors(matrix, weight.diagonal)
@@ -111,10 +112,11 @@ def _newton(condensed: Condensed, groups: list[Group], bottom: float, top: float
         inside = (trial > low - slack) & (trial < high + slack) & np.isfinite(step)
         fine = np.minimum(SETTLED * np.abs(trial - bottom), 1e-4 * np.abs(top - trial))
         fine = np.maximum(fine, 4 * np.spacing(np.abs(energies)))
-        settled = (inside & (np.abs(step) <= fine)) | (high - low <= fine)
+        near, before = inside & (np.abs(step) <= fine), near
+        settled = (near & (before | (np.abs(step) <= 1e-2 * fine))) | (high - low <= 1e-2 * fine)
         if settled.all():
             break
-        halve = ~inside | ((number % 5 == 4) & ~settled)
+        halve = ~inside | ((number % 5 == 4) & ~near)
         energies = np.where(settled, energies, np.where(halve, (low + high) / 2, trial))
     return energies, z
 
@@ -187,6 +189,7 @@ def _block(condensed: Condensed, group: Group, bottom: float) -> tuple[Values, f
     slack = 1e-3 * SETTLED * abs(energy - bottom)
     start = np.random.default_rng(20).standard_normal((_vertices(condensed), group.size))
     z: Values = start
+    near = False
     for sweep in range(80):
         matrix, weight = chain_with_mass(condensed, np.array([energy]))
         solve, heavy = _solver(matrix), _matrix(weight)
@@ -197,7 +200,8 @@ def _block(condensed: Condensed, group: Group, bottom: float) -> tuple[Values, f
             if sweep >= 3:
                 break
             continue
-        if sweep >= 1 and abs(step) <= max(SETTLED * abs(energy - bottom), 4 * np.spacing(abs(energy))):
+        near, before = abs(step) <= max(SETTLED * abs(energy - bottom), 4 * np.spacing(abs(energy))), near
+        if sweep >= 1 and near and before:
             break
         below = count_below(condensed, np.array([energy]))[0] > group.first
         low, high = (low, energy) if below else (energy, high)
