@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -45,9 +46,12 @@ class Accuracy:
         return total
 
 
-def accuracy(ready: Setting, solved: Solved) -> Accuracy:
-    """Estimate the error of every level solved, in blocks of levels to bound the memory."""
-    blocks = [_block(ready, _part(solved, slice(k, k + 64))) for k in range(0, len(solved.values), 64)]
+def accuracy(ready: Setting, solved: Solved, check: Callable[[], None] = lambda: None) -> Accuracy:
+    """Estimate the error of every level solved, in blocks of levels to bound the memory; `check` may raise to stop the work."""
+    blocks = []
+    for start in range(0, len(solved.values), 64):
+        check()
+        blocks.append(_block(ready, _part(solved, slice(start, start + 64))))
     joined = (np.concatenate([getattr(b, name) for b in blocks], axis=-1) for name in ("residual", "unseen", "cut", "noise"))
     return Accuracy(*joined)
 

@@ -13,6 +13,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from specterm.arrays import Array, Values
+from specterm.discrete.memory import refuse_above
 from specterm.errors import PhysicsError, WorkStopped
 from specterm.model import Form, Model
 
@@ -87,6 +88,7 @@ def dense_levels(model: Model, last: int, tolerance: float, should_stop: Callabl
     """
     form, sign = _turned(model, model.operator.form())
     ring = model.domain.is_ring
+    refuse_above(16.0 * 8 * (4.0 * last) ** 2, f"computing {last + 1} levels")
     box = _ring_box(model, last) if ring else _open_box(model, form, last)
     before = _solve(form, box, last)
     best: DenseLevels | None = None

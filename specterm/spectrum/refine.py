@@ -10,6 +10,7 @@ import numpy as np
 from specterm.arrays import Array, Flags
 from specterm.discrete.chain import count_below
 from specterm.discrete.elements import Condensed, condense, grid
+from specterm.discrete.memory import refuse_above
 from specterm.discrete.mesh import Mesh
 from specterm.discrete.meshing import MOST_ELEMENTS, Span, build, resolve
 from specterm.errors import PhysicsError, WorkStopped
@@ -32,6 +33,11 @@ class Request:
     should_stop: Callable[[], bool]
     progress: Callable[[str], None]
 
+    def check(self) -> None:
+        """Raise WorkStopped when the work is to stop."""
+        if self.should_stop():
+            raise WorkStopped("stopped")
+
 
 @dataclass(frozen=True)
 class Refined:
@@ -48,11 +54,14 @@ def refine(ready: Setting, request: Request, energy: float, span: Span | None) -
     fixed = span is not None
     actions = (DEEP, DEEP)
     energy, span, condensed = first_mesh(ready, request, energy, span)
+    levels = request.last - request.first + 1
+    refuse_above(8.0 * len(condensed.poles) * (60 * levels + 3000), f"computing {levels} levels")
     high = energy - ready.floor
     for number in range(ROUNDS):
         _report(request, number, condensed)
-        solved = solve_levels(condensed, request.first, request.last, _low(condensed, request.first, high), high, 0.0)
-        found = accuracy(ready, solved)
+        low = _low(condensed, request.first, high)
+        solved = solve_levels(condensed, request.first, request.last, low, high, 0.0, request.check)
+        found = accuracy(ready, solved, request.check)
         target = _targets(solved, request.tolerance, found)
         coarse = _coarse(found, target, condensed)
         wider, actions = (None, actions) if fixed else _wider(ready, found, target, solved, span, actions)
@@ -83,8 +92,7 @@ def _vector_error(solved: Solved, found: Accuracy) -> Array:
 
 
 def _report(request: Request, number: int, condensed: Condensed) -> None:
-    if request.should_stop():
-        raise WorkStopped("stopped")
+    request.check()
     request.progress(f"mesh {number + 1}: {condensed.mesh.unknowns} unknowns")
 
 
@@ -93,8 +101,7 @@ def first_mesh(ready: Setting, request: Request, energy: float, span: Span | Non
     fixed, depth = span, 0.3
     wanted = request.last + 1
     for _ in range(80):
-        if request.should_stop():
-            raise WorkStopped("stopped")
+        request.check()
         at_threshold = energy >= ready.threshold and fixed is None
         below = ready.threshold - depth * (ready.threshold - ready.floor) / (wanted + 1) ** 2 if at_threshold else energy
         span = fixed or span_at(ready, below)

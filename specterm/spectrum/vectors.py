@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
 
-from specterm.arrays import Array, Values
+from specterm.arrays import Array, Counts, Values
 from specterm.discrete.chain import Chain, chain_with_mass, count_below, element_coefficients, twisted_vectors
 from specterm.discrete.elements import Condensed
 from specterm.spectrum.isolate import CLOSE, Group, isolate
@@ -44,17 +45,32 @@ class Part:
     kinetic: Array
 
 
-def solve_levels(condensed: Condensed, first: int, last: int, low: float, high: float, bottom: float) -> Solved:
+def solve_levels(
+    condensed: Condensed,
+    first: int,
+    last: int,
+    low: float,
+    high: float,
+    bottom: float,
+    check: Callable[[], None] = lambda: None,
+) -> Solved:
     """Return levels number first ... last of the mesh.
 
     There must be at least last + 1 levels below `high` and at most `first` below `low`. `bottom` is the energy from which
-    distances are judged: levels closer than a share `CLOSE` of theirs are solved together.
+    distances are judged: levels closer than a share `CLOSE` of theirs are solved together. `check` is called now and then and may
+    raise to stop the work.
     """
-    groups = isolate(lambda energies: count_below(condensed, energies), first, last, low, high, bottom)
+
+    def count(energies: Array) -> Counts:
+        check()
+        return count_below(condensed, energies)
+
+    groups = isolate(count, first, last, low, high, bottom)
     single = condensed.mesh.phase is None
     loners = [g for g in groups if g.size == 1 and single]
     parts: list[Part] = []
     for start in range(0, len(loners), 64):
+        check()
         some = loners[start : start + 64]
         energies, z = _newton(condensed, some, bottom, high)
         found = _quotients(condensed, [g.first for g in some], element_coefficients(condensed, z, energies))
@@ -62,7 +78,10 @@ def solve_levels(condensed: Condensed, first: int, last: int, low: float, high: 
             part if abs(part.values[0] - energy) <= STRAY * abs(energy - bottom) else _group(condensed, group, bottom)
             for part, energy, group in zip(found, energies, some, strict=True)
         ]
-    parts += [_group(condensed, g, bottom) for g in groups if g.size > 1 or not single]
+    for group in groups:
+        if group.size > 1 or not single:
+            check()
+            parts.append(_group(condensed, group, bottom))
     parts = _merged(condensed, sorted(parts, key=lambda part: part.first), bottom)
     start = parts[0].first
     take = slice(first - start, last + 1 - start)
