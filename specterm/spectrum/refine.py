@@ -21,6 +21,8 @@ from specterm.spectrum.vectors import Solved, solve_levels
 OVERSHOOT = 1e-3
 """Levels are refined to this share of the tolerance: it costs little, and the error left is mostly rounding."""
 ROUNDS = 14
+LARGE = 20_000
+"""From so many elements on, memory is asked for before a mesh is condensed."""
 
 
 @dataclass(frozen=True)
@@ -124,6 +126,9 @@ def first_mesh(ready: Setting, request: Request, energy: float, span: Span | Non
 def _without_poles(ready: Setting, mesh: Mesh, energy: float) -> Condensed:
     """Condense the mesh, splitting elements whose interior has a level of its own below the energy."""
     high = energy - ready.floor
+    elements = len(mesh.places) - 1
+    if elements > LARGE:
+        refuse_above(64.0 * elements * (mesh.order + 1) ** 2, f"a mesh of {elements} elements")
     for _ in range(60):
         condensed = condense(mesh, grid(mesh, ready.coefficients))
         stiffness = (condensed.grid.kinetic / condensed.grid.mass).min(axis=1) / 4

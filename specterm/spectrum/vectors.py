@@ -57,8 +57,8 @@ def solve_levels(
     """Return levels number first ... last of the mesh.
 
     There must be at least last + 1 levels below `high` and at most `first` below `low`. `bottom` is the energy from which
-    distances are judged: levels closer than a share `CLOSE` of theirs are solved together. `check` is called now and then and may
-    raise to stop the work.
+    distances are judged: levels closer than a share `CLOSE` of theirs are solved together. `check` is called now and then
+    and may raise to stop the work.
     """
 
     def count(energies: Array) -> Counts:
