@@ -98,7 +98,16 @@ def cubic(name: str, x: Floats, y: Floats, outside: str) -> Spline:
     h, d = np.diff(x), np.diff(y) / np.diff(x)
     second = (3 * d - 2 * slopes[:-1] - slopes[1:]) / h
     third = (slopes[:-1] + slopes[1:] - 2 * d) / h**2
+    if outside == "extend":
+        _drop_rounding(third, h**3, y)
     return Spline(name, x, np.array([y[:-1], slopes[:-1], second, third]), outside, 2 if len(x) > 3 else _ONE_PIECE, _sizes(y))
+
+
+def _drop_rounding(third: Floats, cubes: Floats, y: Floats) -> None:
+    """Set the cubic coefficients of the two end pieces to zero, in place, where they are rounding: far out they would rule."""
+    for end in (0, -1):
+        if abs(third[end]) * cubes[end] <= 1e-13 * float(np.abs(y).max()):
+            third[end] = 0.0
 
 
 def _sizes(y: Floats) -> Floats:
