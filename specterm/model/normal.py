@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from specterm.language.catalogue import refuse
 from specterm.model.derivative import MOST_TERMS, derivative
 from specterm.model.domain import Domain
+from specterm.model.places import centres
 from specterm.model.rounding import step
 from specterm.model.scalar import Scalar
 from specterm.model.term import NIL, Term, linear, multiply, spread
@@ -89,14 +90,15 @@ def collect(pairs: Iterable[tuple[Scalar, Term]]) -> Pairs:
 def vanishes(pairs: Sequence[tuple[Scalar, Term]], domain: Domain | None, tolerance: float = 1e-10) -> bool:
     """Say whether a sum of terms is zero: exactly, or to `tolerance` times the sum of |terms| on a sample where it has values.
 
-    Formal derivatives of functions that jump take arbitrary fixed values, so they only vanish where they cancel.
+    Formal derivatives of functions that jump take arbitrary fixed values, so they only vanish where they cancel. Places where
+    all terms are zero or rounding tell nothing; a sum that is told nothing about does not vanish.
     """
     kept = collect(pairs)
     if not kept:
         return True
     if len(kept) == 1 and kept[0][1].kind == "constant":
         return False
-    x = sample(domain)
+    x = _telling_places(kept, domain)
     total: Any = 0.0
     size: Any = 0.0
     noise: Any = 0.0
@@ -105,7 +107,7 @@ def vanishes(pairs: Sequence[tuple[Scalar, Term]], domain: Domain | None, tolera
             values, bound = generic_values(t, x)
             total, size = total + c.value * values, size + abs(c.value) * np.abs(values)
             noise = noise + abs(c.value) * bound
-        seen = np.isfinite(total) & np.isfinite(size)
+        seen = np.isfinite(total) & np.isfinite(size) & (size > 4 * noise) & (size > 0)
         return bool(np.any(seen) and np.all(np.abs(total)[seen] <= tolerance * size[seen] + noise[seen]))
 
 
@@ -128,6 +130,15 @@ def _arbitrary(term: Term, x: NDArray[np.float64]) -> NDArray[Any]:
     generator = np.random.Generator(np.random.PCG64(term.digest % 2**64))
     values = generator.uniform(0.5, 2.0, x.shape)
     return values if term.real else values * np.exp(2j * np.pi * generator.uniform(size=x.shape))
+
+
+def _telling_places(pairs: Pairs, domain: Domain | None) -> NDArray[np.float64]:
+    """Return the usual sample, and places on every scale around the natural centres of the terms."""
+    left, right = (-math.inf, math.inf) if domain is None else (domain.left, domain.right)
+    marks = np.unique(np.concatenate([centres(term, left, right)[:16] for _, term in pairs[:40]]))[:64]
+    steps = np.geomspace(1e-13, 1e3, 33) * 1.0123456789
+    near = (marks[:, None] + np.concatenate([-steps, steps])).ravel()
+    return np.concatenate([sample(domain), near[(near > left) & (near < right)]])
 
 
 def sample(domain: Domain | None) -> NDArray[np.float64]:

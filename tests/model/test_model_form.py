@@ -5,6 +5,8 @@ import pytest
 from model_making import function, model, operator
 
 from specterm.errors import PhysicsError
+from specterm.language import parse
+from specterm.model import build
 
 LAYERS = "layers x: thickness, V, m\n  1 0 0.5\n  2 3 0.7\n  1 0 0.5\nx in layers\n"
 NODES, WEIGHTS = np.polynomial.legendre.leggauss(120)
@@ -128,3 +130,18 @@ def test_smooth_choices_have_no_edge():
     assert function("where(x < 0.3, x^2, x)").derivative().has_edge
     assert not function("abs(x)").derivative().has_edge
     assert function("abs(x)").derivative().derivative().has_edge
+
+
+@pytest.mark.parametrize("shift", ["0", "250.33", "-98765.4"])
+def test_a_sum_of_narrow_wells_far_away_does_not_vanish(shift):
+    """Functions that are zero to rounding at every usual place of comparison still count, wherever and however narrow they are."""
+    text = f"V = -2.7*exp(-((x - ({shift}))/0.9)^2) - 0.02*sech((x - ({shift}))/1e-3)^2"
+    model = build(parse(text + "\nH = p^2/2 + V\nx in (-inf, inf)"))
+    place = np.array([float(shift)])
+    assert np.allclose(model.operator.sturm().V(place), -2.72, rtol=1e-12)
+
+
+def test_an_imaginary_well_far_away_is_not_hermitian():
+    """A complex potential is found though it is zero at every usual place of comparison."""
+    model = build(parse("V = exp(-((x - 250.3)/0.01)^2)\nH = p^2/2 + x^2/2 + i*V\nx in (-inf, inf)"))
+    assert model.operator.hermitian() is not None
