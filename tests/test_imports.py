@@ -71,7 +71,7 @@ def test_textual_stays_in_the_terminal_interface(path):
 
 @pytest.mark.parametrize("path", FILES, ids=lambda p: str(p.relative_to(ROOT)))
 def test_heavy_packages_load_late(path):
-    """scipy and plotext are imported inside the functions that need them, so that starting costs nothing."""
+    """Scipy and plotext are imported inside the functions that need them, so that starting costs nothing."""
     assert not [(name, row) for name, row, first in imports(path) if first and name.split(".")[0] in {"scipy", "plotext"}]
 
 

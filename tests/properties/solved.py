@@ -9,8 +9,8 @@ from specterm.model import build
 EPS = float(np.finfo(float).eps)
 
 
-def spectrum(text: str, count: int, **more) -> Spectrum:
-    """Return `count` levels of a sheet, all of them certified."""
+def spectrum(text: str, count: int | None, **more) -> Spectrum:
+    """Return `count` levels of a sheet (None: the usual number), none missed."""
     found = solve(build(parse(text)), count=count, **more)
     assert found.complete
     return found

@@ -71,7 +71,7 @@ def test_scaling_the_length_changes_nothing(potential, scale):
 @SOME
 @given(cups(), SCALES)
 def test_scaling_the_energy_scales_every_level(potential, scale):
-    """s H has the levels of H times s."""
+    """S H has the levels of H times s."""
     y = place(potential, "x")
     there = spectrum(line(f"s*({y})", "s*p^2/2", more=f"s = {scale}\n"), COUNT)
     all_same(spectrum(line(y), COUNT), there, scale=scale)
@@ -96,7 +96,7 @@ def test_a_mirror_changes_no_level_and_turns_the_states(potential):
 
 
 @SOME
-@given(cups(), st.sampled_from([1e-3, 0.37, 2.5, 60.0]), SCALES)
+@given(cups(), st.sampled_from([0.03, 0.37, 2.5, 60.0]), SCALES)
 def test_only_hbar_squared_over_mass_counts(potential, hbar, mass):
     """p^2/2m with hbar is p^2/2m' with hbar = 1 and m' = m/hbar^2."""
     y = place(potential, "x")
@@ -143,7 +143,7 @@ def test_eigenstates_are_orthonormal(potential, tilt):
 
 
 @FEW
-@given(cups(), hundredths(-1, 1), hundredths(0.4, 1.5), hundredths(-2, 2))
+@given(cups(), hundredths(-1, 1), hundredths(0.25, 0.4), hundredths(-2, 2))
 def test_weights_add_up_to_one(potential, centre, width, kick):
     """The weights of a packet never add up to more than 1, and to 1 once the levels reach far above its energy."""
     packet = f"\nstate packet = exp(-(x - ({centre}))^2/(4*{width}^2))*exp(i*({kick})*x)"
@@ -216,7 +216,9 @@ def test_slopes_are_expectations(potential, term):
 
     def slope(h):
         up, down = at(h), at(-h)
-        return [((a.value - b.value) / (2 * h), (a.error + b.error) / (2 * h)) for a, b in zip(up.levels, down.levels, strict=True)]
+        return [
+            ((a.value - b.value) / (2 * h), (a.error + b.error) / (2 * h)) for a, b in zip(up.levels, down.levels, strict=True)
+        ]
 
     found = at(0)
     x, w = points(found)

@@ -150,7 +150,9 @@ def test_the_whole_set(found_for):
     honest = sum(o.honest for o in every) / len(every)
     ratios = [o.level.error / o.off for o in every if o.level and o.off > FAITHFUL * o.scale]
     typical = median(ratios) if ratios else None
-    print(f"\n{len(every)} levels: reached {reached:.4f}, honest {honest:.4f}, reported/true {typical} ({len(ratios)} above rounding)")
+    print(
+        f"\n{len(every)} levels: reached {reached:.4f}, honest {honest:.4f}, reported/true {typical} ({len(ratios)} above rounding)"
+    )
     assert reached >= 0.98
     assert honest == 1.0
     assert typical is None or typical < 100

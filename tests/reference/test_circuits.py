@@ -50,7 +50,7 @@ def _with_error(difference, text):
 @pytest.mark.parametrize("charge", [0, 0.5])
 @pytest.mark.parametrize("ratio", [5, 35])
 def test_transmon_levels_are_characteristic_values(ratio, charge):
-    """q = EJ/2EC: a0, b2, a2, b4 at ng = 0 and b1, a1, b3, a3 at 1/2 (scipy.special, good to 1e-11 here)."""
+    """Q = EJ/2EC: a0, b2, a2, b4 at ng = 0 and b1, a1, b3, a3 at 1/2 (scipy.special, good to 1e-11 here)."""
     found = spectrum(transmon(ratio, charge), 4)
     q = ratio / 2
     pairs = [(special.mathieu_a, 0), (special.mathieu_b, 2), (special.mathieu_a, 2), (special.mathieu_b, 4)]

@@ -56,10 +56,13 @@ def test_wide_well_of_hard_walls():
 
 @pytest.mark.parametrize(
     ("strength", "roots"),
-    [(8, ["1.3954661439", "2.7859021141", "4.1648309141", "5.5214464300", "6.8306743262", "7.9573214942"]), (1, ["0.7390851332"])],
+    [
+        (8, ["1.3954661439", "2.7859021141", "4.1648309141", "5.5214464300", "6.8306743262", "7.9573214942"]),
+        (1, ["0.7390851332"]),
+    ],
 )
 def test_dimensionless_roots(strength, roots):
-    """z tan z = sqrt(z0^2 - z^2) and -z cot z = ..., with z^2 the levels of p^2 in a well of half width 1 and depth z0^2 (mpmath)."""
+    """Z tan z = sqrt(z0^2 - z^2) and -z cot z = ..., with z^2 the levels of p^2 in a well of half width 1 and depth z0^2 (mpmath)."""
     found = spectrum(f"z0 = {strength}\nH = p^2 + where(abs(x) < 1, 0, z0^2)\nx in (-inf, inf)", len(roots))
     assert found.bound == len(roots)
     for level, text in zip(found.levels, roots, strict=True):
@@ -67,9 +70,7 @@ def test_dimensionless_roots(strength, roots):
         within(root, text, level.error / (2 * root))
 
 
-@pytest.mark.parametrize(
-    ("depth", "width", "printed"), [(250.6, 6.5, "149.94"), (250.6, 8.2, "116.35")]
-)
+@pytest.mark.parametrize(("depth", "width", "printed"), [(250.6, 6.5, "149.94"), (250.6, 8.2, "116.35")])
 def test_step_between_subbands(depth, width, printed):
     """First step of GaAs/Al.3Ga.7As wells, recomputed (measured: 152 and 121 meV, West and Eglash 1985, from memory, within 5 %)."""
     difference, error = step(spectrum(well(width, depth, 0.067, 0.0919), 2), 0, 1)

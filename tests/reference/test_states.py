@@ -14,7 +14,7 @@ OSCILLATOR = "H = (p^2 + x^2)/2\nx in (-inf, inf)"
 
 
 def test_uncertainty_products_between_walls():
-    """dx dp/hbar = sqrt(n^2 pi^2/3 - 2)/2: 0.567862, 1.670290, 2.627204 (closed form, recomputed)."""
+    """Dx dp/hbar = sqrt(n^2 pi^2/3 - 2)/2: 0.567862, 1.670290, 2.627204 (closed form, recomputed)."""
     found = spectrum(WALLS, 12)
     for k, text in enumerate(("0.567862", "1.670290", "2.627204")):
         at = moments(ready(WALLS), found, k)
@@ -27,7 +27,7 @@ def test_uncertainty_products_between_walls():
 
 
 def test_uncertainty_products_of_an_oscillator_in_units():
-    """dx dp = (n + 1/2) hbar, dx^2 = (n + 1/2) hbar/(m w) (closed form) for a trapped atom in nK, um and u."""
+    """Dx dp = (n + 1/2) hbar, dx^2 = (n + 1/2) hbar/(m w) (closed form) for a trapped atom in nK, um and u."""
     text = (
         "units: energy nK, length um, mass u\nm = 86.9\nw = 2*pi*50 [Hz]/h\nH = p^2/(2*m) + m*w^2*(x - 3)^2/2\nx in (-inf, inf)"
     ).replace("2*pi*50 [Hz]/h", "2*pi*50 [1/s]")

@@ -58,7 +58,7 @@ EXACT = {  # q, domain, number of levels held, level k in closed form; exact in 
 
 @pytest.mark.parametrize("beta", COFFEY_EVANS)
 def test_coffey_evans(beta):
-    """q = -2 b cos 2x + b^2 sin^2 2x: a zero level and a triplet (level 3 printed in the list, the others recomputed)."""
+    """Q = -2 b cos 2x + b^2 sin^2 2x: a zero level and a triplet (level 3 printed in the list, the others recomputed)."""
     found = spectrum(f"b = {beta}\nH = p^2 - 2*b*cos(2*x) + b^2*sin(2*x)^2\nx in (-pi/2, pi/2)", 6)
     agree(found, COFFEY_EVANS[beta])
     lowest = found.levels[0]  # 2e-16 at b = 20, less above: zero to all digits a double of this size has
