@@ -220,7 +220,8 @@ def _tail(values: Array, d: Array, local: Array, middle: float, sign: float) -> 
     if len(seen) == 0:
         return FarEnd(limit, middle, 0.0, 1.0, False)
     last = int(seen[-1])
-    clean = int(np.flatnonzero(np.abs(rest) > max(1e-7 * abs(limit), np.finfo(float).tiny * 1e10))[-1]) if limit else last
+    large = np.flatnonzero(np.abs(rest) > 1e-7 * abs(limit)) if limit else seen
+    clean = int(large[-1]) if len(large) else last
     power = _fall(rest, local, clean)
     with np.errstate(all="ignore"):
         pull = rest * local * local

@@ -29,6 +29,9 @@ from specterm.spectrum.vectors import Solved
 
 FROM_TOP = "the operator has a highest level and no lowest: levels are counted from the top"
 MISSED = "some levels do not reach the tolerance: kind unresolved"
+COUNTED = 1e-12
+"""Counts are trusted to tell levels apart by this share of them, and on meshes graded to tiny elements, by `BLURRED`."""
+BLURRED = 1e-7
 USUAL = 10
 """How many levels are computed when nobody says."""
 
@@ -210,14 +213,14 @@ def _spectrum(ready: Setting, refined: Refined, first: int, bound: int | None, t
     nodes_known = not problem.ring
     parity = parities(problem, solved)
     scales = _scales(solved)
+    complete, errors = _verified(ready, refined, first)
     levels = []
     for k, value in enumerate(values):
         index = first + k
         boxed = bound is not None and index >= bound
-        error = None if boxed else float(refined.error[k])
+        error = None if boxed else float(errors[k])
         kind = "box" if boxed else _kind(problem.bloch, error, scales[k], tolerance)
         levels.append(Level(index, float(value), error, kind, index if nodes_known else None, parity[k]))
-    complete = _complete(ready, refined, first, len(values))
     if problem.sign < 0:
         notes = [*notes, FROM_TOP]
     notes = [*notes, *_unresolved(tuple(levels))]
@@ -247,18 +250,27 @@ def _kind(band: bool, error: float | None, scale: float, tolerance: float) -> st
     return "band" if band else "bound"
 
 
-def _complete(ready: Setting, refined: Refined, first: int, count: int) -> bool:
-    """Count again on a finer mesh, between the highest level returned and the next: the numbers must agree."""
-    condensed = refined.solved.condensed
-    mesh = condensed.mesh
-    highest = float(refined.solved.values[-1])
-    gap = max(1e-9 * abs(highest), 4 * float(refined.error[-1]) if np.isfinite(refined.error[-1]) else 0.0)
+def _verified(ready: Setting, refined: Refined, first: int) -> tuple[bool, Array]:
+    """Count the levels again on a mesh of higher order, below and above each level: return whether all agree, and the errors.
+
+    A level that the counts do not find within its error gets the distance within which they do.
+    """
+    mesh = refined.solved.condensed.mesh
     finer = Mesh(mesh.places, mesh.order + 2, mesh.left, mesh.right, mesh.phase)
     again = condense(finer, grid(finer, ready.coefficients))
-    return (
-        int(count_below(again, np.array([highest + gap]))[0]) >= first + count
-        and int(count_below(again, np.array([float(refined.solved.values[0]) - gap]))[0]) <= first
-    )
+    values, error = refined.solved.values, refined.error
+    numbers = first + np.arange(len(values))
+    rounding = 16 * np.finfo(float).eps * float(np.abs(again.stiff[:, (0, 1), (0, 1)]).max())
+    blur = np.maximum(COUNTED * np.abs(values), np.minimum(rounding, BLURRED * np.abs(values)))
+    slack = np.maximum(4 * np.where(np.isfinite(error), error, 0.0), blur) + 64 * np.spacing(np.abs(values))
+    start = slack.copy()
+    for _ in range(14):
+        low, high = np.split(count_below(again, np.concatenate([values - slack, values + slack])), 2)
+        lost = (low > numbers) | (high <= numbers)
+        if not lost.any():
+            break
+        slack[lost] *= 10
+    return not bool(lost.any()), np.where(slack > start, np.maximum(error, slack), error)
 
 
 def _dense(model: Model, count: int, near: float | None, tolerance: float, stop: Callable[[], bool]) -> Spectrum:

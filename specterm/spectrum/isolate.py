@@ -12,7 +12,7 @@ from specterm.arrays import Array, Counts
 Count = Callable[[Array], Counts]
 
 CLOSE = 1e-10
-"""Levels nearer to each other than this share of their distance to the bottom are handled as one group."""
+"""Levels nearer to each other than this share of their distance to the bottom, or to the top, are handled as one group."""
 
 ALONE = 0.02
 """A single level is bracketed to this share of the mean spacing before Newton's method takes over."""
@@ -34,6 +34,7 @@ def isolate(count: Count, first: int, last: int, low: float, high: float, bottom
     Each bracket is cut at several energies at once, until it holds one level or is narrower than `CLOSE` of its distance to
     `bottom`.
     """
+    top = high
     ends = count(np.array([low, high]))
     todo = [Group(int(ends[0]), int(ends[1] - ends[0]), low, high)]
     enough = ALONE * (high - low) / max(1, last - first + 1)
@@ -43,17 +44,22 @@ def isolate(count: Count, first: int, last: int, low: float, high: float, bottom
         counts = np.split(count(np.concatenate(cuts)), np.cumsum([len(c) for c in cuts])[:-1])
         pieces = [piece for group, c, n in zip(todo, cuts, counts, strict=True) for piece in _pieces(group, c, n)]
         wanted = [g for g in pieces if g.first <= last and g.first + g.size > first]
-        todo = [g for g in wanted if not _settled(g, bottom, enough)]
-        done += [g for g in wanted if _settled(g, bottom, enough)]
+        todo = [g for g in wanted if not _settled(g, bottom, top, enough)]
+        done += [g for g in wanted if _settled(g, bottom, top, enough)]
     return sorted(done, key=lambda group: group.first)
 
 
-def _settled(group: Group, bottom: float, enough: float) -> bool:
+def _settled(group: Group, bottom: float, top: float, enough: float) -> bool:
     """Say whether a bracket is narrow: a single level to `enough`, several to where counts can no longer tell them apart."""
     width = group.high - group.low
     middle = (group.high + group.low) / 2
-    narrow = width <= CLOSE * abs(middle - bottom) or width <= 8 * np.spacing(max(abs(group.low), abs(group.high)))
+    narrow = width <= closeness(middle, bottom, top)
     return (group.size == 1 and width <= enough) or narrow
+
+
+def closeness(energy: float, bottom: float, top: float) -> float:
+    """Return the distance below which levels near an energy are one group: never less than a few roundings."""
+    return float(max(CLOSE * min(abs(energy - bottom), abs(top - energy)), 8 * np.spacing(abs(energy))))
 
 
 def _cuts(group: Group, first: int, last: int) -> Array:

@@ -10,9 +10,10 @@ import numpy as np
 from specterm.arrays import Array, Flags
 from specterm.discrete.chain import count_below
 from specterm.discrete.elements import Condensed, condense, grid
+from specterm.discrete.ends import FarEnd
 from specterm.discrete.memory import refuse_above
 from specterm.discrete.mesh import Mesh
-from specterm.discrete.meshing import MOST_ELEMENTS, Span, build, resolve
+from specterm.discrete.meshing import MOST_ELEMENTS, Span, build, graded, resolve
 from specterm.errors import PhysicsError, WorkStopped
 from specterm.spectrum.accuracy import SAFETY, Accuracy, accuracy
 from specterm.spectrum.setting import DEEP, Setting, span_at
@@ -21,6 +22,8 @@ from specterm.spectrum.vectors import Solved, solve_levels
 OVERSHOOT = 1e-3
 """Levels are refined to this share of the tolerance: it costs little, and the error left is mostly rounding."""
 ROUNDS = 14
+FARTHEST = 1e12
+"""Domains wider than this many times the spread of the potential's centres are not tried."""
 LARGE = 20_000
 """From so many elements on, memory is asked for before a mesh is condensed."""
 
@@ -177,11 +180,21 @@ def _wider(
         actions = (actions[0] + 4 * (worst[0, level] > 0.125), actions[1] + 4 * (worst[1, level] > 0.125))
         wider = span_at(ready, energy, actions)
         if wider is None:
-            return None, actions
+            return _farther(ready, span), actions
         left, right = min(left, wider.left), max(right, wider.right)
         if left < span.left or right > span.right:
             return Span(left, right, wider.left_edge, wider.right_edge), actions
     return None, actions
+
+
+def _farther(ready: Setting, span: Span) -> Span | None:
+    """Return a span eight times as wide at its open ends, for states so near the threshold that no decay is in sight yet."""
+    width = span.right - span.left
+    if width > FARTHEST * max(1.0, float(np.ptp(ready.problem.centres)) if len(ready.problem.centres) else 1.0):
+        return None
+    left = span.left - 4 * width if isinstance(ready.ends[0], FarEnd) else span.left
+    right = span.right + 4 * width if isinstance(ready.ends[1], FarEnd) else span.right
+    return Span(left, right, span.left_edge, span.right_edge)
 
 
 def _widened(ready: Setting, mesh: Mesh, span: Span, energy: float) -> Mesh:
@@ -189,5 +202,5 @@ def _widened(ready: Setting, mesh: Mesh, span: Span, energy: float) -> Mesh:
     wide = build(ready.problem, ready.look, ready.coefficients, span, energy)
     outer = wide.places[(wide.places < mesh.places[0]) | (wide.places > mesh.places[-1])]
     places = np.unique(np.concatenate([outer, mesh.places, [span.left, span.right]]))
-    merged = Mesh(places, mesh.order, span.left_edge, span.right_edge, mesh.phase)
+    merged = Mesh(graded(places), mesh.order, span.left_edge, span.right_edge, mesh.phase)
     return resolve(merged, ready.coefficients, energy - ready.floor)

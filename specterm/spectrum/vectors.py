@@ -10,12 +10,14 @@ import numpy as np
 from specterm.arrays import Array, Counts, Values
 from specterm.discrete.chain import Chain, chain_with_mass, count_below, element_coefficients, twisted_vectors
 from specterm.discrete.elements import Condensed
-from specterm.spectrum.isolate import CLOSE, Group, isolate
+from specterm.spectrum.isolate import Group, closeness, isolate
 
 SETTLED = 1e-12
 """Newton steps smaller than this share of the level end the iteration: so far below `CLOSE` that no neighbour is mixed in."""
 STRAY = 1e-9
 """A Rayleigh quotient this share of the level away from where Newton's method ended: a bad vector, solved again."""
+GROUP_SWEEPS = 12
+"""So many inverse iterations are spent on a group at most."""
 DENSE = 700
 """Up to so many vertices groups are solved with a dense matrix."""
 
@@ -82,18 +84,18 @@ def solve_levels(
         if group.size > 1 or not single:
             check()
             parts.append(_group(condensed, group, bottom))
-    parts = _merged(condensed, sorted(parts, key=lambda part: part.first), bottom)
+    parts = _merged(condensed, sorted(parts, key=lambda part: part.first), bottom, high)
     start = parts[0].first
     take = slice(first - start, last + 1 - start)
     values, kinetic = (np.concatenate([getattr(p, name) for p in parts])[take] for name in ("values", "kinetic"))
     return Solved(condensed, first, values, np.concatenate([p.coefficients for p in parts], axis=2)[:, :, take], kinetic)
 
 
-def _merged(condensed: Condensed, parts: list[Part], bottom: float) -> list[Part]:
+def _merged(condensed: Condensed, parts: list[Part], bottom: float, top: float) -> list[Part]:
     """Solve again, as one group, neighbours whose values came out closer than a count can tell apart."""
     runs: list[list[Part]] = []
     for part in parts:
-        close = runs and part.values[0] - runs[-1][-1].values[-1] <= 3 * CLOSE * abs(part.values[0] - bottom)
+        close = runs and part.values[0] - runs[-1][-1].values[-1] <= 3 * closeness(float(part.values[0]), bottom, top)
         if close:
             runs[-1].append(part)
         else:
@@ -208,7 +210,7 @@ def _block(condensed: Condensed, group: Group, bottom: float) -> tuple[Values, f
     slack = 1e-3 * SETTLED * abs(energy - bottom)
     start = np.random.default_rng(20).standard_normal((_vertices(condensed), group.size))
     z: Values = start
-    near = False
+    near, settled_ritz = False, np.zeros(group.size)
     for sweep in range(80):
         matrix, weight = chain_with_mass(condensed, np.array([energy]))
         solve, heavy = _solver(matrix), _matrix(weight)
@@ -216,8 +218,10 @@ def _block(condensed: Condensed, group: Group, bottom: float) -> tuple[Values, f
         ritz = np.linalg.eigvals(np.linalg.solve(z.conj().T @ (heavy @ z), z.conj().T @ (_matrix(matrix) @ z))).real
         step = float(np.mean(ritz))
         if group.size > 1:
-            if sweep >= 3:
+            ritz, before_ritz = np.sort(ritz), settled_ritz
+            if sweep >= 3 and (np.abs(ritz - before_ritz).max() <= 4 * np.spacing(abs(energy)) or sweep >= GROUP_SWEEPS):
                 break
+            settled_ritz = ritz
             continue
         near, before = abs(step) <= max(SETTLED * abs(energy - bottom), 4 * np.spacing(abs(energy))), near
         if sweep >= 1 and near and before:
