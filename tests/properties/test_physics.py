@@ -171,7 +171,7 @@ def test_a_vector_potential_on_a_line_is_no_physics(potential, a, b, domain):
 @SOME
 @given(hundredths(-6, 6), hundredths(-3, 3), hundredths(0, 1), st.integers(-3, 3))
 def test_a_whole_turn_of_phase_is_none(depth, second, phase, turns):
-    """On a ring, phase and phase + 1 are the same, phase and -phase have the same levels for real V, and p - k L/2pi shifts it."""
+    """On a ring, phase and phase + 1 are the same, as are phase and -phase for real V, and p - k."""
     text = f"V = {depth}*cos(x) + ({second})*cos(2*x + 0.4)\nH = {{}} + V\nx in ring(0, 2*pi), phase {{}}"
     here = spectrum(text.format("p^2", phase), COUNT)
     for other in (text.format("p^2", phase + turns), text.format("p^2", -phase), text.format(f"(p - ({turns}))^2", phase)):
@@ -208,7 +208,7 @@ def test_more_potential_raises_every_level(potential, height, left, width):
 @SOME
 @given(cups(), st.sampled_from([("x^2", lambda x: x**2), ("cos(x)", np.cos), ("exp(-x^2)", lambda x: np.exp(-(x**2)))]))
 def test_slopes_are_expectations(potential, term):
-    """dE/dlam = <W> for H + lam W (Hellmann-Feynman), by central differences at two steps, whose difference bounds their bias."""
+    """dE/dlam = <W> for H + lam W (Hellmann-Feynman), by central differences; two steps bound their bias."""
     word, function = term
 
     def at(lam):

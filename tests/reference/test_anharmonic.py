@@ -75,7 +75,7 @@ def test_weak_coupling_series(g):
     ("k", "printed"), [(3, {0: "0."}), (5, {1: "0."}), (7, {}), (11, {0: "-8", 2: "0", 4: "8"})], ids=lambda v: str(v)[:2]
 )
 def test_quasi_exact_sextic(k, printed):
-    """p^2 + x^6 - k x^2 has algebraic levels (Turbiner, Commun. Math. Phys. 118 (1988) 467, from memory; they follow by insertion)."""
+    """p^2 + x^6 - k x^2 has algebraic levels (Turbiner, Commun. Math. Phys. 118 (1988) 467, from memory)."""
     found = spectrum(f"k = {k}\nH = p^2 + x^6 - k*x^2\nx in (-inf, inf)", 5)
     exact = {index: float(text) for index, text in printed.items()} or {0: -2 * math.sqrt(2), 2: 2 * math.sqrt(2)}
     for index, value in exact.items():

@@ -1,6 +1,7 @@
 """Particles in standing light: bands of p^2 + (V0/2)(1 - cos 2x) in recoil energies.
 
-Table I of Bloch, Dalibard, Zwerger, Rev. Mod. Phys. 80 (2008) 885 was not reached; all entries recomputed (plane waves, Mathieu).
+Table I of Bloch, Dalibard, Zwerger, Rev. Mod. Phys. 80 (2008) 885 was not reached; all entries were
+recomputed (plane waves, Mathieu functions).
 """
 
 import math
@@ -50,7 +51,7 @@ def test_tunnelling_amplitudes(depth):
 
 
 def test_deep_lattice_formula():
-    """J = (4/sqrt pi) V0^(3/4) exp(-2 sqrt V0) (Zwerger 2003, from memory) is above a quarter of the width, by 12 % at V0 = 20."""
+    """J = (4/sqrt pi) V0^(3/4) exp(-2 sqrt V0) (Zwerger 2003, from memory) is 12 % above a quarter of the width at V0 = 20."""
     for depth, (*_, printed) in LATTICE.items():
         within(4 / math.sqrt(math.pi) * depth**0.75 * math.exp(-2 * math.sqrt(depth)), printed)
     difference = band(20, 0.5).levels[0].value - band(20, 0.0).levels[0].value

@@ -69,7 +69,7 @@ def test_offset_charge_is_a_phase():
 
 
 def test_dispersion_formula():
-    """Charge dispersion of the lowest level nears EC 2^5 sqrt(2/pi) (EJ/2EC)^(3/4) exp(-sqrt(8EJ/EC)) (Koch eq. 2.5), to 3.3 % at 100."""
+    """Dispersion of level 0 nears EC 2^5 sqrt(2/pi) (EJ/2EC)^(3/4) exp(-sqrt(8EJ/EC)) (Koch eq. 2.5)."""
     a, b = spectrum(transmon(100, 0), 3).levels[0], spectrum(transmon(100, 0.5), 3).levels[0]
     formula = 2**5 * math.sqrt(2 / math.pi) * 50**0.75 * math.exp(-math.sqrt(800))
     within(formula, "2.49813e-10")

@@ -99,7 +99,7 @@ def test_weak_modulation_series():
 
 
 def test_splitting_under_strong_modulation():
-    """b1 - a0 at q = 25 is 5.618826e-7 (recomputed with mpmath); DLMF 28.8.2 (from memory) is 0.13 % above with one correction."""
+    """b1 - a0 at q = 25 is 5.618826e-7 (recomputed, mpmath); DLMF 28.8.2 (from memory) with one correction is 0.13 % above."""
     difference, error = step(spectrum(mathieu(25), 21), 0, 1)
     within(difference, "5.618826e-7", error)
     root = math.sqrt(25)

@@ -43,7 +43,7 @@ def morse(name, extra=""):
 
 @pytest.mark.parametrize("name", DIATOMICS)
 def test_stretching_levels_follow_from_the_constants(name):
-    """G(v) = we (v + 1/2) - wexe (v + 1/2)^2 for the Morse potential with D = we^2/4wexe, a = sqrt(2 mu wexe)/hbar (closed form)."""
+    """G(v) = we (v + 1/2) - wexe (v + 1/2)^2 for D = we^2/4wexe and a = sqrt(2 mu wexe)/hbar (closed form)."""
     we, wexe = DIATOMICS[name][:2]
     found = spectrum(morse(name), 8)
     assert found.bound == math.floor(we / (2 * wexe) - 0.5) + 1
@@ -55,7 +55,7 @@ def test_stretching_levels_follow_from_the_constants(name):
 
 
 def test_printed_levels_of_hydrogen_and_chlorine():
-    """The same as printed in the collection: H2 G(0) ... G(3), depth and range; HCl and CO steps (recomputed in closed form)."""
+    """The same as printed in the collection: H2 G(0) ... G(3), depth, range; steps of others (closed form)."""
     h2 = spectrum(morse("H2"), 8)
     agree(h2, {0: "2170.2725", 1: "6328.8135", 2: "10244.6825", 3: "13917.8795"})
     assert ready(morse("H2")).parameters["De"] == pytest.approx(39911.230, abs=1e-3)
@@ -119,7 +119,7 @@ def test_inversion_in_an_ammonia_like_double_well(mass, printed):
     ],
 )
 def test_parabolas_joined_by_a_straight_line(x0, alpha, printed):
-    """The model of Dennison and Uhlenbeck, Phys. Rev. 41 (1932) 313, in units of h nu; levels recomputed here, not from the paper."""
+    """The model of Dennison and Uhlenbeck, Phys. Rev. 41 (1932) 313, in units of h nu; levels recomputed here."""
     sheet = (
         f"x0 = {x0}\nalpha = {alpha}\nV = where(abs(x) > x0 - alpha, (abs(x) - x0)^2/2, alpha^2/2)\n"
         "H = p^2/2 + V\nx in (-inf, inf)"
@@ -127,7 +127,7 @@ def test_parabolas_joined_by_a_straight_line(x0, alpha, printed):
     agree(spectrum(sheet, 4), dict(enumerate(printed)))
 
 
-# y'' + (b - s cos^2 y) y = 0; b(0A), b(0E), b(1E), b(1A) recomputed (tables: Herschbach, J. Chem. Phys. 31 (1959) 91, not reached)
+# y'' + (b - s cos^2 y) y = 0; b(0A), b(0E), b(1E), b(1A) recomputed (tables of Herschbach 1959 not reached)
 ROTOR = {
     10: ["2.846922", "2.903787", "7.678164", "8.492474"],
     20: ["4.199954", "4.207419", "11.914540", "12.099460"],

@@ -62,7 +62,7 @@ def test_wide_well_of_hard_walls():
     ],
 )
 def test_dimensionless_roots(strength, roots):
-    """Z tan z = sqrt(z0^2 - z^2) and -z cot z = ..., with z^2 the levels of p^2 in a well of half width 1 and depth z0^2 (mpmath)."""
+    """Z tan z = sqrt(z0^2 - z^2) and -z cot z = ..., with z^2 the levels in a well of depth z0^2 (mpmath)."""
     found = spectrum(f"z0 = {strength}\nH = p^2 + where(abs(x) < 1, 0, z0^2)\nx in (-inf, inf)", len(roots))
     assert found.bound == len(roots)
     for level, text in zip(found.levels, roots, strict=True):
@@ -72,7 +72,7 @@ def test_dimensionless_roots(strength, roots):
 
 @pytest.mark.parametrize(("depth", "width", "printed"), [(250.6, 6.5, "149.94"), (250.6, 8.2, "116.35")])
 def test_step_between_subbands(depth, width, printed):
-    """First step of GaAs/Al.3Ga.7As wells, recomputed (measured: 152 and 121 meV, West and Eglash 1985, from memory, within 5 %)."""
+    """First step of GaAs/Al.3Ga.7As wells, recomputed (measured: 152, 121 meV, West, Eglash 1985, from memory)."""
     difference, error = step(spectrum(well(width, depth, 0.067, 0.0919), 2), 0, 1)
     within(difference, printed, error)
 
@@ -125,7 +125,7 @@ def test_triangular_well(field, printed):
     ],
 )
 def test_edges_of_minibands(a, b, centre, edge):
-    """Well a, barrier b, 300 meV, mass 0.067: edges at q = 0 and pi/d from cos qd = cosh kb cos ka + ..., solved with mpmath."""
+    """Well a, barrier b, 300 meV, mass 0.067: edges at q = 0 and pi/d, roots found with mpmath."""
     sheet = f"{UNITS}m = 0.067\nV = where(x < {a}, 0, 300)\nH = p^2/(2*m) + V\nx in ring(0, {a + b}), phase {{}}"
     for phase, printed in ((0, centre), (0.5, edge)):
         found = spectrum(sheet.format(phase), len(printed))

@@ -41,7 +41,7 @@ def test_uncertainty_products_of_an_oscillator_in_units():
 
 
 def test_strengths_between_walls():
-    """f_{n<-1} = 64 n^2/(pi^2 (n^2 - 1)^3) for even n, sum 1; from 2: f(1) = -0.96067493, f(3) 1.8675521, f(5) .070020038 (closed form)."""
+    """f_{n<-1} = 64 n^2/(pi^2 (n^2 - 1)^3) for even n, sum 1; from 2 recomputed (closed form)."""
     found = spectrum(WALLS, 40)
     x, w = points(found.states.places)
     psi = wave(found, x)
@@ -82,7 +82,7 @@ def test_coherent_state():
 
 
 def test_displaced_ground_state():
-    """Franck-Condon factors of equal oscillators, S = 1: e^-1/n! (closed form): .3678794412, .3678794412, .1839397206, .0613132402."""
+    """Franck-Condon factors of equal oscillators, S = 1: e^-1/n! (closed form, recomputed)."""
     text = f"{OSCILLATOR}\nstate moved = exp(-(x - sqrt(2))^2/2)"
     moved = project(ready(text), spectrum(text, 12), "moved")
     for weight, digits in zip(moved.weights, [".3678794412", ".3678794412", ".1839397206", ".0613132402"], strict=False):
@@ -90,7 +90,7 @@ def test_displaced_ground_state():
 
 
 def test_level_of_another_sheet(tmp_path):
-    """q00 = 2 sqrt(w1 w2)/(w1 + w2) exp(-w1 w2 d^2/(w1 + w2)) = 0.4840543019 for w = 1, 2 and d = 1 (Hutchisson 1930, from memory)."""
+    """q00 = 2 sqrt(w1 w2)/(w1 + w2) exp(-w1 w2 d^2/(w1 + w2)) for w = 1, 2, d = 1 (Hutchisson 1930, from memory)."""
     (tmp_path / "lower.sheet").write_text("H = (p^2 + x^2)/2\nx in (-inf, inf)\n")
     text = 'H = p^2/2 + 2*(x - 1)^2\nx in (-inf, inf)\nstate arriving = level(0) of "lower.sheet"'
     found = spectrum(text, 30)
@@ -102,7 +102,7 @@ def test_level_of_another_sheet(tmp_path):
 
 
 def overlap(n):
-    """Return <n, w = 2, centre 1|0, w = 1, centre 0> by a Gauss-Hermite rule, exact for this product (closed form otherwise)."""
+    """Return <n, w = 2, centre 1|0, w = 1, centre 0> by a Gauss-Hermite rule, exact for this product."""
     nodes, weights = np.polynomial.hermite.hermgauss(60)
     centre, width = 2 / 3, math.sqrt(2 / 3)  # exp(-x^2/2 - (x-1)^2) = exp(-(x-2/3)^2 3/2) exp(-1/3)
     x = centre + width * nodes

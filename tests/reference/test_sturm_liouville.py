@@ -2,7 +2,8 @@
 
 Problem texts and printed values as seen in a public copy of that list; every value used was recomputed (mpmath, two
 discretisations), and those the recomputation contradicts are not used: level 9 of the mixed quartic is 46.965009506 and not
-46.965069501; the levels of exp(x), 1/(x + 0.1)^2, Woods-Saxon l = 1 and the turning Morse were redone with Taylor steps (mpmath). -u'' + q u = E u is p^2 + q with hbar = 1.
+46.965069501; the levels of exp(x), 1/(x + 0.1)^2, Woods-Saxon l = 1 and the turning Morse were redone with Taylor steps
+(mpmath). -u'' + q u = E u is p^2 + q with hbar = 1.
 """
 
 import math
@@ -17,8 +18,8 @@ COFFEY_EVANS = {
 }
 
 REGULAR = {
-    "exponential": ("exp(x)", "(0, pi)", "", {0: "4.896669379968", 1: "10.04518989326", 2: "16.01926725049", 3: "23.26627094002",
-                    4: "32.26370704580", 5: "43.22001964053"}),
+    "exponential": ("exp(x)", "(0, pi)", "", {0: "4.896669379968", 1: "10.04518989326", 2: "16.01926725049",
+                    3: "23.26627094002", 4: "32.26370704580", 5: "43.22001964053"}),
     "near pole": ("1/(x + 0.1)^2", "(0, pi)", "", {0: "1.51986582110", 1: "4.94330982214", 2: "10.28466264509",
                   3: "17.55995774641", 4: "26.78286315833", 5: "37.96442586193"}),
     "cosine": ("2*5*cos(2*x)", "(0, pi)", "", {0: "-5.79008060", 1: "2.09946045", 2: "9.23632771"}),
