@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+from collections.abc import Awaitable, Callable
 from dataclasses import replace
-from typing import ClassVar
+from typing import Any, ClassVar
 
-from textual.app import App
 from textual.binding import Binding
+from textual.screen import ModalScreen
 
 from specterm.errors import SpectermError, position, printable
 from specterm.session.document import Document
@@ -14,7 +15,8 @@ from specterm.spectrum.result import Spectrum
 from specterm.tui import help as help_text
 from specterm.tui.dialogs import Chooser, Entry, Help
 from specterm.tui.files import Files
-from specterm.tui.keys import KEYS
+from specterm.tui.keyboard import OrderedKeys
+from specterm.tui.keys import ACTIONS, KEYS
 from specterm.tui.look import Look
 from specterm.tui.painter import Painter
 from specterm.tui.rows import Shown, as_text
@@ -22,14 +24,16 @@ from specterm.tui.sheet_pane import SheetPane
 from specterm.tui.work import Work
 
 
-class Keyed(App[int]):
+Answer = Callable[[Any], None] | Callable[[Any], Awaitable[None]]
+
+
+class Keyed(OrderedKeys):
     """The part of the app that answers keys; the attributes are set by the app itself."""
 
     BINDINGS: ClassVar[list[Binding]] = [  # type: ignore[assignment]
-        Binding(
-            key.keys, key.action, f"{key.area}: {key.verb}", id=key.id, tooltip=key.tooltip, priority=key.action == "edit"
-        )
+        Binding(keys, action, f"{key.area}: {key.verb}", id=name, tooltip=key.tooltip, priority=True)
         for key in KEYS
+        for keys, action, name in key.bound
     ]
 
     document: Document
@@ -56,6 +60,10 @@ class Keyed(App[int]):
     def compute(self) -> None:
         """Compute the text as it stands."""
         raise NotImplementedError("the app computes")
+
+    def mark_stale(self) -> None:
+        """Say of the levels shown that they are not those of the text, where that is so."""
+        raise NotImplementedError("the app knows its text")
 
     def place(self, *, typing: bool) -> None:
         """Show what the keys act on."""
@@ -105,10 +113,22 @@ class Keyed(App[int]):
             self.say("the sheet has no prepared state: add a line  state NAME = expression", "warn")
 
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
-        """Keep the key that starts typing, which comes before all others, out of texts and dialogs."""
-        if action == "edit" and (len(self.screen_stack) > 1 or self.screen.focused is not None):
+        """Keep the keys, which come before all others, out of dialogs, and plain letters out of texts."""
+        free = len(self.screen_stack) == 1
+        if action == "also":
+            return free
+        if action in ACTIONS and not (free and self.screen.focused is None):
             return False
         return super().check_action(action, parameters)
+
+    def action_also(self, action: str) -> None:
+        """Do what a control key is for, while typing too."""
+        getattr(self, f"action_{action}")()
+
+    def ask(self, dialog: ModalScreen[Any], then: Answer | None = None) -> None:
+        """Open a dialog; what is typed from now on is for it. `then` takes the answer."""
+        self.push_screen(dialog, then)
+        self.await_rest(dialog)
 
     def action_edit(self) -> None:
         """Type in the sheet, from the very next key on; an error is gone to."""
@@ -145,8 +165,9 @@ class Keyed(App[int]):
 
     def action_stop(self) -> None:
         """Stop the computation that is running."""
-        if not self.work.stop():
-            self.say("nothing is running")
+        stopped = self.work.stop()
+        self.mark_stale()
+        self.say("stopped; r computes again" if stopped else "nothing is running", "warn" if stopped else "plain")
 
     def action_again(self) -> None:
         """Compute again."""
@@ -156,24 +177,25 @@ class Keyed(App[int]):
         """Find an action by name and do it."""
         entries = [Entry(key.action, f"{key.area}: {key.verb}", f"{key.shown}   {key.tooltip}") for key in KEYS]
 
-        def chosen(action: str | None) -> None:
+        async def chosen(action: str | None) -> None:
             if action is not None:
-                self.call_later(self.run_action, action)
+                await self.run_action(action)
 
-        self.push_screen(Chooser("Commands", entries), chosen)
+        self.ask(Chooser("Commands", entries), chosen)
 
     def action_help(self) -> None:
         """List the keys as they are bound now."""
         bound = help_text.live(active.binding for active in self.active_bindings.values())
-        self.push_screen(Help(lambda width: help_text.lines(bound, width)))
+        self.ask(Help(lambda width: help_text.lines(bound, width)))
 
     def action_leave(self) -> None:
         """End the session; asks when there is unsaved text."""
         self.files.leave()
 
     async def action_quit(self) -> None:
-        """End the session in the same way."""
-        self.files.leave()
+        """End the session in the same way; a dialog is answered first."""
+        if len(self.screen_stack) == 1:
+            self.files.leave()
 
     def action_help_quit(self) -> None:
         """Answer ctrl+c with the way out."""

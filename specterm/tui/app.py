@@ -14,7 +14,6 @@ from textual.containers import Container
 from textual.timer import Timer
 from textual.widgets import TextArea
 
-from specterm.errors import WorkStopped
 from specterm.session import rescue
 from specterm.session.document import Document
 from specterm.tui.actions import Keyed
@@ -86,6 +85,10 @@ class Specterm(Keyed):
         self._arrange()
         self.redraw()
 
+    def on_cell_pane_resized(self) -> None:
+        """Draw for the new size of a pane."""
+        self.redraw()
+
     def _arrange(self) -> None:
         """Choose between sheet beside the figure and sheet over it."""
         base = self.screen_stack[0]
@@ -137,9 +140,6 @@ class Specterm(Keyed):
         outcome = event.outcome
         if not self.work.finished(outcome.request.number):
             return
-        if isinstance(outcome.error, WorkStopped):
-            self.say("stopped; r computes again", "warn")
-            return
         self.error = outcome.error
         if outcome.origin is None and outcome.error is not None:
             self.shown = replace(self.shown, stale=True)
@@ -153,7 +153,14 @@ class Specterm(Keyed):
     def on_progressed(self, event: Progressed) -> None:
         """Say how far a long computation is."""
         if self.work.busy and event.number == self.work.number:
+            self.mark_stale()
             self.say(f"{event.words}; x stops it", "dim")
+
+    def mark_stale(self) -> None:
+        """Say of the levels shown that they are not those of the text, where that is so."""
+        outcome = self.shown.outcome
+        if outcome is not None and outcome.request.text != self.document.text:
+            self.shown = replace(self.shown, stale=True)
 
     def on_looked(self, event: Looked) -> None:
         """Take moments or weights that have arrived for the spectrum shown."""

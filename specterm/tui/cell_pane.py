@@ -7,6 +7,7 @@ from typing import ClassVar
 from rich.segment import Segment
 from rich.style import Style
 from textual.geometry import Region
+from textual.message import Message
 from textual.strip import Strip
 from textual.widget import Widget
 
@@ -55,6 +56,9 @@ class CellPane(Widget):
     can_focus = False
     DEFAULT_CSS: ClassVar[str] = "CellPane { height: 1; width: 1fr; }"
 
+    class Resized(Message):
+        """The pane has another size than what it shows was drawn for."""
+
     def __init__(self, name: str | None = None) -> None:
         """Start with nothing; `name` is the pane's id."""
         super().__init__(id=name)
@@ -78,6 +82,10 @@ class CellPane(Widget):
                 regions.append(Region(changed[0], number, changed[1], 1))
         if regions:
             self.refresh(*regions)
+
+    def on_resize(self) -> None:
+        """Tell the app."""
+        self.post_message(self.Resized())
 
     def render_line(self, y: int) -> Strip:
         """Return one line for the screen."""

@@ -73,6 +73,7 @@ class Chooser(ModalScreen[str | None]):
 
     BINDINGS: ClassVar[list[Binding]] = [  # type: ignore[assignment]
         Binding("tab,shift+tab,escape", "back", "Back", priority=True),
+        Binding("enter", "take", "Take", priority=True),
         Binding("up", "move(-1)", "Up", priority=True),
         Binding("down", "move(1)", "Down", priority=True),
     ]
@@ -121,14 +122,22 @@ class Chooser(ModalScreen[str | None]):
 
     def on_input_changed(self, event: Input.Changed) -> None:
         """Narrow the list to the entries that hold all words typed."""
-        words = event.value.lower().split()
-        self.matching = tuple(e for e in self.entries if all(word in f"{e.name} {e.remark}".lower() for word in words))
-        self.place = 0
-        self._draw()
+        if self._narrow(event.value):
+            self._draw()
 
-    def on_input_submitted(self, event: Input.Submitted) -> None:
+    def _narrow(self, typed: str) -> bool:
+        """Keep the entries that hold all words typed; return whether the list is another one."""
+        words = typed.lower().split()
+        found = tuple(e for e in self.entries if all(word in f"{e.name} {e.remark}".lower() for word in words))
+        if found == self.matching:
+            return False
+        self.matching, self.place = found, 0
+        return True
+
+    def action_take(self) -> None:
         """Take the entry marked, or the text typed."""
-        typed = event.value.strip()
+        typed = self.field.value.strip()
+        self._narrow(typed)
         if self.free and typed and ("/" in typed or not self.matching):
             self.dismiss(typed)
         elif self.matching:

@@ -47,11 +47,11 @@ class Files:
             target = Path(os.path.expanduser(answer))
             if target != path and target.exists():
                 question = Question(f"{shown(target)} exists. Replace it?", {"y": "replace it", "n": "keep it"})
-                self.app.push_screen(question, lambda letter: self._write(target, then) if letter == "y" else None)
+                self.app.ask(question, lambda letter: self._write(target, then) if letter == "y" else None)
             else:
                 self._write(target, then)
 
-        self.app.push_screen(Chooser("Save the sheet as", (), free=True, text=start), named)
+        self.app.ask(Chooser("Save the sheet as", (), free=True, text=start), named)
 
     def _write(self, path: Path, then: Callable[[], None] | None) -> None:
         """Write the document and say so."""
@@ -77,7 +77,7 @@ class Files:
                 path = Path(os.path.expanduser(answer))
                 self._guarded(lambda: self._load(path if path.is_absolute() or path in found else folder / path))
 
-        self.app.push_screen(Chooser(f"Open a sheet of {shown(folder.resolve())}, or type a path", entries, free=True), chosen)
+        self.app.ask(Chooser(f"Open a sheet of {shown(folder.resolve())}, or type a path", entries, free=True), chosen)
 
     def _load(self, path: Path) -> None:
         """Open the sheet at `path`."""
@@ -104,7 +104,7 @@ class Files:
                 self._guarded(lambda: self._start(answer))
 
         entries = [Entry(preset.name, preset.name, preset.title) for preset in known]
-        self.app.push_screen(Chooser("Start from a preset", entries), chosen)
+        self.app.ask(Chooser("Start from a preset", entries), chosen)
 
     def _start(self, name: str) -> None:
         """Start from the preset called `name`, as a document without a file; tables beside the preset stay reachable."""
@@ -131,7 +131,7 @@ class Files:
                 rescue.drop(self.app.document.path)
                 go_on()
 
-        self.app.push_screen(Question(f"{self.app.document.name} has unsaved text.", answers), answered)
+        self.app.ask(Question(f"{self.app.document.name} has unsaved text.", answers), answered)
 
     def copy(self, text: str) -> None:
         """Write `text` to a file, whose path is said, and send it to the terminal's clipboard, which may or may not take it."""
@@ -167,4 +167,4 @@ class Files:
 
         words = f"Unsaved text of {self.app.document.name} was kept earlier."
         answers = {"r": "take that text", "d": "drop it", "n": "not now; it goes with the next edit"}
-        self.app.push_screen(Question(words, answers), answered)
+        self.app.ask(Question(words, answers), answered)

@@ -6,7 +6,7 @@ from collections.abc import Iterable
 
 from textual.binding import Binding
 
-from specterm.tui.keys import KEYS, TYPING, Key
+from specterm.tui.keys import CONTROL, KEYS, TYPING, Key
 from specterm.views.cells import Row, Rows, fit_row, pad
 
 _AREAS = {
@@ -25,7 +25,7 @@ def live(bindings: Iterable[Binding]) -> dict[str, str]:
     bound: dict[str, list[str]] = {}
     for binding in bindings:
         if binding.id:
-            bound.setdefault(binding.id, []).append(readable(binding.key))
+            bound.setdefault(binding.id.removesuffix(CONTROL), []).append(readable(binding.key))
     return {name: " ".join(dict.fromkeys(keys)) for name, keys in bound.items()}
 
 

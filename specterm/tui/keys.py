@@ -4,6 +4,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+CONTROL = ".control"
+"""What the id of a binding to control keys ends with."""
+
 
 @dataclass(frozen=True, slots=True)
 class Key:
@@ -20,6 +23,14 @@ class Key:
     tooltip: str
     short: str = ""
     shown: str = ""
+
+    @property
+    def bound(self) -> tuple[tuple[str, str, str], ...]:
+        """Bindings: keys, action, id. Plain keys act on the levels only, control keys while typing too."""
+        control = [name for name in self.keys.split(",") if name.startswith("ctrl+")]
+        plain = [name for name in self.keys.split(",") if name not in control]
+        made = ((",".join(plain), self.action, self.id), (",".join(control), f"also({self.action!r})", self.id + CONTROL))
+        return tuple(binding for binding in made if binding[0])
 
 
 KEYS = (
@@ -53,6 +64,9 @@ TYPING = (
     Key("typing.save", "ctrl+s", "save", "typing", "Save", "Write the sheet to its file", "ctrl+s save", "ctrl+s"),
     Key("typing.undo", "ctrl+z", "undo", "typing", "Undo", "Take back the last edit", "ctrl+z undo", "ctrl+z"),
 )
+
+
+ACTIONS = frozenset(key.action.partition("(")[0] for key in KEYS)
 
 
 def bottom(keys: tuple[Key, ...]) -> tuple[str, ...]:

@@ -46,10 +46,13 @@ class Painter:
         return self._waiting
 
     def ask(self) -> None:
-        """Ask for the panes to be drawn, once for all keys and messages that are waiting."""
+        """Ask for the panes to be drawn, once for all keys and messages that are waiting.
+
+        The call is the app's own: one that waits for a screen to be refreshed is lost with a dialog that is being closed.
+        """
         if not self._waiting:
             self._waiting = True
-            self.app.call_after_refresh(self._draw)
+            self.app.call_later(self._draw)
 
     def _draw(self) -> None:
         """Draw every pane from what is shown now."""

@@ -116,7 +116,7 @@ def trusted_row(shown: Shown, width: int) -> Row:
     if outcome is None or outcome.spectrum is None:
         return fit_row((("", "plain"),), width)
     if shown.stale:
-        words = "the levels are those of the last text without errors"
+        words = "levels and figure are those of an earlier text"
         return fit_row(((" " + cut(words, width - 1, shown.mark), "warn"),), width)
     return fit_row(((" ", "plain"), *trust_line(outcome.spectrum, outcome.units, width - 1, mark=shown.mark)), width)
 

@@ -1,7 +1,13 @@
-"""The computations behind the screen: in threads, the newest request wins, results come back as messages."""
+"""The computations behind the screen: the newest request wins, results come back as messages.
+
+Each runs in a daemon thread of its own, so that leaving never waits for one; what was overtaken or stopped is forgotten at
+once and ends when it next asks whether to go on.
+"""
 
 from __future__ import annotations
 
+import contextlib
+import threading
 import time
 from collections.abc import Callable
 from dataclasses import replace
@@ -9,7 +15,6 @@ from typing import Any
 
 from textual.app import App
 from textual.message import Message
-from textual.worker import get_current_worker
 
 from specterm.session import rescue
 from specterm.session.document import Document
@@ -55,21 +60,29 @@ class Work:
         self.number = 0
         self.busy = False
         self._kept = False
+        self._keeping = threading.Lock()
+        self._running: set[threading.Thread] = set()
         self._asked: set[tuple[int, int | str]] = set()
+
+    @property
+    def resting(self) -> bool:
+        """Whether no thread runs any more."""
+        return not self._running
 
     def solve(self, request: Request, document: Document) -> None:
         """Compute `request`, numbered anew; what ran before is asked to stop, and unsaved text is kept safe first."""
         self.number += 1
         self.busy = True
         numbered = replace(request, number=self.number)
-        self.app.run_worker(lambda: self._solve(numbered, document), thread=True, exclusive=True, group="solve")
+        self._start(lambda: self._solve(numbered, document))
         self.app.set_timer(_PACE, lambda: self._remind(numbered.number))
 
     def stop(self) -> bool:
-        """Ask the running computation to stop; return whether there was one."""
+        """Forget the running computation, which ends by itself; return whether there was one."""
         if not self.busy:
             return False
-        self.app.workers.cancel_group(self.app, "solve")
+        self.number += 1
+        self.busy = False
         return True
 
     def finished(self, number: int) -> bool:
@@ -85,18 +98,33 @@ class Work:
         if wanted in self._asked:
             return
         self._asked = {asked for asked in self._asked if asked[0] == outcome.request.number} | {wanted}
-        self.app.run_worker(lambda: self._look(outcome, key), thread=True, group="look")
+        self._start(lambda: self._look(outcome, key))
+
+    def _start(self, task: Callable[[], None]) -> None:
+        """Run `task` in a thread that ends with the process."""
+
+        def run() -> None:
+            try:
+                task()
+            finally:
+                self._running.discard(threading.current_thread())
+
+        thread = threading.Thread(target=run, daemon=True)
+        self._running.add(thread)
+        thread.start()
 
     def _solve(self, request: Request, document: Document) -> None:
         """Do the work of a request; runs in a thread."""
-        worker = get_current_worker()
-        self._keep(document)
+        with self._keeping:
+            self._keep(document)
+        outcome = compute(self.engine, request, lambda: request.number != self.number, self._progress(request.number))
+        self._tell(Solved(outcome))
 
-        def should_stop() -> bool:
-            return worker.is_cancelled or request.number != self.number
-
-        outcome = compute(self.engine, request, should_stop, self._progress(request.number))
-        self.app.post_message(Solved(outcome))
+    def _tell(self, message: Message) -> None:
+        """Hand a message to the app, unless it has been left."""
+        if self.app.is_running:
+            with contextlib.suppress(RuntimeError):  # it may be left just now
+                self.app.post_message(message)
 
     def _keep(self, document: Document) -> None:
         """Keep unsaved text safe, and drop what this session kept once there is none."""
@@ -114,7 +142,7 @@ class Work:
             nonlocal last
             if time.monotonic() - last >= _PACE:
                 last = time.monotonic()
-                self.app.post_message(Progressed(number, words))
+                self._tell(Progressed(number, words))
 
         return report
 
@@ -126,4 +154,4 @@ class Work:
     def _look(self, outcome: Outcome, key: int | str) -> None:
         """Do the work of one look; runs in a thread."""
         found: Any = weigh(self.engine, outcome, key) if isinstance(key, str) else moments_of(self.engine, outcome, key)
-        self.app.post_message(Looked(outcome.request.number, key, found))
+        self._tell(Looked(outcome.request.number, key, found))

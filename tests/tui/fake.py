@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import asyncio
+import time
 from types import SimpleNamespace
 
 import numpy as np
@@ -16,7 +17,7 @@ SHEET = "# An oscillator (invented)\nH = p^2/2 + x^2/2\nx in (-inf, inf)\nstate 
 
 
 class FakeEngine:
-    """`bad` in a sheet cannot be understood, with `unphysical` there are no levels, `slow` waits to be stopped."""
+    """`bad` in a sheet cannot be understood, with `unphysical` there are no levels, `slow` waits, `deaf` does not listen."""
 
     def __init__(self):
         """Count what is asked."""
@@ -41,6 +42,8 @@ class FakeEngine:
         progress("bracketing")
         if "unphysical" in model.text:
             raise PhysicsError("H has no lowest level", mend="check the sign")
+        if "deaf" in model.text:
+            time.sleep(60)
         while "slow" in model.text and not should_stop():
             self.gate.wait(0.01)
         if should_stop():
@@ -82,7 +85,7 @@ async def settled(pilot):
     app = pilot.app
     for _ in range(400):
         await pilot.pause()
-        if app._pause is None and not app.work.busy and not app.painter.waiting and all(w.is_finished for w in app.workers):
+        if app._pause is None and not app.work.busy and not app.painter.waiting and app.work.resting:
             break
         await asyncio.sleep(0.01)
     await pilot.pause()

@@ -148,7 +148,7 @@ async def test_errors_are_marked_where_they_are(size):
         await settled(pilot)
         await pressed(pilot, "e", *["down"] * 4, *"y=bad")
         text = "\n".join(lines(pilot))
-        for words in ("line 5, column 3: unknown name 'bad'", "define it", "of the last text without errors", ">0 0.5000"):
+        for words in ("line 5, column 3: unknown name 'bad'", "define it", "are those of an earlier text", ">0 0.5000"):
             assert words in text
         assert pilot.app.sheet.text._marks == {4: (2, 5)}
         assert text.count("unknown name") == 1

@@ -187,3 +187,31 @@ def test_environment_is_settled():
     terminal.settle(inside)
     assert "TEXTUAL_COLOR_SYSTEM" not in inside
     assert inside["OMP_NUM_THREADS"] == "2"
+
+
+def test_nothing_typed_fast_is_lost(tmp_path):
+    """Keys that arrive in one piece reach what they are meant for: a field, the text, the levels after it."""
+    session = Session(tmp_path)
+    session.until("complete")
+    session.child.send("o./nowhere\r")
+    session.until("cannot read ")
+    session.child.send("e# quick \tkkk")
+    session.until(">3")
+    session.until("psi, level 3")
+    session.child.send("/save as\r\x15" + str(tmp_path / "other.sheet") + "\rkq")
+    status, raw = session.end()
+    assert status == 0
+    assert session.sane(raw)
+    assert (tmp_path / "other.sheet").read_text() == "# quick " + SHEET
+
+
+def test_leaving_does_not_wait(tmp_path):
+    """While a computation that does not look up runs, q ends the session in a fraction of the time it still needs."""
+    session = Session(tmp_path)
+    session.until("complete")
+    session.child.send("e#deaf\t")
+    session.until("x stops it")
+    session.child.send("qd")
+    start = time.monotonic()
+    assert session.end()[0] == 0
+    assert time.monotonic() - start < 10
