@@ -49,3 +49,17 @@ def test_layers_without_end(layers):
     assert found.bound == expected
     if expected:
         certified(lambda e: forever(layers, min(e, math.nextafter(threshold, -math.inf))), found, 1e3 + abs(threshold))
+
+
+@settings(max_examples=10)
+@given(st.lists(LAYER, min_size=3, max_size=7))
+def test_more_levels_than_bound(layers):
+    """Two levels more than are bound are of kind "box" and claim no error; the bound ones stay."""
+    text = sheet(layers, "(-inf, inf)")
+    alone = spectrum(text, None)
+    assume(alone.bound <= 10)
+    more = spectrum(text, alone.bound + 2)
+    assert [level.kind for level in more.levels] == ["bound"] * alone.bound + ["box"] * 2
+    assert [level.error for level in more.levels[alone.bound :]] == [None, None]
+    for a, b in zip(alone.levels, more.levels, strict=False):
+        assert abs(a.value - b.value) <= a.error + b.error
