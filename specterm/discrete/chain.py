@@ -50,10 +50,17 @@ def chain_with_mass(condensed: Condensed, energies: Array) -> tuple[Chain, Chain
     return _joined(condensed.mesh, terms), _joined(condensed.mesh, heavy)
 
 
+def _gaps(condensed: Condensed, energies: Array) -> Array:
+    """Return pole - energy, (elements, bubbles, energies); where they coincide, one rounding instead of zero."""
+    gaps: Array = condensed.poles[:, :, None] - energies
+    if not gaps.all():
+        gaps = np.where(gaps == 0, np.spacing(np.abs(condensed.poles))[:, :, None], gaps)
+    return gaps
+
+
 def _inverse(condensed: Condensed, energies: Array) -> Array:
     """Return 1/(pole - energy), shape (elements, bubbles, energies)."""
-    gaps = condensed.poles[:, :, None] - energies
-    gaps[gaps == 0] = np.finfo(float).tiny
+    gaps = _gaps(condensed, energies)
     inverse: Array = np.divide(1.0, gaps, out=gaps)
     return inverse
 
@@ -198,7 +205,6 @@ def full_vertices(condensed: Condensed, z: Values) -> Values:
 def element_coefficients(condensed: Condensed, z: Values, energies: Array) -> Values:
     """Return the eigenfunctions' coefficients of the reference functions, (elements, functions, levels), not normalised."""
     ends = full_vertices(condensed, z)
-    gaps = condensed.poles[:, :, None] - energies
-    gaps[gaps == 0] = np.finfo(float).tiny
+    gaps = _gaps(condensed, energies)
     interior = -(np.swapaxes(condensed.coupling, 1, 2) @ ends) / gaps
     return condensed.basis @ np.concatenate([ends, interior], axis=1)

@@ -94,6 +94,7 @@ def _powered(mesh: Mesh, coefficients: Coefficients, side: int, end: Edge) -> tu
     near, sign = (mesh.places[0], 1.0) if side == 0 else (mesh.places[-1], -1.0)
     d = h / 2 * (1 + t)
     x = near + sign * d
+    d = np.abs(x - near)
     stiffness = coefficients.stiffness(x)
     slope = sign * coefficients.slope(x)
     potential = coefficients.potential(x) - power * (power - 1) * stiffness / d**2 - power * slope / d

@@ -51,6 +51,7 @@ def near_end(problem: Problem, side: int) -> NearEnd:
     smallest = max(room * 2.0**-40, abs(end) * 2.0**-26)
     d = np.geomspace(smallest, max(room * 2.0**-6, smallest * 4), 24)
     x = end + sign * d
+    d = np.abs(x - end)
     with np.errstate(all="ignore"):
         stiffness, potential = problem.stiffness(x), problem.potential(x)
         alpha = 0.0 if not np.isfinite(stiffness[0]) else _power(d[0] * sign * problem.slope(x[:1])[0] / stiffness[0])
@@ -128,18 +129,29 @@ def _strength(
     steps = d[-1] * np.arange(1, 9) / 8
     with np.errstate(all="ignore"):
         x = end + sign * steps
-        ratio = problem.potential(x) * steps**2 / problem.stiffness(x)
+        ratio = problem.potential(x) * (x - end) ** 2 / problem.stiffness(x)
     weights = np.array([(-1.0) ** (k + 1) * math.comb(8, k) for k in range(1, 9)])
     smooth = float(weights @ ratio)
     best = smooth if abs(smooth - shortest) <= 1e-3 * max(1e-3, abs(shortest)) else shortest
-    if end == 0:
-        pair = sign * d[0] * np.array([1.0, 2.0])
-        once, twice = problem.potential(pair) * pair**2 / problem.stiffness(pair)
-        straight = float(2 * once - twice)
-        best = straight if abs(straight - best) <= 1e-9 * max(1.0, abs(best)) else best
+    straight = _limit_at(problem, end, sign, float(d[0]))
+    best = straight if abs(straight - shortest) <= 1e-2 * max(1.0, abs(shortest)) else best
     near = round(4 * best) / 4
     slack = 1e-9 if critical + 4 * near > 0.01 else 4e-14
     return near if abs(best - near) <= slack * max(1.0, abs(near)) else best
+
+
+def _limit_at(problem: Problem, end: float, sign: float, shortest: float) -> float:
+    """Return the limit of V d^2 / K from three short distances by Aitken's extrapolation: exact for c + a d^q.
+
+    The distances are those of the places as rounded, so that no rounding of the place enters.
+    """
+    x = end + sign * shortest * np.array([16.0, 4.0, 1.0])
+    with np.errstate(all="ignore"):
+        far, middle, near = problem.potential(x) * (x - end) ** 2 / problem.stiffness(x)
+        first, second = middle - far, near - middle
+    if not abs(second) > 8 * np.finfo(float).eps * abs(near) or abs(second) >= abs(first):
+        return float(near)
+    return float(near - second * second / (second - first))
 
 
 def _power(value: float) -> float:
@@ -223,9 +235,10 @@ def _tail(values: Array, d: Array, local: Array, middle: float, sign: float) -> 
     large = np.flatnonzero(np.abs(rest) > 1e-7 * abs(limit)) if limit else seen
     clean = int(large[-1]) if len(large) else last
     power = _fall(rest, local, clean)
+    fastest = max(power, _fall(rest, local, last))
     with np.errstate(all="ignore"):
         pull = rest * local * local
-    if power > 6:
+    if fastest > 6:
         return FarEnd(limit, middle + sign * d[min(last + 1, len(d) - 1)], 0.0, 1.0, False)
     endless = bool(rest[clean] < 0 and (power < 1.95 or (power < 2.05 and pull[clean] < -0.25)))
     settled = np.abs(pull[: clean + 1] - (pull[clean] if abs(power - 2) < 0.05 else 0.0)) < 1e-9

@@ -205,6 +205,9 @@ def _missed(mesh: Mesh, here: Grid, look: Scan, origin: float, energy: float) ->
     near = np.minimum(x - mesh.places[element], mesh.places[element + 1] - x) < 1e-12 * np.maximum(
         np.abs(x), mesh.lengths[element]
     )
+    small = 1e-8 * (mesh.places[-1] - mesh.places[0])
+    near |= (mesh.left.power is not None) & (x - mesh.places[0] < small)
+    near |= (mesh.right.power is not None) & (mesh.places[-1] - x < small)
     keep = plain[element] & ~near
     x, v, element = x[keep], v[keep], element[keep]
     local = here.potential / here.mass - energy

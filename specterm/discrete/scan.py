@@ -35,7 +35,7 @@ class Scan:
 
 def scan(problem: Problem) -> Scan:
     """Sample K and V; raise PhysicsError where K is not positive or V is not a number."""
-    x = _places(problem)
+    x = _with_minima(problem, _places(problem))
     with np.errstate(all="ignore"):
         stiffness, potential = problem.stiffness(x), problem.potential(x)
     good = _trusted(x, stiffness, potential, problem)
@@ -92,6 +92,31 @@ def _trusted(x: Array, stiffness: Array, potential: Array, problem: Problem) -> 
         if far or potential[inner] > 1e100 or stiffness[inner] < 1e-290:
             good[outer] = False
     return good
+
+
+def _with_minima(problem: Problem, x: Array) -> Array:
+    """Return the sample with places on every smaller scale around its deepest minima, which may lie at no natural centre."""
+    with np.errstate(all="ignore"):
+        potential = problem.potential(x)
+    potential = np.where(np.isfinite(potential), potential, np.inf)
+    lows = np.flatnonzero((potential[1:-1] < potential[:-2]) & (potential[1:-1] < potential[2:])) + 1
+    marks = np.concatenate([problem.centres, problem.edges, [0.0]])
+    lows = lows[~np.isin(x[lows], marks)]
+    lows = lows[np.argsort(potential[lows])][:8]
+    if len(lows) == 0:
+        return x
+    left, right = x[lows - 1], x[lows + 1]
+    span = right - left
+    rows = np.arange(len(lows))
+    with np.errstate(all="ignore"):
+        for _ in range(12):
+            places = left[:, None] + (right - left)[:, None] * np.arange(9) / 8
+            values = problem.potential(places.ravel()).reshape(places.shape)
+            best = np.clip(np.argmin(values, axis=1), 1, 7)
+            left, right = places[rows, best - 1], places[rows, best + 1]
+    steps = span[:, None] * np.exp2(-np.arange(1, 36, 0.5))
+    near = ((left + right)[:, None] / 2 + np.concatenate([-steps, steps], axis=1)).ravel()
+    return np.unique(np.concatenate([x, (left + right) / 2, near]))
 
 
 def _places(problem: Problem) -> Array:

@@ -11,6 +11,7 @@ import numpy as np
 from specterm.arrays import Array
 from specterm.discrete.chain import count_below
 from specterm.discrete.elements import condense, grid
+from specterm.discrete.ends import FarEnd, NearEnd
 from specterm.discrete.mesh import Edge, Mesh
 from specterm.discrete.meshing import Span
 from specterm.discrete.reduce import problem_of
@@ -22,7 +23,7 @@ from specterm.spectrum.firstorder import running_levels
 from specterm.spectrum.fourier import dense_levels
 from specterm.spectrum.refine import Refined, Request, first_mesh, refine
 from specterm.spectrum.result import Level, Spectrum
-from specterm.spectrum.setting import Setting, setting, span_at
+from specterm.spectrum.setting import Setting, setting
 from specterm.spectrum.states import ElementStates
 from specterm.spectrum.symmetry import parities
 from specterm.spectrum.vectors import Solved
@@ -178,23 +179,30 @@ def _with_boxes(ready: Setting, request: Request, refined: Refined | None, wante
 
 def _reach(ready: Setting) -> Span:
     """Return a span that holds all of the potential that differs from its limits, with as much room again."""
-    look = ready.look
-    deviation = np.abs(look.potential - ready.threshold)
-    near = deviation > 1e-3 * float(np.median(deviation[deviation > 0])) if (deviation > 0).any() else deviation == 0
-    finite = np.isfinite(look.potential) & near
-    marks = np.concatenate([ready.problem.edges, ready.problem.centres])
-    x = look.x[finite & (np.abs(look.x) < 1e6 * max(1.0, np.abs(marks).max(initial=1.0)))]
-    left, right = float(min(x.min(initial=-1), marks.min(initial=-1))), float(max(x.max(initial=1), marks.max(initial=1)))
-    width = right - left
-    base = span_at(ready, float(np.nanmax(np.where(np.isfinite(look.potential), look.potential, np.nan))) + 1, (1, 1))
-    open_left, open_right = ready.problem.left_end == "open", ready.problem.right_end == "open"
-    edges = (base.left_edge, base.right_edge) if base is not None else (Edge(True), Edge(True))
-    return Span(
-        left - width if open_left else ready.problem.left,
-        right + width if open_right else ready.problem.right,
-        edges[0],
-        edges[1],
-    )
+    problem, look = ready.problem, ready.look
+    marks = np.concatenate([problem.edges, problem.centres])
+    ends = [float(marks.min(initial=np.inf)), float(marks.max(initial=-np.inf))]
+    if not len(marks):
+        ends = [e if np.isfinite(e) else 0.0 for e in (problem.left, problem.right)]
+    for side, sign in ((0, -1.0), (1, 1.0)):
+        end = ready.ends[side]
+        if isinstance(end, FarEnd) and np.isfinite(end.limit):
+            beyond = (sign * (look.x - ends[side]) > 0) & np.isfinite(look.potential)
+            off = np.abs(look.potential - end.limit)
+            alive = look.x[beyond & (off > 1e-3 * np.max(off[beyond], initial=0.0))]
+            reach = sign * float(np.max(sign * alive, initial=sign * ends[side]))
+            ends[side] = reach if abs(reach - ends[side]) < 1e6 * max(1.0, abs(ends[side])) else ends[side]
+    width = (ends[1] - ends[0]) or 1.0
+    places, edges = [], []
+    for side, sign, place in ((0, -1.0, problem.left), (1, 1.0, problem.right)):
+        near = ready.ends[side]
+        if isinstance(near, NearEnd) and near.kind != "steep":
+            places.append(place)
+            edges.append(Edge(near.kind == "wall", near.power if near.kind == "power" else None, near.alpha))
+        else:
+            places.append(ends[side] + sign * width)
+            edges.append(Edge(True))
+    return Span(places[0], places[1], edges[0], edges[1])
 
 
 def _nothing(ready: Setting, tolerance: float, notes: list[str]) -> Spectrum:

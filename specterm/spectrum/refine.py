@@ -22,8 +22,6 @@ from specterm.spectrum.vectors import Solved, solve_levels
 OVERSHOOT = 1e-3
 """Levels are refined to this share of the tolerance: it costs little, and the error left is mostly rounding."""
 ROUNDS = 14
-FARTHEST = 1e12
-"""Domains wider than this many times the spread of the potential's centres are not tried."""
 LARGE = 20_000
 """From so many elements on, memory is asked for before a mesh is condensed."""
 
@@ -62,22 +60,31 @@ def refine(ready: Setting, request: Request, energy: float, span: Span | None) -
     levels = request.last - request.first + 1
     refuse_above(8.0 * len(condensed.poles) * (60 * levels + 3000), f"computing {levels} levels")
     high = energy - ready.floor
+    last: Refined | None = None
     for number in range(ROUNDS):
         _report(request, number, condensed)
         low = _low(condensed, request.first, high)
-        solved = solve_levels(condensed, request.first, request.last, low, high, 0.0, request.check)
+        try:
+            solved = solve_levels(condensed, request.first, request.last, low, high, 0.0, request.check)
+        except np.linalg.LinAlgError:
+            if last is None:
+                raise PhysicsError(
+                    "the levels asked for cannot be told apart in double precision", mend="ask for fewer levels"
+                ) from None
+            return last
         found = accuracy(ready, solved, request.check)
         target = _targets(solved, request.tolerance, found)
         coarse = _coarse(found, target, condensed)
         wider, actions = (None, actions) if fixed else _wider(ready, found, target, solved, span, actions)
+        last = Refined(solved, found.total, _vector_error(solved, found), span)
         if (not coarse.any() and wider is None) or number == ROUNDS - 1:
-            return Refined(solved, found.total, _vector_error(solved, found), span)
+            return last
         mesh = condensed.mesh.split(coarse)
         if wider is not None:
             span = wider
             mesh = _widened(ready, mesh, wider, energy)
         if len(mesh.places) > MOST_ELEMENTS:
-            return Refined(solved, found.total, _vector_error(solved, found), span)
+            return last
         condensed = _without_poles(ready, mesh, energy)
     raise AssertionError("the last round returns")
 
@@ -162,6 +169,10 @@ def _coarse(found: Accuracy, target: Array, condensed: Condensed) -> Flags:
     over = SAFETY * found.share.sum(axis=0) > 0.5 * target
     limit = 0.25 * target / (SAFETY * found.share.shape[0])
     marked: Flags = np.any(found.share > np.where(over, limit, np.inf), axis=1)
+    mesh = condensed.mesh
+    small = 1e-9 * (mesh.places[-1] - mesh.places[0])
+    marked &= (mesh.places[1:] - mesh.places[0] > small) | (mesh.left.power is None)
+    marked &= (mesh.places[-1] - mesh.places[:-1] > small) | (mesh.right.power is None)
     tiny = condensed.mesh.lengths < 64 * np.spacing(np.abs(condensed.mesh.places).max() * np.finfo(float).eps)
     return marked & ~tiny
 
@@ -188,9 +199,13 @@ def _wider(
 
 
 def _farther(ready: Setting, span: Span) -> Span | None:
-    """Return a span eight times as wide at its open ends, for states so near the threshold that no decay is in sight yet."""
+    """Return a span eight times as wide at its open ends, for states so near the threshold that no decay is in sight yet.
+
+    None where the box's own levels could no longer be told from the threshold.
+    """
     width = span.right - span.left
-    if width > FARTHEST * max(1.0, float(np.ptp(ready.problem.centres)) if len(ready.problem.centres) else 1.0):
+    stiffness = float(ready.problem.stiffness(np.array([span.left + 0.5 * width]))[0])
+    if stiffness * (np.pi / width) ** 2 < 64 * np.spacing(ready.threshold - ready.floor):
         return None
     left = span.left - 4 * width if isinstance(ready.ends[0], FarEnd) else span.left
     right = span.right + 4 * width if isinstance(ready.ends[1], FarEnd) else span.right
