@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import argparse
 import locale
-import math
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
@@ -111,9 +110,10 @@ def levels_text(model: Model, spectrum: Spectrum) -> str:
     """Return a spectrum as aligned text: the operator, the table, and how far it can be trusted."""
     from specterm.views.cells import plain  # noqa: PLC0415 - only text needs the views
     from specterm.views.level_table import text_table  # noqa: PLC0415
-    from specterm.views.status import Units, trust_line  # noqa: PLC0415
+    from specterm.views.of_model import units_of as names_of  # noqa: PLC0415
+    from specterm.views.status import trust_line  # noqa: PLC0415
 
-    units = Units(model.units.energy, model.units.length, "", model.domain.coordinate)
+    units = names_of(model)
     table = [text_table(spectrum.levels, model.units.energy)] if spectrum.levels else []
     return "\n".join([expression_of(model), *table, plain([trust_line(spectrum, units, 1000)]).rstrip()])
 
@@ -177,28 +177,17 @@ def figure(arguments: argparse.Namespace, source: Source) -> Answer:
 
 def figure_text(arguments: argparse.Namespace, source: Source, model: Model, spectrum: Spectrum) -> str:
     """Return the figure of a spectrum as plain text."""
-    from specterm.analysis import potential_curve, project  # noqa: PLC0415 - heavy
-    from specterm.views.cells import plain  # noqa: PLC0415
-    from specterm.views.level_export import export  # noqa: PLC0415
-    from specterm.views.scene import Axes, Prepared, scene  # noqa: PLC0415
-    from specterm.views.scene import source as figure_source  # noqa: PLC0415
+    from specterm.analysis import project  # noqa: PLC0415 - heavy
+    from specterm.views.of_model import figure_text as drawn  # noqa: PLC0415
 
-    domain, units = model.domain, model.units
-    axes = Axes(domain.coordinate, units.length, units.energy, domain.left, domain.right, domain.left_end, domain.right_end)
-    origin = figure_source(spectrum, lambda x: potential_curve(model, x), axes)
-    only = arguments.levels
-    known = [level.index for level in spectrum.levels]
-    if only and not set(only) <= set(known):
+    only, known = arguments.levels, {level.index for level in spectrum.levels}
+    if only and not set(only) <= known:
         raise SheetError(f"--levels names levels that were not found: there are {len(known)}", mend="ask for more with -n")
-    chosen = known.index(only[0]) if only else (0 if known else None)
-    prepared = None
-    if arguments.state:
-        found = project(model, spectrum, arguments.state, source.folder)
-        mean = found.mean if math.isfinite(found.mean) else (spectrum.levels[0].value if known else 0.0)
-        prepared = Prepared(found.state, mean, found.wave)
-    shown = scene(origin, chosen, only=only, prepared=prepared)
-    rows = export(shown, arguments.width, arguments.height, mode=arguments.view, glyphs=glyphs_of(arguments.glyphs))
-    return "\n".join(line.rstrip() for line in plain(rows).split("\n"))
+    weights = project(model, spectrum, arguments.state, source.folder) if arguments.state else None
+    return drawn(
+        model, spectrum, arguments.width, arguments.height,
+        only=only, weights=weights, mode=arguments.view, glyphs=glyphs_of(arguments.glyphs),
+    )  # fmt: skip
 
 
 def glyphs_of(wanted: str | None) -> str:

@@ -47,7 +47,7 @@ def near_end(problem: Problem, side: int) -> NearEnd:
     """Classify the left (side 0) or right (side 1) finite end by the exponents of the equation there (Frobenius)."""
     end, kind = (problem.left, problem.left_end) if side == 0 else (problem.right, problem.right_end)
     sign = 1.0 if side == 0 else -1.0
-    room = _room(problem, end, side)
+    room = room_at(problem, end, side)
     smallest = max(room * 2.0**-40, abs(end) * 2.0**-26)
     d = np.geomspace(smallest, max(room * 2.0**-6, smallest * 4), 24)
     x = end + sign * d
@@ -109,7 +109,7 @@ def refuse_inner_poles(problem: Problem) -> None:
             )
 
 
-def _room(problem: Problem, end: float, side: int) -> float:
+def room_at(problem: Problem, end: float, side: int) -> float:
     """Return the distance from an end to the next edge or centre inwards, or to the other end."""
     marks = np.concatenate([problem.edges, problem.centres, [problem.left, problem.right]])
     distance = marks - end if side == 0 else end - marks

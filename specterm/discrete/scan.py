@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from specterm.arrays import Array, Flags
+from specterm.discrete.ends import room_at
 from specterm.discrete.problem import Problem
 from specterm.errors import PhysicsError
 
@@ -59,6 +60,9 @@ def _refuse_poles(problem: Problem, x: Array, potential: Array) -> None:
     """Raise PhysicsError where |V| has a sharp maximum inside the sample that grows without end when looked at closer."""
     size = np.where(np.isfinite(potential), np.abs(potential), 0.0)
     peaks = np.flatnonzero((size[1:-1] > size[:-2]) & (size[1:-1] > size[2:]) & (size[1:-1] > 30 * np.median(size))) + 1
+    for side, end in ((0, problem.left), (1, problem.right)):
+        if np.isfinite(end):
+            peaks = peaks[np.abs(x[peaks] - end) > 1e-10 * room_at(problem, end, side)]
     peaks = peaks[np.argsort(-size[peaks])][:24]
     if len(peaks) == 0:
         return

@@ -36,17 +36,20 @@ def build(sheet: Sheet, *, folder: Path | None = None, overrides: Mapping[str, s
     sheet = overridden(sheet, overrides or {})
     units = UnitSystem.dimensionless() if sheet.units is None else UnitSystem.make(sheet.units.pairs, sheet.units.span)
     statement = _domain_statement(sheet)
-    scope = Scope(sheet, units, folder, statement.coordinate, check_dimensions(sheet, units).carries)
+    dimensions = check_dimensions(sheet, units)
+    scope = Scope(sheet, units, folder, statement.coordinate, dimensions.carries)
     _check_names(sheet, statement.coordinate)
     if "hbar" in scope.definitions:
         scope.set_hbar(_hbar(scope))
     domain = build_domain(statement, scope)
     scope.set_domain(domain)
     scope.ensure([*scope.definitions, *scope.blocks])
-    return _model(sheet, units, scope, domain)
+    kind = dimensions.named(statement.coordinate)
+    angle = kind is not None and not kind
+    return _model(sheet, units, scope, domain, "" if angle else units.length)
 
 
-def _model(sheet: Sheet, units: UnitSystem, scope: Scope, domain: Domain) -> Model:
+def _model(sheet: Sheet, units: UnitSystem, scope: Scope, domain: Domain, coordinate_unit: str) -> Model:
     operators = {name: v for name, v in scope.values.items() if isinstance(v, Operator)}
     terms = {name: v for name, v in scope.values.items() if isinstance(v, Term)}
     constants = {n: t.data for n, t in terms.items() if t.scalar is not None and t.scalar.is_real}
@@ -59,6 +62,7 @@ def _model(sheet: Sheet, units: UnitSystem, scope: Scope, domain: Domain) -> Mod
         sheet=sheet,
         units=units,
         domain=domain,
+        coordinate_unit=coordinate_unit,
         hbar=float(scope.setting.hbar.value.real),
         parameters={d.name: float(constants[d.name].value) for d in sheet.definitions if d.name in constants},
         plain=tuple(d.name for d in sheet.definitions if d.name in constants and _is_plain(d.expression)),

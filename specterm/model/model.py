@@ -21,6 +21,7 @@ from specterm.units import UnitSystem
 class Model:
     """A resolved sheet. Numbers are in the coherent system `units` (dimensionless without one).
 
+    `coordinate_unit` is the name of the unit of length, "" where the coordinate is known to be a plain number (an angle).
     `parameters`: the real constants of the sheet in the order written; `plain`: those written as plain numbers, perhaps with
     unit and sign; `functions`: what depends on the coordinate, and complex constants; `operators`: what contains a
     derivative, and `main`, the name of the operator to diagonalise; `warnings`: what is odd but no error.
@@ -29,6 +30,7 @@ class Model:
     sheet: Sheet
     units: UnitSystem
     domain: Domain
+    coordinate_unit: str
     hbar: float
     parameters: dict[str, float]
     plain: tuple[str, ...]

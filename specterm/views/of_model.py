@@ -20,13 +20,15 @@ def axes_of(model: Model) -> Axes:
     """Return names, units and ends for the figure."""
     domain, units = model.domain, model.units
     ends = (float(domain.left), float(domain.right))
-    return Axes(domain.coordinate, units.length, units.energy, *ends, domain.left_end, domain.right_end)
+    return Axes(domain.coordinate, model.coordinate_unit, units.energy, *ends, domain.left_end, domain.right_end)
 
 
 def units_of(model: Model) -> Units:
     """Return the names of the units for tables and lines; momenta are shown in hbar over the unit of length."""
     units = model.units
-    return Units(units.energy, units.length, f"hbar/{units.length}" if units.length else "", model.domain.coordinate)
+    length = model.coordinate_unit
+    momentum = f"hbar/{length}" if length else "hbar" if units.energy else ""
+    return Units(units.energy, length, momentum, model.domain.coordinate)
 
 
 def source_of(model: Model, spectrum: Spectrum | None) -> Source:
@@ -66,10 +68,8 @@ def figure_text(
 ) -> str:
     """Return the level figure as plain text of at most `height` lines of `width` columns, for print and export.
 
-    view = scene(
-        source_of(model, spectrum), chosen, samples=8 * max(40, width), only=only, prepared=prepared, zoom=False
-    )
-    state. Sizes from 24 x 10 on have framed axes, smaller ones the screen's figure.
+    `only` keeps levels with these indices, the first of them strong; `weights` adds its prepared state. Sizes from 24 x 10 on
+    have framed axes, smaller ones the screen's figure.
     """
     places = [place for place, level in enumerate(spectrum.levels) if only and level.index == only[0]]
     prepared = prepared_of(weights) if weights else None
