@@ -6,6 +6,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 from specterm.arrays import Array
+from specterm.model import Function
 
 Coefficient = Callable[[Array], Array]
 
@@ -37,7 +38,7 @@ class Problem:
     centres: Array
     knots: int = 0
     phase: float | None = None
-    twist: Coefficient | None = None
+    twist: Function | None = None
     sign: int = 1
     bloch: bool = False
 

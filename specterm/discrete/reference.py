@@ -33,6 +33,19 @@ def functions(order: int, t: Array) -> tuple[Array, Array]:
     return values, slopes
 
 
+def curvatures(order: int, t: Array) -> Array:
+    """Return the second derivatives of `functions` at t, shape (points, order + 1 + SPARE). Tested to order 16."""
+    count = order + SPARE - 1
+    inner, outer, outermost = _jacobi(2, count, t), _jacobi(3, count, t), _jacobi(4, count, t)
+    bends = np.zeros((len(t), count + 2))
+    for k in range(count):
+        norm = math.sqrt((2 * k + 5) * (k + 3) * (k + 4) / (32.0 * (k + 1) * (k + 2)))
+        steep = (k + 5) / 2 * outer[:, k - 1] if k else 0.0
+        bent = (k + 5) * (k + 6) / 4 * outermost[:, k - 2] if k > 1 else 0.0
+        bends[:, k + 2] = norm * ((1 - t) * (1 + t) * bent - 4 * t * steep - 2 * inner[:, k])
+    return bends
+
+
 def _jacobi(a: int, count: int, t: Array) -> Array:
     """Return the Jacobi polynomials P_k^(a,a) for k < count at t, shape (points, count), by their three-term recurrence."""
     p = np.ones((len(t), max(count, 2)))

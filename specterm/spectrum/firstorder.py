@@ -12,6 +12,7 @@ from specterm.discrete.quadrature import gauss_legendre
 from specterm.discrete.reduce import integral
 from specterm.errors import PhysicsError
 from specterm.model import Function, Model
+from specterm.model.regular import regular_slope
 
 
 @dataclass(frozen=True)
@@ -30,7 +31,7 @@ class RunningStates:
         return len(self.values)
 
     def evaluate(self, x: Array, derivative: int = 0) -> Values:
-        """Return psi or d psi/dx of every state at the places x: shape (states, len(x))."""
+        """Return psi, d psi/dx or the second derivative of every state at the places x: shape (states, len(x))."""
         x = np.asarray(x, dtype=float)
         element = np.clip(np.searchsorted(self.places, x, side="right") - 1, 0, len(self.places) - 2)
         ones, tops = self._phases(x, element)
@@ -38,8 +39,13 @@ class RunningStates:
         psi = np.sqrt(np.abs(self.rate(x)) / self.size) * np.exp(1j * angle)
         if derivative == 0:
             return psi
-        growth = self.rate.derivative()(x) / (2 * self.rate(x))
-        return psi * (growth + 1j * (np.outer(self.values, self.rate(x)) - self.drift(x)))
+        rate, steepness = self.rate(x), regular_slope(self.rate)
+        growth = steepness(x) / (2 * rate) + 1j * (np.outer(self.values, rate) - self.drift(x))
+        if derivative == 1:
+            return psi * growth
+        bend = regular_slope(steepness)(x) / (2 * rate) - (steepness(x) / rate) ** 2 / 2
+        turn = np.outer(self.values, steepness(x)) - regular_slope(self.drift)(x)
+        return psi * (growth**2 + bend + 1j * turn)
 
     def _phases(self, x: Array, element: Counts) -> tuple[Array, Array]:
         """Return the integrals of 1/B and V/B from the left end to x."""

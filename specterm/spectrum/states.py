@@ -9,9 +9,10 @@ import numpy as np
 
 from specterm.arrays import Array, Counts, Values
 from specterm.discrete.mesh import Mesh
-from specterm.discrete.problem import Coefficient
 from specterm.discrete.quadrature import gauss_legendre
-from specterm.discrete.reference import functions
+from specterm.discrete.reference import curvatures, functions
+from specterm.model import Function
+from specterm.model.regular import regular_slope
 from specterm.spectrum.vectors import Solved
 
 
@@ -20,7 +21,7 @@ class ElementStates:
     """Eigenstates on a mesh of elements; `twist` is the slope of the phase put back into them, or None."""
 
     solved: Solved
-    twist: Coefficient | None
+    twist: Function | None
 
     @property
     def mesh(self) -> Mesh:
@@ -38,31 +39,57 @@ class ElementStates:
         return self.solved.coefficients.shape[2]
 
     def evaluate(self, x: Array, derivative: int = 0) -> Values:
-        """Return psi (derivative 0) or d psi/dx (1) of every state at x, shape (states, len(x)); 0 outside the mesh."""
+        """Return psi (derivative 0), d psi/dx (1) or the second derivative (2) of every state at x, shape (states, len(x)).
+
+        0 outside the mesh. The second derivative is that of the polynomials on each element.
+        """
         x = np.asarray(x, dtype=float)
         places = self.places
         element = np.clip(np.searchsorted(places, x, side="right") - 1, 0, len(places) - 2)
         inside = (x >= places[0]) & (x <= places[-1])
-        at = np.clip(2 * (x - places[element]) / self.mesh.lengths[element] - 1, -1, 1)
-        order = self.mesh.order
-        values, slopes = functions(order, at)
-        factor, growth = self._factor(x, element)
-        taken = self.solved.coefficients[element]
-        psi = np.einsum("xf,xfn->nx", values[:, : order + 1], taken) * factor
-        if derivative == 0 and self.twist is None:
-            return np.where(inside, psi * self._signs[:, None], 0)
-        slope = (
-            np.einsum("xf,xfn->nx", slopes[:, : order + 1] * (2 / self.mesh.lengths[element])[:, None], taken) * factor
-            + growth * psi
-        )
+        jet = self._powered(x, element, self._polynomials(x, element, derivative))
         if self.twist is not None:
-            turn = np.exp(1j * self._angle(x, element))
-            psi, slope = psi * turn, (slope + 1j * self.twist(x) * psi) * turn
-        return np.where(inside, (slope if derivative else psi) * self._signs[:, None], 0)
+            jet = self._turned(x, element, jet)
+        return np.where(inside, jet[derivative] * self._signs[:, None], 0)
 
-    def _factor(self, x: Array, element: Counts) -> tuple[Array, Array]:
-        """Return the power taken out of psi at each place, and its logarithmic derivative."""
-        factor, growth = np.ones_like(x), np.zeros_like(x)
+    def _polynomials(self, x: Array, element: Counts, highest: int) -> list[Values]:
+        """Return the polynomials and their derivatives up to the highest asked for, each of shape (states, n)."""
+        at = np.clip(2 * (x - self.places[element]) / self.mesh.lengths[element] - 1, -1, 1)
+        scale = (2 / self.mesh.lengths[element])[:, None]
+        tables = list(functions(self.mesh.order, at)) + ([curvatures(self.mesh.order, at)] if highest > 1 else [])
+        taken = self.solved.coefficients[element]
+        return [
+            np.einsum("xf,xfn->nx", table[:, : self.mesh.order + 1] * scale**k, taken)
+            for k, table in enumerate(tables[: highest + 1])
+        ]
+
+    def _powered(self, x: Array, element: Counts, jet: list[Values]) -> list[Values]:
+        """Return psi and its derivatives: the polynomials times the power taken out at singular ends, by the product rule."""
+        factor, growth, bend = self._factor(x, element)
+        whole = [jet[0] * factor]
+        if len(jet) > 1:
+            whole.append(jet[1] * factor + growth * whole[0])
+        if len(jet) > 2:
+            whole.append(jet[2] * factor + 2 * growth * jet[1] * factor + bend * whole[0])
+        return whole
+
+    def _turned(self, x: Array, element: Counts, jet: list[Values]) -> list[Values]:
+        """Return psi and its derivatives with the phase put back."""
+        if self.twist is None:
+            return jet
+        turn = np.exp(1j * self._angle(x, element))
+        rate = self.twist(x)
+        whole = [jet[0] * turn]
+        if len(jet) > 1:
+            whole.append((jet[1] + 1j * rate * jet[0]) * turn)
+        if len(jet) > 2:
+            slope = regular_slope(self.twist)(x)
+            whole.append((jet[2] + 2j * rate * jet[1] + (1j * slope - rate**2) * jet[0]) * turn)
+        return whole
+
+    def _factor(self, x: Array, element: Counts) -> tuple[Array, Array, Array]:
+        """Return the power taken out of psi at each place, its logarithmic derivative, and its second derivative over itself."""
+        factor, growth, bend = np.ones_like(x), np.zeros_like(x), np.zeros_like(x)
         lengths = self.mesh.lengths
         for end, number, place, sign in (
             (self.mesh.left, 0, self.places[0], 1.0),
@@ -73,7 +100,9 @@ class ElementStates:
                 d = np.maximum(np.abs(x[here] - place), np.finfo(float).tiny)
                 factor[here] = (d / lengths[number]) ** end.power
                 growth[here] = sign * end.power / d
-        return factor, growth
+                with np.errstate(over="ignore"):
+                    bend[here] = end.power * (end.power - 1) / d / d if end.power != 1 else 0.0
+        return factor, growth, bend
 
     @cached_property
     def _angles(self) -> Array:
