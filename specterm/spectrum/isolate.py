@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 
@@ -19,6 +20,18 @@ ALONE = 0.02
 
 
 @dataclass(frozen=True)
+class Ruler:
+    """What distances between levels are judged by: the energy `bottom` they lie above, and `top`, where a continuum begins."""
+
+    bottom: float
+    top: float = math.inf
+
+    def close(self, energy: float) -> float:
+        """Return the distance below which levels near an energy are one group: never less than a few roundings."""
+        return float(max(CLOSE * min(abs(energy - self.bottom), abs(self.top - energy)), 8 * np.spacing(abs(energy))))
+
+
+@dataclass(frozen=True)
 class Group:
     """Levels number `first` ... `first + size - 1`, all of them in (low, high), and no others there."""
 
@@ -28,13 +41,11 @@ class Group:
     high: float
 
 
-def isolate(count: Count, first: int, last: int, low: float, high: float, bottom: float) -> list[Group]:
+def isolate(count: Count, first: int, last: int, low: float, high: float, ruler: Ruler) -> list[Group]:
     """Return groups that hold the levels first ... last, given count(low) <= first and count(high) > last.
 
-    Each bracket is cut at several energies at once, until it holds one level or is narrower than `CLOSE` of its distance to
-    `bottom`.
+    Each bracket is cut at several energies at once, until it holds one level or is closer than `ruler` can tell levels apart.
     """
-    top = high
     ends = count(np.array([low, high]))
     todo = [Group(int(ends[0]), int(ends[1] - ends[0]), low, high)]
     enough = ALONE * (high - low) / max(1, last - first + 1)
@@ -44,22 +55,17 @@ def isolate(count: Count, first: int, last: int, low: float, high: float, bottom
         counts = np.split(count(np.concatenate(cuts)), np.cumsum([len(c) for c in cuts])[:-1])
         pieces = [piece for group, c, n in zip(todo, cuts, counts, strict=True) for piece in _pieces(group, c, n)]
         wanted = [g for g in pieces if g.first <= last and g.first + g.size > first]
-        todo = [g for g in wanted if not _settled(g, bottom, top, enough)]
-        done += [g for g in wanted if _settled(g, bottom, top, enough)]
+        todo = [g for g in wanted if not _settled(g, ruler, enough)]
+        done += [g for g in wanted if _settled(g, ruler, enough)]
     return sorted(done, key=lambda group: group.first)
 
 
-def _settled(group: Group, bottom: float, top: float, enough: float) -> bool:
+def _settled(group: Group, ruler: Ruler, enough: float) -> bool:
     """Say whether a bracket is narrow: a single level to `enough`, several to where counts can no longer tell them apart."""
     width = group.high - group.low
     middle = (group.high + group.low) / 2
-    narrow = width <= closeness(middle, bottom, top)
+    narrow = width <= ruler.close(middle)
     return (group.size == 1 and width <= enough) or narrow
-
-
-def closeness(energy: float, bottom: float, top: float) -> float:
-    """Return the distance below which levels near an energy are one group: never less than a few roundings."""
-    return float(max(CLOSE * min(abs(energy - bottom), abs(top - energy)), 8 * np.spacing(abs(energy))))
 
 
 def _cuts(group: Group, first: int, last: int) -> Array:

@@ -16,6 +16,7 @@ from specterm.discrete.mesh import Mesh
 from specterm.discrete.meshing import MOST_ELEMENTS, Span, build, graded, resolve
 from specterm.errors import PhysicsError, WorkStopped
 from specterm.spectrum.accuracy import SAFETY, Accuracy, accuracy
+from specterm.spectrum.isolate import Ruler
 from specterm.spectrum.setting import DEEP, Setting, span_at
 from specterm.spectrum.vectors import Solved, solve_levels
 
@@ -61,11 +62,12 @@ def refine(ready: Setting, request: Request, energy: float, span: Span | None) -
     refuse_above(8.0 * len(condensed.poles) * (60 * levels + 3000), f"computing {levels} levels")
     high = energy - ready.floor
     last: Refined | None = None
+    ruler = Ruler(0.0, ready.threshold - ready.floor if not fixed else np.inf)
     for number in range(ROUNDS):
         _report(request, number, condensed)
         low = _low(condensed, request.first, high)
         try:
-            solved = solve_levels(condensed, request.first, request.last, low, high, 0.0, request.check)
+            solved = solve_levels(condensed, request.first, request.last, low, high, ruler, request.check)
         except np.linalg.LinAlgError:
             if last is None:
                 raise PhysicsError(

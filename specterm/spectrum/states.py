@@ -88,7 +88,7 @@ class ElementStates:
         return whole
 
     def _factor(self, x: Array, element: Counts) -> tuple[Array, Array, Array]:
-        """Return the power taken out of psi at each place, its logarithmic derivative, and its second derivative over itself."""
+        """Return the power taken out of psi at each place, its logarithmic derivative, and its second one over itself."""
         factor, growth, bend = np.ones_like(x), np.zeros_like(x), np.zeros_like(x)
         lengths = self.mesh.lengths
         for end, number, place, sign in (

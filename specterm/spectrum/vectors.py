@@ -10,7 +10,7 @@ import numpy as np
 from specterm.arrays import Array, Counts, Values
 from specterm.discrete.chain import Chain, chain_with_mass, count_below, element_coefficients, twisted_vectors
 from specterm.discrete.elements import Condensed
-from specterm.spectrum.isolate import Group, closeness, isolate
+from specterm.spectrum.isolate import Group, Ruler, isolate
 
 SETTLED = 1e-12
 """Newton steps smaller than this share of the level end the iteration: so far below `CLOSE` that no neighbour is mixed in."""
@@ -53,49 +53,48 @@ def solve_levels(
     last: int,
     low: float,
     high: float,
-    bottom: float,
+    ruler: Ruler,
     check: Callable[[], None] = lambda: None,
 ) -> Solved:
     """Return levels number first ... last of the mesh.
 
-    There must be at least last + 1 levels below `high` and at most `first` below `low`. `bottom` is the energy from which
-    distances are judged: levels closer than a share `CLOSE` of theirs are solved together. `check` is called now and then
-    and may raise to stop the work.
+    There must be at least last + 1 levels below `high` and at most `first` below `low`. Levels closer than `ruler` says are
+    solved together. `check` is called now and then and may raise to stop the work.
     """
 
     def count(energies: Array) -> Counts:
         check()
         return count_below(condensed, energies)
 
-    groups = isolate(count, first, last, low, high, bottom)
+    groups = isolate(count, first, last, low, high, ruler)
     single = condensed.mesh.phase is None
     loners = [g for g in groups if g.size == 1 and single]
     parts: list[Part] = []
     for start in range(0, len(loners), 64):
         check()
         some = loners[start : start + 64]
-        energies, z = _newton(condensed, some, bottom, high)
+        energies, z = _newton(condensed, some, ruler)
         found = _quotients(condensed, [g.first for g in some], element_coefficients(condensed, z, energies))
         parts += [
-            part if abs(part.values[0] - energy) <= STRAY * abs(energy - bottom) else _group(condensed, group, bottom)
+            part if abs(part.values[0] - energy) <= STRAY * abs(energy - ruler.bottom) else _group(condensed, group, ruler)
             for part, energy, group in zip(found, energies, some, strict=True)
         ]
     for group in groups:
         if group.size > 1 or not single:
             check()
-            parts.append(_group(condensed, group, bottom))
-    parts = _merged(condensed, sorted(parts, key=lambda part: part.first), bottom, high)
+            parts.append(_group(condensed, group, ruler))
+    parts = _merged(condensed, sorted(parts, key=lambda part: part.first), ruler)
     start = parts[0].first
     take = slice(first - start, last + 1 - start)
     values, kinetic = (np.concatenate([getattr(p, name) for p in parts])[take] for name in ("values", "kinetic"))
     return Solved(condensed, first, values, np.concatenate([p.coefficients for p in parts], axis=2)[:, :, take], kinetic)
 
 
-def _merged(condensed: Condensed, parts: list[Part], bottom: float, top: float) -> list[Part]:
+def _merged(condensed: Condensed, parts: list[Part], ruler: Ruler) -> list[Part]:
     """Solve again, as one group, neighbours whose values came out closer than a count can tell apart."""
     runs: list[list[Part]] = []
     for part in parts:
-        close = runs and part.values[0] - runs[-1][-1].values[-1] <= 3 * closeness(float(part.values[0]), bottom, top)
+        close = runs and part.values[0] - runs[-1][-1].values[-1] <= 3 * ruler.close(float(part.values[0]))
         if close:
             runs[-1].append(part)
         else:
@@ -107,20 +106,20 @@ def _merged(condensed: Condensed, parts: list[Part], bottom: float, top: float) 
             continue
         values = np.concatenate([p.values for p in run])
         size = sum(len(p.values) for p in run)
-        whole.append(_group(condensed, Group(run[0].first, size, float(values.min()), float(values.max())), bottom))
+        whole.append(_group(condensed, Group(run[0].first, size, float(values.min()), float(values.max())), ruler))
     return whole
 
 
-def _newton(condensed: Condensed, groups: list[Group], bottom: float, top: float) -> tuple[Array, Array]:
+def _newton(condensed: Condensed, groups: list[Group], ruler: Ruler) -> tuple[Array, Array]:
     """Return energies and vertex vectors of single levels by Newton's method, kept inside shrinking brackets.
 
-    A step must be small against the level and against its distance to `top`, where a continuum may begin. Every fifth step
+    A step must be small against the level and against its distance to where a continuum begins. Every fifth step
     halves the bracket, so that the iteration ends whatever the start.
     """
     low, high = np.array([g.low for g in groups]), np.array([g.high for g in groups])
     numbers = np.array([g.first for g in groups])
     energies = (low + high) / 2
-    slack = 1e-3 * SETTLED * np.abs(energies - bottom)
+    slack = 1e-3 * SETTLED * np.abs(energies - ruler.bottom)
     near = np.zeros(len(groups), dtype=bool)
     for number in range(120):
         matrix, weight = chain_with_mass(condensed, energies)
@@ -131,7 +130,7 @@ def _newton(condensed: Condensed, groups: list[Group], bottom: float, top: float
             step = misfit / _quadratic(weight, z)
         trial = energies + step
         inside = (trial > low - slack) & (trial < high + slack) & np.isfinite(step)
-        fine = np.minimum(SETTLED * np.abs(trial - bottom), 1e-4 * np.abs(top - trial))
+        fine = np.minimum(SETTLED * np.abs(trial - ruler.bottom), 1e-4 * np.abs(ruler.top - trial))
         fine = np.maximum(fine, 4 * np.spacing(np.abs(energies)))
         near, before = inside & (np.abs(step) <= fine), near
         settled = (near & (before | (np.abs(step) <= 1e-2 * fine))) | (high - low <= 1e-2 * fine)
@@ -179,9 +178,9 @@ def _edges(condensed: Condensed, coefficients: Values) -> Array:
     return total
 
 
-def _group(condensed: Condensed, group: Group, bottom: float) -> Part:
+def _group(condensed: Condensed, group: Group, ruler: Ruler) -> Part:
     """Return the levels of one group by inverse iteration on a block and a small Rayleigh-Ritz problem."""
-    z, energy = _block(condensed, group, bottom)
+    z, energy = _block(condensed, group, ruler)
     coefficients = element_coefficients(condensed, z, np.full(z.shape[1], energy))
     here = condensed.grid
     n = condensed.mesh.order + 1
@@ -199,7 +198,7 @@ def _group(condensed: Condensed, group: Group, bottom: float) -> Part:
     return Part(group.first, energy + values, coefficients @ mix, own)
 
 
-def _block(condensed: Condensed, group: Group, bottom: float) -> tuple[Values, float]:
+def _block(condensed: Condensed, group: Group, ruler: Ruler) -> tuple[Values, float]:
     """Return vertex vectors (vertices, size) spanning the group's space, and the energy they belong to.
 
     Inverse iteration with a block; for a single level the energy follows its Rayleigh quotient, kept inside a bracket that
@@ -207,7 +206,7 @@ def _block(condensed: Condensed, group: Group, bottom: float) -> tuple[Values, f
     """
     low, high = group.low, group.high
     energy = (low + high) / 2
-    slack = 1e-3 * SETTLED * abs(energy - bottom)
+    slack = 1e-3 * SETTLED * abs(energy - ruler.bottom)
     start = np.random.default_rng(20).standard_normal((_vertices(condensed), group.size))
     z: Values = start
     near, settled_ritz = False, np.zeros(group.size)
@@ -223,7 +222,7 @@ def _block(condensed: Condensed, group: Group, bottom: float) -> tuple[Values, f
                 break
             settled_ritz = ritz
             continue
-        near, before = abs(step) <= max(SETTLED * abs(energy - bottom), 4 * np.spacing(abs(energy))), near
+        near, before = abs(step) <= max(SETTLED * abs(energy - ruler.bottom), 4 * np.spacing(abs(energy))), near
         if sweep >= 1 and near and before:
             break
         below = count_below(condensed, np.array([energy]))[0] > group.first
