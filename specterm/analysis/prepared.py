@@ -2,11 +2,11 @@
 
 from __future__ import annotations
 
+import math
 import re
 from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any
 
 import numpy as np
 
@@ -17,17 +17,30 @@ from specterm.language import decode, parse
 from specterm.language.catalogue import refuse
 from specterm.model import Domain, Function, Model, State, build
 from specterm.model.function import number
+from specterm.model.regular import regular_slope
 from specterm.spectrum import Spectrum, solve
+from specterm.spectrum.result import States
 
 LARGEST_SHEET = 1_000_000
+
+
+STATE_ERROR = 1e-10
+"""Error in norm granted to eigenstates of bases that do not estimate it."""
+
+
+def slips(spectrum: Spectrum) -> Array:
+    """Return a bound on the error of each eigenstate in norm, shape (levels,); 1 where its level has no error estimate."""
+    known = spectrum.vector_error
+    return known if len(known) else np.full(len(spectrum.levels), STATE_ERROR)
 
 
 @dataclass(frozen=True)
 class Prepared:
     """A prepared state: `wave` maps places (n,) to values (n,), normalised; `x` and `w` (m,) integrate its products.
 
-    `missed` is the share of the norm the rule may have missed; `cut` the share of |psi|^2 pressed against the walls of the
-    domain, as an estimate of what they cut off.
+    `jet` gives a derivative: jet(x, 0) is the wave, jet(x, 2) its second derivative between the `places`, where it may jump or
+    bend. `missed` is the share of the norm the rule may have missed; `cut` the share of |psi|^2 pressed against the walls of
+    the domain, as an estimate of what they cut off; `slip` bounds the error of the wave in norm, rounding aside.
     """
 
     name: str
@@ -35,7 +48,10 @@ class Prepared:
     x: Array
     w: Array
     missed: float
+    jet: Callable[[Array, int], Values]
+    places: Array
     cut: float = 0.0
+    slip: float = 0.0
 
 
 def prepare(model: Model, spectrum: Spectrum, name: str, folder: Path | None = None) -> Prepared:
@@ -75,7 +91,12 @@ def _of_function(model: Model, spectrum: Spectrum, state: State, function: Funct
         raise refuse(
             "state-not-normalisable", state.span, name=state.name, reason="its square has no finite integral over the domain"
         )
-    return Prepared(state.name, lambda y: function(y) / norm, x, w, missed, _pressed(model.domain, values, x, norm))
+    slope = regular_slope(function)
+    jets = (function, slope, regular_slope(slope))
+    cut = _pressed(model.domain, values, x, norm)
+    return Prepared(
+        state.name, lambda y: function(y) / norm, x, w, missed, lambda y, k: np.nan_to_num(jets[k](y)) / norm, places, cut
+    )
 
 
 def _inside(places: Array, hull: tuple[float, float]) -> Array:
@@ -132,36 +153,63 @@ def _of_levels(
     model: Model, spectrum: Spectrum, name: str, parts: tuple[tuple[Function, int, str | None], ...], folder: Path | None
 ) -> Prepared:
     """Return a sum of levels, of this sheet or of others, with coefficients."""
-    terms = [(coefficient, *_level(model, spectrum, index, path, folder)) for coefficient, index, path in parts]
+    terms = [(_jet_of(coefficient), *_level(model, spectrum, index, path, folder)) for coefficient, index, path in parts]
 
-    def raw(y: Array) -> Values:
-        return np.sum([coefficient(y) * states.evaluate(y)[row] for coefficient, states, row in terms], axis=0)
+    def raw(y: Array, k: int = 0) -> Values:
+        return np.sum([_product(jet, states, row, y, k) for jet, states, row, _ in terms], axis=0)
 
-    grids = [states.places for _, states, _ in terms] + ([spectrum.states.places] if spectrum.states is not None else [])
+    grids = [states.places for _, states, _, _ in terms] + ([spectrum.states.places] if spectrum.states is not None else [])
     low, high = max(model.domain.left, min(g[0] for g in grids)), min(model.domain.right, max(g[-1] for g in grids))
-    places = np.unique(np.concatenate([_inside(g, (low, high)) for g in grids] + [np.array([low, high])]))
+    edges = [jet[0].edges(low, high) for jet, _, _, _ in terms]
+    places = np.unique(np.concatenate([_inside(g, (low, high)) for g in (*grids, *edges)] + [np.array([low, high])]))
     x, w, missed = resolved_points(raw, places)
     norm = float(np.sqrt((w * np.abs(raw(x)) ** 2).sum()))
     if norm == 0 or not np.isfinite(norm):
         raise SheetError(f"the state `{name}` cannot be normalised: it is zero on the domain", mend="check its coefficients")
-    return Prepared(name, lambda y: raw(y) / norm, x, w, missed)
+    slip = sum(float(np.abs(jet[0](x)).max()) * off for jet, _, _, off in terms) / norm
+    return Prepared(name, lambda y: raw(y) / norm, x, w, missed, lambda y, k: raw(y, k) / norm, places, slip=slip)
 
 
-def _level(model: Model, spectrum: Spectrum, index: int, path: str | None, folder: Path | None) -> tuple[Any, int]:
-    """Return the states a level belongs to and its row there."""
+Jet = tuple[Function, Function, Function]
+
+
+def _jet_of(function: Function) -> Jet:
+    """Return a function and its first two derivatives between jumps."""
+    slope = regular_slope(function)
+    return function, slope, regular_slope(slope)
+
+
+def _product(jet: Jet, states: States, row: int, y: Array, k: int) -> Values:
+    """Return the k-th derivative of a coefficient times an eigenstate, by the product rule."""
+    if jet[0].constant is not None:
+        return complex(jet[0].constant) * states.evaluate(y, k)[row]
+    parts = [math.comb(k, j) * jet[j](y) * states.evaluate(y, k - j)[row] for j in range(k + 1)]
+    return np.asarray(np.sum(parts, axis=0))
+
+
+def _level(model: Model, spectrum: Spectrum, index: int, path: str | None, folder: Path | None) -> tuple[States, int, float]:
+    """Return the states a level belongs to, its row there, and a bound on its error in norm."""
     if path is None:
         rows = [row for row, level in enumerate(spectrum.levels) if level.index == index]
-        if not rows:
+        if not rows or spectrum.states is None:
             raise SheetError(
                 f"level({index}) is not among the {len(spectrum.levels)} levels computed", mend="ask for more with -n"
             )
-        return spectrum.states, rows[0]
+        return spectrum.states, rows[0], float(slips(spectrum)[rows[0]])
+    other = other_sheet(model, path, folder)
+    found = solve(other, count=index + 1)
+    if found.states is None or len(found.levels) <= index:
+        raise SheetError(f"{path} has no level({index})", mend=f"it has {len(found.levels)}")
+    return found.states, index, float(slips(found)[index])
+
+
+def other_sheet(model: Model, path: str, folder: Path | None = None) -> Model:
+    """Return the model of another sheet, its path relative to `folder`; SheetError where coordinate or units differ."""
     place = (folder or Path()) / path
     other = build(parse(_text(place)), folder=place.parent)
     if other.domain.coordinate != model.domain.coordinate or _units(other) != _units(model):
         raise SheetError(f"{path} has another coordinate or other units than this sheet", mend="give both sheets the same")
-    found = solve(other, count=index + 1)
-    return found.states, index
+    return other
 
 
 def _units(model: Model) -> tuple[str, str, str]:

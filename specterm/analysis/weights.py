@@ -8,7 +8,7 @@ from pathlib import Path
 
 import numpy as np
 
-from specterm.analysis.prepared import Prepared, prepare
+from specterm.analysis.prepared import Prepared, prepare, slips
 from specterm.arrays import Array, Values
 from specterm.model import Model
 from specterm.spectrum import Spectrum
@@ -81,9 +81,8 @@ def _amplitudes(states: States, count: int, prepared: Prepared) -> Values:
 
 def _errors(spectrum: Spectrum, prepared: Prepared, amplitudes: Values) -> Array:
     """Return bounds on the errors of the weights: from the eigenstate's own error, the rule of integration and rounding."""
-    off = spectrum.vector_error if len(spectrum.vector_error) else np.full(len(amplitudes), 1e-10)
     size = np.abs(amplitudes)
-    slip = off + np.sqrt(max(prepared.missed, 0.0)) + ROUNDING
+    slip = slips(spectrum) + prepared.slip + np.sqrt(max(prepared.missed, 0.0)) + ROUNDING
     errors: Array = 2 * size * slip + slip**2
     return errors
 
