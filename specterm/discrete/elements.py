@@ -87,7 +87,7 @@ def grid(mesh: Mesh, coefficients: Coefficients) -> Grid:
 def _powered(mesh: Mesh, coefficients: Coefficients, side: int, end: Edge) -> tuple[Array, ...]:
     """Return x, weights, factor, K, W, the edge term, values and slopes of an element with a power taken out."""
     power = end.power or 0.0
-    beta = max(0.0, 2 * power + end.alpha - 1)
+    beta = 2 * power + end.alpha - 1
     points = mesh.order + EXTRA_POINTS
     t, w = gauss_jacobi(points, beta)
     h = mesh.lengths[side]

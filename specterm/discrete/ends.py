@@ -84,7 +84,7 @@ def near_end(problem: Problem, side: int) -> NearEnd:
     if power > STEEP:
         return NearEnd("steep")
     if kind == "free" and strength == 0 and alpha < 1:
-        return NearEnd("free")
+        return NearEnd("free") if alpha < 1e-6 else NearEnd("power", 0.0, alpha)
     return NearEnd("power", power, alpha)
 
 
@@ -143,14 +143,17 @@ def _strength(
 def _limit_at(problem: Problem, end: float, sign: float, shortest: float) -> float:
     """Return the limit of V d^2 / K from three short distances by Aitken's extrapolation: exact for c + a d^q.
 
-    The distances are those of the places as rounded, so that no rounding of the place enters.
+    The distances are those of the places as rounded, so that no rounding of the place enters. Where noise grows towards the
+    end (the place of the singularity is itself rounded) the answer is nan.
     """
     x = end + sign * shortest * np.array([16.0, 4.0, 1.0])
     with np.errstate(all="ignore"):
         far, middle, near = problem.potential(x) * (x - end) ** 2 / problem.stiffness(x)
         first, second = middle - far, near - middle
-    if not abs(second) > 8 * np.finfo(float).eps * abs(near) or abs(second) >= abs(first):
+    if not abs(second) > 8 * np.finfo(float).eps * abs(near):
         return float(near)
+    if abs(second) >= abs(first):
+        return math.nan
     return float(near - second * second / (second - first))
 
 

@@ -172,7 +172,7 @@ def unseen(mesh: Mesh, here: Grid, coefficients: Coefficients) -> tuple[Array, A
         for side, end, place in ((0, mesh.left, mesh.places[0]), (-1, mesh.right, mesh.places[-1])):
             if end.power is not None:
                 distance = np.abs(here.x[side] - place) / mesh.lengths[side]
-                beta = max(0.0, 2 * end.power + end.alpha - 1)
+                beta = 2 * end.power + end.alpha - 1
                 for part, values, power in ((parts[0], potential, 1 - end.alpha), (parts[1], stiffness, -end.alpha)):
                     part[side] = _high_powered(values[side] * distance**power, beta)
     return parts[0], parts[1]

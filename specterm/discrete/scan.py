@@ -39,6 +39,9 @@ def scan(problem: Problem) -> Scan:
     x = _with_minima(problem, _places(problem))
     with np.errstate(all="ignore"):
         stiffness, potential = problem.stiffness(x), problem.potential(x)
+    lost = np.isnan(potential)
+    lone = lost & ~np.append(lost[1:], False) & ~np.append(False, lost[:-1])
+    x, stiffness, potential = x[~lone], stiffness[~lone], potential[~lone]
     good = _trusted(x, stiffness, potential, problem)
     x, stiffness, potential = x[good], stiffness[good], potential[good]
     _refuse_poles(problem, x, potential)

@@ -10,12 +10,15 @@ import numpy as np
 from specterm.arrays import Array
 from specterm.discrete.elements import residual_share
 from specterm.discrete.meshing import unseen
-from specterm.discrete.reference import end_slopes
+from specterm.discrete.quadrature import gauss_jacobi
+from specterm.discrete.reference import end_slopes, functions
 from specterm.spectrum.setting import Setting
 from specterm.spectrum.vectors import Solved
 
 SAFETY = 4.0
 """Factor on the hierarchical estimate, for what it leaves out: higher degrees, and the coupling between elements."""
+POWERED = 30.0
+"""Further factor in an element with a power taken out: what is left there may not be smooth, and higher degrees help slowly."""
 EPS = float(np.finfo(float).eps)
 NOISE = 12 * EPS
 """Rounding of a Rayleigh quotient relative to its parts; three times the largest seen over the reference cases."""
@@ -63,6 +66,10 @@ def _part(solved: Solved, some: slice) -> Solved:
 
 def _block(ready: Setting, solved: Solved) -> Accuracy:
     residual = residual_share(solved.condensed, solved.coefficients, solved.values)
+    mesh = solved.condensed.mesh
+    for side, end in ((0, mesh.left), (-1, mesh.right)):
+        if end.power is not None:
+            residual[side] *= POWERED
     return Accuracy(residual, _unseen_share(ready, solved), _cut(ready, solved), _noise(ready, solved))
 
 
@@ -74,7 +81,24 @@ def _unseen_share(ready: Setting, solved: Solved) -> Array:
     slopes = np.einsum("eq,eqn->en", here.mass, np.abs(here.slopes[..., :n] @ solved.coefficients) ** 2)
     potential, stiffness = unseen(solved.condensed.mesh, here, ready.coefficients)
     share: Array = potential[:, None] * density + stiffness[:, None] * slopes
+    for side, end in ((0, solved.condensed.mesh.left), (-1, solved.condensed.mesh.right)):
+        if end.power is not None and end.alpha % 1:
+            size = np.abs(solved.values) + float(np.abs(here.potential[side] / here.mass[side]).max())
+            share[side] += size * np.abs(_own_mass(solved, side, end.power) - density[side])
     return share
+
+
+def _own_mass(solved: Solved, side: int, power: float) -> Array:
+    """Return the integral of |psi|^2 over a powered end element by the rule made for it: (levels,).
+
+    The element's rule is made for K; where K goes with a broken power of the distance it misses some of the mass.
+    """
+    mesh = solved.condensed.mesh
+    points = solved.condensed.grid.x.shape[1]
+    t, w = gauss_jacobi(points, 2 * power)
+    values, _ = functions(mesh.order, t if side == 0 else -t)
+    psi = np.abs(values[:, : mesh.order + 1] @ solved.coefficients[side]) ** 2
+    return mesh.lengths[side] / 2 * 0.25**power * (w @ psi)
 
 
 def _cut(ready: Setting, solved: Solved) -> Array:
@@ -116,7 +140,9 @@ def _noise(ready: Setting, solved: Solved) -> Array:
         size = np.abs(here.potential / here.mass)
     height = np.einsum("eq,eqn->n", NOISE * size + potential, density)
     motion = np.einsum("eq,eqn->n", NOISE + stiffness.reshape(here.x.shape), slopes)
-    least = EPS * np.abs(solved.values + ready.floor) + 1e-3 * EPS * np.abs(solved.values).max(initial=0.0)
+    mesh = solved.condensed.mesh
+    gentle = float(np.min(here.kinetic / here.mass * (mesh.lengths[:, None] / 2) ** 2)) * (np.pi / np.sum(mesh.lengths)) ** 2
+    least = EPS * np.abs(solved.values + ready.floor) + 1e-3 * EPS * max(np.abs(solved.values).max(initial=0.0), gentle)
     return height + motion + least + _misplaced(ready, solved, density, slopes) + _mispowered(solved, slopes)
 
 

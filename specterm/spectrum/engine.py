@@ -146,7 +146,8 @@ def _nearest(ready: Setting, near: float, wanted: int, bound: int | None) -> tup
     guess = max(0.0, float(semiclassical_count(ready.look, np.array([near]), ready.extra)[0]))
     margin = wanted + 3 + 0.02 * guess
     top = max(ready.energy(guess + margin), near)
-    top, _, condensed = first_mesh(ready, Request(0, 0, 1e-8, lambda: False, lambda _: None), top, None)
+    enough = int(guess) + wanted if bound is None else min(int(guess) + wanted, bound - 1)
+    top, _, condensed = first_mesh(ready, Request(0, enough, 1e-8, lambda: False, lambda _: None), top, None)
     below = int(count_below(condensed, np.array([near - ready.floor]))[0])
     most = int(count_below(condensed, np.array([top - ready.floor]))[0])
     first = max(0, below - wanted)
@@ -226,7 +227,7 @@ def _spectrum(ready: Setting, refined: Refined, first: int, bound: int | None, t
     for k, value in enumerate(values):
         index = first + k
         boxed = bound is not None and index >= bound
-        error = None if boxed else float(errors[k])
+        error = None if boxed else _near_threshold(float(errors[k]), ready.threshold - ready.floor - float(solved.values[k]))
         kind = "box" if boxed else _kind(problem.bloch, error, scales[k], tolerance)
         levels.append(Level(index, float(value), error, kind, index if nodes_known else None, parity[k]))
     if problem.sign < 0:
@@ -242,9 +243,17 @@ def _spectrum(ready: Setting, refined: Refined, first: int, bound: int | None, t
     )  # fmt: skip
 
 
+def _near_threshold(error: float, depth: float) -> float:
+    """Return the error of a level `depth` below the threshold: where it is not far smaller, the state itself is uncertain."""
+    return error + depth if error > 0.1 * depth > 0 else error
+
+
 def _scales(solved: Solved) -> Array:
     """Return what the errors are judged by: the distance to the potential's minimum, or to the next level if larger."""
+    mesh, here = solved.condensed.mesh, solved.condensed.grid
+    stiffness = float(np.min(here.kinetic / here.mass * (mesh.lengths[:, None] / 2) ** 2))
     scale = np.maximum(np.abs(solved.values), solved.kinetic)
+    scale = np.maximum(scale, stiffness * (np.pi / (mesh.places[-1] - mesh.places[0])) ** 2)
     steps = np.diff(solved.values)
     scale[:-1] = np.maximum(scale[:-1], steps)
     scale[1:] = np.maximum(scale[1:], steps)
@@ -270,6 +279,7 @@ def _verified(ready: Setting, refined: Refined, first: int) -> tuple[bool, Array
     numbers = first + np.arange(len(values))
     rounding = 16 * np.finfo(float).eps * float(np.abs(again.stiff[:, (0, 1), (0, 1)]).max())
     blur = np.maximum(COUNTED * np.abs(values), np.minimum(rounding, BLURRED * np.abs(values)))
+    blur = np.maximum(blur, COUNTED * float(_scales(refined.solved).max()))
     slack = np.maximum(4 * np.where(np.isfinite(error), error, 0.0), blur) + 64 * np.spacing(np.abs(values))
     start = slack.copy()
     for _ in range(14):

@@ -162,7 +162,10 @@ def _low(condensed: Condensed, first: int, high: float) -> float:
 
 def _targets(solved: Solved, tolerance: float, found: Accuracy) -> Array:
     """Return the error wanted for each level; never below what rounding leaves."""
-    scale = np.maximum(np.abs(solved.values), solved.kinetic)
+    mesh, here = solved.condensed.mesh, solved.condensed.grid
+    width = mesh.places[-1] - mesh.places[0]
+    stiffness = float(np.min(here.kinetic / here.mass * (mesh.lengths[:, None] / 2) ** 2))
+    scale = np.maximum(np.maximum(np.abs(solved.values), solved.kinetic), 1e-3 * stiffness * (np.pi / width) ** 2)
     return np.maximum(OVERSHOOT * tolerance * np.maximum(scale, 1e-3 * scale.max()), found.noise)
 
 

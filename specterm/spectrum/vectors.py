@@ -16,6 +16,8 @@ SETTLED = 1e-12
 """Newton steps smaller than this share of the level end the iteration: so far below `CLOSE` that no neighbour is mixed in."""
 STRAY = 1e-9
 """A Rayleigh quotient this share of the level away from where Newton's method ended: a bad vector, solved again."""
+PAIRED = 1e-6
+"""On a ring, levels closer than this share of theirs are solved together: they come as pairs."""
 GROUP_SWEEPS = 12
 """So many inverse iterations are spent on a group at most."""
 DENSE = 700
@@ -93,8 +95,11 @@ def solve_levels(
 def _merged(condensed: Condensed, parts: list[Part], ruler: Ruler) -> list[Part]:
     """Solve again, as one group, neighbours whose values came out closer than a count can tell apart."""
     runs: list[list[Part]] = []
+    ring = condensed.mesh.phase is not None
     for part in parts:
-        close = runs and part.values[0] - runs[-1][-1].values[-1] <= 3 * ruler.close(float(part.values[0]))
+        value = float(part.values[0])
+        reach = max(3 * ruler.close(value), PAIRED * abs(value - ruler.bottom) if ring else 0.0)
+        close = runs and value - runs[-1][-1].values[-1] <= reach
         if close:
             runs[-1].append(part)
         else:
@@ -171,6 +176,12 @@ def _integral(weights: Array, integrand: Array) -> Array:
     return total
 
 
+def _matrix_integral(functions: Values, weights: Array) -> Values:
+    """Return the integrals of conj(f_i) f_j (elements, points, levels) under weights, summed pairwise over the elements."""
+    parts = np.swapaxes(functions.conj(), 1, 2) @ (weights[:, :, None] * functions)
+    return np.ascontiguousarray(np.moveaxis(parts, 0, -1)).sum(axis=-1)
+
+
 def _edges(condensed: Condensed, coefficients: Values) -> Array:
     """Return the boundary terms of powered end elements for each level."""
     edge = condensed.grid.edge
@@ -185,11 +196,11 @@ def _group(condensed: Condensed, group: Group, ruler: Ruler) -> Part:
     here = condensed.grid
     n = condensed.mesh.order + 1
     psi, slope = here.values[..., :n] @ coefficients, here.slopes[..., :n] @ coefficients
-    mass = np.einsum("eqi,eq,eqj->ij", psi.conj(), here.mass, psi)
-    kinetic = np.einsum("eqi,eq,eqj->ij", slope.conj(), here.kinetic, slope)
+    mass = _matrix_integral(psi, here.mass)
+    kinetic = _matrix_integral(slope, here.kinetic)
     for side, column, edge in ((0, 1, here.edge[0]), (-1, 0, here.edge[1])):
         kinetic = kinetic + edge * np.outer(coefficients[side, column].conj(), coefficients[side, column])
-    form = kinetic + np.einsum("eqi,eq,eqj->ij", psi.conj(), here.potential, psi)
+    form = kinetic + _matrix_integral(psi, here.potential)
     white = np.linalg.inv(np.linalg.cholesky(mass)).conj().T
     inner = white.conj().T @ (form - energy * mass) @ white
     values, mix = np.linalg.eigh((inner + inner.conj().T) / 2)
