@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 import numpy as np
@@ -178,11 +179,12 @@ def energy_for(look: Scan, count: float, extra: Array, floor: float, ceiling: fl
         allowed = np.flatnonzero(look.potential + extra < high)
     part = slice(max(0, int(allowed[0]) - 1), int(allowed[-1]) + 2)
     look, extra = Scan(look.x[part], look.stiffness[part], look.potential[part]), extra[part]
-    while high - low > 0.03 * (high - floor):
+    over = math.inf
+    while over > max(0.5, 0.03 * count) and high - low > 8 * np.spacing(max(abs(high), abs(high - floor))):
         rungs = np.linspace(low, high, 10)
-        reached = semiclassical_count(look, rungs, extra) > count
-        first = max(1, int(np.argmax(reached))) if reached.any() else len(rungs) - 1
-        low, high = float(rungs[first - 1]), float(rungs[first])
+        counts = semiclassical_count(look, rungs, extra)
+        first = max(1, int(np.argmax(counts > count))) if (counts > count).any() else len(rungs) - 1
+        low, high, over = float(rungs[first - 1]), float(rungs[first]), float(counts[first]) - count
     return high
 
 

@@ -32,7 +32,9 @@ def _centre(problem: Problem, solved: Solved) -> float | None:
         reach = min(centre - left, right - centre)
         if reach <= 0.45 * (right - left):
             continue
+        own = np.abs(np.concatenate([problem.centres, problem.edges]) - centre) * (1 + 1e-9)
         d = reach * np.array([0.9134, 0.7071, 0.5321, 0.3847, 0.2718, 0.1618, 0.0577, 0.0123, 0.0014])
+        d = np.concatenate([d, own[(own > 0) & (own < reach)][:200]])
         if all(_even(f, noise, centre, d) for f, noise in _coefficients(problem)):
             return float(centre)
     return None
