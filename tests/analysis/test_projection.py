@@ -26,7 +26,7 @@ def test_coherent_state(shift, kick):
 
 
 def test_amplitudes_carry_the_phase():
-    """With a = (x0 + i p0)/sqrt(2) amplitudes are e^(i x0 p0/2) e^(-|a|^2/2) a^n/sqrt(n!), times (-1)^n for the levels' signs."""
+    """With a = (x0 + i p0)/sqrt(2) amplitudes are e^(i x0 p0/2) e^(-|a|^2/2) a^n/sqrt(n!), times (-1)^n (signs of levels)."""
     found = weights(f"{OSCILLATOR}state s = exp(-(x-1)^2/2) * exp(i*0.7*x)", "s", 6)
     a = (1 + 0.7j) / math.sqrt(2)
     for weight in found.weights:

@@ -11,8 +11,8 @@ from specterm.discrete.reduce import problem_of
 from specterm.language import parse
 from specterm.model import build
 from specterm.spectrum import solve
-from specterm.spectrum.setting import setting
 from specterm.spectrum.isolate import Ruler
+from specterm.spectrum.setting import setting
 from specterm.spectrum.vectors import solve_levels
 
 EPS = float(np.finfo(float).eps)
