@@ -49,12 +49,12 @@ def elements(asked: Observable, left: Spectrum, right: Spectrum) -> MatrixElemen
     if left.states is None or right.states is None:
         empty = np.zeros((len(rows), len(columns)))
         return MatrixElements(asked.text, rows, columns, empty.astype(complex), empty, asked.unit)
-    rule = _rule(asked, left.states, right.states)
+    rule = shared_rule(asked, left.states, right.states)
     values = np.zeros((len(rows), len(columns)), dtype=complex)
     sizes, reach = np.zeros(values.shape), [np.zeros(len(rows)), np.zeros(len(columns))]
     for start in range(0, len(rule.x), BLOCK):
         x, w = rule.x[start : start + BLOCK], rule.w[start : start + BLOCK]
-        bra, ket = _jets(left.states, x, asked.order), _jets(right.states, x, asked.order)
+        bra, ket = jets(left.states, x, asked.order), jets(right.states, x, asked.order)
         part, size = weak(asked.terms, bra, ket, x, w)
         values, sizes = values + part, sizes + size
         for side, jet in enumerate((bra, ket)):
@@ -67,13 +67,13 @@ def elements(asked: Observable, left: Spectrum, right: Spectrum) -> MatrixElemen
     return MatrixElements(asked.text, rows, columns, values, np.where(lost, np.inf, errors), asked.unit)
 
 
-def _jets(states: States, x: Array, order: int) -> Jet:
+def jets(states: States, x: Array, order: int) -> Jet:
     """Return the derivatives up to the order at the places x, each computed once."""
     known = [states.evaluate(x, k) for k in range(order + 1)]
     return lambda _x, k: known[k]
 
 
-def _rule(asked: Observable, left: States, right: States) -> Rule:
+def shared_rule(asked: Observable, left: States, right: States) -> Rule:
     """Return points that resolve the products of all the states with the functions of the observable."""
     ends = (max(left.places[0], right.places[0]), min(left.places[-1], right.places[-1]))
     functions = [f for f in asked.functions() if f.constant is None]

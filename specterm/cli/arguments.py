@@ -5,8 +5,9 @@ from __future__ import annotations
 import argparse
 import math
 
-VERBS = ("levels", "weights", "figure", "check", "presets")
-LATER = ("expectation", "transitions", "sensitivities", "sweep", "measure", "evolve", "fit")
+VERBS = ("levels", "weights", "expectation", "transitions", "measure", "evolve", "figure", "check", "presets")
+LATER = ("sensitivities", "sweep", "fit")
+MOST = 1_000_000
 GLYPHS = ("braille", "block", "ascii")
 
 _SHEET = "a sheet's file, a preset's name, or - for standard input"
@@ -29,6 +30,11 @@ def parser() -> argparse.ArgumentParser:
     _with_sheet(verbs.add_parser("levels", help="the levels, with error and kind"), solving=True)
     weights = _with_sheet(verbs.add_parser("weights", help="projection weights of a prepared state"), solving=True)
     weights.add_argument("state", metavar="STATE", help="a state of the sheet, or 'level(3)'")
+    weights.add_argument("--captured", type=_share, metavar="SHARE", help="as many levels as hold this share, such as 0.999")
+    _expectation(verbs.add_parser("expectation", help="mean and spread of an observable"))
+    _transitions(verbs.add_parser("transitions", help="lines between levels, with strengths"))
+    _measure(verbs.add_parser("measure", help="a sequence of measurements on a prepared state"))
+    _evolve(verbs.add_parser("evolve", help="survival probability and means at given times"))
     figure = _with_sheet(
         verbs.add_parser("figure", help="potential, levels and eigenstates as a text figure"), solving=True, data=False
     )
@@ -37,18 +43,66 @@ def parser() -> argparse.ArgumentParser:
     figure.add_argument("--view", choices=("psi", "density", "levels"), default="psi", help="what is drawn at each level")
     figure.add_argument("--width", type=_size(20), default=100, metavar="W", help="columns (100)")
     figure.add_argument("--height", type=_size(5), default=32, metavar="H", help="rows (32)")
-    figure.add_argument("--glyphs", choices=GLYPHS, help="what the curves are made of (by the locale)")
+    _with_glyphs(figure)
     _with_sheet(verbs.add_parser("check", help="well formed, Hermitian, bounded below?"), solving=False)
     presets = verbs.add_parser("presets", help="the sheets that come along, one a line")
     _with_output(presets)
     return whole
 
 
+def _expectation(one: argparse.ArgumentParser) -> None:
+    """Add what `expectation` takes."""
+    _with_sheet(one, solving=True)
+    one.add_argument("observable", metavar="OBSERVABLE", help="a name of the sheet or an expression, such as x or 'p^2'")
+    one.add_argument("--level", type=_size(0), metavar="N", help="in this level (0)")
+    one.add_argument("--state", metavar="STATE", help="in this prepared state")
+    one.add_argument("--with", dest="other", metavar="OBSERVABLE", help="a second one: product of spreads, commutator")
+    one.add_argument("--matrix", action="store_true", help="the matrix between the levels instead, with a map of it")
+    _with_size(one, 100, 24)
+
+
+def _transitions(one: argparse.ArgumentParser) -> None:
+    """Add what `transitions` takes."""
+    _with_sheet(one, solving=True)
+    one.add_argument("--from", dest="start", type=_level_or_all, metavar="N", help="lines from this level (the lowest), or all")
+    one.add_argument("--dipole", metavar="OBSERVABLE", help="the dipole (the coordinate)")
+    one.add_argument("--into", metavar="FILE", help="lines into the levels of this other sheet (Franck-Condon factors)")
+    one.add_argument("--least", type=_number, metavar="F", help="only lines at least this strong")
+    one.add_argument("--temperature", type=_number, metavar="T", help="thermal populations, in K (in energy without units)")
+    one.add_argument("--broadening", type=_positive, metavar="E", help="full width of a line in the figure")
+    one.add_argument("--shape", choices=("lorentz", "gauss"), default="lorentz", help="of a line in the figure (lorentz)")
+    _with_size(one, 100, 20)
+
+
+def _measure(one: argparse.ArgumentParser) -> None:
+    """Add what `measure` takes."""
+    _with_sheet(one, solving=True)
+    one.add_argument("state", metavar="STATE", help="a state of the sheet, or 'level(3)'")
+    one.add_argument("observables", nargs="+", metavar="OBSERVABLE", help="measured one after the other")
+    one.add_argument("--seed", type=_size(0), metavar="K", help="of the random draw; the same seed gives the same record")
+    one.add_argument("--choose", metavar="V,W", help="outcomes taken instead of drawn, the nearest to each value; - draws")
+    one.add_argument("--runs", type=_size(1), metavar="N", help="repeat the whole sequence and count")
+    one.add_argument("--after", type=_number, default=0.0, metavar="T", help="free evolution between two measurements (0)")
+    one.add_argument("--bins", type=_size(2), metavar="N", help="about so many bins for a continuous observable (24)")
+    one.add_argument("--bin-width", dest="bin_width", type=_positive, metavar="W", help="or bins of this width")
+    _with_glyphs(one)
+
+
+def _evolve(one: argparse.ArgumentParser) -> None:
+    """Add what `evolve` takes."""
+    _with_sheet(one, solving=True)
+    one.add_argument("state", metavar="STATE", help="a state of the sheet, or 'level(3)'")
+    one.add_argument("--times", type=_times, required=True, metavar="A:B:COUNT", help="from A to B, or a list A,B,C")
+    one.add_argument("--observable", metavar="OBSERVABLE", help="whose mean is followed (the coordinate)")
+    one.add_argument("--density", action="store_true", help="|psi|^2 too; the last one is drawn")
+    _with_size(one, 100, 16)
+
+
 def interface_parser() -> argparse.ArgumentParser:
     """Return the parser of `specterm [SHEET] ...`, which opens the terminal interface."""
     one = argparse.ArgumentParser(prog="specterm", add_help=False)
     _with_sheet(one, solving=True, data=False)
-    one.add_argument("--glyphs", choices=GLYPHS, help="what the curves are made of (by the locale)")
+    _with_glyphs(one)
     one.add_argument("--mouse", action="store_true", help="let the mouse in (text can then not be selected)")
     return one
 
@@ -68,6 +122,17 @@ def _with_sheet(one: argparse.ArgumentParser, *, solving: bool, data: bool = Tru
     return one
 
 
+def _with_glyphs(one: argparse.ArgumentParser) -> None:
+    one.add_argument("--glyphs", choices=GLYPHS, help="what the curves are made of (by the locale)")
+
+
+def _with_size(one: argparse.ArgumentParser, width: int, height: int) -> None:
+    """Add the size of the figure under the table."""
+    one.add_argument("--width", type=_size(20), default=width, metavar="W", help=f"columns of the figure ({width})")
+    one.add_argument("--height", type=_size(5), default=height, metavar="H", help=f"rows of the figure ({height})")
+    _with_glyphs(one)
+
+
 def _with_output(one: argparse.ArgumentParser, *, data: bool = True) -> None:
     """Add where and how the result is written."""
     if data:
@@ -82,8 +147,8 @@ def _size(least: int):  # type: ignore[no-untyped-def]  # noqa: ANN202 - a conve
 
     def whole(text: str) -> int:
         value = int(text)
-        if value < least or value > 1_000_000:
-            raise argparse.ArgumentTypeError(f"{text} is not a number from {least} to 1000000")
+        if value < least or value > MOST:
+            raise argparse.ArgumentTypeError(f"{text} is not a number from {least} to {MOST}")
         return value
 
     whole.__name__ = "whole number"
@@ -106,3 +171,36 @@ def _tolerance(text: str) -> float:
 
 def _indices(text: str) -> tuple[int, ...]:
     return tuple(int(part) for part in text.split(","))
+
+
+def _share(text: str) -> float:
+    value = float(text)
+    if not 0 < value <= 1:
+        raise argparse.ArgumentTypeError(f"{text} is not above 0 and up to 1")
+    return value
+
+
+def _positive(text: str) -> float:
+    value = _number(text)
+    if value <= 0:
+        raise argparse.ArgumentTypeError(f"{text} is not above 0")
+    return value
+
+
+def _level_or_all(text: str) -> str:
+    if text != "all" and not (text.isascii() and text.isdigit() and int(text) < MOST):
+        raise argparse.ArgumentTypeError(f"{text} is neither the number of a level nor `all`")
+    return text
+
+
+def _times(text: str) -> tuple[float, ...]:
+    """Return the numbers of `a:b:count` (both ends included) or of a comma list."""
+    parts = text.split(":")
+    if len(parts) == 1:
+        return tuple(_number(part) for part in text.split(","))
+    if len(parts) != 3:
+        raise argparse.ArgumentTypeError(f"{text} is neither A:B:COUNT nor a comma list")
+    first, last, count = _number(parts[0]), _number(parts[1]), _size(1)(parts[2])
+    if count == 1:
+        return (first,)
+    return tuple(first + (last - first) * (k / (count - 1)) for k in range(count))

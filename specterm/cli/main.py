@@ -5,11 +5,15 @@ from __future__ import annotations
 import argparse
 import os
 import sys
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
+from typing import TYPE_CHECKING
 
 from specterm.cli.arguments import LATER, VERBS, interface_parser, parser
 from specterm.cli.source import Source, overrides, read_source
 from specterm.errors import SpectermError, describe, printable
+
+if TYPE_CHECKING:
+    from specterm.cli.answer import Answer
 
 
 def main(words: Sequence[str]) -> int:  # noqa: PLR0911 - one return for each way out
@@ -48,7 +52,8 @@ def main(words: Sequence[str]) -> int:  # noqa: PLR0911 - one return for each wa
 
 def _sheet_of(arguments: argparse.Namespace) -> tuple[str | None, str | None]:
     """Return sheet and text; with -e the word that stands where the sheet would is the verb's own first argument."""
-    if arguments.text is not None and arguments.sheet is not None and getattr(arguments, "state", "") is None:
+    if arguments.text is not None and arguments.sheet is not None and arguments.verb == "measure":
+        arguments.observables = [arguments.state, *arguments.observables]
         arguments.state, arguments.sheet = arguments.sheet, None
     return arguments.sheet, arguments.text
 
@@ -79,14 +84,32 @@ def _presets(arguments: argparse.Namespace) -> int:
 
 def _run(arguments: argparse.Namespace, source: Source) -> int:
     """Run a verb on a sheet."""
-    from specterm.cli import verbs  # noqa: PLC0415 - heavy
     from specterm.cli.output import deliver  # noqa: PLC0415
 
-    answer = getattr(verbs, arguments.verb)(arguments, source)
+    answer = _verb(arguments.verb)(arguments, source)
     deliver(answer.text, arguments.output)
     for warning in dict.fromkeys(answer.warnings):
         _tell(f"note: {warning}")
     return int(answer.status)
+
+
+def _verb(name: str) -> Callable[[argparse.Namespace, Source], Answer]:
+    """Return the function of a verb; each is imported when it is run."""
+    if name == "weights":
+        from specterm.cli.weights import weights as found  # noqa: PLC0415
+    elif name == "expectation":
+        from specterm.cli.expectation import expectation as found  # noqa: PLC0415
+    elif name == "transitions":
+        from specterm.cli.transitions import transitions as found  # noqa: PLC0415
+    elif name == "measure":
+        from specterm.cli.measure import measure as found  # noqa: PLC0415
+    elif name == "evolve":
+        from specterm.cli.evolve import evolve as found  # noqa: PLC0415
+    else:
+        from specterm.cli import verbs  # noqa: PLC0415
+
+        found = getattr(verbs, name)
+    return found
 
 
 def _interface(arguments: argparse.Namespace, source: Source | None) -> int:
@@ -114,11 +137,11 @@ def _interface(arguments: argparse.Namespace, source: Source | None) -> int:
 
 def _as_text(arguments: argparse.Namespace, source: Source) -> int:
     """Print levels and figure, and say why there is no screen."""
-    from specterm.cli import verbs  # noqa: PLC0415 - heavy
+    from specterm.cli import answer, verbs  # noqa: PLC0415 - heavy
     from specterm.cli.output import deliver  # noqa: PLC0415
 
-    model = verbs.model_of(arguments, source)
-    spectrum = verbs.solved(arguments, model)
+    model = answer.model_of(arguments, source)
+    spectrum = answer.solved(arguments, model)
     options = argparse.Namespace(levels=None, state=None, width=100, height=32, view="psi", glyphs=arguments.glyphs)
     parts = [verbs.levels_text(model, spectrum), "", verbs.figure_text(options, source, model, spectrum)]
     deliver("\n".join(parts), arguments.output)

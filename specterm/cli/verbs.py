@@ -3,65 +3,25 @@
 from __future__ import annotations
 
 import argparse
-import locale
-from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
+from specterm.cli.answer import (
+    Answer,
+    expression_of,
+    glyphs_of,
+    model_of,
+    solved,
+    status_of,
+    units_of,
+)
 from specterm.cli.output import to_csv, to_json
-from specterm.cli.progress import Progress
-from specterm.cli.source import Source, overrides
+from specterm.cli.source import Source
 from specterm.errors import PhysicsError, SheetError, SpectermError, position
-from specterm.language import parse
-from specterm.language.printing import format_expression
-from specterm.model import Model, build
+from specterm.model import Model
 from specterm.session.presets import names
 
 if TYPE_CHECKING:
     from specterm.spectrum import Spectrum
-
-
-@dataclass(frozen=True)
-class Answer:
-    """What a verb has to say, and the exit status that goes with it."""
-
-    text: str
-    status: int = 0
-    warnings: tuple[str, ...] = ()
-
-
-def model_of(arguments: argparse.Namespace, source: Source) -> Model:
-    """Return the sheet made ready."""
-    return build(parse(source.text), folder=source.folder, overrides=overrides(arguments.overrides))
-
-
-def solved(arguments: argparse.Namespace, model: Model, least: int | None = None) -> Spectrum:
-    """Return the levels asked for, or at least `least`; progress goes to standard error when the work outlasts a second."""
-    from specterm.spectrum import solve  # noqa: PLC0415 - `check` and `presets` do without it
-
-    count = arguments.count
-    if least is not None:
-        count = max(least, count or least)
-    with Progress() as progress:
-        return solve(model, count=count, near=arguments.near, tolerance=arguments.tol, progress=progress.tell)
-
-
-def _status(spectrum: Spectrum) -> int:
-    """Return 1 where a level asked for is unresolved, or the count does not agree."""
-    return int(any(level.kind == "unresolved" for level in spectrum.levels) or not spectrum.complete)
-
-
-def expression_of(model: Model) -> str:
-    """Return the operator as the sheet writes it."""
-    for definition in model.sheet.definitions:
-        if definition.name == model.main:
-            return f"{model.main} = {format_expression(definition.expression)}"
-    return model.main
-
-
-def units_of(model: Model) -> dict[str, str]:
-    """Return the names of the units, empty where the sheet is dimensionless."""
-    units = model.units
-    return {"energy": units.energy, "length": units.length, "mass": units.mass, "time": units.time}
 
 
 def levels(arguments: argparse.Namespace, source: Source) -> Answer:
@@ -75,7 +35,7 @@ def levels(arguments: argparse.Namespace, source: Source) -> Answer:
         text = to_csv(heading, [tuple(getattr(level, name) for name in heading) for level in spectrum.levels])
     else:
         text = levels_text(model, spectrum)
-    return Answer(text, _status(spectrum), spectrum.notes)
+    return Answer(text, status_of(spectrum), spectrum.notes)
 
 
 def levels_data(model: Model, spectrum: Spectrum) -> dict[str, Any]:
@@ -118,61 +78,12 @@ def levels_text(model: Model, spectrum: Spectrum) -> str:
     return "\n".join([expression_of(model), *table, plain([trust_line(spectrum, units, 1000)]).rstrip()])
 
 
-def weights(arguments: argparse.Namespace, source: Source) -> Answer:
-    """Answer `weights`."""
-    from specterm.analysis import project  # noqa: PLC0415 - heavy
-
-    model = model_of(arguments, source)
-    state = model.states.get(arguments.state)
-    own = [index for _, index, path in state.levels if path is None] if state is not None else []
-    spectrum = solved(arguments, model, max(own) + 1 if own else None)
-    found = project(model, spectrum, arguments.state, source.folder)
-    if arguments.json:
-        text = to_json(
-            {
-                "state": found.state,
-                "weights": [
-                    {"index": w.index, "value": w.value, "weight": w.weight, "error": w.error, "amplitude": w.amplitude}
-                    for w in found.weights
-                ],
-                "captured": found.captured,
-                "mean": found.mean,
-                "spread": found.spread,
-                "notes": list(found.notes),
-            }
-        )
-    elif arguments.csv:
-        rows = [(w.index, w.value, w.weight, w.error, w.amplitude.real, w.amplitude.imag) for w in found.weights]
-        text = to_csv(("index", "value", "weight", "error", "amplitude_re", "amplitude_im"), rows)
-    else:
-        text = _weights_text(model, spectrum, found)
-    return Answer(text, _status(spectrum), (*spectrum.notes, *found.notes))
-
-
-def _weights_text(model: Model, spectrum: Spectrum, found: Any) -> str:  # noqa: ANN401 - analysis.Weights, imported late
-    """Return weights as the level table with a bar in each row."""
-    from specterm.views.level_table import Weighing, text_table  # noqa: PLC0415 - only text needs the views
-    from specterm.views.numbers import short, with_unit  # noqa: PLC0415
-
-    weighing = Weighing(
-        found.state, {w.index: w.weight for w in found.weights}, {w.index: w.error for w in found.weights}, found.captured
-    )
-    energy = model.units.energy
-    mean, spread = with_unit(short(found.mean), energy), with_unit(short(found.spread), energy)
-    lines = [
-        f"{found.state} on {expression_of(model)}",
-        text_table(spectrum.levels, energy, weighing, glyphs_of(None)),
-        "   ".join([f"captured {found.captured:.10g}", f"mean {mean}", f"spread {spread}"]),
-    ]
-    return "\n".join(lines)
-
-
 def figure(arguments: argparse.Namespace, source: Source) -> Answer:
     """Answer `figure`."""
     model = model_of(arguments, source)
     wanted = arguments.levels
     spectrum = solved(arguments, model, max(wanted) + 1 if wanted else None)
-    return Answer(figure_text(arguments, source, model, spectrum), _status(spectrum), spectrum.notes)
+    return Answer(figure_text(arguments, source, model, spectrum), status_of(spectrum), spectrum.notes)
 
 
 def figure_text(arguments: argparse.Namespace, source: Source, model: Model, spectrum: Spectrum) -> str:
@@ -188,13 +99,6 @@ def figure_text(arguments: argparse.Namespace, source: Source, model: Model, spe
         model, spectrum, arguments.width, arguments.height,
         only=only, weights=weights, mode=arguments.view, glyphs=glyphs_of(arguments.glyphs),
     )  # fmt: skip
-
-
-def glyphs_of(wanted: str | None) -> str:
-    """Return what curves are made of: as asked, else braille where the locale writes UTF-8, else ascii."""
-    if wanted:
-        return wanted
-    return "braille" if "utf" in locale.getpreferredencoding(do_setlocale=False).lower() else "ascii"
 
 
 def check(arguments: argparse.Namespace, source: Source) -> Answer:

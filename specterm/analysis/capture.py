@@ -1,0 +1,51 @@
+"""As many levels as it takes to hold a given share of a prepared state."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from pathlib import Path
+
+from specterm.analysis.weights import Weights, project
+from specterm.errors import PhysicsError
+from specterm.model import Model
+from specterm.spectrum import Spectrum, solve
+
+FIRST = 16
+MOST_LEVELS = 1_000
+"""Where it stops; a state with a kink needs this many for about 1 - 1e-8, one that jumps for about 1 - 1e-3."""
+
+
+def captured_by(
+    model: Model,
+    state: str,
+    share: float,
+    folder: Path | None = None,
+    *,
+    tolerance: float = 1e-8,
+    least: int = 1,
+    most: int = MOST_LEVELS,
+    should_stop: Callable[[], bool] | None = None,
+    progress: Callable[[str], None] | None = None,
+) -> tuple[Spectrum, Weights]:
+    """Return the fewest levels, doubled from 16 on, that hold at least `share` of a state, and its weights on them.
+
+    Where the bound levels hold less, or `most` do, what there is comes back: `Weights.captured` says how much.
+    """
+    if not 0 < share <= 1:
+        raise PhysicsError(f"a share of {share:g} makes no sense", mend="give one above 0 and up to 1, such as 0.999")
+    count = max(FIRST, least)
+    while True:
+        spectrum = solve(model, count=count, tolerance=tolerance, should_stop=should_stop, progress=progress)
+        if _has_box(spectrum) and spectrum.bound:
+            spectrum = solve(
+                model, count=max(spectrum.bound, least), tolerance=tolerance, should_stop=should_stop, progress=progress
+            )
+        found = project(model, spectrum, state, folder)
+        bound_only = spectrum.bound is not None and len(spectrum.levels) >= spectrum.bound
+        if found.captured >= share or count >= most or bound_only or not spectrum.levels:
+            return spectrum, found
+        count = min(2 * count, most)
+
+
+def _has_box(spectrum: Spectrum) -> bool:
+    return any(level.kind == "box" for level in spectrum.levels)

@@ -1,0 +1,86 @@
+"""What all verbs share: the answer they give, the model and the levels they start from, names and units."""
+
+from __future__ import annotations
+
+import argparse
+import locale
+import re
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from specterm.cli.progress import Progress
+from specterm.cli.source import Source, overrides
+from specterm.language import parse
+from specterm.language.printing import format_expression
+from specterm.model import Model, build
+
+if TYPE_CHECKING:
+    from specterm.spectrum import Spectrum
+
+
+@dataclass(frozen=True)
+class Answer:
+    """What a verb has to say, and the exit status that goes with it."""
+
+    text: str
+    status: int = 0
+    warnings: tuple[str, ...] = ()
+
+
+def model_of(arguments: argparse.Namespace, source: Source) -> Model:
+    """Return the sheet made ready."""
+    return build(parse(source.text), folder=source.folder, overrides=overrides(arguments.overrides))
+
+
+def solved(arguments: argparse.Namespace, model: Model, least: int | None = None) -> Spectrum:
+    """Return the levels asked for, or at least `least`; progress goes to standard error when the work outlasts a second."""
+    from specterm.spectrum import solve  # noqa: PLC0415 - `check` and `presets` do without it
+
+    count = arguments.count
+    if least is not None:
+        count = max(least, count or least)
+    with Progress() as progress:
+        return solve(model, count=count, near=arguments.near, tolerance=arguments.tol, progress=progress.tell)
+
+
+def enough(arguments: argparse.Namespace, model: Model, least: int | None) -> Spectrum:
+    """Return the levels asked for, or the usual ones, and more where at least `least` are needed."""
+    found = solved(arguments, model)
+    if least is None or arguments.near is not None or len(found.levels) >= least:
+        return found
+    return solved(arguments, model, least)
+
+
+def least_for(model: Model, state: str) -> int | None:
+    """Return how many levels a state is made of at least: one above the highest it names, None where it names none."""
+    written = re.fullmatch(r"\s*level\(\s*(\d{1,6})\s*\)\s*", state)
+    named = model.states.get(state)
+    own = [index for _, index, path in named.levels if path is None] if named is not None else []
+    numbers = [*own, *([int(written[1])] if written else [])]
+    return max(numbers) + 1 if numbers else None
+
+
+def status_of(spectrum: Spectrum) -> int:
+    """Return 1 where a level asked for is unresolved, or the count does not agree."""
+    return int(any(level.kind == "unresolved" for level in spectrum.levels) or not spectrum.complete)
+
+
+def expression_of(model: Model) -> str:
+    """Return the operator as the sheet writes it."""
+    for definition in model.sheet.definitions:
+        if definition.name == model.main:
+            return f"{model.main} = {format_expression(definition.expression)}"
+    return model.main
+
+
+def units_of(model: Model) -> dict[str, str]:
+    """Return the names of the units, empty where the sheet is dimensionless."""
+    units = model.units
+    return {"energy": units.energy, "length": units.length, "mass": units.mass, "time": units.time}
+
+
+def glyphs_of(wanted: str | None) -> str:
+    """Return what curves are made of: as asked, else braille where the locale writes UTF-8, else ascii."""
+    if wanted:
+        return wanted
+    return "braille" if "utf" in locale.getpreferredencoding(do_setlocale=False).lower() else "ascii"

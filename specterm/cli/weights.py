@@ -1,0 +1,83 @@
+"""The verb `weights`."""
+
+from __future__ import annotations
+
+import argparse
+from dataclasses import replace
+from typing import TYPE_CHECKING
+
+from specterm.cli.answer import Answer, enough, expression_of, glyphs_of, least_for, model_of, status_of
+from specterm.cli.output import to_csv, to_json
+from specterm.cli.progress import Progress
+from specterm.cli.source import Source
+from specterm.model import Model
+
+if TYPE_CHECKING:
+    from specterm.analysis import Weights
+    from specterm.spectrum import Spectrum
+
+
+def weights(arguments: argparse.Namespace, source: Source) -> Answer:
+    """Answer `weights`."""
+    from specterm.analysis import project  # noqa: PLC0415 - heavy
+
+    model = model_of(arguments, source)
+    least = least_for(model, arguments.state)
+    if arguments.captured is not None:
+        spectrum, found = _captured(arguments, source, model, least)
+    else:
+        spectrum = enough(arguments, model, least)
+        found = project(model, spectrum, arguments.state, source.folder)
+    if arguments.json:
+        text = to_json(
+            {
+                "state": found.state,
+                "weights": [
+                    {"index": w.index, "value": w.value, "weight": w.weight, "error": w.error, "amplitude": w.amplitude}
+                    for w in found.weights
+                ],
+                "captured": found.captured,
+                "mean": found.mean,
+                "spread": found.spread,
+                "notes": list(found.notes),
+            }
+        )
+    elif arguments.csv:
+        rows = [(w.index, w.value, w.weight, w.error, w.amplitude.real, w.amplitude.imag) for w in found.weights]
+        text = to_csv(("index", "value", "weight", "error", "amplitude_re", "amplitude_im"), rows)
+    else:
+        text = _weights_text(model, spectrum, found)
+    return Answer(text, status_of(spectrum), (*spectrum.notes, *found.notes))
+
+
+def _captured(arguments: argparse.Namespace, source: Source, model: Model, least: int | None) -> tuple[Spectrum, Weights]:
+    """Return as many levels as it takes to hold the share asked for, and the weights on them."""
+    from specterm.analysis.capture import captured_by  # noqa: PLC0415 - heavy
+
+    with Progress() as progress:
+        spectrum, found = captured_by(
+            model, arguments.state, arguments.captured, source.folder, tolerance=arguments.tol,
+            least=max(least or 1, arguments.count or 1), progress=progress.tell,
+        )  # fmt: skip
+    if found.captured < arguments.captured:
+        short = f"{len(spectrum.levels)} levels hold {found.captured:.10g}, less than the {arguments.captured:g} asked for"
+        found = replace(found, notes=(*found.notes, short))
+    return spectrum, found
+
+
+def _weights_text(model: Model, spectrum: Spectrum, found: Weights) -> str:
+    """Return weights as the level table with a bar in each row."""
+    from specterm.views.level_table import Weighing, text_table  # noqa: PLC0415 - only text needs the views
+    from specterm.views.numbers import short, with_unit  # noqa: PLC0415
+
+    weighing = Weighing(
+        found.state, {w.index: w.weight for w in found.weights}, {w.index: w.error for w in found.weights}, found.captured
+    )
+    energy = model.units.energy
+    mean, spread = with_unit(short(found.mean), energy), with_unit(short(found.spread), energy)
+    lines = [
+        f"{found.state} on {expression_of(model)}",
+        text_table(spectrum.levels, energy, weighing, glyphs_of(None)),
+        "   ".join([f"captured {found.captured:.10g}", f"mean {mean}", f"spread {spread}"]),
+    ]
+    return "\n".join(lines)

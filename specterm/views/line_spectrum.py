@@ -1,0 +1,70 @@
+"""Lines as a spectrum: each broadened to a Lorentz or Gauss curve, summed, with the strongest labelled."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.views.cells import Rows
+from specterm.views.plot import Curve, Label, chart
+
+SHAPES = ("lorentz", "gauss")
+LABELLED = 6
+
+
+@dataclass(frozen=True)
+class Stick:
+    """One line: where, how strong, and a short name."""
+
+    energy: float
+    intensity: float
+    name: str
+
+
+def broadened(sticks: Sequence[Stick], energies: NDArray[np.float64], width: float, shape: str) -> NDArray[np.float64]:
+    """Return the sum of the lines at the energies, each a curve of area `intensity` and full width at half maximum `width`."""
+    places = np.array([stick.energy for stick in sticks])[:, None]
+    sizes = np.array([stick.intensity for stick in sticks])[:, None]
+    half = width / 2
+    if shape == "gauss":
+        sigma = half / np.sqrt(2 * np.log(2))
+        curves = np.exp(-((energies - places) ** 2) / (2 * sigma**2)) / (sigma * np.sqrt(2 * np.pi))
+    else:
+        curves = half / np.pi / ((energies - places) ** 2 + half**2)
+    total: NDArray[np.float64] = (sizes * curves).sum(axis=0)
+    return total
+
+
+def default_width(sticks: Sequence[Stick]) -> float:
+    """Return a broadening that keeps the lines apart: a sixtieth of their range."""
+    places = [stick.energy for stick in sticks]
+    reach = max(places, default=1.0) - min(places, default=0.0)
+    return reach / 60 if reach > 0 else max(1e-3 * abs(max(places, default=1.0)), 1e-300)
+
+
+def line_spectrum(
+    sticks: Sequence[Stick], width: int, height: int, *, broadening: float | None = None, shape: str = "lorentz",
+    unit: str = "", glyphs: str = "braille",
+) -> Rows:  # fmt: skip
+    """Return the spectrum in `height` rows of `width` columns; no rows where there is nothing to draw."""
+    seen = [stick for stick in sticks if stick.intensity > 0]
+    if not seen:
+        return ()
+    wide = broadening or default_width(seen)
+    places = np.array([stick.energy for stick in seen])
+    low, high = float(places.min()) - 6 * wide, float(places.max()) + 6 * wide
+    near = (places[:, None] + wide * np.array([-2, -1, -0.5, -0.2, 0, 0.2, 0.5, 1, 2])).ravel()
+    energies = np.unique(np.concatenate([np.linspace(low, high, 8 * width), near]))
+    total = broadened(seen, energies, wide, shape)
+    strongest = sorted(seen, key=lambda stick: -stick.intensity)[:LABELLED]
+    top = float(total.max())
+    labels = [
+        Label(stick.energy, min(1.0, float(np.interp(stick.energy, energies, total)) / top + 0.08), stick.name, "chosen")
+        for stick in strongest
+    ]
+    across = f"energy ({unit})" if unit else "energy"
+    curve = Curve(energies, total / top, "chosen")
+    return chart([curve], width, height, glyphs=glyphs, xlabel=across, xlim=(low, high), ylim=(0.0, 1.08), labels=labels)

@@ -1,0 +1,43 @@
+"""Curves against time: survival probability, and the mean of an observable between its spreads."""
+
+from __future__ import annotations
+
+import numpy as np
+from numpy.typing import NDArray
+
+from specterm.views.cells import Rows
+from specterm.views.plot import Curve, chart
+
+Floats = NDArray[np.float64]
+
+
+def survival_curve(
+    times: Floats, survival: Floats, width: int, height: int, *, unit: str = "", glyphs: str = "braille"
+) -> Rows:
+    """Return the survival probability against time; no rows for fewer than two times."""
+    if len(times) < 2:
+        return ()
+    order = np.argsort(times)
+    return chart(
+        [Curve(times[order], survival[order], "chosen")], width, height, glyphs=glyphs, title="survival probability",
+        xlabel=f"time ({unit})" if unit else "time", ylim=(0.0, 1.0),
+    )  # fmt: skip
+
+
+def mean_curve(
+    times: Floats, mean: Floats, spread: Floats, name: str, width: int, height: int, *, unit: str = "", glyphs: str = "braille"
+) -> Rows:
+    """Return a mean against time, strong, between mean - spread and mean + spread; no rows for fewer than two times."""
+    if len(times) < 2:
+        return ()
+    order = np.argsort(times)
+    t, m, s = times[order], mean[order], spread[order]
+    curves = [Curve(t, m - s, "other"), Curve(t, m + s, "other"), Curve(t, m, "chosen")]
+    return chart(
+        curves, width, height, glyphs=glyphs, title=f"<{name}> and its spread", xlabel=f"time ({unit})" if unit else "time"
+    )
+
+
+def density_curve(x: Floats, density: Floats, name: str, width: int, height: int, *, glyphs: str = "braille") -> Rows:
+    """Return a density against the coordinate."""
+    return chart([Curve(x, density, "chosen")], width, height, glyphs=glyphs, xlabel=name, title="density")
