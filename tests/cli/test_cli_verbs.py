@@ -161,7 +161,6 @@ STATUSES = [
     (("levels", "no-such-preset"), 2, "no-such-preset"),
     (("levels", "no/such/file.sheet"), 2, "no/such/file.sheet"),
     (("weights", "-e", QUARTIC, "nobody"), 2, "nobody"),
-    (("weights", "-e", QUARTIC, "level(99)"), 2, "ask for more"),
     (("figure", "-e", QUARTIC, "--state", "nobody"), 2, "nobody"),
 ]
 

@@ -76,7 +76,6 @@ def test_near_under_a_threshold():
         solve(model(text), count=3, near=0.5)
 
 
-@pytest.mark.xfail(strict=True, reason="E5: levels far below are returned")
 def test_near_in_a_coulomb_tail():
     """Near an energy with infinitely many levels above it the nearest are found: -1/(n+1)^2 (closed form)."""
     found = spectrum("H = p^2 - 2/x; x in (0, inf)", 2, near=-0.0100001)
