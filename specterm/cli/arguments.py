@@ -4,6 +4,9 @@ from __future__ import annotations
 
 import argparse
 import math
+from typing import NoReturn
+
+from specterm.errors import printable
 
 VERBS = ("levels", "weights", "expectation", "transitions", "measure", "evolve", "figure", "check", "presets")
 LATER = ("sensitivities", "sweep", "fit")
@@ -17,9 +20,17 @@ specterm VERB --help      tells more of a verb
 """
 
 
+class Parser(argparse.ArgumentParser):
+    """A parser whose complaints cannot steer the terminal."""
+
+    def error(self, message: str) -> NoReturn:
+        """Say what is wrong with the command line, cleaned, and leave with status 2."""
+        super().error(printable(message))
+
+
 def parser() -> argparse.ArgumentParser:
     """Return the parser of `specterm VERB ...`."""
-    whole = argparse.ArgumentParser(
+    whole = Parser(
         prog="specterm",
         description="Levels of an operator, with the digits that can be trusted.",
         epilog=_EPILOG,
@@ -100,7 +111,7 @@ def _evolve(one: argparse.ArgumentParser) -> None:
 
 def interface_parser() -> argparse.ArgumentParser:
     """Return the parser of `specterm [SHEET] ...`, which opens the terminal interface."""
-    one = argparse.ArgumentParser(prog="specterm", add_help=False)
+    one = Parser(prog="specterm", add_help=False)
     _with_sheet(one, solving=True, data=False)
     _with_glyphs(one)
     one.add_argument("--mouse", action="store_true", help="let the mouse in (text can then not be selected)")

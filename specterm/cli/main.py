@@ -131,7 +131,7 @@ def _interface(arguments: argparse.Namespace, source: Source | None) -> int:
         )
         return run(source.text if source else "", source.path if source else None, chosen)
     if source is None:
-        raise SystemExit(parser().format_help())
+        return _tell(parser().format_help())
     return _as_text(arguments, source)
 
 

@@ -32,13 +32,15 @@ class FarEnd:
     """An open end.
 
     `limit` is what V tends to (+inf where it confines), `reach` the place beyond which V - limit is lost in rounding. `local`
-    is the distance to there measured by the integral of dx/sqrt(K), `tail` is (V - limit) times its square; `endless` says
+    is the distance to there measured by the integral of dx/sqrt(K), `tail` is (V - limit) times its square, `fall` the power
+    with which V - limit falls there; `endless` says
     that infinitely many levels lie below the limit.
     """
 
     limit: float
     reach: float
     tail: float
+    fall: float
     local: float
     endless: bool
 
@@ -178,7 +180,7 @@ def far_end(problem: Problem, side: int) -> FarEnd:
         finite = np.isfinite(values) & (stiffness > 1e-100) & (stiffness < 1e100)
     if not finite.any():
         if (values == np.inf).any():
-            return FarEnd(math.inf, middle + sign * d[-1], math.inf, math.inf, False)
+            return FarEnd(math.inf, middle + sign * d[-1], math.inf, math.inf, math.inf, False)
         raise PhysicsError(f"the potential has no value beyond {middle:.6g}", mend="narrow the domain")
     start = int(np.argmax(finite))
     stop = len(d) if finite[start:].all() else start + int(np.argmin(finite[start:]))
@@ -187,7 +189,7 @@ def far_end(problem: Problem, side: int) -> FarEnd:
     verdict = _settles(values, first_lost)
     where = "x -> -inf" if side == 0 else "x -> inf"
     if verdict == "rises":
-        return FarEnd(math.inf, middle + sign * d[-1], math.inf, math.inf, False)
+        return FarEnd(math.inf, middle + sign * d[-1], math.inf, math.inf, math.inf, False)
     if verdict == "falls":
         raise PhysicsError(
             f"the operator is not bounded below and has no lowest level: the potential falls without limit at {where}",
@@ -233,20 +235,23 @@ def _tail(values: Array, d: Array, local: Array, middle: float, sign: float) -> 
     rest = values - limit
     seen = np.flatnonzero(np.abs(rest) > max(4e-16 * abs(limit), np.finfo(float).tiny * 1e10))
     if len(seen) == 0:
-        return FarEnd(limit, middle, 0.0, 1.0, False)
+        return FarEnd(limit, middle, 0.0, math.inf, 1.0, False)
     last = int(seen[-1])
     large = np.flatnonzero(np.abs(rest) > 1e-7 * abs(limit)) if limit else seen
     clean = int(large[-1]) if len(large) else last
     power = _fall(rest, local, clean)
-    fastest = max(power, _fall(rest, local, last))
     with np.errstate(all="ignore"):
-        pull = rest * local * local
-    if fastest > 6:
-        return FarEnd(limit, middle + sign * d[min(last + 1, len(d) - 1)], 0.0, 1.0, False)
+        pull = np.nan_to_num(rest * local * local, posinf=math.inf, neginf=-math.inf)
     endless = bool(rest[clean] < 0 and (power < 1.95 or (power < 2.05 and pull[clean] < -0.25)))
-    settled = np.abs(pull[: clean + 1] - (pull[clean] if abs(power - 2) < 0.05 else 0.0)) < 1e-9
-    place = int(np.argmax(settled & (np.arange(clean + 1) > np.argmax(np.abs(pull[: clean + 1]))))) or clean
-    return FarEnd(limit, middle + sign * d[place], float(pull[place]), float(local[place]), endless)
+    size = np.abs(pull[: clean + 1])
+    square = abs(power - 2) < 0.05
+    small = np.abs(pull[: clean + 1] - pull[clean]) < 1e-9 if square else size < 1e-8 * min(1.0, float(size.max()))
+    small &= np.arange(clean + 1) > int(np.argmax(size))
+    if not small.any() and max(power, _fall(rest, local, last)) > 6:
+        return FarEnd(limit, middle + sign * d[min(last + 1, len(d) - 1)], 0.0, math.inf, 1.0, False)
+    place = int(np.argmax(small)) if small.any() else clean
+    fall = 2.0 if square else _fall(rest, local, place)
+    return FarEnd(limit, middle + sign * d[place], float(pull[place]), fall, float(local[place]), endless)
 
 
 def _limit(values: Array) -> float:

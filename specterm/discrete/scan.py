@@ -70,7 +70,8 @@ def _refuse_poles(problem: Problem, x: Array, potential: Array) -> None:
     peaks = peaks[np.argsort(-size[peaks])][:24]
     if len(peaks) == 0:
         return
-    left, right, first = x[peaks - 1], x[peaks + 1], size[peaks]
+    left, right = x[peaks - 1], x[peaks + 1]
+    spans = right - left
     with np.errstate(all="ignore"):
         for _ in range(24):
             places = left[:, None] + (right - left)[:, None] * np.arange(9) / 8
@@ -78,9 +79,13 @@ def _refuse_poles(problem: Problem, x: Array, potential: Array) -> None:
             best = np.clip(np.argmax(values, axis=1), 1, 7)
             rows = np.arange(len(peaks))
             left, right = places[rows, best - 1], places[rows, best + 1]
-    grown = values.max(axis=1) > 1e8 * first
-    if grown.any():
-        place = float(left[grown][0])
+        centre = (left + right) / 2
+        steps = spans[:, None] * 10.0 ** -np.arange(1, 7)
+        both = [np.abs(problem.potential((centre[:, None] + side * steps).ravel()).reshape(steps.shape)) for side in (-1, 1)]
+        slopes = [np.median(np.diff(np.log10(values), axis=1), axis=1) for values in both]
+    poles = (slopes[0] > 0.7) | (slopes[1] > 0.7)
+    if poles.any():
+        place = float(centre[poles][0])
         raise PhysicsError(
             f"the potential is singular near {place:.9g}, inside the domain",
             mend="end the domain there: the two sides do not mix",

@@ -21,8 +21,8 @@ def bound_levels(ready: Setting) -> int | None:
     """Return how many levels lie below the threshold, or None where there are infinitely many.
 
     A tail that falls faster than 1/x^2 lets a function go to zero at no cost far out, so the form on the mesh with free ends
-    has as many negative directions as the whole one has (Sylvester); a 1/x^2 tail of strength c adds its least cost, -K s/X
-    with s = (1 - sqrt(1 + 4 c))/2, at the end X (lengths by the integral of dx/sqrt(K)).
+    has as many negative directions as the whole one has (Sylvester); what is left of a slower tail adds its least cost at
+    the end (`tail_cost`; lengths by the integral of dx/sqrt(K)).
     """
     if any(isinstance(end, FarEnd) and end.limit == ready.threshold and end.endless for end in ready.ends):
         return None
@@ -50,8 +50,31 @@ def _pull(ready: Setting, end: FarEnd, place: float, side: int) -> float:
     """Return the least cost of a tail beyond the place, times |psi|^2 there: sqrt(K) w'/w and K'/4, psi = w/K^(1/4)."""
     at = np.array([place])
     stiffness, slope = float(ready.problem.stiffness(at)[0]), float(ready.problem.slope(at)[0])
-    power = (1 - math.sqrt(max(0.0, 1 + 4 * end.tail))) / 2
-    return -math.sqrt(stiffness) * power / end.local + (slope if side == 1 else -slope) / 4
+    return math.sqrt(stiffness) * tail_cost(end.tail, end.fall) / end.local + (slope if side == 1 else -slope) / 4
+
+
+def tail_cost(tail: float, fall: float) -> float:
+    """Return -t w'(t)/w(t) at the place t for the solution at the threshold that stays bounded, the tail being c/t^fall.
+
+    `tail` is c t^(2 - fall). For an inverse square w = t^s; else w = f(z), z^2 = 4 |tail|/(fall - 2)^2, with the series of the
+    Bessel function J or I of order 1/(fall - 2) without its power (Abramowitz and Stegun 9.1.53); a repulsion that falls more
+    slowly ends all decay like exp(-integral of its root).
+    """
+    if tail == 0 or math.isinf(fall):
+        return 0.0
+    if abs(fall - 2) < 0.05:
+        return -(1 - math.sqrt(max(0.0, 1 + 4 * tail))) / 2
+    if fall < 2:
+        return math.sqrt(max(0.0, tail))
+    order, quarter = 1 / (fall - 2), tail / (fall - 2) ** 2
+    term, value, slope = 1.0, 1.0, 0.0
+    for k in range(1, 200):
+        term *= quarter / (k * (order + k))
+        value += term
+        slope += 2 * k * term
+        if abs(term) < 1e-17 * abs(value):
+            break
+    return (fall - 2) / 2 * slope / value
 
 
 def _reach(ready: Setting, end: FarEnd, side: int) -> float:

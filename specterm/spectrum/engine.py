@@ -30,7 +30,7 @@ from specterm.spectrum.vectors import Solved
 
 FROM_TOP = "the operator has a highest level and no lowest: levels are counted from the top"
 MISSED = "some levels do not reach the tolerance: kind unresolved"
-COUNTED = 1e-12
+COUNTED = 1e-14
 """Counts are trusted to tell levels apart by this share of them, and on meshes graded to tiny elements, by `BLURRED`."""
 BLURRED = 1e-7
 USUAL = 10

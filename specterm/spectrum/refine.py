@@ -23,6 +23,8 @@ from specterm.spectrum.vectors import Solved, solve_levels
 OVERSHOOT = 1e-3
 """Levels are refined to this share of the tolerance: it costs little, and the error left is mostly rounding."""
 ROUNDS = 14
+BOLD = 0.01
+"""Elements are split that hold more than this share of their part of the error wanted: few rounds rather than few elements."""
 LARGE = 20_000
 """From so many elements on, memory is asked for before a mesh is condensed."""
 
@@ -172,7 +174,7 @@ def _targets(solved: Solved, tolerance: float, found: Accuracy) -> Array:
 def _coarse(found: Accuracy, target: Array, condensed: Condensed) -> Flags:
     """Mark the elements that make up too much of the error of some level."""
     over = SAFETY * found.share.sum(axis=0) > 0.5 * target
-    limit = 0.25 * target / (SAFETY * found.share.shape[0])
+    limit = BOLD * target / (SAFETY * found.share.shape[0])
     marked: Flags = np.any(found.share > np.where(over, limit, np.inf), axis=1)
     mesh = condensed.mesh
     small = 1e-9 * (mesh.places[-1] - mesh.places[0])

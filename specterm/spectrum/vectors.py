@@ -85,6 +85,8 @@ def solve_levels(
         if group.size > 1 or not single:
             check()
             parts.append(_group(condensed, group, ruler))
+    if not parts:
+        raise np.linalg.LinAlgError("no level in the bracket")
     parts = _merged(condensed, sorted(parts, key=lambda part: part.first), ruler)
     start = parts[0].first
     take = slice(first - start, last + 1 - start)
@@ -125,7 +127,7 @@ def _newton(condensed: Condensed, groups: list[Group], ruler: Ruler) -> tuple[Ar
     numbers = np.array([g.first for g in groups])
     energies = (low + high) / 2
     slack = 1e-3 * SETTLED * np.abs(energies - ruler.bottom)
-    near = np.zeros(len(groups), dtype=bool)
+    before = np.full(len(groups), np.inf)
     for number in range(120):
         matrix, weight = chain_with_mass(condensed, energies)
         z, misfit, inertia = twisted_vectors(matrix, weight.diagonal)
@@ -136,9 +138,10 @@ def _newton(condensed: Condensed, groups: list[Group], ruler: Ruler) -> tuple[Ar
         trial = energies + step
         inside = (trial > low - slack) & (trial < high + slack) & np.isfinite(step)
         fine = np.minimum(SETTLED * np.abs(trial - ruler.bottom), 1e-4 * np.abs(ruler.top - trial))
-        fine = np.maximum(fine, 4 * np.spacing(np.abs(energies)))
-        near, before = inside & (np.abs(step) <= fine), near
-        settled = (near & (before | (np.abs(step) <= 1e-2 * fine))) | (high - low <= 1e-2 * fine)
+        tiny = 4 * np.spacing(np.abs(energies))
+        near = inside & (np.abs(step) <= np.maximum(fine, tiny))
+        settled = (near & ((np.abs(step) <= tiny) | (np.abs(step) >= 0.25 * before))) | (high - low <= tiny)
+        before = np.abs(step)
         if settled.all():
             break
         halve = ~inside | ((number % 5 == 4) & ~near)
