@@ -51,6 +51,13 @@ def test_moving_on_a_ring():
         assert found.spread_x == pytest.approx(2 * np.pi / np.sqrt(12), rel=1e-10)
 
 
+def test_momentum_is_in_units_of_hbar():
+    """With hbar = 0.37 the momentum of those states is hbar q."""
+    found = moments_of("hbar = 0.37; H = p^2; x in ring(0, 2*pi), phase 0.3", 0)
+    assert found.p == pytest.approx(0.37 * 0.3, rel=1e-10)
+    assert found.spread_p == pytest.approx(0, abs=1e-6)
+
+
 def test_gauge():
     """A vector potential on a line shifts the canonical momentum by its mean and leaves the position."""
     found = moments_of("A = 0.8; H = (p - A)^2/2 + x^2/2; x in (-inf, inf)", 1)

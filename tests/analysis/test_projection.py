@@ -138,6 +138,12 @@ def test_higher_levels_of_another_sheet(tmp_path, index):
     assert max(found.weights, key=lambda w: w.weight).index == index
 
 
+def test_complex_levels():
+    """Beside a vector potential levels are complex: a ground state with the same kick lies wholly in level 0."""
+    found = weights("H = (p - 0.7)^2/2 + x^2/2; x in (-inf, inf)\nstate s = exp(-x^2/2)*exp(i*0.7*x)", "s", 3)
+    assert_weights(found, [1, 0, 0])
+
+
 def test_on_a_ring():
     """exp(3 i x) on a free ring lies in the pair of levels 9, wholly."""
     found = weights("H = p^2; x in ring(0, 2*pi)\nstate s = exp(3*i*x)", "s", 9)

@@ -205,7 +205,7 @@ def many(sheet: str, repeats: int) -> None:
         found = solve(model, count=count)
         worst = max(level.error / level.value for level in found.levels)
         print(
-            f"{count:5d} levels of {sheet}: {1e3 * seconds:8.1f} ms, {found.unknowns} unknowns, worst relative error {worst:.0e}"
+            f"{count:5d} levels of {sheet}: {1e3 * seconds:8.1f} ms, {found.unknowns} unknowns, relative errors to {worst:.0e}"
         )
 
 

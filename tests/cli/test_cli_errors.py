@@ -109,7 +109,6 @@ def test_nothing_steers_the_terminal(run, words):
     assert not steering(ran.out + ran.err)
 
 
-@pytest.mark.xfail(strict=True, reason="E9: argparse echoes unknown words as they are")
 @pytest.mark.parametrize("words", [("levels", "-e", QUARTIC, f"--{STEERING}"), ("check", "a", f"b{STEERING}")])
 def test_unknown_options_do_not_steer_the_terminal(run, words):
     """Control characters in words no option knows do not reach the output either."""

@@ -8,6 +8,8 @@ import sys
 import pytest
 from command_line import QUARTIC, steering
 
+from specterm.cli.output import deliver
+
 ENVIRON = {**os.environ, "PYTHONPATH": os.pathsep.join(sys.path), "OPENBLAS_NUM_THREADS": "1", "PYTHONWARNINGS": "error"}
 
 
@@ -68,6 +70,14 @@ def test_a_failed_write_leaves_no_trace(run, tmp_path, monkeypatch):
     assert os.listdir(tmp_path) == ["out.txt"]
 
 
+def test_results_do_not_steer_the_terminal(capsys):
+    """Whatever a result holds, control characters in it are replaced on standard output."""
+    deliver("a\x1b[2J\x9bb\nc", None)
+    told = capsys.readouterr().out
+    assert not steering(told)
+    assert told.endswith("b\nc\n")
+
+
 def test_notes_go_to_standard_error(run):
     """Notes and warnings do not mix with the result."""
     ran = run("levels", "-e", "H = p^2 - 2/cosh(x)^2; x in (-inf, inf)", "-n", 3, "--json")
@@ -89,7 +99,6 @@ def test_as_a_process_with_errors():
     assert (ran.returncode, ran.stderr) == (1, b"")
 
 
-@pytest.mark.xfail(strict=True, reason="E10: leaves with 1")
 def test_no_sheet_and_no_terminal():
     """With neither a sheet nor a terminal there is nothing to do: the help on standard error, exit 2."""
     ran = process()

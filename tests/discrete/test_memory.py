@@ -35,6 +35,8 @@ def test_a_control_group_counts(monkeypatch, tmp_path):
     assert memory._group("missing", "used", tmp_path) == float("inf")
     monkeypatch.setattr(memory, "_machine", lambda: 5e5)
     assert memory_left() <= 5e5
+    monkeypatch.setattr(memory, "_group", lambda limit, *_: 1e3 if limit == "memory.max" else 1e4)
+    assert memory_left() == 1e3
 
 
 @pytest.mark.parametrize(

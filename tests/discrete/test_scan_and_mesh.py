@@ -6,7 +6,7 @@ from discrete_making import WALL, coefficients, problem
 
 from specterm.discrete.elements import grid
 from specterm.discrete.mesh import Mesh
-from specterm.discrete.meshing import GROWTH, Span, build, graded, resolve
+from specterm.discrete.meshing import GROWTH, build, graded, resolve
 from specterm.discrete.reduce import problem_of
 from specterm.discrete.scan import energy_for, scan, semiclassical_count
 from specterm.errors import PhysicsError
@@ -126,10 +126,12 @@ def test_resolve_splits_narrow_peaks(width):
 
 
 def test_what_the_scan_saw_is_resolved():
-    """A well that no Gauss point of the first mesh meets is found because the scan saw it."""
-    text = "H = p^2 - 1e6*exp(-((x-3.21)/1e-3)^2) + x^2/1e4; x in (-200, 200)"
+    """A well that no Gauss point of a mesh meets is resolved because the scan saw it, and only then."""
+    text = "H = p^2 - 1e6*exp(-((x-3.21)/1e-3)^2) + x^2/1e4; x in (-20, 20)"
     ready = setting(problem(text))
-    mesh = build(ready.problem, ready.look, ready.coefficients, Span(-200, 200, WALL, WALL), 1.0)
+    coarse = Mesh(np.linspace(-20, 20, 21), 12, WALL, WALL)
+    assert len(resolve(coarse, ready.coefficients, 1.0 - ready.floor).places) == 21
+    mesh = resolve(coarse, ready.coefficients, 1.0 - ready.floor, ready.look)
     here = grid(mesh, coefficients(lambda x: -1e6 * np.exp(-(((x - 3.21) / 1e-3) ** 2))))
     assert here.potential.sum() == pytest.approx(-1e3 * np.sqrt(np.pi), rel=1e-8)
 
