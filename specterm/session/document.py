@@ -17,11 +17,15 @@ LARGEST = 1_000_000
 
 @dataclass(frozen=True, slots=True)
 class Document:
-    """A sheet being worked on; `saved` is the text its file holds, or None while there is no file."""
+    """A sheet being worked on; `saved` is the text its file holds, or None while there is no file.
+
+    `title` is what it is called without a file: the preset it started from.
+    """
 
     text: str
     path: Path | None = None
     saved: str | None = None
+    title: str = "untitled"
 
     @property
     def changed(self) -> bool:
@@ -30,8 +34,8 @@ class Document:
 
     @property
     def name(self) -> str:
-        """Return the file's name, or `untitled`."""
-        return printable(self.path.name) if self.path else "untitled"
+        """Return the file's name, or the title."""
+        return printable(self.path.name if self.path else self.title)
 
     @property
     def folder(self) -> Path:

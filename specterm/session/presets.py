@@ -55,6 +55,13 @@ def find(name: str, place: Path | None = None) -> Preset:
     raise SheetError(f"there is no preset called {printable(name)!r}", mend=f"the presets are: {listed}")
 
 
+def titled(text: str, place: Path) -> str:
+    """Return the name of the preset in the folder `place` that has this text, or `untitled`; only presets are looked at."""
+    if place != folder():
+        return "untitled"
+    return next((path.stem for path in sorted(place.glob("*.sheet")) if read_text(path) == text), "untitled")
+
+
 def read(name: str, place: Path | None = None) -> str:
     """Return the text of the preset called `name`; raises SheetError."""
     return read_text(find(name, place).path)

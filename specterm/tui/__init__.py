@@ -7,7 +7,7 @@ import sys
 from pathlib import Path
 
 from specterm.tui.options import Options
-from specterm.tui.terminal import give_back, own_stream, settle, usable
+from specterm.tui.terminal import give_back, own_stream, settle, take_keyboard, usable
 
 __all__ = ["Options", "run", "usable"]
 
@@ -24,6 +24,7 @@ def run(text: str, path: Path | None = None, options: Options | None = None) -> 
     from specterm.tui.app import make_app  # noqa: PLC0415 - as above
 
     chosen = replace(options or Options(), guarded=True)
+    take_keyboard()
     stream = own_stream(folder() / "log")
     try:
         app = make_app(text, path, chosen)

@@ -2,14 +2,17 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Awaitable, Callable
 from dataclasses import replace
+from math import isfinite, nan
 from typing import Any, ClassVar
 
 from textual.binding import Binding
 from textual.screen import ModalScreen
 
 from specterm.errors import SpectermError, position, printable
+from specterm.session import rescue
 from specterm.session.document import Document
 from specterm.spectrum.result import Spectrum
 from specterm.tui import help as help_text
@@ -18,11 +21,13 @@ from specterm.tui.files import Files
 from specterm.tui.keyboard import OrderedKeys
 from specterm.tui.keys import ACTIONS, KEYS
 from specterm.tui.look import Look
+from specterm.tui.options import Options
 from specterm.tui.painter import Painter
-from specterm.tui.rows import Shown, as_text
+from specterm.tui.rows import Shown, as_text, details
 from specterm.tui.sheet_pane import SheetPane
 from specterm.tui.work import Work
-
+from specterm.views.level_table import value_text
+from specterm.views.numbers import short
 
 Answer = Callable[[Any], None] | Callable[[Any], Awaitable[None]]
 
@@ -37,6 +42,7 @@ class Keyed(OrderedKeys):
     ]
 
     document: Document
+    options: Options
     shown: Shown
     error: SpectermError | None
     work: Work
@@ -106,17 +112,84 @@ class Keyed(OrderedKeys):
         self._look(replace(self.shown.look, moments=not self.shown.look.moments))
 
     def action_weigh(self) -> None:
-        """Weigh the next prepared state, or none."""
+        """Weigh the next prepared state, the chosen level, or none."""
         states = self.shown.outcome.states if self.shown.outcome else ()
-        self._look(self.shown.look.next_state(states))
+        self._look(self.shown.look.next_state(states, self._spectrum()))
         if not states:
             self.say("the sheet has no prepared state: add a line  state NAME = expression", "warn")
+
+    def action_weigh_any(self) -> None:
+        """Choose the state to weigh from a list of the prepared ones and the levels."""
+        spectrum = self._spectrum()
+        states = self.shown.outcome.states if self.shown.outcome else ()
+        entries = [Entry(name, name, "a state of the sheet") for name in states]
+        names = {f"level({level.index})": value_text(level) for level in (spectrum.levels if spectrum else ())}
+        entries += [Entry(name, name, remark) for name, remark in names.items()]
+
+        def chosen(name: str | None) -> None:
+            if name is not None:
+                self._look(replace(self.shown.look, state=name or None))
+
+        self.ask(Chooser("Weights of", [*entries, Entry("", "none", "no weights")]), chosen)
+
+    def action_near(self) -> None:
+        """Ask for an energy and find the levels nearest to it."""
+        now = self.options.near
+        unit = self.shown.outcome.units.energy if self.shown.outcome else ""
+        words = "Levels near the energy" + (f" ({unit})" if unit else "") + "; nothing: the lowest"
+
+        def typed(near: float | None) -> None:
+            self.options = replace(self.options, near=near)
+
+        self._ask_number(words, "" if now is None else short(now, 12), typed, lambda number: number is None or isfinite(number))
+
+    def action_tolerance(self) -> None:
+        """Ask for another tolerance."""
+
+        def typed(tolerance: float | None) -> None:
+            self.options = replace(self.options, tolerance=tolerance or Options().tolerance)
+
+        words = "Error wanted, as a share of the level; nothing: 1e-8"
+        self._ask_number(words, short(self.options.tolerance), typed, lambda number: number is None or 0 < number < 1)
+
+    def _ask_number(
+        self, words: str, start: str, then: Callable[[float | None], None], fits: Callable[[float | None], bool]
+    ) -> None:
+        """Ask for a number, or nothing; `then` takes it and the levels are computed again."""
+
+        def answered(answer: str | None) -> None:
+            if answer is None:
+                return
+            try:
+                number = float(answer) if answer else None
+            except ValueError:
+                number = nan
+            if fits(number):
+                then(number)
+                self.compute()
+            else:
+                self.say(f"{answer!r} does not do here: nothing is changed", "warn")
+
+        self.ask(Chooser(words, (), free=True, text=start), answered)
+
+    def action_details(self) -> None:
+        """Show the lines under the panes in full."""
+        shown = self.painter.complete()
+        self.ask(Help(lambda width: details(shown, self.document, width)))
+
+    def action_suspend(self) -> None:
+        """Go back to the shell; where there is none, nothing could bring the screen back, so it stays."""
+        if os.getpgrp() == os.getsid(0):
+            self.say("there is no shell to go back to", "warn")
+            return
+        rescue.keep(self.document)
+        self.action_suspend_process()
 
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Keep the keys, which come before all others, out of dialogs, and plain letters out of texts."""
         free = len(self.screen_stack) == 1
         if action == "also":
-            return free
+            return free and (parameters != ("suspend",) or self.screen.focused is None)
         if action in ACTIONS and not (free and self.screen.focused is None):
             return False
         return super().check_action(action, parameters)

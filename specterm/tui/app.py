@@ -14,12 +14,12 @@ from textual.containers import Container
 from textual.timer import Timer
 from textual.widgets import TextArea
 
-from specterm.session import rescue
+from specterm.session import presets, rescue
 from specterm.session.document import Document
 from specterm.tui.actions import Keyed
 from specterm.tui.cell_pane import CellPane
 from specterm.tui.files import Files
-from specterm.tui.layout import CSS, WIDE
+from specterm.tui.layout import BESIDE, CSS, LOW, WIDE
 from specterm.tui.look import Look, usual_glyphs
 from specterm.tui.options import Options
 from specterm.tui.painter import Painter
@@ -31,6 +31,7 @@ from specterm.tui.work import Looked, Progressed, Solved, Work
 from specterm.views.status import MomentsText
 
 _PAUSE = 0.3
+_LINES = 4
 
 
 class Specterm(Keyed):
@@ -54,6 +55,7 @@ class Specterm(Keyed):
         self.error = None
         self.found: dict[int | str, MomentsText | Weighed | None] = {}
         self._pause: Timer | None = None
+        self._table = 0
         self.last_words = ""
 
     def compose(self) -> ComposeResult:
@@ -64,6 +66,7 @@ class Specterm(Keyed):
             yield CellPane("levels")
         yield CellPane("message")
         yield CellPane("chosen")
+        yield CellPane("moments")
         yield CellPane("trust")
         yield CellPane("bottom")
 
@@ -76,9 +79,12 @@ class Specterm(Keyed):
         """Arrange for the size, start the first computation, watch for the end of the connection."""
         self._arrange()
         watch_signals(self, self.options.guarded)
+        self.app_resume_signal.subscribe(self, lambda _: self.refresh(layout=True))
         self.compute()
         self.redraw()
         self.files.offer_rescued()
+        if not self.document.text and self.document.path is None and len(self.screen_stack) == 1:
+            self.files.preset("Start from a preset, or Tab for an empty sheet")
 
     def on_resize(self, _: events.Resize) -> None:
         """Arrange for the new size."""
@@ -92,8 +98,11 @@ class Specterm(Keyed):
     def _arrange(self) -> None:
         """Choose between sheet beside the figure and sheet over it."""
         base = self.screen_stack[0]
+        if self.shown.outcome is not None:
+            self._share(self.shown.outcome)
         base.set_class(self.size.width >= WIDE, "wide")
         base.set_class(self.size.width < WIDE, "narrow")
+        base.set_class(self.size.width < BESIDE and self.size.height >= LOW, "apart")
         self.place(typing=self.typing)
 
     def place(self, *, typing: bool) -> None:
@@ -148,13 +157,22 @@ class Specterm(Keyed):
             look = self.shown.look.fitted(outcome.spectrum, outcome.states)
             self.shown = replace(self.shown, outcome=outcome, stale=False, look=look)
         self.say("" if outcome.error else "; ".join(outcome.notes))
-        self.call_after_refresh(_settle_memory)
+        self._share(outcome)
+        self.call_later(_settle_memory)
 
     def on_progressed(self, event: Progressed) -> None:
         """Say how far a long computation is."""
         if self.work.busy and event.number == self.work.number:
             self.mark_stale()
             self.say(f"{event.words}; x stops it", "dim")
+
+    def _share(self, outcome: Outcome) -> None:
+        """Give the table the rows it needs, at most half of the height, and the sheet the rest."""
+        count = len(outcome.spectrum.levels) + 1 if outcome.spectrum and outcome.spectrum.levels else 8
+        table = min(max(count, 8), (self.size.height - _LINES) // 2)
+        if self.size.width >= WIDE and table != self._table:
+            self._table = table
+            self.screen_stack[0].query_one("#main").styles.grid_rows = f"1fr {table}"
 
     def mark_stale(self) -> None:
         """Say of the levels shown that they are not those of the text, where that is so."""
@@ -202,6 +220,7 @@ class Specterm(Keyed):
         self.folder = folder or document.folder
         self.sheet.text.load_text(document.text)
         self.shown = replace(self.shown, look=replace(self.shown.look, chosen=0, count=None), message="")
+        self.options = replace(self.options, near=None)
         self.compute()
         self.files.offer_rescued()
 
@@ -233,4 +252,6 @@ def _settle_memory() -> None:
 
 def make_app(text: str, path: Path | None = None, options: Options | None = None, engine: Engine | None = None) -> Specterm:
     """Return the app for a sheet; `path` is its file, or None; nothing is started."""
-    return Specterm(Document(text, path, text), options or Options(), engine or BuiltIn())
+    options = options or Options()
+    title = "untitled" if path or options.folder is None else presets.titled(text, options.folder)
+    return Specterm(Document(text, path, text, title), options, engine or BuiltIn())

@@ -138,7 +138,7 @@ class Chooser(ModalScreen[str | None]):
         """Take the entry marked, or the text typed."""
         typed = self.field.value.strip()
         self._narrow(typed)
-        if self.free and typed and ("/" in typed or not self.matching):
+        if (self.free and not self.entries) or (self.free and typed and ("/" in typed or not self.matching)):
             self.dismiss(typed)
         elif self.matching:
             self.dismiss(self.matching[self.place].value)

@@ -38,10 +38,10 @@ class Files:
         """Ask for a name and write the document under it; an existing file of another name is asked about."""
         self.app.take_typed()
         path = self.app.document.path
-        start = str(path) if path else "untitled.sheet"
+        start = str(path) if path else f"{self.app.document.title}.sheet"
 
         def named(answer: str | None) -> None:
-            if answer is None:
+            if not answer:
                 self.app.say("not saved", "warn")
                 return
             target = Path(os.path.expanduser(answer))
@@ -88,8 +88,8 @@ class Files:
             return
         self.app.replace_document(document)
 
-    def preset(self) -> None:
-        """Choose a preset and start from its text."""
+    def preset(self, words: str = "Start from a preset") -> None:
+        """Choose a preset and start from its text; `words` stand over the list."""
         try:
             known = presets.presets()
         except SheetError as error:
@@ -104,7 +104,7 @@ class Files:
                 self._guarded(lambda: self._start(answer))
 
         entries = [Entry(preset.name, preset.name, preset.title) for preset in known]
-        self.app.ask(Chooser("Start from a preset", entries), chosen)
+        self.app.ask(Chooser(words, entries), chosen)
 
     def _start(self, name: str) -> None:
         """Start from the preset called `name`, as a document without a file; tables beside the preset stay reachable."""
@@ -114,7 +114,7 @@ class Files:
         except SheetError as error:
             self.app.say(error.message, "warn")
             return
-        self.app.replace_document(Document(text, None, text), folder=preset.path.parent)
+        self.app.replace_document(Document(text, None, text, name), folder=preset.path.parent)
 
     def _guarded(self, go_on: Callable[[], None]) -> None:
         """Go on at once when all is saved, else ask first."""

@@ -5,6 +5,12 @@ from __future__ import annotations
 WIDE = 100
 """From this width on the sheet has a place of its own."""
 
+BESIDE = 130
+"""From this width on means and spreads stand beside the level, below it on a line of their own."""
+
+LOW = 16
+"""Below this height there is no room for that line."""
+
 CSS = """
 Screen { layers: base; background: ansi_default; }
 #main { height: 1fr; width: 100%; }
@@ -12,5 +18,7 @@ Screen { layers: base; background: ansi_default; }
 .wide #figure { row-span: 2; }
 .narrow #main { layout: horizontal; }
 .narrow #levels { dock: left; width: 36; max-width: 50%; margin-right: 1; }
+#moments { display: none; }
+.apart #moments { display: block; }
 #figure, #levels { height: 1fr; width: 1fr; }
 """

@@ -40,9 +40,10 @@ class Look:
         """Return the look with the next set of glyphs."""
         return replace(self, glyphs=_after(self.glyphs, GLYPHS))
 
-    def next_state(self, states: tuple[str, ...]) -> Look:
-        """Return the look with the next prepared state weighed: none, each of `states`, none again."""
-        choices: tuple[str | None, ...] = (None, *states)
+    def next_state(self, states: tuple[str, ...], spectrum: Spectrum | None = None) -> Look:
+        """Return the look with the next state weighed: none, each of `states`, the chosen level, none again."""
+        levels = (f"level({spectrum.levels[self.chosen].index})",) if spectrum and spectrum.levels else ()
+        choices: tuple[str | None, ...] = (None, *states, *levels)
         place = choices.index(self.state) + 1 if self.state in choices else 0
         return replace(self, state=choices[place % len(choices)])
 
@@ -55,7 +56,8 @@ class Look:
     def fitted(self, spectrum: Spectrum | None, states: tuple[str, ...]) -> Look:
         """Return the look made to fit a new spectrum: the chosen level exists, the weighed state does too."""
         last = max(0, len(spectrum.levels) - 1) if spectrum else 0
-        return replace(self, chosen=min(self.chosen, last), state=self.state if self.state in states else None)
+        known = {*states, *(f"level({level.index})" for level in (spectrum.levels if spectrum else ()))}
+        return replace(self, chosen=min(self.chosen, last), state=self.state if self.state in known else None)
 
 
 def _after(now: str, choices: tuple[str, ...]) -> str:

@@ -19,6 +19,7 @@ from specterm.tui.rows import (
     heading_row,
     level_rows,
     message_row,
+    moments_row,
     trusted_row,
 )
 from specterm.tui.solving import Weighed
@@ -27,7 +28,7 @@ from specterm.views.status import MomentsText
 if TYPE_CHECKING:
     from specterm.tui.app import Specterm
 
-_LINES = (("message", message_row), ("chosen", chosen_row), ("trust", trusted_row))
+_LINES = (("message", message_row), ("chosen", chosen_row), ("moments", moments_row), ("trust", trusted_row))
 _LARGE = (("figure", figure_rows), ("levels", level_rows))
 
 
@@ -63,7 +64,7 @@ class Painter:
         with self.app.batch_update():
             for name, draw in _LARGE:
                 pane = self._pane(name)
-                of = (shown.look, shown.outcome, shown.weighed, shown.error, pane.size)
+                of = (shown.look, shown.outcome, shown.weighed, shown.error, shown.name, pane.size)
                 if _visible(pane) and self._drawn.get(name) != of:
                     self._drawn[name] = of
                     pane.show(drawn_safely(draw, shown, *pane.size))
@@ -99,6 +100,7 @@ class Painter:
         moments = app.found.get(look.chosen)
         shown = replace(
             shown,
+            name="" if app.sheet.display else app.document.name + (" unsaved" if app.document.changed else ""),
             weighed=weighed if isinstance(weighed, Weighed) else None,
             moments=moments if isinstance(moments, MomentsText) else None,
         )

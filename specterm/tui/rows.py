@@ -2,13 +2,14 @@
 
 from __future__ import annotations
 
+import textwrap
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
 from specterm.errors import SpectermError, printable
 from specterm.session.document import Document
 from specterm.tui.complaint import complaint
-from specterm.tui.layout import WIDE
+from specterm.tui.layout import BESIDE
 from specterm.tui.look import Look
 from specterm.tui.solving import Outcome, Weighed
 from specterm.views.cells import MARKS, Row, Rows, cut, fit_row, plain, width_of
@@ -16,7 +17,7 @@ from specterm.views.level_figure import draw
 from specterm.views.level_table import table, text_table
 from specterm.views.numbers import short, with_unit
 from specterm.views.scene import Prepared, scene
-from specterm.views.status import MomentsText, join, moment_parts, state_line, trust_line
+from specterm.views.status import MomentsText, join, moment_parts, state_line, state_parts, trust_line, trust_parts
 
 
 @dataclass(frozen=True)
@@ -24,7 +25,8 @@ class Shown:
     """All that the panes are drawn from.
 
     `outcome` is the last one with a model, `stale` whether the text has moved on since; `weighed` and `moments` have arrived
-    for what `look` chooses, or are None; `error`, with the text it is about, has the place of the levels where there are none.
+    for what `look` chooses, or are None; `name` is the sheet's where no other pane says it; `error`, with the text it is about,
+    has the place of the levels where there are none.
     """
 
     look: Look
@@ -35,6 +37,7 @@ class Shown:
     error: tuple[SpectermError, str] | None = None
     message: str = ""
     message_style: str = "plain"
+    name: str = ""
 
     @property
     def mark(self) -> str:
@@ -87,7 +90,7 @@ def figure_rows(shown: Shown, width: int, height: int) -> Rows:
     chosen = shown.look.chosen if spectrum and spectrum.levels else None
     zoom = shown.look.mode != "levels"
     view = scene(outcome.origin, chosen, samples=max(100, 8 * width), prepared=shown.prepared, zoom=zoom)
-    return draw(view, width, height, mode=shown.look.mode, glyphs=shown.look.glyphs)
+    return draw(view, width, height, mode=shown.look.mode, glyphs=shown.look.glyphs, name=shown.name)
 
 
 def drawn_safely(draw: Callable[[Shown, int, int], Rows], shown: Shown, width: int, height: int) -> Rows:
@@ -105,7 +108,7 @@ def chosen_row(shown: Shown, width: int) -> Row:
     spectrum = outcome.spectrum if outcome else None
     if outcome is None or spectrum is None or not spectrum.levels:
         return fit_row((("", "plain"),), width)
-    moments = shown.moments if shown.look.moments and width >= WIDE else None
+    moments = shown.moments if shown.look.moments and width >= BESIDE else None
     row = state_line(spectrum.levels[shown.look.chosen], outcome.units, width - 1, moments=moments, mark=shown.mark)
     return fit_row(((" ", "plain"), *row), width)
 
@@ -121,21 +124,55 @@ def trusted_row(shown: Shown, width: int) -> Row:
     return fit_row(((" ", "plain"), *trust_line(outcome.spectrum, outcome.units, width - 1, mark=shown.mark)), width)
 
 
+def moments_row(shown: Shown, width: int) -> Row:
+    """Return means and spreads on a line of their own."""
+    parts = moment_parts(shown.moments, shown.outcome.units) if shown.moments and shown.outcome and shown.look.moments else ()
+    return fit_row(((" " + join(parts, width - 1, shown.mark), "plain"),), width)
+
+
 def message_row(shown: Shown, width: int) -> Row:
-    """Return the message line: a message, else the prepared state's mean energy, else the moments where narrow, else notes."""
+    """Return the message line: a message, else what is known of the prepared state, else notes."""
     if shown.message:
         return fit_row(((" " + cut(shown.message, width - 1, shown.mark), shown.message_style),), width)
-    outcome, weighed = shown.outcome, shown.weighed
-    if weighed is not None and weighed.weighing is not None and outcome is not None:
-        unit = outcome.units.energy
-        words = [f"state {weighed.state}", f"mean {with_unit(short(weighed.mean, 6), unit)}"]
-        words += [f"spread {with_unit(short(weighed.spread, 4), unit)}", f"captured {100 * weighed.weighing.captured:.4f}%"]
+    outcome = shown.outcome
+    words = weighed_parts(shown)
+    if words:
         return fit_row(((" " + join(words, width - 1, shown.mark), "weight"),), width)
-    if width < WIDE and shown.moments is not None and shown.look.moments and outcome is not None:
-        parts = moment_parts(shown.moments, outcome.units)
-        return fit_row(((" " + join(parts, width - 1, shown.mark), "plain"),), width)
     notes = "; ".join(outcome.notes) if outcome else ""
     return fit_row(((" " + cut(notes, width - 1, shown.mark), "dim"),), width)
+
+
+def weighed_parts(shown: Shown) -> list[str]:
+    """Return what is known of the prepared state: the part captured, mean and spread of the energy in that part, notes."""
+    outcome, weighed = shown.outcome, shown.weighed
+    if weighed is None or weighed.weighing is None or outcome is None:
+        return []
+    unit = outcome.units.energy
+    spread = weighed.spread if weighed.spread > 1e-9 * abs(weighed.mean) else 0.0
+    words = [f"state {weighed.state}", f"captured {100 * weighed.weighing.captured:.4f}%"]
+    words += [f"its mean {with_unit(short(weighed.mean, 6), unit)}", f"spread {with_unit(short(spread, 4), unit)}"]
+    return [*words, *weighed.notes]
+
+
+def details(shown: Shown, document: Document, width: int) -> Rows:
+    """Return all that the lines under the panes say, unabridged, wrapped to `width`."""
+    outcome = shown.outcome
+    spectrum = outcome.spectrum if outcome else None
+    if outcome is None or spectrum is None:
+        return (((cut("no level", width, shown.mark), "plain"),),)
+    units = outcome.units
+    blocks = [("Sheet", [document.name])]
+    if spectrum.levels:
+        moments = list(moment_parts(shown.moments, units)) if shown.moments else []
+        blocks.append(("Level", [*state_parts(spectrum.levels[shown.look.chosen], units), *moments]))
+    blocks.append(("State", weighed_parts(shown)))
+    edge = [] if spectrum.threshold is None else [f"threshold {with_unit(short(spectrum.threshold, 10), units.energy)}"]
+    blocks += [("All levels", [*trust_parts(spectrum, units), *edge]), ("Notes", list(outcome.notes))]
+    rows: list[Row] = []
+    for heading, parts in blocks:
+        lines = [line for part in parts for line in textwrap.wrap(part, max(8, width - 2))]
+        rows += [((heading, "title"),), *[(("  " + line, "plain"),) for line in lines], ()] if lines else []
+    return tuple(fit_row(row, width, shown.mark) for row in rows[:-1])
 
 
 def as_text(shown: Shown, width: int, height: int) -> str:

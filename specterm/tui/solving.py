@@ -32,8 +32,8 @@ class Engine(Protocol):
     def moments(self, model: Any, spectrum: Spectrum, index: int) -> Any:  # noqa: ANN401 - attributes x, spread_x, p, spread_p
         """Return expectation and spread of place and momentum."""
 
-    def project(self, model: Any, spectrum: Spectrum, name: str) -> Any:  # noqa: ANN401 - the analysis part's weights
-        """Return the projection weights of a prepared state."""
+    def project(self, model: Any, spectrum: Spectrum, name: str, folder: Path) -> Any:  # noqa: ANN401 - the analysis part's weights
+        """Return the projection weights of a prepared state or of `level(n)`; other sheets are looked for from `folder` on."""
 
 
 class BuiltIn:
@@ -64,11 +64,11 @@ class BuiltIn:
 
         return moments(model, spectrum, index)
 
-    def project(self, model: Any, spectrum: Spectrum, name: str) -> Any:  # noqa: ANN401 - a model
-        """Return the projection weights of a prepared state."""
+    def project(self, model: Any, spectrum: Spectrum, name: str, folder: Path) -> Any:  # noqa: ANN401 - a model
+        """Return the projection weights of a prepared state or of a level."""
         from specterm.analysis import project  # noqa: PLC0415 - the first frame does not wait for it
 
-        return project(model, spectrum, name)
+        return project(model, spectrum, name, folder)
 
 
 @dataclass(frozen=True)
@@ -109,10 +109,21 @@ def compute(engine: Engine, request: Request, should_stop: Callable[[], bool], p
     """Return the outcome of a request; every failure is an error in it, nothing is raised."""
     try:
         model = engine.build(request.text, request.folder, request.overrides)
+        return _computed(engine, model, request, should_stop, progress)
     except SpectermError as error:
         return Outcome(request, error=error)
     except Exception as error:  # the edge of the screen: a defect below must not end the session
         return Outcome(request, error=_defect(error))
+
+
+def _computed(
+    engine: Engine,
+    model: Any,  # noqa: ANN401 - a model
+    request: Request,
+    should_stop: Callable[[], bool],
+    progress: Callable[[str], None],
+) -> Outcome:
+    """Return the outcome for a model; an error of the solution leaves the potential to show."""
     spectrum: Spectrum | None = None
     origin: Source | None = None
     failure: SpectermError | None = None
@@ -164,6 +175,7 @@ class Weighed:
     prepared: Prepared | None = None
     mean: float = float("nan")
     spread: float = float("nan")
+    notes: tuple[str, ...] = ()
     error: SpectermError | None = None
 
 
@@ -172,14 +184,14 @@ def weigh(engine: Engine, outcome: Outcome, name: str) -> Weighed:
     if outcome.spectrum is None:
         return Weighed(name)
     try:
-        found = engine.project(outcome.model, outcome.spectrum, name)
+        found = engine.project(outcome.model, outcome.spectrum, name, outcome.request.folder)
     except SpectermError as error:
         return Weighed(name, error=error)
     except Exception as error:  # the edge of the screen: a defect below must not end the session
         return Weighed(name, error=_defect(error))
     from specterm.views.of_model import prepared_of, weighing_of  # noqa: PLC0415 - as above
 
-    return Weighed(name, weighing_of(found), prepared_of(found), found.mean, found.spread)
+    return Weighed(name, weighing_of(found), prepared_of(found), found.mean, found.spread, found.notes)
 
 
 def moments_of(engine: Engine, outcome: Outcome, place: int) -> MomentsText | None:

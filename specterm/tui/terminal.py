@@ -12,11 +12,31 @@ from typing import TextIO
 _HOPELESS = ("", "dumb", "unknown")
 _THREADS = ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS")
 _LOG_SIZE = 1_000_000
+_TERMINAL = "/dev/tty"
 
 
 def usable() -> bool:
-    """Return whether a full screen can be shown: terminals on 0, 1 and 2, and a TERM that is one."""
-    return os.environ.get("TERM", "") not in _HOPELESS and all(_is_terminal(number) for number in (0, 1, 2))
+    """Return whether a full screen can be shown: terminals on 1 and 2, a keyboard, and a TERM that is one."""
+    return os.environ.get("TERM", "") not in _HOPELESS and all(_is_terminal(number) for number in (1, 2)) and _keyboard()
+
+
+def _keyboard() -> bool:
+    """Return whether keys can be read: from a terminal on 0, or from the one of the session where 0 brought the sheet."""
+    if _is_terminal(0):
+        return True
+    try:
+        os.close(os.open(_TERMINAL, os.O_RDWR | os.O_NOCTTY | os.O_CLOEXEC))
+    except OSError:
+        return False
+    return sys.__stdin__ is not None
+
+
+def take_keyboard() -> None:
+    """Read keys from the session's terminal where standard input is something else, such as a pipe that brought the sheet."""
+    if not _is_terminal(0):
+        handle = os.open(_TERMINAL, os.O_RDWR | os.O_NOCTTY)
+        os.dup2(handle, 0)
+        os.close(handle)
 
 
 def _is_terminal(number: int) -> bool:

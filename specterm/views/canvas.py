@@ -82,9 +82,10 @@ class Canvas:
         if not np.isfinite(row) or not -0.5 <= row < self.rows - 0.5:
             return
         drawn = np.arange(self.columns) % sum(dash) < dash[0]
-        mask = np.zeros_like(self.dots)
-        mask[round(row)] = drawn if where is None else drawn & where
-        self._stamp(mask, style)
+        drawn = drawn if where is None else drawn & where
+        across, down = DOTS[self.glyphs]
+        self.dots[round(row)] |= drawn
+        self.style[round(row) // down, drawn.reshape(self.width, across).any(axis=1)] = self._number(style)
 
     def vertical(self, column: float, style: str, *, dash: tuple[int, int] = (1, 0)) -> None:
         """Draw a line down at `column`."""
@@ -126,9 +127,13 @@ class Canvas:
         if over:
             self.dots[np.repeat(np.repeat(touched, down, axis=0), across, axis=1)] = False
         self.dots |= mask
+        self.style[touched] = self._number(style)
+
+    def _number(self, style: str) -> int:
+        """Return the number that stands for a style."""
         if style not in self.names:
             self.names.append(style)
-        self.style[touched] = self.names.index(style)
+        return self.names.index(style)
 
     def _extents(self, column: NDArray[np.float64], row: NDArray[np.float64]) -> tuple[NDArray[np.int64], NDArray[np.int64]]:
         """Return the first and last dot row of a polyline by dot column, shapes (columns,); first > last where it is absent."""

@@ -53,12 +53,12 @@ def _numbers_width(scene: Scene) -> int:
     return min(7, 2 + max((len(str(level.index)) for level in scene.levels), default=0)) if scene.levels else 0
 
 
-def assemble(scene: Scene, frame: Frame, canvas: Rows, words: Row, glyphs: str) -> Rows:
+def assemble(scene: Scene, frame: Frame, canvas: Rows, words: Row, glyphs: str, name: str = "") -> Rows:
     """Return the whole figure: the canvas with its surroundings, every row `frame.width` columns wide."""
     lines = _LINES[glyphs]
     rows: list[Row] = []
     if frame.has_title:
-        rows.append(_title(scene, frame, words))
+        rows.append(_title(scene, frame, words, name))
     marked = _energy_labels(scene, frame)
     numbered = _level_numbers(scene, frame)
     for number, cells in enumerate(canvas):
@@ -86,12 +86,16 @@ def axis_title(name: str, note: str, unit: str) -> str:
     return f"{name} ({inner})" if inner else name
 
 
-def _title(scene: Scene, frame: Frame, words: Row) -> Row:
-    """Return the top row: the energy axis's title on the left, what is drawn on the right."""
+def _title(scene: Scene, frame: Frame, words: Row, name: str) -> Row:
+    """Return the top row: the energy axis's title on the left, a name in the middle, what is drawn on the right."""
     left = axis_title("energy", frame.energies.note, scene.axes.energy)
     gap = frame.width - width_of(left) - row_width(words)
     if gap < 2:
         return (*words,)
+    if name and width_of(name) + 4 <= gap:
+        before = (gap - width_of(name)) // 2
+        after = gap - width_of(name) - before
+        return ((left, "axis"), (" " * before + name + " " * after, "dim"), *words)
     return ((left, "axis"), (" " * gap, "plain"), *words)
 
 

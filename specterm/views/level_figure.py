@@ -20,15 +20,18 @@ Floats = NDArray[np.float64]
 _CROWDED = 3.0
 
 
-def draw(scene: Scene, width: int, height: int, *, mode: str = "psi", glyphs: str = "braille") -> Rows:
-    """Return the figure, `height` rows of `width` columns; `mode` is one of MODES, `glyphs` one of GLYPHS. Any size is fine."""
+def draw(scene: Scene, width: int, height: int, *, mode: str = "psi", glyphs: str = "braille", name: str = "") -> Rows:
+    """Return the figure, `height` rows of `width` columns; `mode` is one of MODES, `glyphs` one of GLYPHS. Any size is fine.
+
+    `name` is put in the middle of the top row where there is room.
+    """
     if width <= 0 or height <= 0:
         return ((),) * max(0, height)
     frame = frame_for(scene, width, height, glyphs)
     canvas = Canvas(frame.columns, frame.rows, glyphs)
     if canvas.columns and canvas.rows:
         _draw_all(Painter(scene, canvas, mode))
-    return assemble(scene, frame, canvas.cells(), title(scene, mode), glyphs)
+    return assemble(scene, frame, canvas.cells(), title(scene, mode), glyphs, name)
 
 
 def title(scene: Scene, mode: str) -> Row:
@@ -136,9 +139,10 @@ def _draw_others(painter: Painter) -> None:
     scene, canvas = painter.scene, painter.canvas
     rows = painter.rows_of(np.array([level.value for level in scene.levels]))
     spread = np.sort(rows[np.isfinite(rows)])
+    shown = np.isfinite(rows) & (rows > -canvas.rows) & (rows < 2 * canvas.rows)
     roomy = len(spread) < 2 or float(np.median(np.diff(spread))) >= _CROWDED
     for place, level in enumerate(scene.levels):
-        if place == scene.chosen or not np.isfinite(level.value):
+        if place == scene.chosen or not shown[place]:
             continue
         stacked = painter.mode == "levels"
         dash = (1, 0) if stacked else (1, 3)

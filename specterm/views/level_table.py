@@ -4,11 +4,15 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 
 from specterm.spectrum.result import Level
 from specterm.views.cells import MARKS, Row, Rows, cut, fit_row, plain, width_of
 from specterm.views.numbers import bracket, short
 from specterm.views.weight_bars import bar, percent
+
+_NARROWEST = 12
+"""The fewest columns for a bar with its percentage."""
 
 
 @dataclass(frozen=True)
@@ -56,8 +60,9 @@ def _head(text: str) -> str:
     return text
 
 
-def _columns(levels: Sequence[Level], unit: str) -> list[_Column]:
-    """Return the columns in the order they matter."""
+@lru_cache(maxsize=4)
+def _columns(levels: tuple[Level, ...], unit: str) -> list[_Column]:
+    """Return the columns in the order they matter; kept, as stepping through many levels asks for the same ones each time."""
     value = f"value ({unit})" if unit else "value"
     made = [
         _Column("n", tuple(str(level.index) for level in levels), right=True),
@@ -87,14 +92,21 @@ def table(
     if width <= 0 or height <= 0:
         return ((),) * max(0, height)
     mark = MARKS[glyphs]
-    columns = _columns(levels, unit)
-    tail = min(8 + max(4, width // 4), max(0, width - 24)) if weighing else 0
+    columns = _columns(tuple(levels), unit)
+    tail = _tail(columns, width) if weighing else 0
     kept = _fitting(columns, width - tail - 1)
     look = _Look(width, tail, chosen, weighing, glyphs)
     rows = [_heading(kept, width, weighing, tail, mark)]
     rows += [_line(kept, levels[place], place, look) for place in range(first, min(len(levels), first + height - 1))]
     rows += [((" " * width, "plain"),)] * (height - len(rows))
     return tuple(rows[:height])
+
+
+def _tail(columns: Sequence[_Column], width: int) -> int:
+    """Return the columns that weights get: enough for a bar to tell something, less where the kind would not fit beside it."""
+    wanted = min(8 + max(4, width // 4), max(0, width - 24))
+    beside = width - 1 - sum(column.width + 1 for column in columns[:3])
+    return beside if _NARROWEST <= beside < wanted else wanted
 
 
 def _fitting(columns: Sequence[_Column], width: int) -> list[_Column]:
@@ -153,7 +165,7 @@ def _line(columns: Sequence[_Column], level: Level, place: int, look: _Look) -> 
 
 def text_table(levels: Sequence[Level], unit: str = "", weighing: Weighing | None = None, glyphs: str = "braille") -> str:
     """Return the whole table as aligned plain text, as wide as it needs to be."""
-    columns = _columns(levels, unit)
+    columns = _columns(tuple(levels), unit)
     width = sum(column.width + 1 for column in columns) + 1 + (40 if weighing else 0)
     if weighing:
         width = max(width, 4 * 32)

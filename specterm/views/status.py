@@ -4,6 +4,8 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from decimal import ROUND_CEILING, Context, Decimal
+from math import isfinite
 
 from specterm.spectrum.result import Level, Spectrum
 from specterm.views.cells import Row, cut, width_of
@@ -35,11 +37,7 @@ def state_line(level: Level | None, units: Units, width: int, *, moments: Moment
     """Return the line for the chosen state; parts at the end that do not fit leave a mark."""
     if level is None:
         return ((cut("no level", width, mark), "warn"),)
-    parts = [f"level {level.index}", with_unit(value_text(level), units.energy), level.kind]
-    if level.nodes is not None:
-        parts.append(f"{level.nodes} node{'' if level.nodes == 1 else 's'}")
-    if level.parity:
-        parts.append(level.parity)
+    parts = list(state_parts(level, units))
     if moments is not None:
         parts += moment_parts(moments, units)
     line = join(parts, width, mark)
@@ -47,6 +45,16 @@ def state_line(level: Level | None, units: Units, width: int, *, moments: Moment
     if line.startswith(head) and len(line) > len(head):
         return ((head, "chosen"), (line[len(head) :], "plain"))
     return ((line, "chosen"),)
+
+
+def state_parts(level: Level, units: Units) -> tuple[str, ...]:
+    """Return number, value with error, kind, nodes and parity of a level."""
+    parts = [f"level {level.index}", with_unit(value_text(level), units.energy), level.kind]
+    if level.nodes is not None:
+        parts.append(f"{level.nodes} node{'' if level.nodes == 1 else 's'}")
+    if level.parity:
+        parts.append(level.parity)
+    return tuple(parts)
 
 
 def moment_parts(moments: MomentsText, units: Units) -> tuple[str, ...]:
@@ -76,9 +84,19 @@ def trust_line(spectrum: Spectrum | None, units: Units, width: int, *, mark: str
     if spectrum is None:
         return ((cut("no spectrum yet", width, mark), "dim"),)
     good = spectrum.complete and all(level.kind != "unresolved" for level in spectrum.levels)
-    parts = [_reached(spectrum, units), _found(spectrum), _domain(spectrum, units)]
-    parts += [f"{spectrum.unknowns} unknowns", spectrum.basis, duration(spectrum.seconds)]
-    return ((join([part for part in parts if part], width, mark), "good" if good else "warn"),)
+    parts = trust_parts(spectrum, units)
+    if width_of("  ".join(parts)) > width:
+        parts = trust_parts(spectrum, units, brief=True)
+    return ((join(parts, width, mark), "good" if good else "warn"),)
+
+
+def trust_parts(spectrum: Spectrum, units: Units, *, brief: bool = False) -> list[str]:
+    """Return the parts of the line of trust; `brief` leaves out what the axes and the table say too, and the basis."""
+    found, reached = _found(spectrum), _reached(spectrum, units)
+    domain = f"{units.coordinate} {short(spectrum.left, 4)}..{short(spectrum.right, 4)}"
+    parts = [reached, found, domain if brief else with_unit(domain, units.length)]
+    parts += [f"{spectrum.unknowns} unknowns", duration(spectrum.seconds), "" if brief else spectrum.basis]
+    return [part for part in parts if part]
 
 
 def _reached(spectrum: Spectrum, units: Units) -> str:
@@ -86,7 +104,14 @@ def _reached(spectrum: Spectrum, units: Units) -> str:
     errors = [level.error for level in spectrum.levels if level.error is not None]
     if not errors:
         return "no error known" if spectrum.levels else ""
-    return f"error <= {with_unit(short(max(errors), 1), units.energy)}"
+    return f"error <= {with_unit(_up(max(errors)), units.energy)}"
+
+
+def _up(error: float) -> str:
+    """Return an error to one digit, rounded up: a bound must not shrink on its way to the screen."""
+    if not isfinite(error) or not error:
+        return short(error, 1)
+    return short(float(Decimal(repr(float(error))).normalize(Context(prec=1, rounding=ROUND_CEILING))), 1)
 
 
 def _found(spectrum: Spectrum) -> str:
@@ -99,8 +124,3 @@ def _found(spectrum: Spectrum) -> str:
     if unresolved:
         words += f", {unresolved} UNRESOLVED"
     return words + (", complete" if spectrum.complete else ", MAY BE INCOMPLETE")
-
-
-def _domain(spectrum: Spectrum, units: Units) -> str:
-    """Return the part of the domain computed on."""
-    return f"{units.coordinate} {short(spectrum.left, 4)}..{with_unit(short(spectrum.right, 4), units.length)}"

@@ -13,6 +13,7 @@ _TAIL = 5e-4
 _WIDEST = 5.0
 _PEAKS = 8
 _NEIGHBOURS = 6
+_AT_ONCE = 100_000
 
 
 def extents(density: Callable[[Floats], Floats], left: float, right: float) -> Floats:
@@ -24,11 +25,23 @@ def extents(density: Callable[[Floats], Floats], left: float, right: float) -> F
     if not (np.isfinite(left) and np.isfinite(right) and left < right):
         return np.full((len(density(np.array([0.0]))), 2), np.nan)
     first = _places(left, right, np.array([left, right, 0.0, (left + right) / 2]))
-    peaks = np.unique(first[np.argmax(np.nan_to_num(density(first)), axis=1)])
+    peaks = np.unique(first[_highest(density, first)])
     if len(peaks) > _PEAKS:
         peaks = peaks[np.linspace(0, len(peaks) - 1, _PEAKS).astype(int)]
     places = np.union1d(first, _places(left, right, peaks))
-    return np.array([_holding(places, row) for row in np.nan_to_num(density(places), posinf=0.0)]).reshape(-1, 2)
+    return np.array([_holding(places, row) for row in np.nan_to_num(_in_pieces(density, places), posinf=0.0)]).reshape(-1, 2)
+
+
+def _highest(density: Callable[[Floats], Floats], places: Floats) -> NDArray[np.intp]:
+    """Return for each state the number of the place where it is highest."""
+    return np.argmax(np.nan_to_num(_in_pieces(density, places)), axis=1)
+
+
+def _in_pieces(density: Callable[[Floats], Floats], places: Floats) -> Floats:
+    """Return the density at many places, some at a time: with a thousand levels all at once would take hundreds of MB."""
+    start = density(places[:1])
+    piece = max(8, _AT_ONCE // max(1, len(start)))
+    return np.concatenate([density(places[first : first + piece]) for first in range(0, len(places), piece)], axis=1)
 
 
 def _places(left: float, right: float, centres: Floats) -> Floats:
@@ -111,7 +124,9 @@ def zoomed(values: Floats, chosen: float, whole: Window) -> Window:
     if not np.isfinite(chosen) or len(distances) <= _NEIGHBOURS:
         return whole
     half = 1.5 * float(distances[_NEIGHBOURS])
-    low, high = max(whole[0], chosen - half), min(whole[1], chosen + half)
+    below, above = min(half, chosen - values[np.isfinite(values)].min()), min(half, values[np.isfinite(values)].max() - chosen)
+    margin = 0.12 * (below + above)
+    low, high = max(whole[0], chosen - below - margin), min(whole[1], chosen + above + margin)
     if not half > 1e-12 * abs(chosen) or 3 * (high - low) > whole[1] - whole[0]:
         return whole
     return low, high

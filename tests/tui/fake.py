@@ -33,7 +33,8 @@ class FakeEngine:
         units = SimpleNamespace(energy="meV", length="nm", time="ps", mass="m_e")
         domain = SimpleNamespace(coordinate="x", left=-np.inf, right=np.inf, left_end="open", right_end="open")
         states = tuple(line.split()[1] for line in text.split("\n") if line.startswith("state "))
-        return SimpleNamespace(text=text, units=units, domain=domain, states=states, warnings=(), hbar=0.5)
+        parts = {"units": units, "domain": domain, "states": states, "coordinate_unit": "nm"}
+        return SimpleNamespace(text=text, warnings=(), hbar=0.5, **parts)
 
     def solve(self, model, *, count, near, tolerance, should_stop, progress):
         """Return the oscillator's levels."""
@@ -63,9 +64,9 @@ class FakeEngine:
         spread = (index + 0.5) ** 0.5
         return SimpleNamespace(x=0.0, spread_x=spread, p=0.0, spread_p=spread)
 
-    def project(self, model, spectrum, name):
+    def project(self, model, spectrum, name, folder):
         """Return Poisson weights of mean 1/2, those of a displaced ground state."""
-        del model
+        del model, folder
         weight, found = np.exp(-0.5), []
         for level in spectrum.levels:
             found.append(SimpleNamespace(index=level.index, value=level.value, weight=weight, error=1e-9, amplitude=1j))

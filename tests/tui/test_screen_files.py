@@ -94,14 +94,15 @@ async def test_opening_what_is_no_sheet(sheet):
 
 async def test_starting_from_a_preset(tmp_path, monkeypatch):
     """The key n lists the presets with their titles; the chosen one's text becomes a new sheet without a file."""
-    (tmp_path / "bench.sheet").write_text("# Bench well (invented)\nH = p^2\n")
+    text = "# Bench well (invented)\nH = p^2\n"
+    (tmp_path / "bench.sheet").write_text(text)
     monkeypatch.setattr(presets, "folder", lambda: tmp_path)
     async with app().run_test(size=(80, 24)) as pilot:
         await settled(pilot)
         await pressed(pilot, "n")
         assert "Bench well (invented)" in "\n".join(lines(pilot))
         await pressed(pilot, "enter")
-        assert pilot.app.document == Document("# Bench well (invented)\nH = p^2\n", None, "# Bench well (invented)\nH = p^2\n")
+        assert pilot.app.document == Document(text, None, text, "bench")
         assert pilot.app.folder == tmp_path
 
 

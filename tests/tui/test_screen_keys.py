@@ -91,16 +91,80 @@ async def test_plus_and_minus_change_the_count(size):
 
 
 async def test_s_shows_the_weights(size):
-    """The key s weighs the sheet's state: bars in the rows, the captured part and the mean; s again takes them away."""
+    """The key s weighs the sheet's state: bars in the rows, the captured part and the mean; then the level's own, then none."""
     async with app().run_test(size=size) as pilot:
         await settled(pilot)
         await pressed(pilot, "s")
         text = "\n".join(lines(pilot))
         assert ("packet 100.00%" if size[0] >= 100 else "100.00% pa…") in text
-        for words in ("60.65%", "30.33%", "state packet  mean 1 meV  spread 0.7 meV  captured 99.99"):
+        for words in ("60.65%", "30.33%", "its mean 1 meV  spread 0.7 meV"):
             assert words in text
+        await pressed(pilot, "k", "s")
+        assert "state level(1)  captured" in "\n".join(lines(pilot))
         await pressed(pilot, "s")
         assert "100.00%" not in "\n".join(lines(pilot))
+
+
+async def test_any_state_or_level_can_be_weighed(size):
+    """The key S lists the states of the sheet, every level and none."""
+    async with app().run_test(size=size) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "S", *"level(4)", "enter")
+        assert "state level(4)  captured" in "\n".join(lines(pilot))
+        await pressed(pilot, "S", *"none", "enter")
+        assert pilot.app.shown.look.state is None
+
+
+async def test_levels_near_an_energy(size):
+    """The key f asks for an energy, in the unit of the sheet; nothing goes back to the lowest levels, words change nothing."""
+    async with app().run_test(size=size) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "f")
+        assert "Levels near the energy (meV)" in "\n".join(lines(pilot))
+        await pressed(pilot, *"7.5", "enter")
+        assert pilot.app.shown.outcome.request.near == 7.5
+        await pressed(pilot, "f", *"x", "enter")
+        assert "does not do here" in "\n".join(lines(pilot))
+        await pressed(pilot, "f", *["backspace"] * 5, "enter")
+        assert pilot.app.shown.outcome.request.near is None
+
+
+async def test_the_tolerance_is_a_key(size):
+    """The key t asks for the tolerance."""
+    async with app().run_test(size=size) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "t", *["backspace"] * 9, *"1e-6", "enter")
+        assert pilot.app.shown.outcome.request.tolerance == 1e-6
+
+
+async def test_the_lines_in_full():
+    """What the narrow lines leave out is shown whole by i: basis, units, moments."""
+    async with app().run_test(size=(60, 24)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "i")
+        text = "\n".join(lines(pilot))
+        for words in ("elements of order 14", "x -9..9 nm", "<p> 0 spread 1.414 hbar/nm", "error <= 3e-12 meV"):
+            assert words in text
+        await pressed(pilot, "q")
+        assert "elements" not in "\n".join(lines(pilot))
+
+
+async def test_no_sheet_offers_the_presets():
+    """A session without a sheet starts with the list of presets; Tab leaves an empty sheet, Enter takes one."""
+    async with app("").run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        assert "Start from a preset, or Tab for an empty sheet" in "\n".join(lines(pilot))
+        await pressed(pilot, *"double-well", "enter")
+        assert "double-well" in lines(pilot)[0]
+
+
+async def test_the_table_gives_its_room_to_the_sheet():
+    """In a wide screen few levels take few rows, and the sheet has the others."""
+    async with app().run_test(size=(120, 40)) as pilot:
+        await settled(pilot)
+        assert pilot.app.query_one("#levels").size.height == 8
+        await pressed(pilot, *["plus"] * 9)
+        assert pilot.app.query_one("#levels").size.height == 18
 
 
 async def test_s_without_a_state_says_how_to_have_one(size):
@@ -238,10 +302,10 @@ def test_bottom_line_ends_with_help_and_quit():
 
 
 def test_keys_are_sound():
-    """Every key is bound once, every id is unique, and no action needs Alt, Escape or a function key."""
+    """Every key is bound once, every id is unique; only suspending needs Ctrl, nothing Alt, Escape or a function key."""
     names = [name for key in KEYS for name in key.keys.split(",")]
     assert len(names) == len(set(names))
     assert len({key.id for key in KEYS + TYPING}) == len(KEYS) + len(TYPING)
     assert not any(name.startswith(("alt", "escape", "f1")) for name in names)
-    assert all(any(not name.startswith("ctrl") for name in key.keys.split(",")) for key in KEYS)
+    assert all(any(not name.startswith("ctrl") for name in key.keys.split(",")) for key in KEYS if key.action != "suspend")
     assert all(action in ("done",) or key.area for key in TYPING for action in (key.action,))

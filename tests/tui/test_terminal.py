@@ -205,6 +205,37 @@ def test_nothing_typed_fast_is_lost(tmp_path):
     assert (tmp_path / "other.sheet").read_text() == "# quick " + SHEET
 
 
+def test_suspending_and_coming_back(tmp_path):
+    """From a shell with jobs ctrl+z gives the terminal back, and fg brings the screen back whole."""
+    (tmp_path / "well.sheet").write_text(SHEET)
+    environ = {**os.environ, "TERM": "xterm-256color", "LANG": "C.UTF-8", "PYTHONPATH": str(REPO), "PS1": "ready> "}
+    environ["XDG_STATE_HOME"] = str(tmp_path / "state")
+    shell = pexpect.spawn("bash", ["--norc", "-i"], dimensions=(24, 80), env=environ, timeout=30)
+    shell.sendline(f"{sys.executable} {CHILD} {tmp_path / 'well.sheet'}")
+    shell.expect("complete")
+    shell.send("\x1a")
+    shell.expect(r"\x1b\[\?1049l")
+    shell.expect("ready> ")
+    shell.sendline("echo a$((40+2))b; fg")
+    shell.expect("a42b")
+    shell.expect(r"\x1b\[\?1049h")
+    shell.expect("complete")
+    shell.send("q")
+    shell.expect("ready> ")
+    shell.sendline("exit")
+    shell.expect(pexpect.EOF)
+
+
+def test_without_a_shell_it_is_not_suspended(tmp_path):
+    """Where no shell could bring it back, ctrl+z says so and the session goes on."""
+    session = Session(tmp_path)
+    session.until("complete")
+    session.child.send("\x1a")
+    session.until("no shell to go back to")
+    session.child.send("q")
+    assert session.end()[0] == 0
+
+
 def test_leaving_does_not_wait(tmp_path):
     """While a computation that does not look up runs, q ends the session in a fraction of the time it still needs."""
     session = Session(tmp_path)

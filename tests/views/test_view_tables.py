@@ -108,7 +108,7 @@ def test_lines_are_cut_with_a_mark():
 def test_trust_line():
     """The line of trust says how sure, how many, whether complete, where, how and how long."""
     assert plain([trust_line(spectrum(3), UNITS, 120)]) == (
-        "error <= 3e-12 meV  3 levels, complete  x -9..9 nm  113 unknowns  elements of order 14  3.1 ms"
+        "error <= 3e-12 meV  3 levels, complete  x -9..9 nm  113 unknowns  3.1 ms  elements of order 14"
     )
 
 
