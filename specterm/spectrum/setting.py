@@ -15,6 +15,8 @@ from specterm.discrete.meshing import Span
 from specterm.discrete.problem import Problem
 from specterm.discrete.scan import Scan, energy_for, scan
 
+FINER = 8
+"""Into so many pieces the intervals of the scan are cut where the decay of a state is added up."""
 DEEP = 20.0
 """An open domain is cut where psi has fallen by exp(-DEEP) at least: what is lost then is of order exp(-2 DEEP) = 4e-18."""
 
@@ -118,7 +120,20 @@ def _death(ready: Setting, energy: float, side: int, action: float) -> float | N
     allowed = np.flatnonzero(look.potential < energy)
     start = len(look.x) // 2 if len(allowed) == 0 else int(allowed[0] if side == 0 else allowed[-1])
     part = slice(start, None) if side == 1 else slice(start, None, -1)
-    x, rate = look.x[part], decay[part]
+    found = _grown(look.x[part], decay[part], action)
+    if found is None:
+        return None
+    last = found[0]
+    coarse = look.x[part][: last + 1]
+    x = np.append((coarse[:-1, None] + np.diff(coarse)[:, None] * np.arange(FINER) / FINER).ravel(), coarse[-1])
+    fine = Scan(x, ready.problem.stiffness(x), ready.problem.effective(x)).decay(energy)
+    fine[~np.isfinite(fine)] = 1e300
+    again = _grown(x, fine, action)
+    return again[1] if again is not None else float(x[-1])
+
+
+def _grown(x: Array, rate: Array, action: float) -> tuple[int, float] | None:
+    """Return the first place of x, by number, up to which the rate adds up to `action`, and where it does; None if nowhere."""
     with np.errstate(all="ignore"):
         grown = np.concatenate([[0.0], np.cumsum(np.minimum((rate[1:] + rate[:-1]) / 2, 1e300) * np.abs(np.diff(x)))])
     beyond = np.flatnonzero(grown >= action)
@@ -126,4 +141,4 @@ def _death(ready: Setting, energy: float, side: int, action: float) -> float | N
         return None
     last = int(beyond[0])
     share = (action - grown[last - 1]) / (grown[last] - grown[last - 1])
-    return float(x[last - 1] + share * (x[last] - x[last - 1]))
+    return last, float(x[last - 1] + share * (x[last] - x[last - 1]))
