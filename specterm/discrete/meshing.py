@@ -216,6 +216,6 @@ def _missed(mesh: Mesh, here: Grid, look: Scan, origin: float, energy: float) ->
     guess = np.einsum("kn,kn->k", coefficients[element], np.polynomial.legendre.legvander(at, 9))
     size = np.abs(local).max(axis=1) + look.stiffness.min() * (np.pi / mesh.lengths) ** 2
     spread = np.ptp(local, axis=1)
-    off = np.abs(guess - v) > 0.05 * size[element] + 0.5 * spread[element]
+    off = np.abs(guess - v) > 1e-6 * size[element] + 0.5 * spread[element]
     rough[element[off]] = True
     return rough

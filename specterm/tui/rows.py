@@ -64,6 +64,9 @@ def level_rows(shown: Shown, width: int, height: int) -> Rows:
     if spectrum is None or outcome is None:
         rows = complaint(*shown.error, max(1, width), max(2, height)) if shown.error else ()
         return (rows + (((" " * max(0, width), "plain"),),) * height)[:height]
+    if not spectrum.levels:
+        words = ((" no level is bound", "title"),), ((" + asks for more: box levels", "plain"),)
+        return tuple(fit_row(row, width, shown.mark) for row in (words + ((),) * height)[:height])
     flip = not spectrum.from_top
     levels = spectrum.levels[::-1] if flip else spectrum.levels
     chosen = len(levels) - 1 - shown.look.chosen if flip else shown.look.chosen
@@ -195,5 +198,5 @@ def bottom_row(texts: Sequence[str], width: int) -> Row:
     runs: list[tuple[str, str]] = [(" ", "plain")]
     for text in kept:
         key, _, words = text.partition(" ")
-        runs += [(key, "key"), (f" {words}   ", "dim")]
-    return fit_row(tuple(runs), width)
+        runs += [(key, "key"), (f" {words}", "dim"), ("   ", "plain")]
+    return fit_row(tuple(runs[:-1]), width)
