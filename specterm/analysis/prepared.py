@@ -83,7 +83,7 @@ def _of_function(model: Model, spectrum: Spectrum, state: State, function: Funct
         function.centres(*hull),
         _inside(spectrum.states.places if spectrum.states is not None else np.empty(0), hull),
     ]
-    places = np.unique(np.concatenate([np.array(hull), *marks, np.linspace(*hull, 33)]))
+    places = np.unique(np.concatenate([np.array(hull), *marks, _scales(function, hull), np.linspace(*hull, 33)]))
     x, w, missed = resolved_points(function, places)
     values = np.nan_to_num(function(x))
     norm = float(np.sqrt((w * np.abs(values) ** 2).sum()))
@@ -101,6 +101,24 @@ def _of_function(model: Model, spectrum: Spectrum, state: State, function: Funct
 
 def _inside(places: Array, hull: tuple[float, float]) -> Array:
     return places[(places > hull[0]) & (places < hull[1])]
+
+
+def _scales(function: Function, hull: tuple[float, float]) -> Array:
+    """Return places on every scale around the function's natural centres, so that no narrow part of it is passed over."""
+    centres = function.centres(*hull)[:24]
+    steps = (hull[1] - hull[0]) * np.exp2(-np.arange(1.0, 48.0))
+    near = (centres[:, None] + np.concatenate([-steps, steps])).ravel()
+    return _inside(near, hull)
+
+
+def _densest(domain: Domain, function: Function, marks: Array) -> float:
+    """Return the largest |f|^2 d over distances d around the marks inside the domain: an estimate of the integral of |f|^2."""
+    d = np.exp2(np.arange(-60.0, 60.0, 0.5))
+    x = marks[:, None] + np.concatenate([-d, d])
+    with np.errstate(all="ignore"):
+        shares = np.abs(function(x.ravel()).reshape(x.shape)) ** 2 * np.concatenate([d, d])
+    inside = (x > domain.left) & (x < domain.right) & np.isfinite(shares)
+    return float(np.max(shares[inside], initial=0.0))
 
 
 def _hull(domain: Domain, function: Function, spectrum: Spectrum) -> tuple[float, float] | None:
@@ -127,10 +145,7 @@ def _hull(domain: Domain, function: Function, spectrum: Spectrum) -> tuple[float
         if not np.isfinite(shares[np.isfinite(values)]).all() or np.isinf(values).any() or np.isnan(values[:400]).any():
             return None
         shares = np.nan_to_num(shares)
-        total = float(
-            np.abs(function(np.linspace(spectrum.left, spectrum.right, 400))).max() ** 2 * (spectrum.right - spectrum.left)
-        )
-        total = max(total, float(shares.max()))
+        total = max(_densest(domain, function, np.array([*marks, start])), float(shares.max()))
         if shares[-1] > 1e-12 * total:
             return None
         alive = np.flatnonzero(shares > 1e-34 * total)

@@ -23,6 +23,8 @@ from specterm.spectrum.vectors import Solved, solve_levels
 OVERSHOOT = 1e-3
 """Levels are refined to this share of the tolerance: it costs little, and the error left is mostly rounding."""
 ROUNDS = 14
+MIXING = 30.0
+"""Rounding of the vertex matrix, which mixes neighbours, over that of the Rayleigh quotients; twice the largest seen."""
 BOLD = 0.01
 """Elements are split that hold more than this share of their part of the error wanted: few rounds rather than few elements."""
 LARGE = 20_000
@@ -103,7 +105,7 @@ def _vector_error(solved: Solved, found: Accuracy) -> Array:
     gap = np.where(np.isfinite(gap), gap, np.abs(values) + np.abs(solved.kinetic))
     with np.errstate(all="ignore"):
         off = np.sqrt((SAFETY * found.residual.sum(axis=0) + 2 * found.cut.sum(axis=0)) / gap)
-        off = off + (SAFETY * found.unseen.sum(axis=0) + found.noise) / gap
+        off = off + (SAFETY * found.unseen.sum(axis=0) + MIXING * found.noise) / gap
     return np.where(np.isfinite(off), np.minimum(off, 1.0), 1.0)
 
 
