@@ -80,7 +80,7 @@ def _refuse_poles(problem: Problem, x: Array, potential: Array) -> None:
             rows = np.arange(len(peaks))
             left, right = places[rows, best - 1], places[rows, best + 1]
         centre = (left + right) / 2
-        steps = spans[:, None] * 10.0 ** -np.arange(1, 7)
+        steps = np.maximum(spans, 1e-4 * np.abs(centre))[:, None] * 10.0 ** -np.arange(1, 7)
         both = [np.abs(problem.potential((centre[:, None] + side * steps).ravel()).reshape(steps.shape)) for side in (-1, 1)]
         slopes = [np.median(np.diff(np.log10(values), axis=1), axis=1) for values in both]
     poles = (slopes[0] > 0.7) | (slopes[1] > 0.7)
