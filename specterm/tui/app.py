@@ -56,6 +56,7 @@ class Specterm(Keyed):
         self.found: dict[int | str, MomentsText | Weighed | None] = {}
         self._pause: Timer | None = None
         self._table = 0
+        self._near: float | None = None
         self.last_words = ""
 
     def compose(self) -> ComposeResult:
@@ -155,6 +156,9 @@ class Specterm(Keyed):
         else:
             self.found = {}
             look = self.shown.look.fitted(outcome.spectrum, outcome.states)
+            if outcome.request.near is not None and outcome.request.near != self._near:
+                look = look.nearest(outcome.request.near, outcome.spectrum)
+            self._near = outcome.request.near
             self.shown = replace(self.shown, outcome=outcome, stale=False, look=look)
         self.say("" if outcome.error else "; ".join(outcome.notes))
         self._share(outcome)

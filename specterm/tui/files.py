@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import os
+import re
 from collections.abc import Callable
 from pathlib import Path
 from typing import TYPE_CHECKING
 
-from specterm.errors import SheetError
+from specterm.errors import SheetError, printable
 from specterm.session import presets, rescue
 from specterm.session.document import Document, load, save, shown, write_text
 from specterm.tui.dialogs import Chooser, Entry, Question
@@ -17,6 +18,17 @@ if TYPE_CHECKING:
 
 _MOST = 500
 _CLIPBOARD = 50_000
+
+
+_NAMED = re.compile(r"\b(?:table|of)\s*\(?\s*\"([^\"]+)\"")
+
+
+def _left_behind(text: str, old: Path, new: Path) -> tuple[str, Path] | None:
+    """Return a file that the sheet names, found from the old folder on but not from the new one, and where it lies."""
+    for name in _NAMED.findall(text):
+        if (old / name).is_file() and not (new / name).exists():
+            return printable(name), (old / name).resolve()
+    return None
 
 
 class Files:
@@ -60,9 +72,13 @@ class Files:
         except SheetError as error:
             self.app.say(f"{error.message}; {error.mend}", "warn")
             return
+        left = _left_behind(document.text, self.app.folder, path.parent)
         rescue.drop(self.app.document.path)
         self.app.adopt(document)
-        self.app.say(f"saved {shown(path)}", "good")
+        if left:
+            self.app.say(f"saved, but {left[0]} is not beside it: copy it from {shown(left[1])}", "warn")
+        else:
+            self.app.say(f"saved {shown(path)}", "good")
         if then is not None:
             then()
 

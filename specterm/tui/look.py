@@ -32,6 +32,12 @@ class Look:
         sign = -1 if spectrum.from_top else 1
         return replace(self, chosen=min(max(self.chosen + sign * steps, 0), len(spectrum.levels) - 1))
 
+    def nearest(self, energy: float, spectrum: Spectrum | None) -> Look:
+        """Return the look with the level nearest to an energy chosen."""
+        if spectrum is None or not spectrum.levels:
+            return self
+        return replace(self, chosen=min(range(len(spectrum.levels)), key=lambda n: abs(spectrum.levels[n].value - energy)))
+
     def next_view(self) -> Look:
         """Return the look with the next view."""
         return replace(self, mode=_after(self.mode, MODES))

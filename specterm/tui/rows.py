@@ -65,8 +65,8 @@ def level_rows(shown: Shown, width: int, height: int) -> Rows:
         rows = complaint(*shown.error, max(1, width), max(2, height)) if shown.error else ()
         return (rows + (((" " * max(0, width), "plain"),),) * height)[:height]
     if not spectrum.levels:
-        words = ((" no level is bound", "title"),), ((" + asks for more: box levels", "plain"),)
-        return tuple(fit_row(row, width, shown.mark) for row in (words + ((),) * height)[:height])
+        said: Rows = (((" no level is bound", "title"),), ((" + asks for more: box levels", "plain"),))
+        return tuple(fit_row(row, width, shown.mark) for row in (said + ((),) * height)[:height])
     flip = not spectrum.from_top
     levels = spectrum.levels[::-1] if flip else spectrum.levels
     chosen = len(levels) - 1 - shown.look.chosen if flip else shown.look.chosen

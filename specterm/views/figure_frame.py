@@ -91,7 +91,10 @@ def _title(scene: Scene, frame: Frame, words: Row, name: str) -> Row:
     left = axis_title("energy", frame.energies.note, scene.axes.energy)
     gap = frame.width - width_of(left) - row_width(words)
     if gap < 2:
-        return (*words,)
+        words = tuple((text.replace(" hatched", ""), style) for text, style in words)
+        gap = frame.width - width_of(left) - row_width(words)
+    if gap < 2:
+        return ((left, "axis"), ("  ", "plain"), *words) if frame.gutter else words
     if name and width_of(name) + 4 <= gap:
         before = (gap - width_of(name)) // 2
         after = gap - width_of(name) - before

@@ -69,6 +69,18 @@ async def test_a_save_that_fails_says_why(tmp_path):
         assert "cannot write" in "\n".join(lines(pilot))
 
 
+async def test_tables_left_behind_are_named(tmp_path):
+    """A sheet saved away from its table says which file is missing beside it and where it lies."""
+    (tmp_path / "scan.csv").write_text("x,V\n0,0\n")
+    (tmp_path / "new").mkdir()
+    sheet = tmp_path / "a.sheet"
+    sheet.write_text('V = table("scan.csv", "x", "V")\n' + SHEET)
+    async with app(sheet.read_text(), sheet).run_test(size=(120, 40)) as pilot:
+        await settled(pilot)
+        await named(pilot, "a", tmp_path / "new" / "a.sheet")
+        assert "saved, but scan.csv is not beside it" in "\n".join(lines(pilot))
+
+
 async def test_opening_another_sheet(sheet, tmp_path):
     """The key o lists the sheets of the folder, typing narrows the list, Enter opens; Tab goes back without."""
     (tmp_path / "trap.sheet").write_text("# A trap\nH = p^2\n")

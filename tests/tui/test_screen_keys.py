@@ -123,6 +123,7 @@ async def test_levels_near_an_energy(size):
         assert "Levels near the energy (meV)" in "\n".join(lines(pilot))
         await pressed(pilot, *"7.5", "enter")
         assert pilot.app.shown.outcome.request.near == 7.5
+        assert pilot.app.shown.look.chosen == 5
         await pressed(pilot, "f", *"x", "enter")
         assert "does not do here" in "\n".join(lines(pilot))
         await pressed(pilot, "f", *["backspace"] * 5, "enter")
