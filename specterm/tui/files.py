@@ -167,7 +167,12 @@ class Files:
 
     def leave(self) -> None:
         """End the session; asks when there is unsaved text."""
-        self._guarded(lambda: self.app.exit(0))
+
+        def go() -> None:
+            self.app.work.stop()
+            self.app.exit(0)
+
+        self._guarded(go)
 
     def offer_rescued(self) -> None:
         """Offer unsaved text of an earlier session, if there is any."""
