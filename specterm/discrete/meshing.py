@@ -36,19 +36,22 @@ class Span:
 
 def build(problem: Problem, look: Scan, coefficients: Coefficients, span: Span, energy: float) -> Mesh:
     """Return a mesh that resolves the coefficients and waves up to `energy` (measured like the scan's V)."""
-    places = graded(_first_places(problem, look, span, energy))
+    places = graded(_first_places(problem, look, span, energy, 1e-14 * abs(energy - coefficients.origin)))
     order = ORDER_BETWEEN_KNOTS if problem.knots > 40 and problem.knots > len(places) // 3 else ORDER
     mesh = Mesh(places, order, span.left_edge, span.right_edge, problem.phase)
     return resolve(mesh, coefficients, energy - coefficients.origin, look)
 
 
-def _first_places(problem: Problem, look: Scan, span: Span, energy: float) -> Array:
-    """Return element boundaries by equal shares of phase and decay between the places where coefficients jump."""
+def _first_places(problem: Problem, look: Scan, span: Span, energy: float, rounding: float) -> Array:
+    """Return element boundaries by equal shares of phase and decay between the places where coefficients jump.
+
+    Kinetic energies below `rounding` count as none.
+    """
     inner = (look.x > span.left) & (look.x < span.right)
     x = np.concatenate([[span.left], look.x[inner], [span.right]])
     with np.errstate(all="ignore"):
         smooth = _without_powers(look, span)
-        rate = smooth.wave_number(energy)[inner] / ALLOWED + smooth.decay(energy)[inner] / FORBIDDEN
+        rate = smooth.wave_number(energy - rounding)[inner] / ALLOWED + smooth.decay(energy)[inner] / FORBIDDEN
         scale = 4 / np.maximum(span.right - span.left, np.finfo(float).tiny)
     rate = np.where(np.isfinite(rate), rate, scale)
     rate = np.concatenate([rate[:1], rate, rate[-1:]]) if len(rate) else np.full(2, scale)

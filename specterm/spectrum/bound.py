@@ -36,7 +36,7 @@ def bound_levels(ready: Setting) -> int | None:
             places.append(place)
             edges.append(Edge(False, pull=_pull(ready, end, place, side)))
         else:
-            one = _other(ready, side)
+            one = other_end(ready, side)
             places.append(one[0])
             edges.append(one[1])
     span = Span(places[0], places[1], edges[0], edges[1])
@@ -86,7 +86,7 @@ def _reach(ready: Setting, end: FarEnd, side: int) -> float:
     return float(min(end.reach, outer - 0.1 * width) if side == 0 else max(end.reach, outer + 0.1 * width))
 
 
-def _other(ready: Setting, side: int) -> tuple[float, Edge]:
+def other_end(ready: Setting, side: int) -> tuple[float, Edge]:
     """Return place and edge of an end above the threshold (cut where psi has died) or of a finite end."""
     apart = Setting(ready.problem, ready.look, ready.outer, _alone(ready, side), ready.extra, ready.floor, ready.threshold)
     span = span_at(apart, ready.threshold, (2 * DEEP, 2 * DEEP))

@@ -18,7 +18,7 @@ from specterm.discrete.reduce import problem_of
 from specterm.discrete.scan import semiclassical_count
 from specterm.errors import PhysicsError
 from specterm.model import Model
-from specterm.spectrum.bound import bound_levels
+from specterm.spectrum.bound import bound_levels, other_end
 from specterm.spectrum.firstorder import running_levels
 from specterm.spectrum.fourier import dense_levels
 from specterm.spectrum.refine import Refined, Request, first_mesh, refine
@@ -33,6 +33,8 @@ MISSED = "some levels do not reach the tolerance: kind unresolved"
 COUNTED = 1e-14
 """Counts are trusted to tell levels apart by this share of them, and on meshes graded to tiny elements, by `BLURRED`."""
 BLURRED = 1e-7
+FELT = 0.05
+"""A box reaches as far as the potential, times the square of the distance, over the coefficient between the momenta, is more."""
 USUAL = 10
 """How many levels are computed when nobody says."""
 
@@ -189,17 +191,19 @@ def _reach(ready: Setting) -> Span:
         end = ready.ends[side]
         if isinstance(end, FarEnd) and np.isfinite(end.limit):
             beyond = (sign * (look.x - ends[side]) > 0) & np.isfinite(look.potential)
-            off = np.abs(look.potential - end.limit)
-            alive = look.x[beyond & (off > 1e-3 * np.max(off[beyond], initial=0.0))]
+            with np.errstate(all="ignore"):
+                pull = np.abs(look.potential - end.limit) * (look.x - ends[side]) ** 2 / look.stiffness
+            alive = look.x[beyond & (pull > FELT)]
             reach = sign * float(np.max(sign * alive, initial=sign * ends[side]))
             ends[side] = reach if abs(reach - ends[side]) < 1e6 * max(1.0, abs(ends[side])) else ends[side]
     width = (ends[1] - ends[0]) or 1.0
     places, edges = [], []
-    for side, sign, place in ((0, -1.0, problem.left), (1, 1.0, problem.right)):
+    for side, sign in ((0, -1.0), (1, 1.0)):
         near = ready.ends[side]
-        if isinstance(near, NearEnd) and near.kind != "steep":
+        if isinstance(near, NearEnd):
+            place, edge = other_end(ready, side)
             places.append(place)
-            edges.append(Edge(near.kind == "wall", near.power if near.kind == "power" else None, near.alpha))
+            edges.append(edge)
         else:
             places.append(ends[side] + sign * width)
             edges.append(Edge(True))

@@ -193,9 +193,22 @@ def _edges(condensed: Condensed, coefficients: Values) -> Array:
 
 
 def _group(condensed: Condensed, group: Group, ruler: Ruler) -> Part:
-    """Return the levels of one group by inverse iteration on a block and a small Rayleigh-Ritz problem."""
+    """Return the levels of one group by inverse iteration on a block and small Rayleigh-Ritz problems.
+
+    The first takes the interiors of the elements at the group's energy; the second at each level's own.
+    """
     z, energy = _block(condensed, group, ruler)
-    coefficients = element_coefficients(condensed, z, np.full(z.shape[1], energy))
+    energies = np.full(z.shape[1], energy)
+    for _ in range(2):
+        coefficients = element_coefficients(condensed, z, energies)
+        values, mix, kinetic = _ritz(condensed, coefficients, energy)
+        z, energies = z @ mix, energy + values
+    own = np.real(np.einsum("ki,kl,li->i", mix.conj(), kinetic, mix))
+    return Part(group.first, energies, coefficients @ mix, own)
+
+
+def _ritz(condensed: Condensed, coefficients: Values, energy: float) -> tuple[Array, Values, Values]:
+    """Return values measured from `energy`, the mixture that makes the levels, and the form's part with derivatives."""
     here = condensed.grid
     n = condensed.mesh.order + 1
     psi, slope = here.values[..., :n] @ coefficients, here.slopes[..., :n] @ coefficients
@@ -207,9 +220,7 @@ def _group(condensed: Condensed, group: Group, ruler: Ruler) -> Part:
     white = np.linalg.inv(np.linalg.cholesky(mass)).conj().T
     inner = white.conj().T @ (form - energy * mass) @ white
     values, mix = np.linalg.eigh((inner + inner.conj().T) / 2)
-    mix = white @ mix
-    own = np.real(np.einsum("ki,kl,li->i", mix.conj(), kinetic, mix))
-    return Part(group.first, energy + values, coefficients @ mix, own)
+    return values, white @ mix, kinetic
 
 
 def _block(condensed: Condensed, group: Group, ruler: Ruler) -> tuple[Values, float]:
