@@ -90,7 +90,11 @@ def of_operator(operator: Operator, text: str, unit: str = "") -> Observable:
 
 def unit_of(model: Model, text: str) -> str:
     """Return the name of an observable's unit where it is an energy, a length, its inverse or a time; "" where not known."""
-    units = model.units
+    units, plain = model.units, text.strip()
+    if plain == model.main:
+        return units.energy
+    if plain == model.domain.coordinate:
+        return model.coordinate_unit
     named = {ENERGY: units.energy, LENGTH: units.length, TIME: units.time, LENGTH**-1: f"1/{units.length}"}
     dimension = dimension_of(model, text)
     return "" if dimension is None else named.get(dimension, "")
@@ -100,6 +104,8 @@ def dimension_of(model: Model, text: str) -> Dimension | None:
     """Return the dimension of an expression over the sheet's names, None where it is not known or there are no units."""
     if not model.units.energy:
         return None
+    if text.strip() == model.domain.coordinate and model.coordinate_unit:
+        return LENGTH
     try:
         return check_dimensions(model.sheet, model.units).of(parse_expression(text))
     except SheetError:

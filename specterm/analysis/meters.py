@@ -1,0 +1,337 @@
+"""What a measurement of an observable can give: levels of the operator, or bins of a value that varies along an axis."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from typing import Protocol
+
+import numpy as np
+
+from specterm.analysis.measured_wave import Wave, turned
+from specterm.analysis.observables import unit_of
+from specterm.analysis.uncertainty import vanishing
+from specterm.arrays import Array, Values
+from specterm.errors import PhysicsError
+from specterm.model import Function, Model, Operator
+from specterm.model.regular import regular_part, regular_slope
+from specterm.model.term import linear
+from specterm.spectrum import Spectrum, solve
+
+SMALLEST = 1e-10
+"""Outcomes less probable than this are left out."""
+MOST_BINS = 4_000
+MOST_VALUES = 64
+"""A function of the coordinate with no more values than this, constant between its jumps, has those as outcomes."""
+WANTED = 1 - 1e-9
+MOST_LEVELS = 256
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """One result: its `value` (a level, or the middle of a bin from `low` to `high`), its `probability`, the levels in it."""
+
+    value: float
+    probability: float
+    low: float
+    high: float
+    levels: tuple[int, ...] = ()
+
+
+class Meter(Protocol):
+    """A measurement of one observable; `unit` names its unit, "" where it is not known."""
+
+    @property
+    def text(self) -> str:
+        """The observable as the user wrote it."""
+
+    @property
+    def unit(self) -> str:
+        """The name of its unit."""
+
+    def outcomes(self, wave: Wave) -> list[Outcome]:
+        """Return the results a state can give, ascending in value, with their probabilities."""
+
+    def collapsed(self, wave: Wave, outcome: Outcome) -> Wave:
+        """Return the state afterwards, projected and normalised."""
+
+
+@dataclass(frozen=True)
+class LevelMeter:
+    """A measurement whose results are levels; levels equal within their errors are one result (Lueders' rule)."""
+
+    text: str
+    unit: str
+    spectrum: Spectrum
+    hbar: float
+
+    def outcomes(self, wave: Wave) -> list[Outcome]:
+        """Return one outcome for each group of equal levels."""
+        shares = np.abs(amplitudes(self.spectrum, wave)) ** 2
+        found = []
+        for group in self.groups():
+            levels = [self.spectrum.levels[row] for row in group]
+            values = [level.value for level in levels]
+            share = float(shares[list(group)].sum())
+            if share > SMALLEST:
+                middle = float(np.mean(values))
+                found.append(Outcome(middle, share, min(values), max(values), tuple(level.index for level in levels)))
+        return found
+
+    def groups(self) -> list[tuple[int, ...]]:
+        """Return the rows of the spectrum, those of equal levels together."""
+        levels = self.spectrum.levels
+        groups: list[list[int]] = []
+        for row in sorted(range(len(levels)), key=lambda k: levels[k].value):
+            last = levels[groups[-1][-1]] if groups else None
+            reach = (levels[row].error or 0.0) + ((last.error or 0.0) if last else 0.0)
+            if last is not None and levels[row].value - last.value <= reach:
+                groups[-1].append(row)
+            else:
+                groups.append([row])
+        return [tuple(group) for group in groups]
+
+    def collapsed(self, wave: Wave, outcome: Outcome) -> Wave:
+        """Return the part of the wave in the levels of the outcome, normalised."""
+        rows = [row for row, level in enumerate(self.spectrum.levels) if level.index in outcome.levels]
+        kept = np.zeros(len(self.spectrum.levels), dtype=complex)
+        kept[rows] = amplitudes(self.spectrum, wave)[rows]
+        return level_wave(self.spectrum, kept)
+
+
+def amplitudes(spectrum: Spectrum, wave: Wave) -> Values:
+    """Return <n|psi> for every level, shape (levels,), on the axis the wave is given on."""
+    states = spectrum.states
+    if states is None:
+        return np.zeros(0, dtype=complex)
+    if wave.axis == "x":
+        cut = wave.cut(states.places)
+        x, w = cut.rule
+        return np.asarray(states.evaluate(x).conj() @ (w * cut.values))
+    x, w = level_wave(spectrum, np.ones(len(spectrum.levels), dtype=complex)).cut(_steps(spectrum, wave)).rule
+    psi = states.evaluate(x) * w / math.sqrt(2 * math.pi)
+    k, weight = wave.rule
+    total = np.zeros(len(spectrum.levels), dtype=complex)
+    for start in range(0, len(k), 500):
+        some = slice(start, start + 500)
+        momentum = psi @ np.exp(-1j * np.outer(x, k[some]))
+        total += momentum.conj() @ (weight * wave.values)[some]
+    return total
+
+
+def _steps(spectrum: Spectrum, wave: Wave) -> Array:
+    """Return places close enough for the plane waves of a wave over k."""
+    most = float(max(abs(wave.lows[0]), abs(wave.highs[-1])))
+    return np.linspace(spectrum.left, spectrum.right, int((spectrum.right - spectrum.left) * most / 15) + 2)
+
+
+def level_wave(spectrum: Spectrum, kept: Values) -> Wave:
+    """Return the normalised sum of levels with the amplitudes `kept` (levels,); PhysicsError where there are none."""
+    states = spectrum.states
+    norm = float(np.linalg.norm(kept)) if len(kept) else 0.0
+    if states is None or not norm > 0:
+        raise PhysicsError("this outcome has probability 0 in this state", mend="choose another outcome")
+    return Wave("x", lambda x: (kept / norm) @ states.evaluate(x), states.places[:-1], states.places[1:])
+
+
+@dataclass(frozen=True)
+class AxisMeter:
+    """A measurement of a function of the coordinate ("x") or of the wave number ("k").
+
+    Results are the bins from j * width to (j + 1) * width, or, without a width, the few values the function has. `marks`
+    are places on the axis where the function jumps or turns; `outermost` are the first and the last bin, by their number,
+    which hold all that lies beyond; `span` is the part of the axis looked at when a state comes from the other one.
+    """
+
+    text: str
+    unit: str
+    axis: str
+    function: Callable[[Array], Array]
+    marks: Array
+    width: float | None
+    outermost: tuple[float, float] = (-math.inf, math.inf)
+    span: tuple[float, float] | None = None
+
+    def outcomes(self, wave: Wave) -> list[Outcome]:
+        """Return the bins that hold something."""
+        return self._sorted(wave)[0]
+
+    def collapsed(self, wave: Wave, outcome: Outcome) -> Wave:
+        """Return the part of the wave whose values lie in the bin, normalised."""
+        found, cut, bins = self._sorted(wave)
+        place = min(range(len(found)), key=lambda k: abs(found[k].value - outcome.value))
+        return cut.only(bins == _bin_of(self, found[place].value))
+
+    def _sorted(self, wave: Wave) -> tuple[list[Outcome], Wave, Array]:
+        """Return the outcomes, the wave with its pieces cut at the edges of bins, and the bin of each piece."""
+        here = wave if wave.axis == self.axis else turned(wave, self.span)
+        cut = here.cut(self._crossings(here))
+        values = self.function((cut.lows + cut.highs) / 2)
+        bins = values if self.width is None else np.floor(values / self.width)
+        found = []
+        for one in np.unique(bins):
+            share = float(cut.shares[bins == one].sum())
+            if share > SMALLEST:
+                found.append(self._outcome(float(one), share))
+        return found, cut, bins
+
+    def _outcome(self, number: float, share: float) -> Outcome:
+        """Return the result of a bin, or of a value."""
+        if self.width is None:
+            return Outcome(number, share, number, number)
+        low = -math.inf if number == self.outermost[0] else number * self.width
+        high = math.inf if number == self.outermost[1] else (number + 1) * self.width
+        return Outcome((number + 0.5) * self.width, share, low, high)
+
+    def _crossings(self, wave: Wave) -> Array:
+        """Return the places where the function passes the edge of a bin, to full precision by bisection."""
+        if self.width is None:
+            return self.marks
+        x = np.unique(np.concatenate([wave.lows, wave.highs, wave.rule[0], self.marks]))
+        numbers = self.function(x) / self.width
+        first, last = np.floor(numbers[:-1]), np.floor(numbers[1:])
+        if np.abs(last - first).sum() > MOST_BINS:
+            raise PhysicsError(
+                f"`{self.text}` would fall into more than {MOST_BINS} bins", mend="ask for fewer with --bins, or wider ones"
+            )
+        passed = [
+            (k, edge)
+            for k in np.flatnonzero(first != last)
+            for edge in np.arange(min(first[k], last[k]) + 1, max(first[k], last[k]) + 1)
+        ]
+        if not passed:
+            return self.marks
+        rows = np.array([k for k, _ in passed])
+        edges = np.array([edge for _, edge in passed]) * self.width
+        return np.unique(np.concatenate([_crossings(self.function, x[rows], x[rows + 1], edges), self.marks]))
+
+
+def _bin_of(meter: AxisMeter, value: float) -> float:
+    return value if meter.width is None else math.floor(value / meter.width)
+
+
+def _crossings(function: Callable[[Array], Array], low: Array, high: Array, edges: Array) -> Array:
+    """Return where a function passes each of the `edges` between `low` and `high` (n,), to full precision."""
+    rising = function(high) > function(low)
+    for _ in range(80):
+        middle = (low + high) / 2
+        down = (function(middle) >= edges) == rising
+        low, high = np.where(down, low, middle), np.where(down, middle, high)
+        if np.all(high - low <= 2 * np.spacing(np.maximum(np.abs(low), np.abs(high)))):
+            break
+    return high
+
+
+def meter_for(
+    model: Model, spectrum: Spectrum, text: str, wave: Wave, *, bins: int = 24, width: float | None = None, least: int = 16
+) -> Meter:
+    """Return the measurement of an observable, made for a state: as many levels as hold it, or about `bins` bins.
+
+    `width` fixes the width of the bins, in the observable's unit. Raises PhysicsError where the observable is not Hermitian,
+    not self-adjoint on the domain, or has a continuous spectrum that is not known here.
+    """
+    operator = model.observable(text)
+    fault = operator.hermitian()
+    if fault is not None:
+        raise PhysicsError(f"`{text}` is not an observable: {fault.reason}", mend=fault.mend)
+    unit = unit_of(model, text)
+    along = _along(model, operator)
+    if along is not None:
+        axis, function, marks = along
+        meter = AxisMeter(text, unit, axis, function, marks, None)
+        return meter if width is None and _few_values(operator, wave) else _binned(meter, wave, bins, width)
+    if vanishing(operator - model.operator):
+        return LevelMeter(text, unit, holding(model, spectrum, wave, None, least), model.hbar)
+    other = replace(model, main=text, operators={**model.operators, text: operator})
+    return LevelMeter(text, unit, holding(other, None, wave, _near(operator, wave), least), model.hbar)
+
+
+def _along(model: Model, operator: Operator) -> tuple[str, Callable[[Array], Array], Array] | None:
+    """Return axis, function and marks of an observable that is a function of the coordinate, or of p on an open line."""
+    domain = model.domain
+    if operator.order == 0:
+        function = operator.function
+        if function is None:
+            return None
+        edges = function.edges(domain.left, domain.right)
+        return "x", lambda x: np.real(function(x)).astype(np.float64), edges
+    if domain.left_end != "open" or domain.right_end != "open":
+        return None
+    parts = {k: Function(linear(pairs)).constant for k, pairs in operator.normal.items()}
+    if any(value is None for value in parts.values()):
+        return None
+    powers = [(k, complex(value)) for k, value in parts.items() if value is not None]
+    return "k", lambda k: np.real(sum(c * (1j * k) ** n for n, c in powers)).astype(np.float64), np.zeros(1)
+
+
+def _few_values(operator: Operator, wave: Wave) -> bool:
+    """Say whether an observable is a function of the coordinate with few values, constant between its jumps."""
+    function = operator.function
+    if function is None or wave.axis != "x":
+        return False
+    x = wave.rule[0]
+    slope = regular_slope(function)
+    flat = slope.constant == 0 or not np.any(slope(x))
+    return bool(flat) and len(np.unique(function(x))) <= MOST_VALUES
+
+
+def _binned(meter: AxisMeter, wave: Wave, bins: int, width: float | None) -> AxisMeter:
+    """Return the meter with bins of a width of 1, 2 or 5 times a power of ten, about `bins` over all but 1e-4 of the state.
+
+    Values far outside, beyond three times that range, fall into the outermost bins.
+    """
+    here = wave if wave.axis == meter.axis else turned(wave)
+    values = meter.function(here.rule[0])
+    share = here.rule[1] * np.abs(here.values) ** 2
+    order = np.argsort(values)
+    rising = np.cumsum(share[order]) / share.sum()
+    low, high = (float(values[order[min(int(np.searchsorted(rising, q)), len(order) - 1)]]) for q in (5e-5, 1 - 5e-5))
+    step = width or _nice((high - low) / bins)
+    if (high - low) / step > MOST_BINS / 4:
+        raise PhysicsError(f"`{meter.text}` would fall into {(high - low) / step:.3g} bins", mend="ask for wider ones")
+    reach = max(high - low, 4 * step)
+    first, last = math.floor((low - reach) / step), math.floor((high + reach) / step)
+    inner = meter.function
+
+    def held(x: Array) -> Array:
+        found: Array = np.clip(np.nan_to_num(inner(x)), (first + 0.5) * step, (last + 0.5) * step)
+        return found
+
+    middle, half = (here.lows[0] + here.highs[-1]) / 2, (here.highs[-1] - here.lows[0]) / 2
+    span = (float(middle - 1.5 * half), float(middle + 1.5 * half))
+    return replace(meter, function=held, width=step, outermost=(first, last), span=span)
+
+
+def _nice(size: float) -> float:
+    """Return 1, 2 or 5 times a power of ten, the nearest to a size on a logarithmic scale; 1 for nothing."""
+    if not size > 0 or not math.isfinite(size):
+        return 1.0
+    power = 10.0 ** math.floor(math.log10(size))
+    return power * min((1, 2, 5, 10), key=lambda m: abs(math.log(m * power / size)))
+
+
+def holding(model: Model, known: Spectrum | None, wave: Wave, near: float | None, least: int) -> Spectrum:
+    """Return as many levels of the main operator as it takes to hold a wave, from those known on."""
+    count = max(16, least)
+    found = known if known is not None and len(known.levels) >= count else solve(model, count=count, near=near)
+    while True:
+        if found.bound is not None and len(found.levels) > found.bound > 0:
+            return solve(model, count=found.bound)
+        held = float((np.abs(amplitudes(found, wave)) ** 2).sum())
+        if held >= WANTED * wave.norm or count >= MOST_LEVELS or (found.bound is not None and len(found.levels) >= found.bound):
+            return found
+        count = min(2 * max(count, len(found.levels)), MOST_LEVELS)
+        found = solve(model, count=count, near=near)
+
+
+def _near(operator: Operator, wave: Wave) -> float | None:
+    """Return the energy to look for levels around, the mean in the wave, where the operator has neither end."""
+    if operator.order > 1 or wave.axis != "x":
+        return None
+    x, w = wave.rule
+    step = 1e-5 * float(np.min(wave.highs - wave.lows))
+    slope = (wave.at(x + step) - wave.at(x - step)) / (2 * step)
+    parts = {k: Function(linear(pairs)) for k, pairs in operator.normal.items()}
+    moved = sum((np.nan_to_num(regular_part(c)(x)) * (slope if k else wave.values) for k, c in parts.items()), np.zeros(len(x)))
+    return float(np.real((w * wave.values.conj() * moved).sum())) / wave.norm
