@@ -37,7 +37,7 @@ class States(Protocol):
         """Return ascending places between which the states are smooth."""
 
     def evaluate(self, x: Array, derivative: int = 0) -> Values:
-        """Return psi, d psi/dx (derivative 1) or the second derivative (2) of every state at x, shape (states, n); 0 off the mesh."""
+        """Return psi or its first or second derivative for every state at x, shape (states, n); 0 off the mesh."""
 
 
 @dataclass(frozen=True)

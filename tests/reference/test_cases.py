@@ -108,7 +108,8 @@ def outcomes(case: dict, spectrum: Spectrum) -> dict[int, Outcome]:
         level = levels.get(index)
         off = float(abs(Fraction(level.value) - value)) if level else float("inf")
         last = abs(float(value)) * 10.0 ** (1 - case["digits"])
-        scale = case["scale"] + (float(abs(value - lowest)) if lowest is not None else 0.0)
+        above = float(abs(value - lowest)) if lowest is not None else 0.0
+        scale = max(case["scale"] + above, float(abs(value)))
         compared[index] = Outcome(level, off, last, scale)
     return compared
 
