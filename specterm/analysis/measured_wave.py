@@ -100,9 +100,7 @@ def turned(wave: Wave, span: tuple[float, float] | None = None) -> Wave:
     sign = -1j if wave.axis == "x" else 1j
     other = "k" if wave.axis == "x" else "x"
     extent = float(max(wave.highs[-1] - wave.lows[0], 1e-300))
-    centre, reach = _extent(wave)
-    if span is not None:
-        reach = (span[1] - span[0]) / 2 + abs((span[0] + span[1]) / 2 - centre)
+    centre, reach = _extent(wave) if span is None else ((span[0] + span[1]) / 2, max(abs(span[0]), abs(span[1])))
     while True:
         fine = _fine(wave, reach)
         x, w = fine.rule

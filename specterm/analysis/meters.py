@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import Protocol
 
 import numpy as np
@@ -64,11 +64,20 @@ class LevelMeter:
     text: str
     unit: str
     spectrum: Spectrum
-    hbar: float
+    samples: dict[int, Sample] = field(default_factory=dict, repr=False, compare=False)
+
+    def amplitudes(self, wave: Wave) -> Values:
+        """Return <n|psi> for every level, shape (levels,)."""
+        if wave.axis == "x" or self.spectrum.states is None:
+            return amplitudes(self.spectrum, wave)
+        parts = fineness(self.spectrum, wave)
+        if parts not in self.samples:
+            self.samples[parts] = sampled(self.spectrum, wave)
+        return amplitudes(self.spectrum, wave, self.samples[parts])
 
     def outcomes(self, wave: Wave) -> list[Outcome]:
         """Return one outcome for each group of equal levels."""
-        shares = np.abs(amplitudes(self.spectrum, wave)) ** 2
+        shares = np.abs(self.amplitudes(wave)) ** 2
         found = []
         for group in self.groups():
             levels = [self.spectrum.levels[row] for row in group]
@@ -96,12 +105,12 @@ class LevelMeter:
         """Return the part of the wave in the levels of the outcome, normalised."""
         rows = [row for row, level in enumerate(self.spectrum.levels) if level.index in outcome.levels]
         kept = np.zeros(len(self.spectrum.levels), dtype=complex)
-        kept[rows] = amplitudes(self.spectrum, wave)[rows]
+        kept[rows] = self.amplitudes(wave)[rows]
         return level_wave(self.spectrum, kept)
 
 
-def amplitudes(spectrum: Spectrum, wave: Wave) -> Values:
-    """Return <n|psi> for every level, shape (levels,), on the axis the wave is given on."""
+def amplitudes(spectrum: Spectrum, wave: Wave, sample: Sample | None = None) -> Values:
+    """Return <n|psi> for every level, shape (levels,), on the axis the wave is given on; `sample` is from `sampled`."""
     states = spectrum.states
     if states is None:
         return np.zeros(0, dtype=complex)
@@ -109,8 +118,7 @@ def amplitudes(spectrum: Spectrum, wave: Wave) -> Values:
         cut = wave.cut(states.places)
         x, w = cut.rule
         return np.asarray(states.evaluate(x).conj() @ (w * cut.values))
-    x, w = level_wave(spectrum, np.ones(len(spectrum.levels), dtype=complex)).cut(_steps(spectrum, wave)).rule
-    psi = states.evaluate(x) * w / math.sqrt(2 * math.pi)
+    x, psi = sampled(spectrum, wave) if sample is None else sample
     k, weight = wave.rule
     total = np.zeros(len(spectrum.levels), dtype=complex)
     for start in range(0, len(k), 500):
@@ -120,10 +128,22 @@ def amplitudes(spectrum: Spectrum, wave: Wave) -> Values:
     return total
 
 
-def _steps(spectrum: Spectrum, wave: Wave) -> Array:
-    """Return places close enough for the plane waves of a wave over k."""
+Sample = tuple[Array, Values]
+"""Places (n,) and the eigenstates there times the weights of integration over sqrt(2 pi), (levels, n)."""
+
+
+def fineness(spectrum: Spectrum, wave: Wave) -> int:
+    """Return in how many parts the levels are sampled for the plane waves of a wave over k, a power of two."""
     most = float(max(abs(wave.lows[0]), abs(wave.highs[-1])))
-    return np.linspace(spectrum.left, spectrum.right, int((spectrum.right - spectrum.left) * most / 15) + 2)
+    return 1 << int((spectrum.right - spectrum.left) * most / 15 + 1).bit_length()
+
+
+def sampled(spectrum: Spectrum, wave: Wave) -> Sample:
+    """Return the levels sampled finely enough for a wave over k."""
+    every = level_wave(spectrum, np.ones(len(spectrum.levels), dtype=complex))
+    x, w = every.cut(np.linspace(spectrum.left, spectrum.right, fineness(spectrum, wave) + 1)).rule
+    psi = spectrum.states.evaluate(x) if spectrum.states is not None else np.zeros((0, len(x)))
+    return x, psi * w / math.sqrt(2 * math.pi)
 
 
 def level_wave(spectrum: Spectrum, kept: Values) -> Wave:
@@ -240,11 +260,13 @@ def meter_for(
     if along is not None:
         axis, function, marks = along
         meter = AxisMeter(text, unit, axis, function, marks, None)
-        return meter if width is None and _few_values(operator, wave) else _binned(meter, wave, bins, width)
+        if width is None and _few_values(operator, wave):
+            return replace(meter, span=_span(wave))
+        return _binned(meter, wave, bins, width)
     if vanishing(operator - model.operator):
-        return LevelMeter(text, unit, holding(model, spectrum, wave, None, least), model.hbar)
+        return LevelMeter(text, unit, holding(model, spectrum, wave, None, least))
     other = replace(model, main=text, operators={**model.operators, text: operator})
-    return LevelMeter(text, unit, holding(other, None, wave, _near(operator, wave), least), model.hbar)
+    return LevelMeter(text, unit, holding(other, None, wave, _near(operator, wave), least))
 
 
 def _along(model: Model, operator: Operator) -> tuple[str, Callable[[Array], Array], Array] | None:
@@ -298,9 +320,13 @@ def _binned(meter: AxisMeter, wave: Wave, bins: int, width: float | None) -> Axi
         found: Array = np.clip(np.nan_to_num(inner(x)), (first + 0.5) * step, (last + 0.5) * step)
         return found
 
-    middle, half = (here.lows[0] + here.highs[-1]) / 2, (here.highs[-1] - here.lows[0]) / 2
-    span = (float(middle - 1.5 * half), float(middle + 1.5 * half))
-    return replace(meter, function=held, width=step, outermost=(first, last), span=span)
+    return replace(meter, function=held, width=step, outermost=(first, last), span=_span(here))
+
+
+def _span(wave: Wave) -> tuple[float, float]:
+    """Return one and a half times the extent of a wave, on its axis."""
+    middle, half = (wave.lows[0] + wave.highs[-1]) / 2, (wave.highs[-1] - wave.lows[0]) / 2
+    return float(middle - 1.5 * half), float(middle + 1.5 * half)
 
 
 def _nice(size: float) -> float:
