@@ -82,8 +82,8 @@ def _refuse_poles(problem: Problem, x: Array, potential: Array) -> None:
         centre = (left + right) / 2
         steps = np.maximum(spans, 1e-4 * np.abs(centre))[:, None] * 10.0 ** -np.arange(1, 7)
         both = [np.abs(problem.potential((centre[:, None] + side * steps).ravel()).reshape(steps.shape)) for side in (-1, 1)]
-        slopes = [np.median(np.diff(np.log10(values), axis=1), axis=1) for values in both]
-    poles = (slopes[0] > 0.7) | (slopes[1] > 0.7)
+        growth = [np.diff(np.log10(values), axis=1)[:, -3:] for values in both]
+    poles = np.any([np.isfinite(rise).all(axis=1) & (rise > 0.7).all(axis=1) for rise in growth], axis=0)
     if poles.any():
         place = float(centre[poles][0])
         raise PhysicsError(

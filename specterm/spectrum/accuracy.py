@@ -17,6 +17,8 @@ from specterm.spectrum.vectors import Solved
 
 SAFETY = 4.0
 """Factor on the hierarchical estimate, for what it leaves out: higher degrees, and the coupling between elements."""
+LIFTED = 10.0
+"""Further factor on the rounding of levels far above a deep narrow well, whose state must be kept out of theirs."""
 POWERED = 30.0
 """Further factor in an element with a power taken out: what is left there may not be smooth, and higher degrees help slowly."""
 EPS = float(np.finfo(float).eps)
@@ -138,7 +140,8 @@ def _noise(ready: Setting, solved: Solved) -> Array:
         potential = problem.noise_potential(here.x.ravel()).reshape(here.x.shape)
         stiffness = problem.noise_stiffness(here.x.ravel()) / problem.stiffness(here.x.ravel())
         size = np.abs(here.potential / here.mass)
-    height = np.einsum("eq,eqn->n", NOISE * size + potential, density)
+    lifted = np.where(solved.kinetic < 1e-3 * np.abs(solved.values), LIFTED, 1.0)
+    height = lifted * np.einsum("eq,eqn->n", NOISE * size + potential, density)
     motion = np.einsum("eq,eqn->n", NOISE + stiffness.reshape(here.x.shape), slopes)
     mesh = solved.condensed.mesh
     gentle = float(np.min(here.kinetic / here.mass * (mesh.lengths[:, None] / 2) ** 2)) * (np.pi / np.sum(mesh.lengths)) ** 2

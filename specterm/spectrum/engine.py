@@ -34,7 +34,7 @@ COUNTED = 1e-14
 """Counts are trusted to tell levels apart by this share of them, and on meshes graded to tiny elements, by `BLURRED`."""
 BLURRED = 1e-7
 FELT = 0.05
-"""A box reaches as far as the potential, times the square of the distance, over the coefficient between the momenta, is more."""
+"""A box reaches as far as the potential, times the square of the distance over the coefficient of the momenta, is more."""
 USUAL = 10
 """How many levels are computed when nobody says."""
 
@@ -83,8 +83,14 @@ def solve(
     if fault is not None:
         raise PhysicsError(fault.reason, mend=fault.mend)
     stop, tell = should_stop or (lambda: False), progress or (lambda _: None)
-    with np.errstate(all="ignore"):
-        found = _by_order(model, count, near, tolerance, stop, tell)
+    try:
+        with np.errstate(all="ignore"):
+            found = _by_order(model, count, near, tolerance, stop, tell)
+    except np.linalg.LinAlgError:
+        raise PhysicsError(
+            "the operator cannot be solved in double precision on this domain",
+            mend="shift a singular end to 0, or narrow the domain",
+        ) from None
     return _timed(found, time.perf_counter() - start)
 
 

@@ -134,7 +134,7 @@ def test_smooth_choices_have_no_edge():
 
 @pytest.mark.parametrize("shift", ["0", "250.33", "-98765.4"])
 def test_a_sum_of_narrow_wells_far_away_does_not_vanish(shift):
-    """Functions that are zero to rounding at every usual place of comparison still count, wherever and however narrow they are."""
+    """Functions that are zero to rounding at every usual place still count, wherever and however narrow they are."""
     text = f"V = -2.7*exp(-((x - ({shift}))/0.9)^2) - 0.02*sech((x - ({shift}))/1e-3)^2"
     model = build(parse(text + "\nH = p^2/2 + V\nx in (-inf, inf)"))
     place = np.array([float(shift)])
