@@ -236,10 +236,11 @@ def _block(condensed: Condensed, group: Group, ruler: Ruler) -> tuple[Values, fl
     z: Values = start
     near, settled_ritz = False, np.zeros(group.size)
     for sweep in range(80):
-        matrix, weight = chain_with_mass(condensed, np.array([energy]))
-        solve, heavy = _solver(matrix), _matrix(weight)
+        if sweep == 0 or group.size == 1:
+            matrix, weight = chain_with_mass(condensed, np.array([energy]))
+            solve, heavy, form = _solver(matrix), _matrix(weight), _matrix(matrix)
         z, _ = np.linalg.qr(solve(heavy @ z))
-        ritz = np.linalg.eigvals(np.linalg.solve(z.conj().T @ (heavy @ z), z.conj().T @ (_matrix(matrix) @ z))).real
+        ritz = np.linalg.eigvals(np.linalg.solve(z.conj().T @ (heavy @ z), z.conj().T @ (form @ z))).real
         step = float(np.mean(ritz))
         if group.size > 1:
             ritz, before_ritz = np.sort(ritz), settled_ritz
