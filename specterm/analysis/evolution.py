@@ -79,7 +79,7 @@ class Evolution:
 
 
 def evolve(
-    model: Model, spectrum: Spectrum, state: str, times: Sequence[float], text: str | None = None, folder: Path | None = None
+    model: Model, spectrum: Spectrum, state: str, times: Sequence[float], observed: str | None = None, folder: Path | None = None
 ) -> Evolution:
     """Return survival probability, mean and spread of an observable (default: the coordinate) at the times given.
 
@@ -95,7 +95,7 @@ def evolve(
     at = np.asarray(times, dtype=float)
     packet = packet_of(model, spectrum, weights)
     survival, error = _survival(model, spectrum, weights, at)
-    asked = observable(model, text or model.domain.coordinate)
+    asked = observable(model, observed or model.domain.coordinate)
     mean, spread = _moments(spectrum, packet, asked, at)
     notes = list(weights.notes)
     if weights.captured < TRUSTED:
