@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from specterm.arrays import Array, Counts, Values
-from specterm.discrete.chain import Chain, chain_with_mass, count_below, element_coefficients, twisted_vectors
+from specterm.discrete.chain import BLOCK, Chain, chain_with_mass, count_below, element_coefficients, twisted_vectors
 from specterm.discrete.elements import Condensed
 from specterm.spectrum.isolate import Group, Ruler, isolate
 
@@ -65,8 +65,11 @@ def solve_levels(
     """
 
     def count(energies: Array) -> Counts:
-        check()
-        return count_below(condensed, energies)
+        parts = []
+        for start in range(0, len(energies), BLOCK):
+            check()
+            parts.append(count_below(condensed, energies[start : start + BLOCK]))
+        return np.concatenate(parts)
 
     groups = isolate(count, first, last, low, high, ruler)
     single = condensed.mesh.phase is None
@@ -75,7 +78,7 @@ def solve_levels(
     for start in range(0, len(loners), 64):
         check()
         some = loners[start : start + 64]
-        energies, z = _newton(condensed, some, ruler)
+        energies, z = _newton(condensed, some, ruler, check)
         found = _quotients(condensed, [g.first for g in some], element_coefficients(condensed, z, energies))
         parts += [
             part if abs(part.values[0] - energy) <= STRAY * abs(energy - ruler.bottom) else _group(condensed, group, ruler)
@@ -117,7 +120,7 @@ def _merged(condensed: Condensed, parts: list[Part], ruler: Ruler) -> list[Part]
     return whole
 
 
-def _newton(condensed: Condensed, groups: list[Group], ruler: Ruler) -> tuple[Array, Array]:
+def _newton(condensed: Condensed, groups: list[Group], ruler: Ruler, check: Callable[[], None]) -> tuple[Array, Array]:
     """Return energies and vertex vectors of single levels by Newton's method, kept inside shrinking brackets.
 
     A step must be small against the level and against its distance to where a continuum begins. Every fifth step
@@ -129,6 +132,7 @@ def _newton(condensed: Condensed, groups: list[Group], ruler: Ruler) -> tuple[Ar
     slack = 1e-3 * SETTLED * np.abs(energies - ruler.bottom)
     before = np.full(len(groups), np.inf)
     for number in range(120):
+        check()
         matrix, weight = chain_with_mass(condensed, energies)
         z, misfit, inertia = twisted_vectors(matrix, weight.diagonal)
         below = inertia + np.count_nonzero(condensed.poles[:, :, None] < energies, axis=(0, 1)) > numbers
