@@ -146,7 +146,7 @@ def _noise(ready: Setting, solved: Solved) -> Array:
     mesh = solved.condensed.mesh
     gentle = float(np.min(here.kinetic / here.mass * (mesh.lengths[:, None] / 2) ** 2)) * (np.pi / np.sum(mesh.lengths)) ** 2
     least = EPS * np.abs(solved.values + ready.floor) + 1e-3 * EPS * max(np.abs(solved.values).max(initial=0.0), gentle)
-    return height + motion + least + _misplaced(ready, solved, density, slopes) + _mispowered(solved, slopes)
+    return height + motion + least + _misplaced(ready, solved, density, slopes) + _mispowered(ready, solved, slopes)
 
 
 def _misplaced(ready: Setting, solved: Solved, density: Array, slopes: Array) -> Array:
@@ -165,7 +165,7 @@ def _misplaced(ready: Setting, solved: Solved, density: Array, slopes: Array) ->
     return total
 
 
-def _mispowered(solved: Solved, slopes: Array) -> Array:
+def _mispowered(ready: Setting, solved: Solved, slopes: Array) -> Array:
     """Return what the rounding of an inverse square's strength does, which Gauss rules see too little of: dE/dc = <K/d^2>."""
     mesh, here = solved.condensed.mesh, solved.condensed.grid
     total = np.zeros(slopes.shape[2])
@@ -174,7 +174,10 @@ def _mispowered(solved: Solved, slopes: Array) -> Array:
         if end.power is not None and spread > 1e-9:
             stiffness = float(np.abs(here.kinetic[side] / here.mass[side]).max()) * (mesh.lengths[side] / 2) ** 2
             rounding = 4 * EPS if place == 0 else 256 * EPS
-            strength = rounding * max(0.25, abs(end.power * (end.power - 1)))
+            nearest = here.x[side, :1]
+            seen = float(ready.problem.noise_potential(nearest)[0]) * float((nearest[0] - place) ** 2)
+            seen /= float(ready.problem.stiffness(nearest)[0])
+            strength = max(rounding * max(0.25, abs(end.power * (end.power - 1))), seen)
             share = stiffness * np.abs(solved.coefficients[side, vertex]) ** 2 / (mesh.lengths[side] * spread)
             total += strength * share
     return total
