@@ -11,6 +11,8 @@ from specterm.model import Model
 from specterm.spectrum import Spectrum, solve
 
 FIRST = 16
+SLOW = 0.02
+"""A doubling of the levels that adds less than this share of what is missing ends the search under a threshold."""
 MOST_LEVELS = 1_000
 """Where it stops; a state with a kink needs this many for about 1 - 1e-8, one that jumps for about 1 - 1e-3."""
 
@@ -21,6 +23,7 @@ def captured_by(
     share: float,
     folder: Path | None = None,
     *,
+    near: float | None = None,
     tolerance: float = 1e-8,
     least: int = 1,
     most: int = MOST_LEVELS,
@@ -29,21 +32,24 @@ def captured_by(
 ) -> tuple[Spectrum, Weights]:
     """Return the fewest levels, doubled from 16 on, that hold at least `share` of a state, and its weights on them.
 
-    Where the bound levels hold less, or `most` do, what there is comes back: `Weights.captured` says how much.
+    Where the bound levels hold less, or `most` do, or twice as many of an endless series under a threshold add next to
+    nothing, what there is comes back: `Weights.captured` says how much.
     """
     if not 0 < share <= 1:
         raise PhysicsError(f"a share of {share:g} makes no sense", mend="give one above 0 and up to 1, such as 0.999")
-    count = max(FIRST, least)
+    count, before = max(FIRST, least), 0.0
     while True:
-        spectrum = solve(model, count=count, tolerance=tolerance, should_stop=should_stop, progress=progress)
+        spectrum = solve(model, count=count, near=near, tolerance=tolerance, should_stop=should_stop, progress=progress)
         if _has_box(spectrum) and spectrum.bound:
             spectrum = solve(
                 model, count=max(spectrum.bound, least), tolerance=tolerance, should_stop=should_stop, progress=progress
             )
         found = project(model, spectrum, state, folder)
         bound_only = spectrum.bound is not None and len(spectrum.levels) >= spectrum.bound
-        if found.captured >= share or count >= most or bound_only or not spectrum.levels:
+        series = spectrum.threshold is not None and 0 < found.captured - before < SLOW * (1 - found.captured)
+        if found.captured >= share or count >= most or bound_only or series or not spectrum.levels:
             return spectrum, found
+        before = found.captured
         count = min(2 * count, most)
 
 

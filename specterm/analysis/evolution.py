@@ -79,7 +79,12 @@ class Evolution:
 
 
 def evolve(
-    model: Model, spectrum: Spectrum, state: str, times: Sequence[float], observed: str | None = None, folder: Path | None = None
+    model: Model,
+    spectrum: Spectrum,
+    state: str,
+    times: Sequence[float],
+    observed: str | None = None,
+    folder: Path | None = None,
 ) -> Evolution:
     """Return survival probability, mean and spread of an observable (default: the coordinate) at the times given.
 

@@ -122,11 +122,12 @@ def turned(wave: Wave, span: tuple[float, float] | None = None) -> Wave:
 def _extent(wave: Wave) -> tuple[float, float]:
     """Return where the wave sits on the other axis and how far it reaches there, from mean and spread of its slope."""
     x, w = wave.rule
-    step = 1e-4 * np.repeat(wave.highs - wave.lows, POINTS) * 1e-2
+    whole = float(wave.highs[-1] - wave.lows[0])
+    step = np.maximum(1e-6 * np.repeat(wave.highs - wave.lows, POINTS), 1e-9 * whole)
     slope = (wave.at(x + step) - wave.at(x - step)) / (2 * step)
     flow = float((w * np.imag(wave.values.conj() * slope)).sum()) / wave.norm
     square = float((w * np.abs(slope) ** 2).sum()) / wave.norm
-    reach = 6 * float(np.sqrt(max(0.0, square - flow**2))) + 10.0 / float(wave.highs[-1] - wave.lows[0])
+    reach = 6 * float(np.sqrt(max(0.0, square - flow**2))) + 10.0 / whole
     return (flow if wave.axis == "x" else -flow), reach
 
 

@@ -17,6 +17,8 @@ from specterm.errors import SheetError
 from specterm.model import Model
 from specterm.spectrum import Spectrum
 
+RARE = 1e-7
+"""First outcomes less probable than this are not followed further in the joint probabilities."""
 LOST = 1e-6
 """Probability that no outcome covers, told from here on."""
 ROUGH_LEVELS = 128
@@ -227,6 +229,8 @@ def _joint(course: Course) -> dict[tuple[Outcome, Outcome], float]:
     """Return the probability of each pair of outcomes, outcomes named without their own probability."""
     found: dict[tuple[Outcome, Outcome], float] = {}
     for place, first in enumerate(course.outcomes(())):
+        if first.probability < RARE:
+            continue
         for second in course.outcomes((place,)):
             found[_bare(first), _bare(second)] = first.probability * second.probability
     return found

@@ -24,7 +24,8 @@ SMALLEST = 1e-10
 MOST_BINS = 4_000
 MOST_VALUES = 64
 """A function of the coordinate with no more values than this, constant between its jumps, has those as outcomes."""
-WANTED = 1 - 1e-9
+WANTED = 1 - 1e-7
+"""The share of the state that levels are computed for."""
 MOST_LEVELS = 256
 
 
@@ -356,7 +357,7 @@ def _near(operator: Operator, wave: Wave) -> float | None:
     if operator.order > 1 or wave.axis != "x":
         return None
     x, w = wave.rule
-    step = 1e-5 * float(np.min(wave.highs - wave.lows))
+    step = 1e-7 * float(wave.highs[-1] - wave.lows[0])
     slope = (wave.at(x + step) - wave.at(x - step)) / (2 * step)
     parts = {k: Function(linear(pairs)) for k, pairs in operator.normal.items()}
     moved = sum((np.nan_to_num(regular_part(c)(x)) * (slope if k else wave.values) for k, c in parts.items()), np.zeros(len(x)))

@@ -64,8 +64,8 @@ def prepare(model: Model, spectrum: Spectrum, name: str, folder: Path | None = N
         if state.function is not None:
             return _of_function(model, spectrum, state, state.function)
         return _of_levels(model, spectrum, name, state.levels, folder)
-    level = re.fullmatch(r"\s*level\(\s*(\d+)\s*\)\s*", name)
-    if level:
+    level = re.fullmatch(r"\s*level\(\s*(-?\d{1,6})\s*\)\s*", name)
+    if level and (int(level[1]) >= 0 or any(one.index < 0 for one in spectrum.levels)):
         return _of_levels(model, spectrum, name.strip(), ((number(1.0), int(level[1]), None),), folder)
     known = ", ".join(model.states) or "none"
     raise SheetError(f"the sheet has no state `{name}`", mend=f"states of the sheet: {known}; or a level, written level(0)")

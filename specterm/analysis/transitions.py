@@ -120,6 +120,8 @@ def populations(model: Model, spectrum: Spectrum, temperature: float) -> Array:
     """Return the thermal shares of the levels computed, shape (levels,); temperature in kelvin, or in energy without units."""
     if not temperature > 0:
         raise SheetError(f"a temperature of {temperature:g} makes no sense", mend="give one above 0")
+    if not spectrum.levels:
+        raise PhysicsError("there is no level to be populated", mend="the operator binds nothing")
     boltzmann = model.units.constant("k_B")
     values = np.array([level.value for level in spectrum.levels])
     powers = (values - values.min()) / (temperature * (boltzmann[0] if boltzmann else 1.0))

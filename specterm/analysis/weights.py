@@ -94,6 +94,7 @@ def _notes(spectrum: Spectrum, prepared: Prepared, captured: float) -> tuple[str
     rest = 1 - captured
     if rest > 1e-6:
         finite = spectrum.threshold is not None and spectrum.bound is not None
-        where = "in the continuum" if finite and len(spectrum.levels) >= (spectrum.bound or 0) else "above the levels computed"
+        above = "above the levels computed" + ("" if spectrum.threshold is None else ", or in the continuum")
+        where = "in the continuum" if finite and len(spectrum.levels) >= (spectrum.bound or 0) else above
         notes.append(f"{rest:.3g} of the state lies {where}")
     return tuple(notes)

@@ -46,7 +46,7 @@ def solved(arguments: argparse.Namespace, model: Model, least: int | None = None
 def enough(arguments: argparse.Namespace, model: Model, least: int | None) -> Spectrum:
     """Return the levels asked for, or the usual ones, and more where at least `least` are needed."""
     found = solved(arguments, model)
-    if least is None or arguments.near is not None or len(found.levels) >= least:
+    if least is None or least < 1 or arguments.near is not None or len(found.levels) >= least:
         return found
     return solved(arguments, model, least)
 

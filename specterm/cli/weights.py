@@ -56,7 +56,7 @@ def _captured(arguments: argparse.Namespace, source: Source, model: Model, least
 
     with Progress() as progress:
         spectrum, found = captured_by(
-            model, arguments.state, arguments.captured, source.folder, tolerance=arguments.tol,
+            model, arguments.state, arguments.captured, source.folder, near=arguments.near, tolerance=arguments.tol,
             least=max(least or 1, arguments.count or 1), progress=progress.tell,
         )  # fmt: skip
     if found.captured < arguments.captured:

@@ -89,7 +89,7 @@ def test_without_units_there_is_no_wavelength():
 
 
 def test_units_give_wavelength_frequency_and_rate():
-    """1 eV is 8065.543937 cm^-1, 241.7989242 THz and 1239.841984 nm (CODATA, field 16 of the values); the rate is 2 alpha hbar w^2/(3 m c^2)."""
+    """1 eV is 8065.543937 cm^-1, 241.7989242 THz and 1239.841984 nm (CODATA); the rate is 2 alpha hbar w^2/(3 m c^2)."""
     text = "units: energy eV, length nm, mass m_e\nH = p^2/(2*m_e) + m_e*w^2*x^2/2\nw = 1/hbar\nx in (-inf, inf)"
     line = lines(text, count=4)[1][1]
     assert line.wavenumber == pytest.approx(8065.543937349211, rel=1e-9)
@@ -108,7 +108,7 @@ def test_a_dipole_that_commutes_has_no_strength():
 
 
 def test_franck_condon_factors_sum_to_one():
-    """The factors from one level into all those of a displaced oscillator sum to 1; S = 1/2 gives exp(-S) S^n/n! (closed form)."""
+    """The factors from one level into all those of a displaced oscillator sum to 1: exp(-S) S^n/n!, S = 1/2 (closed form)."""
     lower, upper = "H = (p^2 + x^2)/2\nx in (-inf, inf)", "H = (p^2 + (x - 1)^2)/2\nx in (-inf, inf)"
     found = into_other(model(lower), spectrum(lower, 2), spectrum(upper, 20), (0,))
     factors = [abs(line.dipole) ** 2 for line in found.lines]
