@@ -8,7 +8,7 @@ import numpy as np
 
 from specterm.discrete.chain import count_below
 from specterm.discrete.elements import condense, grid
-from specterm.discrete.ends import FarEnd
+from specterm.discrete.ends import FarEnd, NearEnd
 from specterm.discrete.mesh import Edge
 from specterm.discrete.meshing import Span, build
 from specterm.spectrum.setting import DEEP, Setting, span_at
@@ -95,6 +95,6 @@ def other_end(ready: Setting, side: int) -> tuple[float, Edge]:
     return (span.left, span.left_edge) if side == 0 else (span.right, span.right_edge)
 
 
-def _alone(ready: Setting, side: int):  # type: ignore[no-untyped-def]  # noqa: ANN202 - a pair of ends
+def _alone(ready: Setting, side: int) -> tuple[NearEnd | FarEnd | None, NearEnd | FarEnd | None]:
     """Return the ends with the other one left out."""
     return (ready.ends[0], None) if side == 0 else (None, ready.ends[1])

@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 import time
 from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 
@@ -115,7 +116,7 @@ def _refuse_bad(count: int | None, tolerance: float) -> None:
 
 
 def _timed(spectrum: Spectrum, seconds: float) -> Spectrum:
-    return Spectrum(**{**spectrum.__dict__, "seconds": seconds})
+    return replace(spectrum, seconds=seconds)
 
 
 def _elements(

@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import numpy as np
 
-from specterm.discrete.problem import Problem
+from specterm.arrays import Array
+from specterm.discrete.problem import Coefficient, Problem
 from specterm.spectrum.vectors import Solved
 
 
@@ -40,11 +41,12 @@ def _centre(problem: Problem, solved: Solved) -> float | None:
     return None
 
 
-def _coefficients(problem: Problem):  # type: ignore[no-untyped-def]  # noqa: ANN202 - pairs of coefficient and its rounding
+def _coefficients(problem: Problem) -> tuple[tuple[Coefficient, Coefficient], ...]:
+    """Return each coefficient with the bound on its rounding."""
     return ((problem.stiffness, problem.noise_stiffness), (problem.potential, problem.noise_potential))
 
 
-def _even(function, noise, centre: float, d) -> bool:  # type: ignore[no-untyped-def]  # noqa: ANN001
+def _even(function: Coefficient, noise: Coefficient, centre: float, d: Array) -> bool:
     """Say whether a coefficient has the same values at centre + d and centre - d, to rounding."""
     with np.errstate(all="ignore"):
         right, left = function(centre + d), function(centre - d)
