@@ -9,7 +9,7 @@ import numpy as np
 
 from specterm.analysis.observables import Observable, observable, weak
 from specterm.analysis.prepared import Prepared, prepare
-from specterm.analysis.quadrature import Rule
+from specterm.analysis.quadrature import POINTS, Rule
 from specterm.analysis.regularity import natural_size, rule_for, tiny_share, why_infinite
 from specterm.arrays import Values
 from specterm.errors import PhysicsError
@@ -21,7 +21,9 @@ ROUNDING = 1e-12
 SUMMED = 1e-14
 """Rounding of an integral beside the integral of the modulus; ten times the largest seen."""
 ROUGHNESS = 1e4
-"""By how much the error of a state may be rougher than the state itself, in the mean of a second-order observable."""
+"""By how much the error of a state may be rougher than the state itself, in the term of second order in it."""
+ALIVE = 1e-6
+"""Where a state is below this share of its largest value its error is taken to fall as it does."""
 STEEPER = (3.0, 30.0, 900.0)
 """By how much a derivative of order 0, 1, 2 may enlarge the error of a state beside the state's own."""
 DIVERGES = 1e-3
@@ -29,7 +31,7 @@ DIVERGES = 1e-3
 LOST = 0.1
 """A state that may be off by this much in norm has no error to speak of."""
 PRESSED = 1e-9
-"""Share of |A psi|^2 at the cut of an open domain from which on the value hangs on the cut."""
+"""Share of |(A - mean) psi|^2 in the piece at the cut of an open domain from which on the value hangs on the cut."""
 
 
 @dataclass(frozen=True)
@@ -87,11 +89,9 @@ def _doubts(model: Model, wave: Prepared, rule: Rule, moved: Values) -> list[str
     doubts = []
     if wave.slip > LOST:
         doubts.append("no error is known: the state is a box state, or shares its level with others")
-    share = rule.w * np.abs(moved) ** 2
-    width = rule.x[-1] - rule.x[0]
-    near = (rule.x < rule.x[0] + 0.01 * width, rule.x > rule.x[-1] - 0.01 * width)
+    share = (rule.w * np.abs(moved) ** 2).reshape(-1, POINTS).sum(axis=1)
     kinds = (model.domain.left_end, model.domain.right_end)
-    if any(end == "open" and share[part].sum() > PRESSED * share.sum() for end, part in zip(kinds, near, strict=True)):
+    if any(end == "open" and share[piece] > PRESSED * share.sum() for end, piece in zip(kinds, (0, -1), strict=True)):
         doubts.append("the observable grows faster than the state falls: its value hangs on where the domain was cut")
     return doubts
 
@@ -125,9 +125,9 @@ def _errors(asked: Observable, wave: Prepared, rule: Rule, found: tuple[float, f
     scale = size + abs(mean)
     steep = spread if np.isfinite(spread) else scale * STEEPER[asked.order]
     unseen = float(np.sqrt(rule.missed[0] + wave.missed)) * (steep + scale)
-    rough = ROUGHNESS if asked.order else float(np.abs(_largest(asked, rule, psi))) / max(scale, 1e-300)
-    natural = natural_size(asked, wave, rule.places)
-    second = max(rough, 1.0) * slip**2 * scale
+    largest = _largest(asked, rule, psi) if asked.order == 0 else 0.0
+    natural = natural_size(asked, rule.places)
+    second = slip**2 * (ROUGHNESS * scale + largest)
     unseen += tiny_share(asked, wave, rule) * scale
     error = 2 * steep * slip + second + 2 * unseen + blur + SUMMED * (scale + natural)
     spread_error = STEEPER[asked.order] * slip * (steep + scale + natural) + unseen + blur
@@ -138,5 +138,5 @@ def _largest(asked: Observable, rule: Rule, psi: Values) -> float:
     """Return the largest modulus of a function observable where the wave is not negligible."""
     with np.errstate(all="ignore"):
         values = np.abs(np.nan_to_num(asked.parts[0](rule.x)))
-    alive = np.abs(psi) > 1e-12 * np.abs(psi).max()
+    alive = np.abs(psi) > ALIVE * np.abs(psi).max()
     return float(values[alive].max(initial=0.0))

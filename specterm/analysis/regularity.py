@@ -38,7 +38,7 @@ def rule_for(asked: Observable, wave: Prepared) -> Rule:
     marks = [f.edges(*ends) for f in functions] + [f.centres(*ends)[:MOST_CENTRES] for f in functions]
     places = np.unique(np.concatenate([wave.places, *marks]))
     places = places[(places >= ends[0]) & (places <= ends[1])]
-    scale = natural_size(asked, wave, places)
+    scale = _scale(asked, wave, places)
 
     def every(x: Array) -> Values:
         psi = wave.jet(x, 0)
@@ -49,19 +49,36 @@ def rule_for(asked: Observable, wave: Prepared) -> Rule:
     return resolve(every, places, [1e-13, *[1e-12] * len(functions), PRECISION[asked.order]], MOST_PIECES)
 
 
-def natural_size(asked: Observable, wave: Prepared, places: Array) -> float:
+def _scale(asked: Observable, wave: Prepared, places: Array) -> float:
     """Return the size of the parts of A psi beside that of psi, so that noise where they are nothing is not resolved."""
-    t, w = gauss_legendre(8)
-    half = np.diff(places)[:, None] / 2
-    x, weight = (places[:-1, None] + half * (1 + t)).ravel(), (half * w).ravel()
+    x, weight = _coarse(places)
     norm = float((weight * np.abs(wave.jet(x, 0)) ** 2).sum())
-    total = 0.0
+    total = natural_size(asked, places) ** 2
     with np.errstate(all="ignore"):
         for k, c in enumerate(asked.parts):
             values = np.nan_to_num(c(x), nan=0.0, posinf=0.0, neginf=0.0)
             total += float((weight * np.abs(values * wave.jet(x, k)) ** 2).sum()) / norm
-            total += float(np.abs(values).mean() ** 2) / float(places[-1] - places[0]) ** (2 * k)
     return math.sqrt(total) if math.isfinite(total) else 0.0
+
+
+def natural_size(asked: Observable, places: Array) -> float:
+    """Return the size of an observable by the median of its functions, a derivative counted as one over the extent."""
+    x, weight = _coarse(places)
+    total = 0.0
+    with np.errstate(all="ignore"):
+        for k, c in enumerate(asked.parts):
+            values = np.nan_to_num(c(x), nan=0.0, posinf=0.0, neginf=0.0)
+            order = np.argsort(np.abs(values))
+            middle = order[np.searchsorted(np.cumsum(weight[order]), weight.sum() / 2)]
+            total += float(np.abs(values[middle]) ** 2) / float(places[-1] - places[0]) ** (2 * k)
+    return math.sqrt(total)
+
+
+def _coarse(places: Array) -> tuple[Array, Array]:
+    """Return points and weights of a Gauss rule of 8 points between the places."""
+    t, w = gauss_legendre(8)
+    half = np.diff(places)[:, None] / 2
+    return (places[:-1, None] + half * (1 + t)).ravel(), (half * w).ravel()
 
 
 def why_infinite(model: Model, asked: Observable, wave: Prepared, rule: Rule) -> list[str]:
@@ -100,14 +117,14 @@ def _jumps(model: Model, asked: Observable, wave: Prepared, rule: Rule) -> list[
 
 
 def tiny_share(asked: Observable, wave: Prepared, rule: Rule) -> float:
-    """Return the share of the mean in pieces shorter than 1e-10 of the state's extent: large where the integral diverges."""
+    """Return the share of the mean in pieces shorter than 1e-14 of the state's extent: large where the integral diverges."""
     density = np.zeros(len(rule.x))
     psi = np.abs(wave.jet(rule.x, 0))
     with np.errstate(all="ignore"):
         for (j, k), c in asked.terms:
             density += np.nan_to_num(np.abs(c(rule.x) * wave.jet(rule.x, j) * wave.jet(rule.x, k)), posinf=0.0)
     extent = float((rule.w * psi**2).sum() ** 2 / (rule.w * psi**4).sum())
-    tiny = np.repeat(np.diff(rule.places) < 1e-10 * extent, len(rule.x) // (len(rule.places) - 1))
+    tiny = np.repeat(np.diff(rule.places) < 1e-14 * extent, len(rule.x) // (len(rule.places) - 1))
     whole = float((rule.w * density).sum())
     return float((rule.w * density)[tiny].sum()) / whole if whole > 0 else 0.0
 

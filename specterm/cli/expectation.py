@@ -75,8 +75,9 @@ def _text(model: Model, found: Expectation, pair: Pair | None) -> str:
 
     lines = [f"{found.state} on {expression_of(model)}"]
     for one in (found, pair.second) if pair else (found,):
-        mean = with_unit(bracket(one.mean, one.error), one.unit)
-        spread = with_unit(bracket(one.spread, one.spread_error), one.unit)
+        scale, unit = _shown_in(model, one)
+        mean = with_unit(bracket(one.mean / scale, None if one.error is None else one.error / scale), unit)
+        spread = with_unit(bracket(one.spread / scale, None if one.spread_error is None else one.spread_error / scale), unit)
         lines.append(f"<{one.observable}> = {mean}   spread {spread}")
     if pair:
         bound = f"not below |<[A,B]>|/2 = {bracket(pair.bound, pair.bound_error)}"
@@ -84,6 +85,16 @@ def _text(model: Model, found: Expectation, pair: Pair | None) -> str:
         verdict = "vanishes: they commute" if pair.commutes else pair.commutator
         lines.append(f"[{found.observable},{pair.second.observable}] {'' if pair.commutes else '= '}{verdict}")
     return "\n".join(lines)
+
+
+def _shown_in(model: Model, found: Expectation) -> tuple[float, str]:
+    """Return what a number is divided by to be shown, and the unit: a momentum is shown in hbar over the unit of length."""
+    from specterm.analysis.observables import dimension_of  # noqa: PLC0415 - heavy
+    from specterm.units import ACTION, LENGTH  # noqa: PLC0415
+
+    if dimension_of(model, found.observable) == ACTION / LENGTH and model.coordinate_unit:
+        return model.hbar, f"hbar/{model.coordinate_unit}"
+    return 1.0, found.unit
 
 
 def _matrix(arguments: argparse.Namespace, found: MatrixElements) -> str:

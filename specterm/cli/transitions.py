@@ -104,7 +104,8 @@ def _text(arguments: argparse.Namespace, model: Model, found: Transitions, lines
     for start, total in found.sums.items():
         if total is not None:
             parts.append(f"sum of the strengths from level {start}, over the levels found: {short(total, 10)}")
-    sticks = [Stick(line.energy, line.intensity, f"{line.start}-{line.to}") for line in shown]
+    absorbed = [line for line in shown if arguments.temperature is None or line.energy > 0]
+    sticks = [Stick(line.energy, line.intensity, f"{line.start}-{line.to}") for line in absorbed]
     drawn = line_spectrum(
         sticks, arguments.width, arguments.height, broadening=arguments.broadening, shape=arguments.shape, unit=units.energy,
         glyphs=glyphs_of(arguments.glyphs),
