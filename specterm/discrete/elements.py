@@ -123,6 +123,13 @@ class Condensed:
     basis: Array
 
 
+def gentlest(condensed: Condensed) -> float:
+    """Return the least K (pi/width)^2: the kinetic energy of the longest wave the mesh can hold."""
+    mesh, here = condensed.mesh, condensed.grid
+    stiffness = float(np.min(here.kinetic / here.mass * (mesh.lengths[:, None] / 2) ** 2))
+    return stiffness * float(np.pi / (mesh.places[-1] - mesh.places[0])) ** 2
+
+
 def condense(mesh: Mesh, here: Grid) -> Condensed:
     """Assemble the element matrices and diagonalise the interiors."""
     n = mesh.order + 1

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from specterm.arrays import Array
-from specterm.discrete.elements import residual_share
+from specterm.discrete.elements import gentlest, residual_share
 from specterm.discrete.meshing import unseen
 from specterm.discrete.quadrature import gauss_jacobi
 from specterm.discrete.reference import end_slopes, functions
@@ -143,8 +143,7 @@ def _noise(ready: Setting, solved: Solved) -> Array:
     lifted = np.where(solved.kinetic < 1e-3 * np.abs(solved.values), LIFTED, 1.0)
     height = lifted * np.einsum("eq,eqn->n", NOISE * size + potential, density)
     motion = np.einsum("eq,eqn->n", NOISE + stiffness.reshape(here.x.shape), slopes)
-    mesh = solved.condensed.mesh
-    gentle = float(np.min(here.kinetic / here.mass * (mesh.lengths[:, None] / 2) ** 2)) * (np.pi / np.sum(mesh.lengths)) ** 2
+    gentle = gentlest(solved.condensed)
     least = EPS * np.abs(solved.values + ready.floor) + 1e-3 * EPS * max(np.abs(solved.values).max(initial=0.0), gentle)
     return height + motion + least + _misplaced(ready, solved, density, slopes) + _mispowered(ready, solved, slopes)
 

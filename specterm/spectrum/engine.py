@@ -11,7 +11,7 @@ import numpy as np
 
 from specterm.arrays import Array
 from specterm.discrete.chain import count_below
-from specterm.discrete.elements import condense, grid
+from specterm.discrete.elements import condense, gentlest, grid
 from specterm.discrete.ends import FarEnd, NearEnd
 from specterm.discrete.mesh import Edge, Mesh
 from specterm.discrete.meshing import Span
@@ -261,10 +261,7 @@ def _near_threshold(error: float, depth: float) -> float:
 
 def _scales(solved: Solved) -> Array:
     """Return what the errors are judged by: the distance to the potential's minimum, or to the next level if larger."""
-    mesh, here = solved.condensed.mesh, solved.condensed.grid
-    stiffness = float(np.min(here.kinetic / here.mass * (mesh.lengths[:, None] / 2) ** 2))
-    scale = np.maximum(np.abs(solved.values), solved.kinetic)
-    scale = np.maximum(scale, stiffness * (np.pi / (mesh.places[-1] - mesh.places[0])) ** 2)
+    scale = np.maximum(np.maximum(np.abs(solved.values), solved.kinetic), gentlest(solved.condensed))
     steps = np.diff(solved.values)
     scale[:-1] = np.maximum(scale[:-1], steps)
     scale[1:] = np.maximum(scale[1:], steps)

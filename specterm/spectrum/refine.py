@@ -9,7 +9,7 @@ import numpy as np
 
 from specterm.arrays import Array, Flags
 from specterm.discrete.chain import count_below
-from specterm.discrete.elements import Condensed, condense, grid
+from specterm.discrete.elements import Condensed, condense, gentlest, grid
 from specterm.discrete.ends import FarEnd
 from specterm.discrete.memory import refuse_above
 from specterm.discrete.mesh import Mesh
@@ -166,10 +166,7 @@ def _low(condensed: Condensed, first: int, high: float) -> float:
 
 def _targets(solved: Solved, tolerance: float, found: Accuracy) -> Array:
     """Return the error wanted for each level; never below what rounding leaves."""
-    mesh, here = solved.condensed.mesh, solved.condensed.grid
-    width = mesh.places[-1] - mesh.places[0]
-    stiffness = float(np.min(here.kinetic / here.mass * (mesh.lengths[:, None] / 2) ** 2))
-    scale = np.maximum(np.maximum(np.abs(solved.values), solved.kinetic), 1e-3 * stiffness * (np.pi / width) ** 2)
+    scale = np.maximum(np.maximum(np.abs(solved.values), solved.kinetic), 1e-3 * gentlest(solved.condensed))
     return np.maximum(OVERSHOOT * tolerance * np.maximum(scale, 1e-3 * scale.max()), found.noise)
 
 

@@ -9,8 +9,6 @@ import numpy as np
 
 from specterm.arrays import Array, Values
 
-KINDS = ("bound", "box", "band", "resonance", "unresolved")
-
 
 @dataclass(frozen=True, slots=True)
 class Level:

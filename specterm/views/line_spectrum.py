@@ -11,7 +11,6 @@ from numpy.typing import NDArray
 from specterm.views.cells import Rows
 from specterm.views.plot import Curve, Label, chart
 
-SHAPES = ("lorentz", "gauss")
 LABELLED = 6
 
 
