@@ -373,6 +373,7 @@ _MODEL = {
     "free-open": _model(
         "an infinite end cannot be free", "say which end is: `free left` or `free right`", "H = p^2\n‸x in (-inf, inf), free"
     ),
+    "not-plain": _row("`{name}` is not written as a plain number", "{near}plain numbers are definitions like a = 3 [nm]"),
     "set-unknown": _model("there is no `{name}` to set in the sheet", "{near}set a name the sheet defines"),
     "state-not-normalisable": _model(
         "the state `{name}` cannot be normalised: {reason}", "let it fall off towards the open ends of the domain"
