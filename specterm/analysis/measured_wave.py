@@ -65,6 +65,13 @@ class Wave:
         new = np.unique(places[held])
         return Wave(self.axis, self.at, np.sort(np.append(self.lows, new)), np.sort(np.append(self.highs, new)))
 
+    def finer(self, reach: float) -> Wave:
+        """Return the same wave on pieces short enough for plane waves up to a wave number `reach`."""
+        lengths = self.highs - self.lows
+        parts = np.maximum(1, np.ceil(lengths * reach * 2 / TURNS)).astype(int)
+        cuts = [low + length * np.arange(1, n) / n for low, length, n in zip(self.lows, lengths, parts, strict=True) if n > 1]
+        return self.cut(np.concatenate(cuts)) if cuts else self
+
     def only(self, chosen: Flags) -> Wave:
         """Return the wave on the chosen pieces (m,) alone, normalised; PhysicsError where it is zero there."""
         lows, highs = self.lows[chosen], self.highs[chosen]
@@ -102,7 +109,7 @@ def turned(wave: Wave, span: tuple[float, float] | None = None) -> Wave:
     extent = float(max(wave.highs[-1] - wave.lows[0], 1e-300))
     centre, reach = _extent(wave) if span is None else ((span[0] + span[1]) / 2, max(abs(span[0]), abs(span[1])))
     while True:
-        fine = _fine(wave, reach)
+        fine = wave.finer(reach)
         x, w = fine.rule
         source = w * fine.values / np.sqrt(2 * np.pi)
 
@@ -130,10 +137,3 @@ def _extent(wave: Wave) -> tuple[float, float]:
     reach = 6 * float(np.sqrt(max(0.0, square - flow**2))) + 10.0 / whole
     return (flow if wave.axis == "x" else -flow), reach
 
-
-def _fine(wave: Wave, reach: float) -> Wave:
-    """Return the wave with pieces short enough for plane waves up to `reach`."""
-    lengths = wave.highs - wave.lows
-    parts = np.maximum(1, np.ceil(lengths * reach * 2 / TURNS)).astype(int)
-    cuts = [low + length * np.arange(1, n) / n for low, length, n in zip(wave.lows, lengths, parts, strict=True) if n > 1]
-    return wave.cut(np.concatenate(cuts)) if cuts else wave

@@ -5,16 +5,17 @@ from __future__ import annotations
 import argparse
 import locale
 import re
+from collections.abc import Callable
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from specterm.cli.progress import Progress
 from specterm.cli.source import Source, overrides
 from specterm.language import parse
-from specterm.language.printing import format_expression
 from specterm.model import Model, build
 
 if TYPE_CHECKING:
+    from specterm.session.records import Record
     from specterm.spectrum import Spectrum
 
 
@@ -67,16 +68,17 @@ def status_of(spectrum: Spectrum) -> int:
 
 def expression_of(model: Model) -> str:
     """Return the operator as the sheet writes it."""
-    for definition in model.sheet.definitions:
-        if definition.name == model.main:
-            return f"{model.main} = {format_expression(definition.expression)}"
-    return model.main
+    from specterm.session.records.levels import expression_of as written  # noqa: PLC0415 - heavy
+
+    return written(model)
 
 
-def units_of(model: Model) -> dict[str, str]:
-    """Return the names of the units, empty where the sheet is dimensionless."""
-    units = model.units
-    return {"energy": units.energy, "length": units.length, "mass": units.mass, "time": units.time}
+def answered(
+    arguments: argparse.Namespace, record: Record, text: Callable[[], str], status: int = 0, warnings: tuple[str, ...] = ()
+) -> Answer:
+    """Return a result the way it is asked for: JSON, CSV, or the text that `text` makes."""
+    words = record.json() if arguments.json else record.csv() if arguments.csv else text()
+    return Answer(words, status, warnings)
 
 
 def glyphs_of(wanted: str | None) -> str:

@@ -3,12 +3,11 @@
 from __future__ import annotations
 
 import argparse
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
 import numpy as np
 
-from specterm.cli.answer import Answer, enough, expression_of, glyphs_of, least_for, model_of, status_of
-from specterm.cli.output import to_csv, to_json
+from specterm.cli.answer import Answer, answered, enough, expression_of, glyphs_of, least_for, model_of, status_of
 from specterm.cli.progress import Progress
 from specterm.cli.source import Source
 from specterm.model import Model
@@ -27,19 +26,16 @@ PLACES = 201
 def evolve(arguments: argparse.Namespace, source: Source) -> Answer:
     """Answer `evolve`."""
     from specterm.analysis.evolution import evolve as evolved  # noqa: PLC0415 - heavy
+    from specterm.session.records.evolution import evolution_record  # noqa: PLC0415
 
     model = model_of(arguments, source)
     spectrum = _levels(arguments, source, model)
     found = evolved(model, spectrum, arguments.state, arguments.times, arguments.observable, source.folder)
     density = _density(arguments, source, model, spectrum) if arguments.density else None
-    if arguments.json:
-        text = to_json(_data(found, density))
-    elif arguments.csv:
-        rows = zip(found.times, found.survival, found.survival_error, found.mean, found.spread, strict=True)
-        text = to_csv(("time", "survival", "error", "mean", "spread"), [[float(cell) for cell in row] for row in rows])
-    else:
-        text = _text(arguments, model, found, density)
-    return Answer(text, status_of(spectrum), (*spectrum.notes, *found.notes))
+    return answered(
+        arguments, evolution_record(found, density), lambda: _text(arguments, model, found, density), status_of(spectrum),
+        (*spectrum.notes, *found.notes),
+    )  # fmt: skip
 
 
 def _levels(arguments: argparse.Namespace, source: Source, model: Model) -> Spectrum:
@@ -69,26 +65,6 @@ def _density(arguments: argparse.Namespace, source: Source, model: Model, spectr
     alive = wide[size > 1e-6 * size.max()]
     x = np.linspace(alive[0], alive[-1], PLACES)
     return x, np.abs(packet.wave(x, times)) ** 2
-
-
-def _data(found: Evolution, density: tuple[Array, Array] | None) -> dict[str, Any]:
-    data: dict[str, Any] = {
-        "state": found.state,
-        "observable": found.observable,
-        "unit_of_time": found.unit,
-        "times": found.times.tolist(),
-        "survival": found.survival.tolist(),
-        "errors": found.survival_error.tolist(),
-        "mean": found.mean.tolist(),
-        "spread": found.spread.tolist(),
-        "captured": found.captured,
-        "classical_period": found.classical,
-        "revival_time": found.revival,
-        "notes": list(found.notes),
-    }
-    if density is not None:
-        data["density"] = {"places": density[0].tolist(), "values": density[1].tolist()}
-    return data
 
 
 def _text(arguments: argparse.Namespace, model: Model, found: Evolution, density: tuple[Array, Array] | None) -> str:

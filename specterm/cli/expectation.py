@@ -3,10 +3,9 @@
 from __future__ import annotations
 
 import argparse
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
-from specterm.cli.answer import Answer, enough, expression_of, glyphs_of, least_for, model_of, status_of
-from specterm.cli.output import to_csv, to_json
+from specterm.cli.answer import Answer, answered, enough, expression_of, glyphs_of, least_for, model_of, status_of
 from specterm.cli.source import Source
 from specterm.errors import SheetError
 from specterm.model import Model
@@ -22,6 +21,7 @@ def expectation(arguments: argparse.Namespace, source: Source) -> Answer:
     from specterm.analysis.expectation import expectation as expected  # noqa: PLC0415 - heavy
     from specterm.analysis.matrix_elements import matrix_elements  # noqa: PLC0415
     from specterm.analysis.uncertainty import pair_of  # noqa: PLC0415
+    from specterm.session.records.means import expectation_record, matrix_record  # noqa: PLC0415
 
     if arguments.level is not None and arguments.state is not None:
         raise SheetError("both --level and --state are given", mend="give one of them")
@@ -30,43 +30,15 @@ def expectation(arguments: argparse.Namespace, source: Source) -> Answer:
     spectrum = enough(arguments, model, least_for(model, state))
     text = arguments.observable
     if arguments.matrix:
-        return Answer(_matrix(arguments, matrix_elements(model, spectrum, text)), status_of(spectrum), spectrum.notes)
+        matrix = matrix_elements(model, spectrum, text)
+        return answered(
+            arguments, matrix_record(matrix), lambda: _matrix_text(arguments, matrix), status_of(spectrum), spectrum.notes
+        )
     found = expected(model, spectrum, text, state, source.folder)
     pair = pair_of(model, spectrum, (text, arguments.other), state, source.folder) if arguments.other else None
-    notes = found.notes + (pair.notes if pair else ())
-    if arguments.json:
-        data = {**_data(found), **({"pair": _pair_data(pair)} if pair else {})}
-        return Answer(to_json(data), status_of(spectrum), (*spectrum.notes, *notes))
-    if arguments.csv:
-        rows = [_row(one) for one in ((found, pair.second) if pair else (found,))]
-        return Answer(to_csv(_HEADING, rows), status_of(spectrum), (*spectrum.notes, *notes))
-    return Answer(_text(model, found, pair), status_of(spectrum), (*spectrum.notes, *notes))
-
-
-_HEADING = ("observable", "state", "mean", "error", "spread", "spread_error", "unit")
-
-
-def _row(found: Expectation) -> tuple[Any, ...]:
-    return tuple(getattr(found, name) for name in _HEADING)
-
-
-def _data(found: Expectation) -> dict[str, Any]:
-    """Return an expectation as data; an infinite spread is null, which its notes explain."""
-    return {**{name: getattr(found, name) for name in _HEADING}, "notes": list(found.notes)}
-
-
-def _pair_data(pair: Pair) -> dict[str, Any]:
-    return {
-        "observable": pair.second.observable,
-        "mean": pair.second.mean,
-        "spread": pair.second.spread,
-        "error": pair.second.error,
-        "product": pair.product,
-        "bound": pair.bound,
-        "bound_error": pair.bound_error,
-        "commutator": pair.commutator,
-        "commutes": pair.commutes,
-    }
+    notes = (*spectrum.notes, *found.notes, *(pair.notes if pair else ()))
+    record = expectation_record(found, pair)
+    return answered(arguments, record, lambda: _text(model, found, pair), status_of(spectrum), notes)
 
 
 def _text(model: Model, found: Expectation, pair: Pair | None) -> str:
@@ -97,25 +69,8 @@ def _shown_in(model: Model, found: Expectation) -> tuple[float, str]:
     return 1.0, found.unit
 
 
-def _matrix(arguments: argparse.Namespace, found: MatrixElements) -> str:
-    """Return the matrix between levels as data, or as table and map."""
-    if arguments.json:
-        return to_json(
-            {
-                "observable": found.observable,
-                "unit": found.unit,
-                "levels": list(found.rows),
-                "matrix": [[complex(value) for value in row] for row in found.values],
-                "errors": [[float(value) for value in row] for row in found.errors],
-            }
-        )
-    if arguments.csv:
-        rows = [
-            (a, b, float(value.real), float(value.imag), float(error))
-            for a, line, errors in zip(found.rows, found.values, found.errors, strict=True)
-            for b, value, error in zip(found.columns, line, errors, strict=True)
-        ]
-        return to_csv(("bra", "ket", "re", "im", "error"), rows)
+def _matrix_text(arguments: argparse.Namespace, found: MatrixElements) -> str:
+    """Return the matrix between levels as table and map."""
     from specterm.views.cells import plain  # noqa: PLC0415 - only text needs the views
     from specterm.views.element_table import element_table  # noqa: PLC0415
     from specterm.views.heat_map import heat_map  # noqa: PLC0415

@@ -4,17 +4,15 @@ from __future__ import annotations
 
 import argparse
 import math
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
-from specterm.cli.answer import Answer, enough, expression_of, glyphs_of, least_for, model_of, status_of
-from specterm.cli.output import to_csv, to_json
+from specterm.cli.answer import Answer, answered, enough, expression_of, glyphs_of, least_for, model_of, status_of
 from specterm.cli.source import Source
 from specterm.errors import SheetError
 from specterm.model import Model
 
 if TYPE_CHECKING:
     from specterm.analysis.measurement import Joint, Orders, Record
-    from specterm.analysis.meters import Outcome
 
 BINS = 24
 
@@ -25,6 +23,7 @@ def measure(arguments: argparse.Namespace, source: Source) -> Answer:
 
     from specterm.analysis.measurement import both_orders, course_of, repeat  # noqa: PLC0415 - heavy
     from specterm.analysis.measurement import measure as run  # noqa: PLC0415
+    from specterm.session.records.measured import measured_record  # noqa: PLC0415
 
     model = model_of(arguments, source)
     spectrum = enough(arguments, model, least_for(model, arguments.state))
@@ -37,13 +36,10 @@ def measure(arguments: argparse.Namespace, source: Source) -> Answer:
     joints = repeat(course, arguments.runs, seed) if arguments.runs else ()
     pair = len(arguments.observables) == 2
     orders = both_orders(course) if pair and len(set(arguments.observables)) == 2 else None
-    if arguments.json:
-        text = to_json(_data(arguments, record, joints, orders))
-    elif arguments.csv:
-        text = _csv(record, joints)
-    else:
-        text = _text(arguments, model, record, joints, orders)
-    return Answer(text, status_of(spectrum), (*spectrum.notes, *record.notes))
+    return answered(
+        arguments, measured_record(record, arguments.after, joints, orders),
+        lambda: _text(arguments, model, record, joints, orders), status_of(spectrum), (*spectrum.notes, *record.notes),
+    )  # fmt: skip
 
 
 def _chosen(text: str | None) -> list[float | None]:
@@ -57,60 +53,6 @@ def _chosen(text: str | None) -> list[float | None]:
     if any(value is not None and not math.isfinite(value) for value in values):
         raise SheetError(f"--choose {text}: expected numbers or -, separated by commas", mend="for instance --choose 0.5,-")
     return values
-
-
-def _data(arguments: argparse.Namespace, record: Record, joints: tuple[Joint, ...], orders: Orders | None) -> dict[str, Any]:
-    data: dict[str, Any] = {
-        "state": record.state,
-        "seed": record.seed,
-        "after": arguments.after,
-        "steps": [
-            {
-                "observable": step.observable,
-                "unit": step.unit,
-                "outcomes": [_outcome(outcome) for outcome in step.outcomes],
-                "drawn": None if step.drawn is None else step.outcomes[step.drawn].value,
-                "rest": step.rest,
-            }
-            for step in record.steps
-        ],
-        "notes": list(record.notes),
-    }
-    if joints:
-        data["runs"] = arguments.runs
-        data["joint"] = [{"values": list(j.values), "probability": j.probability, "count": j.count} for j in joints]
-    if orders:
-        data["orders"] = {
-            "observables": list(orders.observables),
-            "values": [[outcome.value for outcome in side] for side in (orders.first, orders.second)],
-            "forward": orders.forward.tolist(),
-            "backward": orders.backward.tolist(),
-            "distance": orders.distance,
-        }
-    return data
-
-
-def _outcome(outcome: Outcome) -> dict[str, Any]:
-    return {
-        "value": outcome.value,
-        "probability": outcome.probability,
-        "low": outcome.low,
-        "high": outcome.high,
-        "levels": list(outcome.levels),
-    }
-
-
-def _csv(record: Record, joints: tuple[Joint, ...]) -> str:
-    """Return the joint counts of many runs, or the outcomes of each step of one."""
-    if joints:
-        heading = [*(step.observable for step in record.steps), "probability", "count"]
-        return to_csv(heading, [(*j.values, j.probability, j.count) for j in joints])
-    rows = [
-        (number, step.observable, o.value, o.low, o.high, o.probability, int(place == step.drawn))
-        for number, step in enumerate(record.steps)
-        for place, o in enumerate(step.outcomes)
-    ]
-    return to_csv(("step", "observable", "value", "low", "high", "probability", "drawn"), rows)
 
 
 def _text(arguments: argparse.Namespace, model: Model, record: Record, joints: tuple[Joint, ...], orders: Orders | None) -> str:

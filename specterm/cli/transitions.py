@@ -3,10 +3,9 @@
 from __future__ import annotations
 
 import argparse
-from typing import TYPE_CHECKING, Any
+from typing import TYPE_CHECKING
 
-from specterm.cli.answer import Answer, enough, expression_of, glyphs_of, model_of, solved, status_of
-from specterm.cli.output import to_csv, to_json
+from specterm.cli.answer import Answer, answered, enough, expression_of, glyphs_of, model_of, solved, status_of
 from specterm.cli.source import Source
 from specterm.errors import SheetError
 from specterm.model import Model
@@ -16,14 +15,10 @@ if TYPE_CHECKING:
     from specterm.analysis.transitions import Transitions
     from specterm.spectrum import Spectrum
 
-_KEYS = (
-    "energy", "energy_error", "dipole", "dipole_error", "strength", "strength_error", "wavelength", "frequency", "wavenumber",
-    "einstein", "population",
-)  # fmt: skip
-
-
 def transitions(arguments: argparse.Namespace, source: Source) -> Answer:
     """Answer `transitions`."""
+    from specterm.session.records.lines import lines_record  # noqa: PLC0415 - heavy
+
     model = model_of(arguments, source)
     if arguments.into is not None and arguments.temperature is not None:
         raise SheetError("--temperature and --into do not go together", mend="give --from for the level the lines start at")
@@ -31,13 +26,10 @@ def transitions(arguments: argparse.Namespace, source: Source) -> Answer:
     spectrum = enough(arguments, model, least)
     found = _into(arguments, source, model, spectrum) if arguments.into is not None else _within(arguments, model, spectrum)
     lines = [line for line in found.lines if arguments.least is None or line.intensity >= arguments.least]
-    if arguments.json:
-        text = to_json(_data(found, lines))
-    elif arguments.csv:
-        text = to_csv(("from", "to", *_flat_keys()), [(line.start, line.to, *_flat(line)) for line in lines])
-    else:
-        text = _text(arguments, model, found, lines)
-    return Answer(text, status_of(spectrum), (*spectrum.notes, *found.notes))
+    return answered(
+        arguments, lines_record(found, lines), lambda: _text(arguments, model, found, lines), status_of(spectrum),
+        (*spectrum.notes, *found.notes),
+    )  # fmt: skip
 
 
 def _starts(arguments: argparse.Namespace, spectrum: Spectrum) -> tuple[int, ...]:
@@ -62,33 +54,6 @@ def _into(arguments: argparse.Namespace, source: Source, model: Model, spectrum:
 
     found = solved(arguments, other_sheet(model, arguments.into, source.folder))
     return into_other(model, spectrum, found, _starts(arguments, spectrum), arguments.dipole)
-
-
-def _data(found: Transitions, lines: list[Line]) -> dict[str, Any]:
-    """Return lines as data; `sum_rule` is that of the only starting level, null where there are several."""
-    sums = list(found.sums.values())
-    return {
-        "dipole": found.dipole,
-        "transitions": [
-            {"from": line.start, "to": line.to, **{key: getattr(line, key) for key in _KEYS}, "weight": abs(line.dipole) ** 2}
-            for line in lines
-        ],
-        "sum_rule": sums[0] if len(sums) == 1 else None,
-        "sum_rules": [{"from": start, "sum": total} for start, total in found.sums.items()],
-        "notes": list(found.notes),
-    }
-
-
-def _flat_keys() -> tuple[str, ...]:
-    return tuple(name for key in _KEYS for name in (("dipole_re", "dipole_im") if key == "dipole" else (key,)))
-
-
-def _flat(line: Line) -> list[float | None]:
-    cells: list[float | None] = []
-    for key in _KEYS:
-        value = getattr(line, key)
-        cells += [value.real, value.imag] if key == "dipole" else [value]
-    return cells
 
 
 def _text(arguments: argparse.Namespace, model: Model, found: Transitions, lines: list[Line]) -> str:

@@ -5,20 +5,12 @@ from __future__ import annotations
 import argparse
 from typing import TYPE_CHECKING, Any
 
-from specterm.cli.answer import (
-    Answer,
-    expression_of,
-    glyphs_of,
-    model_of,
-    solved,
-    status_of,
-    units_of,
-)
-from specterm.cli.output import to_csv, to_json
+from specterm.cli.answer import Answer, answered, expression_of, glyphs_of, model_of, solved, status_of
 from specterm.cli.source import Source
 from specterm.errors import PhysicsError, SheetError, SpectermError, position
 from specterm.model import Model
 from specterm.session.presets import names
+from specterm.session.records.writing import to_csv, to_json
 
 if TYPE_CHECKING:
     from specterm.spectrum import Spectrum
@@ -26,44 +18,13 @@ if TYPE_CHECKING:
 
 def levels(arguments: argparse.Namespace, source: Source) -> Answer:
     """Answer `levels`."""
+    from specterm.session.records.levels import levels_record  # noqa: PLC0415 - heavy
+
     model = model_of(arguments, source)
     spectrum = solved(arguments, model)
-    if arguments.json:
-        text = to_json(levels_data(model, spectrum))
-    elif arguments.csv:
-        heading = ("index", "value", "error", "kind", "nodes", "parity", "width")
-        text = to_csv(heading, [tuple(getattr(level, name) for name in heading) for level in spectrum.levels])
-    else:
-        text = levels_text(model, spectrum)
-    return Answer(text, status_of(spectrum), spectrum.notes)
-
-
-def levels_data(model: Model, spectrum: Spectrum) -> dict[str, Any]:
-    """Return a spectrum as data for JSON."""
-    domain = model.domain
-    names_ = ("index", "value", "error", "kind", "nodes", "parity", "width")
-    return {
-        "operator": expression_of(model),
-        "units": units_of(model),
-        "levels": [{name: getattr(level, name) for name in names_} for level in spectrum.levels],
-        "bound": spectrum.bound,
-        "threshold": spectrum.threshold,
-        "complete": spectrum.complete,
-        "domain": {
-            "coordinate": domain.coordinate,
-            "left": domain.left,
-            "right": domain.right,
-            "ends": [domain.left_end, domain.right_end],
-            "phase": domain.phase,
-            "computed": [spectrum.left, spectrum.right],
-        },
-        "basis": spectrum.basis,
-        "unknowns": spectrum.unknowns,
-        "tolerance": spectrum.tolerance,
-        "from_top": spectrum.from_top,
-        "seconds": spectrum.seconds,
-        "notes": list(spectrum.notes),
-    }
+    return answered(
+        arguments, levels_record(model, spectrum), lambda: levels_text(model, spectrum), status_of(spectrum), spectrum.notes
+    )
 
 
 def levels_text(model: Model, spectrum: Spectrum) -> str:

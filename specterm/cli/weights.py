@@ -6,8 +6,7 @@ import argparse
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
-from specterm.cli.answer import Answer, enough, expression_of, glyphs_of, least_for, model_of, status_of
-from specterm.cli.output import to_csv, to_json
+from specterm.cli.answer import Answer, answered, enough, expression_of, glyphs_of, least_for, model_of, status_of
 from specterm.cli.progress import Progress
 from specterm.cli.source import Source
 from specterm.model import Model
@@ -20,6 +19,7 @@ if TYPE_CHECKING:
 def weights(arguments: argparse.Namespace, source: Source) -> Answer:
     """Answer `weights`."""
     from specterm.analysis import project  # noqa: PLC0415 - heavy
+    from specterm.session.records.levels import weights_record  # noqa: PLC0415
 
     model = model_of(arguments, source)
     least = least_for(model, arguments.state)
@@ -28,26 +28,10 @@ def weights(arguments: argparse.Namespace, source: Source) -> Answer:
     else:
         spectrum = enough(arguments, model, least)
         found = project(model, spectrum, arguments.state, source.folder)
-    if arguments.json:
-        text = to_json(
-            {
-                "state": found.state,
-                "weights": [
-                    {"index": w.index, "value": w.value, "weight": w.weight, "error": w.error, "amplitude": w.amplitude}
-                    for w in found.weights
-                ],
-                "captured": found.captured,
-                "mean": found.mean,
-                "spread": found.spread,
-                "notes": list(found.notes),
-            }
-        )
-    elif arguments.csv:
-        rows = [(w.index, w.value, w.weight, w.error, w.amplitude.real, w.amplitude.imag) for w in found.weights]
-        text = to_csv(("index", "value", "weight", "error", "amplitude_re", "amplitude_im"), rows)
-    else:
-        text = _weights_text(model, spectrum, found)
-    return Answer(text, status_of(spectrum), (*spectrum.notes, *found.notes))
+    notes = (*spectrum.notes, *found.notes)
+    return answered(
+        arguments, weights_record(found), lambda: _weights_text(model, spectrum, found), status_of(spectrum), notes
+    )
 
 
 def _captured(arguments: argparse.Namespace, source: Source, model: Model, least: int | None) -> tuple[Spectrum, Weights]:

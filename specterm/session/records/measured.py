@@ -1,0 +1,68 @@
+"""Measurements as data."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from specterm.analysis.measurement import Joint, Orders, Step
+from specterm.analysis.measurement import Record as Run
+from specterm.analysis.meters import Outcome
+from specterm.session.records.record import Record
+
+_STEP = ("step", "observable", "value", "low", "high", "probability", "drawn")
+
+
+def measured_record(run: Run, after: float, joints: tuple[Joint, ...], orders: Orders | None) -> Record:
+    """Return one run as data, with the counts of many and both orders where there are; CSV holds the counts, else the steps."""
+    data: dict[str, Any] = {
+        "state": run.state,
+        "seed": run.seed,
+        "after": after,
+        "steps": [step_data(step) for step in run.steps],
+        "notes": list(run.notes),
+    }
+    if joints:
+        data["runs"] = sum(joint.count for joint in joints)
+        data["joint"] = [{"values": list(j.values), "probability": j.probability, "count": j.count} for j in joints]
+    if orders:
+        data["orders"] = {
+            "observables": list(orders.observables),
+            "values": [[outcome.value for outcome in side] for side in (orders.first, orders.second)],
+            "forward": orders.forward.tolist(),
+            "backward": orders.backward.tolist(),
+            "distance": orders.distance,
+        }
+    if joints:
+        heading = (*(step.observable for step in run.steps), "probability", "count")
+        return Record(data, heading, [(*j.values, j.probability, j.count) for j in joints])
+    rows = [row for number, step in enumerate(run.steps) for row in step_rows(number, step)]
+    return Record(data, _STEP, rows)
+
+
+def step_data(step: Step) -> dict[str, Any]:
+    """Return one measurement as data."""
+    return {
+        "observable": step.observable,
+        "unit": step.unit,
+        "outcomes": [_outcome(outcome) for outcome in step.outcomes],
+        "drawn": None if step.drawn is None else step.outcomes[step.drawn].value,
+        "rest": step.rest,
+    }
+
+
+def step_rows(number: int, step: Step) -> list[tuple[Any, ...]]:
+    """Return the outcomes of one measurement as rows of a table."""
+    return [
+        (number, step.observable, o.value, o.low, o.high, o.probability, int(place == step.drawn))
+        for place, o in enumerate(step.outcomes)
+    ]
+
+
+def _outcome(outcome: Outcome) -> dict[str, Any]:
+    return {
+        "value": outcome.value,
+        "probability": outcome.probability,
+        "low": outcome.low,
+        "high": outcome.high,
+        "levels": list(outcome.levels),
+    }
