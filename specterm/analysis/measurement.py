@@ -155,23 +155,25 @@ def measure(course: Course, state: str, seed: int, chosen: Sequence[float | None
         if not outcomes:
             raise SheetError(f"no outcome of `{meter.text}` is among the levels computed", mend="ask for more with -n")
         wanted = chosen[number] if number < len(chosen) else None
-        place = _nearest(outcomes, wanted) if wanted is not None else _drawn(outcomes, float(draws.random()))
-        steps.append(Step(meter.text, meter.unit, outcomes, place, _rest(outcomes)))
+        place = nearest_place(outcomes, wanted) if wanted is not None else drawn_place(outcomes, float(draws.random()))
+        steps.append(Step(meter.text, meter.unit, outcomes, place, uncovered(outcomes)))
         branch = (*branch, place)
     return Record(state, tuple(steps), seed, tuple(_notes(course, steps)))
 
 
-def _nearest(outcomes: Sequence[Outcome], value: float) -> int:
+def nearest_place(outcomes: Sequence[Outcome], value: float) -> int:
+    """Return the place of the outcome nearest to a value."""
     return min(range(len(outcomes)), key=lambda k: abs(outcomes[k].value - value))
 
 
-def _drawn(outcomes: Sequence[Outcome], number: float) -> int:
+def drawn_place(outcomes: Sequence[Outcome], number: float) -> int:
     """Return the place of an outcome for a random number in [0, 1), probabilities taken relative to those covered."""
     rising = np.cumsum([outcome.probability for outcome in outcomes])
     return int(min(np.searchsorted(rising, number * rising[-1], side="right"), len(outcomes) - 1))
 
 
-def _rest(outcomes: Sequence[Outcome]) -> float:
+def uncovered(outcomes: Sequence[Outcome]) -> float:
+    """Return the probability that no outcome covers."""
     return max(0.0, 1.0 - math.fsum(outcome.probability for outcome in outcomes))
 
 
