@@ -23,7 +23,7 @@ ALIVE = 1e-20
 """Pieces with less than this share of the state do not count in its extent."""
 PANELS = 32
 """The window is searched in at least so many steps."""
-MOST_PRODUCTS = 5e7
+MOST_PRODUCTS = 1e7
 """Places times momenta, at most: a state that jumps may end here with less held."""
 MOST_SAMPLES = 20_000
 LEAST_STICKS = 2
@@ -50,8 +50,8 @@ def level_momentum(model: Model, spectrum: Spectrum, row: int, samples: int = 40
     return momentum_density(model, prepare(model, spectrum, f"level({spectrum.levels[row].index})"), samples)
 
 
-def momentum_density(model: Model, wave: Prepared, samples: int = 400) -> MomentumDensity:
-    """Return the momentum density of a prepared state in a window that holds 0.999 of it (0.9999 on a ring).
+def momentum_density(model: Model, wave: Prepared, samples: int = 400, held: float | None = None) -> MomentumDensity:
+    """Return the momentum density of a prepared state in a window that holds the share `held`: 0.999, or 0.9999 on a ring.
 
     phi(k) is the integral of psi exp(-i k x)/sqrt(2 pi) over the domain, psi being 0 beyond walls, by Gauss rules resolved for
     the largest |k|; on a ring k = 2 pi (n + phase)/L. At least `samples` momenta on a line, more where the density oscillates.
@@ -60,8 +60,8 @@ def momentum_density(model: Model, wave: Prepared, samples: int = 400) -> Moment
     whole = of_prepared(wave)
     mean, spread = _slope_moments(wave)
     if model.domain.is_ring:
-        return _on_ring(model, whole, mean)
-    return _on_line(model, whole, (mean, spread), samples)
+        return _on_ring(model, whole, mean, held or HELD_ON_RING)
+    return _on_line(model, whole, (mean, spread), samples, held or HELD)
 
 
 def unit_of_momentum(model: Model) -> str:
@@ -79,26 +79,26 @@ def _slope_moments(wave: Prepared) -> tuple[float, float]:
     return mean, math.sqrt(max(0.0, square - mean**2))
 
 
-def _on_ring(model: Model, whole: Wave, mean: float) -> MomentumDensity:
+def _on_ring(model: Model, whole: Wave, mean: float, wanted: float) -> MomentumDensity:
     """Return the probabilities of the momenta around the mean one."""
     length = model.domain.right - model.domain.left
     step, phase = 2 * math.pi / length, model.domain.phase or 0.0
     middle, reach = round(mean / step - phase), 8
     while True:
-        k = step * (np.arange(middle - reach, middle + reach + 1) + phase)
+        k: Array = step * (np.arange(middle - reach, middle + reach + 1, dtype=np.float64) + phase)
         finer = whole.finer(float(np.abs(k).max()))
         x, w = finer.rule
         shares = np.abs(plane_sums(x, w * finer.values, k, np.zeros(1))[:, 0]) ** 2 / length
-        if shares.sum() >= HELD_ON_RING or len(x) * len(k) > MOST_PRODUCTS / 4:
+        if shares.sum() >= wanted or len(x) * len(k) > MOST_PRODUCTS / 4:
             break
         reach *= 2
     rising = np.cumsum(np.concatenate([[shares[reach]], shares[reach - 1 :: -1] + shares[reach + 1 :]]))
-    kept = min(max(int(np.searchsorted(rising, HELD_ON_RING)), LEAST_STICKS), reach)
+    kept = min(max(int(np.searchsorted(rising, wanted)), LEAST_STICKS), reach)
     some = slice(reach - kept, reach + kept + 1)
     return MomentumDensity(k[some], shares[some], True, unit_of_momentum(model), float(shares[some].sum()))
 
 
-def _on_line(model: Model, whole: Wave, moments: tuple[float, float], samples: int) -> MomentumDensity:
+def _on_line(model: Model, whole: Wave, moments: tuple[float, float], samples: int, wanted: float) -> MomentumDensity:
     """Return the density in the smallest window about the mean that holds enough."""
     alive = whole.shares > ALIVE * whole.norm
     whole = Wave(whole.axis, whole.at, whole.lows[alive], whole.highs[alive])
@@ -109,12 +109,12 @@ def _on_line(model: Model, whole: Wave, moments: tuple[float, float], samples: i
         finer = whole.finer(abs(mean) + reach)
         half = _half_panel(reach, extent)
         shares = _panel_shares(finer, mean, reach, half)
-        if shares.sum() >= HELD or len(finer.rule[0]) * len(shares) * POINTS > MOST_PRODUCTS / 4:
+        if shares.sum() >= wanted or len(finer.rule[0]) * len(shares) * POINTS > MOST_PRODUCTS / 4:
             break
         reach *= 2
     middle = len(shares) // 2
     rising = np.cumsum(shares[middle - 1 :: -1] + shares[middle:])
-    kept = min(int(np.searchsorted(rising, HELD)) + 1, middle)
+    kept = min(int(np.searchsorted(rising, wanted)) + 1, middle)
     window = kept * 2 * half
     count = int(np.clip(2 * window * extent / 1.5, samples, max(samples, MOST_SAMPLES)))
     k, density = _sampled(finer, mean, window, count)
@@ -127,8 +127,7 @@ def _first_reach(whole: Wave, moments: tuple[float, float], extent: float) -> fl
     share = w * np.abs(whole.values) ** 2 / whole.norm
     place = float((share * x).sum())
     width = math.sqrt(float((share * (x - place) ** 2).sum()))
-    mean, spread = moments
-    reach = 3.5 * spread
+    reach = 3.5 * moments[1]
     work = len(x) * (1 + reach * extent / TURNS) ** 2 * POINTS
     return reach if 0 < reach < math.inf and work < MOST_PRODUCTS / 16 else 2 / width
 
@@ -142,7 +141,7 @@ def _panel_shares(finer: Wave, mean: float, reach: float, half: float) -> Array:
     """Return the probability on each panel of wave numbers from mean - reach to mean + reach, by a Gauss rule of 20 points."""
     t, weight = gauss_legendre(POINTS)
     panels = round(reach / half)
-    centres = mean - reach + half * (2 * np.arange(panels) + 1)
+    centres: Array = mean - reach + half * (2 * np.arange(panels, dtype=np.float64) + 1)
     x, w = finer.rule
     phi = plane_sums(x, w * finer.values / math.sqrt(2 * math.pi), centres, half * t)
     shares: Array = (half * weight * np.abs(phi) ** 2).sum(axis=1)
@@ -155,6 +154,7 @@ def _sampled(finer: Wave, mean: float, window: float, count: int) -> tuple[Array
     columns = math.isqrt(count) + 1
     rows = -(-count // columns)
     x, w = finer.rule
-    coarse = mean - window + step * columns * np.arange(rows)
-    phi = plane_sums(x, w * finer.values / math.sqrt(2 * math.pi), coarse, step * np.arange(columns))
+    coarse: Array = mean - window + step * columns * np.arange(rows, dtype=np.float64)
+    fine: Array = step * np.arange(columns, dtype=np.float64)
+    phi = plane_sums(x, w * finer.values / math.sqrt(2 * math.pi), coarse, fine)
     return np.linspace(mean - window, mean + window, count), np.abs(phi.ravel()[:count]) ** 2

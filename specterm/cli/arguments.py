@@ -11,6 +11,7 @@ from specterm.errors import printable
 VERBS = ("levels", "weights", "expectation", "transitions", "measure", "evolve", "figure", "check", "presets")
 LATER = ("sensitivities", "sweep", "fit")
 MOST = 1_000_000
+VIEWS = ("psi", "density", "levels", "momentum")
 GLYPHS = ("braille", "block", "ascii")
 
 _SHEET = "a sheet's file, a preset's name, or - for standard input"
@@ -46,12 +47,10 @@ def parser() -> argparse.ArgumentParser:
     _transitions(verbs.add_parser("transitions", help="lines between levels, with strengths"))
     _measure(verbs.add_parser("measure", help="a sequence of measurements on a prepared state"))
     _evolve(verbs.add_parser("evolve", help="survival probability and means at given times"))
-    figure = _with_sheet(
-        verbs.add_parser("figure", help="potential, levels and eigenstates as a text figure"), solving=True, data=False
-    )
+    figure = _with_sheet(verbs.add_parser("figure", help="potential, levels and eigenstates as a text figure"), solving=True)
     figure.add_argument("--levels", metavar="I,J", type=_indices, help="only these levels")
     figure.add_argument("--state", metavar="STATE", help="draw this prepared state too")
-    figure.add_argument("--view", choices=("psi", "density", "levels"), default="psi", help="what is drawn at each level")
+    figure.add_argument("--view", choices=VIEWS, default="psi", help="drawn at each level; or momentum, of one state")
     figure.add_argument("--width", type=_size(20), default=100, metavar="W", help="columns (100)")
     figure.add_argument("--height", type=_size(5), default=32, metavar="H", help="rows (32)")
     _with_glyphs(figure)

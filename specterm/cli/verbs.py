@@ -41,6 +41,12 @@ def levels_text(model: Model, spectrum: Spectrum) -> str:
 
 def figure(arguments: argparse.Namespace, source: Source) -> Answer:
     """Answer `figure`."""
+    if arguments.view == "momentum":
+        from specterm.cli.momentum import momentum  # noqa: PLC0415 - only for this view
+
+        return momentum(arguments, source)
+    if arguments.json or arguments.csv:
+        raise SheetError("only --view momentum has data", mend="ask for `levels --json`, or for --view momentum")
     model = model_of(arguments, source)
     wanted = arguments.levels
     spectrum = solved(arguments, model, max(wanted) + 1 if wanted else None)
