@@ -165,26 +165,25 @@ def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array, Counts]
     diagonal, side = matrix.diagonal, matrix.side
     vertices, columns = diagonal.shape
     tiny = np.finfo(float).tiny ** 0.5
-    down, up = diagonal.copy(), diagonal.copy()
-    squares = side * side
+    both = np.concatenate([diagonal, diagonal[::-1]], axis=1)
+    squares = np.concatenate([side, side[::-1]], axis=1) ** 2
     with np.errstate(over="ignore"):
         for row in range(vertices - 1):
-            down[row + 1] -= squares[row] / _nonzero(down[row], tiny)
-        for row in range(vertices - 1, 0, -1):
-            up[row - 1] -= squares[row - 1] / _nonzero(up[row], tiny)
+            both[row + 1] -= squares[row] / _nonzero(both[row], tiny)
+    down, up = both[:, :columns], both[::-1, columns:]
     gamma = down + up - diagonal
     twist = np.argmin(np.abs(gamma) / weight, axis=0)
-    z = np.zeros_like(diagonal)
     take = np.arange(columns)
-    z[twist, take] = 1.0
     with np.errstate(over="ignore", invalid="ignore"):
         upward, downward = -side / np.where(down[:-1] == 0, tiny, down[:-1]), -side / np.where(up[1:] == 0, tiny, up[1:])
     rows = np.arange(vertices - 1)[:, None]
-    keep_up, keep_down = rows < twist, rows >= twist
-    for row in range(vertices - 2, -1, -1):
-        np.multiply(upward[row], z[row + 1], out=z[row], where=keep_up[row])
+    factors = np.concatenate([downward, upward[::-1]], axis=1)
+    keep = np.concatenate([rows >= twist, (rows < twist)[::-1]], axis=1)
+    runs = np.zeros_like(both)
+    runs[np.concatenate([twist, vertices - 1 - twist]), np.arange(2 * columns)] = 1.0
     for row in range(vertices - 1):
-        np.multiply(downward[row], z[row], out=z[row + 1], where=keep_down[row])
+        np.multiply(factors[row], runs[row], out=runs[row + 1], where=keep[row])
+    z = np.where(np.arange(vertices)[:, None] >= twist, runs[:, :columns], runs[::-1, columns:])
     return z, gamma[twist, take], np.count_nonzero(down < 0, axis=0)
 
 

@@ -9,6 +9,9 @@ from specterm.errors import PhysicsError
 SHARE = 0.5
 """A computation may take this share of what the machine (or its control group) has left."""
 
+SMALL = 3e7
+"""Less than this many bytes is taken without a look at what is left."""
+
 
 def memory_left() -> float:
     """Return the bytes left to this process: the least of the machine's and the control group's; inf where neither tells."""
@@ -36,6 +39,8 @@ def _group(limit: str, used: str, folder: Path) -> float:
 
 def refuse_above(needed: float, what: str) -> None:
     """Raise PhysicsError where `needed` bytes for `what` are more than the share of the memory left."""
+    if needed < SMALL:
+        return
     left = memory_left()
     if needed > SHARE * left:
         raise PhysicsError(

@@ -25,6 +25,7 @@ from specterm.spectrum.fourier import dense_levels
 from specterm.spectrum.refine import Refined, Request, first_mesh, refine
 from specterm.spectrum.result import Level, Spectrum
 from specterm.spectrum.setting import Setting, setting
+from specterm.spectrum.start import start_from
 from specterm.spectrum.states import ElementStates
 from specterm.spectrum.symmetry import parities
 from specterm.spectrum.vectors import Solved
@@ -48,6 +49,7 @@ def solve(
     tolerance: float = 1e-8,
     should_stop: Callable[[], bool] | None = None,
     progress: Callable[[str], None] | None = None,
+    like: Spectrum | None = None,
 ) -> Spectrum:
     """Return levels of the model's operator with errors and kinds.
 
@@ -64,6 +66,8 @@ def solve(
         Error asked for, as a share of each level's distance to the potential's minimum.
     should_stop, progress
         Asked now and then whether to give up (WorkStopped), and told in words how far the work is.
+    like
+        Levels of a nearby operator, to begin with: where they fit, the same levels are found in less than half the time.
 
     Raises
     ------
@@ -86,7 +90,7 @@ def solve(
     stop, tell = should_stop or (lambda: False), progress or (lambda _: None)
     try:
         with np.errstate(all="ignore"):
-            found = _by_order(model, count, near, tolerance, stop, tell)
+            found = _by_order(model, count, near, tolerance, stop, tell, like)
     except np.linalg.LinAlgError:
         raise PhysicsError(
             "the operator cannot be solved in double precision on this domain",
@@ -96,7 +100,13 @@ def solve(
 
 
 def _by_order(
-    model: Model, count: int | None, near: float | None, tolerance: float, stop: Callable[[], bool], tell: Callable[[str], None]
+    model: Model,
+    count: int | None,
+    near: float | None,
+    tolerance: float,
+    stop: Callable[[], bool],
+    tell: Callable[[str], None],
+    like: Spectrum | None,
 ) -> Spectrum:
     """Solve with what fits the order of the operator."""
     if model.operator.order > 2:
@@ -104,7 +114,7 @@ def _by_order(
     elif model.operator.order < 2:
         found = _running(model, count or USUAL, near, tolerance)
     else:
-        found = _elements(model, count, near, tolerance, stop, tell)
+        found = _elements(model, count, near, tolerance, stop, tell, like)
     return found
 
 
@@ -120,7 +130,13 @@ def _timed(spectrum: Spectrum, seconds: float) -> Spectrum:
 
 
 def _elements(
-    model: Model, count: int | None, near: float | None, tolerance: float, stop: Callable[[], bool], tell: Callable[[str], None]
+    model: Model,
+    count: int | None,
+    near: float | None,
+    tolerance: float,
+    stop: Callable[[], bool],
+    tell: Callable[[str], None],
+    like: Spectrum | None,
 ) -> Spectrum:
     """Solve an operator of second order on spectral elements."""
     ready = setting(problem_of(model))
@@ -129,12 +145,15 @@ def _elements(
     wanted = count or (min(USUAL, bound) if bound is not None else USUAL)
     true = min(wanted, bound) if bound is not None else wanted
     notes = list(model.warnings)
+    start = start_from(ready, like, 0, true - 1) if like is not None and near is None and true else None
     if near is not None and not (finite and bound == 0):
         first, true, energy = _nearest(ready, near * ready.problem.sign, wanted, bound)
+    elif start is not None:
+        first, energy = 0, start.energy
     else:
         first, energy = 0, ready.energy(true + 1.5) if true else ready.threshold
     request = Request(first, first + true - 1, tolerance, stop, tell)
-    refined = refine(ready, request, energy, None) if true else None
+    refined = refine(ready, request, energy, None, start) if true else None
     if near is not None and refined is not None:
         first, refined = _nearest_of(refined, near * ready.problem.sign - ready.floor, wanted)
     boxes = wanted - true if near is None else 0

@@ -16,8 +16,9 @@ from specterm.discrete.mesh import Mesh
 from specterm.discrete.meshing import MOST_ELEMENTS, Span, build, graded, resolve
 from specterm.errors import PhysicsError, WorkStopped
 from specterm.spectrum.accuracy import SAFETY, Accuracy, accuracy
-from specterm.spectrum.isolate import Ruler
+from specterm.spectrum.isolate import Group, Ruler
 from specterm.spectrum.setting import DEEP, Setting, span_at
+from specterm.spectrum.start import Start, brackets
 from specterm.spectrum.vectors import Solved, solve_levels
 
 OVERSHOOT = 1e-3
@@ -57,11 +58,21 @@ class Refined:
     span: Span
 
 
-def refine(ready: Setting, request: Request, energy: float, span: Span | None) -> Refined:
-    """Return the levels asked for, with errors; `energy` is a guess above them, `span` is given where the box is fixed."""
+def refine(
+    ready: Setting, request: Request, energy: float, span: Span | None, start: Start | None = None
+) -> Refined:
+    """Return the levels asked for, with errors; `energy` is a guess above them, `span` is given where the box is fixed.
+
+    `start` is where to begin instead of a mesh made for the energy.
+    """
     fixed = span is not None
     actions = (DEEP, DEEP)
-    energy, span, condensed = first_mesh(ready, request, energy, span)
+    groups = None
+    known = None if start is None else _begun(ready, request, start)
+    if known is None:
+        energy, span, condensed = first_mesh(ready, request, energy, span)
+    else:
+        energy, span, condensed, groups = known
     levels = request.last - request.first + 1
     refuse_above(8.0 * len(condensed.poles) * (60 * levels + 3000), f"computing {levels} levels")
     high = energy - ready.floor
@@ -69,9 +80,9 @@ def refine(ready: Setting, request: Request, energy: float, span: Span | None) -
     ruler = Ruler(0.0, ready.threshold - ready.floor if not fixed else np.inf)
     for number in range(ROUNDS):
         _report(request, number, condensed)
-        low = _low(condensed, request.first, high)
+        low = _low(condensed, request.first, high) if groups is None else groups[0].low
         try:
-            solved = solve_levels(condensed, request.first, request.last, low, high, ruler, request.check)
+            solved = solve_levels(condensed, request.first, request.last, low, high, ruler, request.check, groups)
         except np.linalg.LinAlgError:
             if last is None:
                 raise PhysicsError(
@@ -91,8 +102,18 @@ def refine(ready: Setting, request: Request, energy: float, span: Span | None) -
             mesh = _widened(ready, mesh, wider, energy)
         if len(mesh.places) > MOST_ELEMENTS:
             return last
-        condensed = _without_poles(ready, mesh, energy)
+        condensed, groups = _without_poles(ready, mesh, energy), None
     raise AssertionError("the last round returns")
+
+
+def _begun(ready: Setting, request: Request, start: Start) -> tuple[float, Span, Condensed, list[Group] | None] | None:
+    """Return energy, span, mesh and brackets to begin with from a nearby operator; None where too few levels are below."""
+    condensed = _without_poles(ready, start.mesh, start.energy)
+    groups = brackets(start, condensed)
+    if groups is None and count_below(condensed, np.array([start.energy - ready.floor]))[0] <= request.last:
+        return None
+    mesh = condensed.mesh
+    return start.energy, Span(float(mesh.places[0]), float(mesh.places[-1]), mesh.left, mesh.right), condensed, groups
 
 
 def _vector_error(solved: Solved, found: Accuracy) -> Array:

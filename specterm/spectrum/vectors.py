@@ -14,6 +14,8 @@ from specterm.spectrum.isolate import Group, Ruler, isolate
 
 SETTLED = 1e-12
 """Newton steps smaller than this share of the level end the iteration: so far below `CLOSE` that no neighbour is mixed in."""
+FORETOLD = 0.01
+"""Newton's method is at an end where quadratic convergence foretells a step of less than this share of the rounding."""
 STRAY = 1e-9
 """A Rayleigh quotient this share of the level away from where Newton's method ended: a bad vector, solved again."""
 PAIRED = 1e-6
@@ -57,11 +59,12 @@ def solve_levels(
     high: float,
     ruler: Ruler,
     check: Callable[[], None] = lambda: None,
+    groups: list[Group] | None = None,
 ) -> Solved:
     """Return levels number first ... last of the mesh.
 
     There must be at least last + 1 levels below `high` and at most `first` below `low`. Levels closer than `ruler` says are
-    solved together. `check` is called now and then and may raise to stop the work.
+    solved together. `check` is called now and then and may raise to stop the work. `groups` are brackets known beforehand.
     """
 
     def count(energies: Array) -> Counts:
@@ -71,7 +74,8 @@ def solve_levels(
             parts.append(count_below(condensed, energies[start : start + BLOCK]))
         return np.concatenate(parts)
 
-    groups = isolate(count, first, last, low, high, ruler)
+    if groups is None:
+        groups = isolate(count, first, last, low, high, ruler)
     single = condensed.mesh.phase is None
     loners = [g for g in groups if g.size == 1 and single]
     parts: list[Part] = []
@@ -123,14 +127,15 @@ def _merged(condensed: Condensed, parts: list[Part], ruler: Ruler) -> list[Part]
 def _newton(condensed: Condensed, groups: list[Group], ruler: Ruler, check: Callable[[], None]) -> tuple[Array, Array]:
     """Return energies and vertex vectors of single levels by Newton's method, kept inside shrinking brackets.
 
-    A step must be small against the level and against its distance to where a continuum begins. Every fifth step
-    halves the bracket, so that the iteration ends whatever the start.
+    A step must be small against the level and against its distance to where a continuum begins, and what is left of it must
+    be rounding: it no longer falls, or the two steps before it, falling quadratically, foretell less than rounding. Every
+    fifth step halves the bracket, so that the iteration ends whatever the start.
     """
     low, high = np.array([g.low for g in groups]), np.array([g.high for g in groups])
     numbers = np.array([g.first for g in groups])
     energies = (low + high) / 2
     slack = 1e-3 * SETTLED * np.abs(energies - ruler.bottom)
-    before = np.full(len(groups), np.inf)
+    before = foretold = np.full(len(groups), np.inf)
     for number in range(120):
         check()
         matrix, weight = chain_with_mass(condensed, energies)
@@ -144,11 +149,14 @@ def _newton(condensed: Condensed, groups: list[Group], ruler: Ruler, check: Call
         fine = np.minimum(SETTLED * np.abs(trial - ruler.bottom), 1e-4 * np.abs(ruler.top - trial))
         tiny = 4 * np.spacing(np.abs(energies))
         near = inside & (np.abs(step) <= np.maximum(fine, tiny))
-        settled = (near & ((np.abs(step) <= tiny) | (np.abs(step) >= 0.25 * before))) | (high - low <= tiny)
-        before = np.abs(step)
+        stalled = (np.abs(step) <= tiny) | (np.abs(step) >= 0.25 * before) | (foretold <= FORETOLD * tiny)
+        settled = (near & stalled) | (high - low <= tiny)
         if settled.all():
             break
         halve = ~inside | ((number % 5 == 4) & ~near)
+        with np.errstate(all="ignore"):
+            foretold = np.where(halve | ~np.isfinite(before), np.inf, np.abs(step) * (step / before) ** 2)
+        before = np.where(halve, np.inf, np.abs(step))
         energies = np.where(settled, energies, np.where(halve, (low + high) / 2, trial))
     return energies, z
 
@@ -161,6 +169,17 @@ def _quadratic(matrix: Chain, z: Array) -> Array:
 
 def _quotients(condensed: Condensed, numbers: list[int], coefficients: Values) -> list[Part]:
     """Normalise single eigenfunctions and return the part each makes."""
+    values, kinetic, coefficients = quotients(condensed, coefficients)
+    return [
+        Part(number, values[k : k + 1], coefficients[:, :, k : k + 1], kinetic[k : k + 1]) for k, number in enumerate(numbers)
+    ]
+
+
+def quotients(condensed: Condensed, coefficients: Values) -> tuple[Array, Array, Values]:
+    """Return the Rayleigh quotient of each function (n,), its part with derivatives (n,), and the functions normalised.
+
+    `coefficients` has shape (elements, functions, n).
+    """
     here = condensed.grid
     n = condensed.mesh.order + 1
     scale = np.sqrt((np.abs(coefficients[:, :2]) ** 2).sum(axis=(0, 1)) + (np.abs(coefficients[:, 2:]) ** 2).sum(axis=(0, 1)))
@@ -170,10 +189,7 @@ def _quotients(condensed: Condensed, numbers: list[int], coefficients: Values) -
     mass = _integral(here.mass, density)
     kinetic = (_integral(here.kinetic, slopes) + _edges(condensed, coefficients)) / mass
     values = kinetic + _integral(here.potential, density) / mass
-    coefficients = coefficients / np.sqrt(mass)
-    return [
-        Part(number, values[k : k + 1], coefficients[:, :, k : k + 1], kinetic[k : k + 1]) for k, number in enumerate(numbers)
-    ]
+    return values, kinetic, coefficients / np.sqrt(mass)
 
 
 def _integral(weights: Array, integrand: Array) -> Array:
