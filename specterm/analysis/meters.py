@@ -9,9 +9,9 @@ from typing import Protocol
 
 import numpy as np
 
+from specterm.analysis.commutator import vanishing
 from specterm.analysis.measured_wave import Wave, turned
 from specterm.analysis.observables import unit_of
-from specterm.analysis.uncertainty import vanishing
 from specterm.arrays import Array, Values
 from specterm.errors import PhysicsError
 from specterm.model import Function, Model, Operator

@@ -52,6 +52,13 @@ def resolve(
     return Rule(x.ravel(), (half * w).ravel(), places, missed)
 
 
+def points_between(places: Array) -> tuple[Array, Array]:
+    """Return points and weights (n,) of a Gauss rule of 20 points between ascending places."""
+    t, w = gauss_legendre(POINTS)
+    half = np.diff(places)[:, None] / 2
+    return (places[:-1, None] + half * (1 + t)).ravel(), (half * w).ravel()
+
+
 def resolved_points(function: Callable[[Array], Values], places: Array, precision: float = 1e-13) -> tuple[Array, Array, float]:
     """Return points and weights on pieces between `places`, halved until `function` is a polynomial on each, and the rest.
 

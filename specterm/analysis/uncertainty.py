@@ -6,24 +6,24 @@ import math
 from dataclasses import dataclass
 from pathlib import Path
 
+import numpy as np
+
+from specterm.analysis.commutator import joined, vanishing, vanishing_on_levels, written
 from specterm.analysis.expectation import Expectation, expect
-from specterm.analysis.observables import observable, of_operator
-from specterm.analysis.prepared import prepare
+from specterm.analysis.observables import Observable, observable, of_operator
+from specterm.analysis.prepared import Prepared, prepare
+from specterm.analysis.regularity import rule_for
 from specterm.errors import PhysicsError
 from specterm.model import Model, Operator
-from specterm.model.normal import vanishes
-from specterm.model.term import UNIT
-from specterm.model.wordtext import show_word
 from specterm.spectrum import Spectrum
-
-LONGEST = 160
 
 
 @dataclass(frozen=True)
 class Pair:
     """Two expectations, the `product` of their spreads, its lower `bound` |<[A, B]>|/2 and what is known of the commutator.
 
-    `commutes`: [A, B] vanishes on the domain, formally; `commutator` is it written out. `bound` may be nan.
+    `commutes`: [A, B] vanishes on the domain; `commutator` is it written out, "0" where it vanishes between the ends of the
+    domain. `bound` may be nan.
     """
 
     first: Expectation
@@ -39,36 +39,52 @@ class Pair:
 def pair_of(model: Model, spectrum: Spectrum, texts: tuple[str, str], state: str, folder: Path | None = None) -> Pair:
     """Return two observables in a state, by name or expression (Robertson, Phys. Rev. 34 (1929) 163, from memory)."""
     wave = prepare(model, spectrum, state, folder)
-    first, second = (observable(model, text) for text in texts)
-    a, b = (expect(model, one, wave) for one in (first, second))
-    double = first.operator.commutator(second.operator)
+    asked = (observable(model, texts[0]), observable(model, texts[1]))
+    means = (expect(model, asked[0], wave), expect(model, asked[1], wave))
+    double = asked[0].operator.commutator(asked[1].operator)
     gone = vanishing(double)
-    shown = "0" if gone else written(double)
-    notes = list(b.notes)
+    commutes = gone and vanishing_on_levels(spectrum, *asked)
+    notes = list(means[1].notes)
     bound, error = 0.0, 0.0
-    if not gone:
+    if not commutes:
+        bound, error, why = _bound(model, asked, means, wave, None if gone else of_written(double, texts))
+        notes += why
+    if gone and not commutes:
+        notes.append(f"[{texts[0]},{texts[1]}] is 0 as written, but the ends of the domain keep the two from commuting")
+    product = means[0].spread * means[1].spread
+    shown = "0" if gone else written(double)
+    return Pair(*means, product, bound, None if math.isnan(error) else error, shown, commutes, tuple(notes))
+
+
+def of_written(double: Operator, texts: tuple[str, str]) -> Observable | None:
+    """Return i [A, B] as an observable, None where its weak form is out of reach."""
+    try:
+        return of_operator(double * (-1j), f"i[{texts[0]},{texts[1]}]")
+    except PhysicsError:
+        return None
+
+
+def _bound(
+    model: Model,
+    asked: tuple[Observable, Observable],
+    means: tuple[Expectation, Expectation],
+    wave: Prepared,
+    double: Observable | None,
+) -> tuple[float, float, list[str]]:
+    """Return |<[A, B]>|/2, a bound on its error (nan for none), and notes: from the commutator, else as |Im <A psi, B psi>|."""
+    if double is not None:
         try:
-            mean = expect(model, of_operator(double * (-1j), f"i[{texts[0]},{texts[1]}]"), wave)
-            bound, error = abs(mean.mean) / 2, math.nan if mean.error is None else mean.error / 2
+            mean = expect(model, double, wave)
+            return abs(mean.mean) / 2, math.nan if mean.error is None else mean.error / 2, []
         except PhysicsError as refusal:
-            bound, error = math.nan, math.nan
-            notes.append(f"no lower bound: {refusal.message}")
-    product = a.spread * b.spread
-    return Pair(a, b, product, bound, None if math.isnan(error) else error, shown, gone, tuple(notes))
-
-
-def vanishing(operator: Operator) -> bool:
-    """Say whether an operator is zero on the domain: every coefficient, after normal ordering."""
-    return all(vanishes(pairs, operator.setting.domain) for pairs in operator.normal.values())
-
-
-def written(operator: Operator) -> str:
-    """Return an operator in normal order as text in terms of p, cut where it is long."""
-    parts = []
-    for power, pairs in sorted(operator.normal.items(), reverse=True):
-        if vanishes(pairs, operator.setting.domain):
-            continue
-        for coefficient, term in pairs:
-            parts.append(show_word(coefficient, (term, *[UNIT] * power), operator.setting))
-    text = " + ".join(parts).replace("+ -", "- ")
-    return text if len(text) <= LONGEST else text[: LONGEST - 3] + "..."
+            why = refusal.message
+    else:
+        why = "the commutator cannot be applied to the state"
+    if not all(math.isfinite(one.spread) for one in means):
+        return math.nan, math.nan, [f"no lower bound: {why}"]
+    x, w = joined(rule_for(one, wave) for one in asked)
+    psi = wave.jet(x, 0)
+    a, b = (one.apply(wave.jet, x) - mean.mean * psi for one, mean in zip(asked, means, strict=True))
+    off = [math.nan if mean.spread_error is None else mean.spread_error for mean in means]
+    error = off[0] * (means[1].spread + off[1]) + off[1] * means[0].spread
+    return abs(float(np.imag((w * a.conj() * b).sum()))), error, []

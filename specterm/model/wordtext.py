@@ -24,6 +24,8 @@ def show_word(coefficient: Scalar, slots: Sequence[Term], setting: Setting) -> s
         if slot != UNIT:
             powers.append((show_factor(slot, setting.coordinate, setting.labels), 1))
     body = "*".join(text if n == 1 else f"{text}^{n}" for text, n in powers) or "1"
+    if body == "1":
+        return show_number(coefficient)
     if abs(coefficient.value - 1) <= coefficient.slack + 1e-12:
         return body
     if abs(coefficient.value + 1) <= coefficient.slack + 1e-12:

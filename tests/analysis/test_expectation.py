@@ -147,3 +147,61 @@ def test_product_of_spreads_and_commutator():
     assert pair_of(model(OSCILLATOR), spectrum(OSCILLATOR, 8), ("x", "x^2"), "moved").commutes
     other = pair_of(model(OSCILLATOR), spectrum(OSCILLATOR, 8), ("x^2", "p^2"), "level(1)")
     assert other.product >= other.bound - (other.bound_error or 0)
+
+
+def pair(text, first, second, state="level(0)"):
+    """Return two observables beside each other."""
+    return pair_of(model(text), spectrum(text, 8), (first, second), state)
+
+
+FREE_RING = "H = p^2/2\nx in ring(0, 1)"
+SLOPES = "H = p^2/2\nx in (0, 1), free"
+STEPPED = "H = p*(1/(2*m))*p + V\nV = step(x)\nm = 1 + 0.5*step(x)\nx in (-3, 3)"
+
+
+@pytest.mark.parametrize(
+    ("text", "first", "second", "shown"),
+    [
+        (OSCILLATOR, "x", "p", "i"),
+        (OSCILLATOR, "H", "x", "-i*p"),
+        (OSCILLATOR, "H", "p", "i*x"),
+        (OSCILLATOR, "(x*p + p*x)/2", "H", "i*p^2 - i*x^2"),
+        (OSCILLATOR, "p^2", "p*x^2*p", "-4*i*x*p^3 - 6*p^2"),
+        (OSCILLATOR, "T", "x^2", "-2*i*x*p - 1"),
+        ("H = p^2/2\nhbar = 0.5\nx in (0, 1)", "p", "x^2", "-i*x"),
+        ("H = p^2/2\nx in ring(0, 2*pi)", "p", "cos(x)", "i*sin(x)"),
+        (STEPPED, "H", "x", "-i*(1/m)*p + 0.25*((V)'/m^2)"),
+        (STEPPED, "V", "p", "i*(V)'"),
+    ],
+)
+def test_commutators_written_out(text, first, second, shown):
+    """[A,B] in normal order, by hand from [x,p] = i hbar; it does not vanish."""
+    found = pair(text, first, second)
+    assert found.commutator == shown
+    assert not found.commutes
+
+
+@pytest.mark.parametrize(
+    ("text", "first", "second"),
+    [(OSCILLATOR, "H", "2*H + 1"), (WALLS, "x", "x^2"), (FREE_RING, "p", "H"), (HYDROGEN, "H", "3*H"), (STEPPED, "V", "m")],
+)
+def test_commutators_that_vanish(text, first, second):
+    """What commutes on the domain is told, and bounds nothing."""
+    found = pair(text, first, second)
+    assert (found.commutator, found.commutes, found.bound) == ("0", True, 0.0)
+
+
+@pytest.mark.parametrize("text", [WALLS, SLOPES, "H = p^2/2\nr in (0, 2)"])
+def test_commutators_that_vanish_only_between_the_ends(text):
+    """[p,p^2] is 0 as written, but p leads out of the domain of p^2 at walls and free ends (no common eigenstates there)."""
+    found = pair(text, "p", "p^2")
+    assert (found.commutator, found.commutes) == ("0", False)
+    assert any("ends of the domain" in note for note in found.notes)
+
+
+def test_lower_bound_where_the_commutator_is_of_third_order():
+    """|<[p^2, p x^2 p]>|/2 = |Im <p^2 s, p x^2 p s>| in the packet exp(-(x-1)^2/2 + 2 i x) is 22 (recomputed here, mpmath)."""
+    text = OSCILLATOR + "\nstate s = exp(-(x - 1)^2/2 + 2*i*x)"
+    found = pair(text, "p^2", "p*x^2*p", "s")
+    assert abs(found.bound - 22) <= found.bound_error < 1e-5
+    assert found.product > found.bound
