@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from typing import TYPE_CHECKING
 
 from specterm.errors import SheetError
@@ -26,27 +26,44 @@ if TYPE_CHECKING:
     from pathlib import Path
 
 
-def build(sheet: Sheet, *, folder: Path | None = None, overrides: Mapping[str, str] | None = None) -> Model:
+def build(
+    sheet: Sheet, *, folder: Path | None = None, overrides: Mapping[str, str] | None = None, like: Model | None = None
+) -> Model:
     """Return the model a sheet stands for.
 
     `folder` is where relative paths start; `overrides` replaces the expressions of definitions (as `--set NAME=VALUE` does;
-    the text is read like the sheet's own, a bare number is in the sheet's units). Raises SheetError with the place of what
+    the text is read like the sheet's own, a bare number is in the sheet's units). `like` is a model of the same sheet, or of a
+    longer one, with other numbers in it: units and dimensions are taken over from it. Raises SheetError with the place of what
     is wrong.
     """
     sheet = overridden(sheet, overrides or {})
-    units = UnitSystem.dimensionless() if sheet.units is None else UnitSystem.make(sheet.units.pairs, sheet.units.span)
     statement = _domain_statement(sheet)
-    dimensions = check_dimensions(sheet, units)
-    scope = Scope(sheet, units, folder, statement.coordinate, dimensions.carries)
+    units, carries, coordinate_unit = _checked(sheet, statement) if like is None else _taken(like)
+    scope = Scope(sheet, units, folder, statement.coordinate, carries)
     _check_names(sheet, statement.coordinate)
     if "hbar" in scope.definitions:
         scope.set_hbar(_hbar(scope))
     domain = build_domain(statement, scope)
     scope.set_domain(domain)
     scope.ensure([*scope.definitions, *scope.blocks])
+    return _model(sheet, units, scope, domain, coordinate_unit)
+
+
+_Checked = tuple[UnitSystem, Callable[[Node], bool], str]
+
+
+def _checked(sheet: Sheet, statement: DomainStatement) -> _Checked:
+    """Return the units of a sheet, what says whether an expression has a unit in it, and the unit of the coordinate."""
+    units = UnitSystem.dimensionless() if sheet.units is None else UnitSystem.make(sheet.units.pairs, sheet.units.span)
+    dimensions = check_dimensions(sheet, units)
     kind = dimensions.named(statement.coordinate)
     angle = kind is not None and not kind
-    return _model(sheet, units, scope, domain, "" if angle else units.length)
+    return units, dimensions.carries, "" if angle else units.length
+
+
+def _taken(like: Model) -> _Checked:
+    """Return the same of a model."""
+    return like.units, like.scope.carries, like.coordinate_unit
 
 
 def _model(sheet: Sheet, units: UnitSystem, scope: Scope, domain: Domain, coordinate_unit: str) -> Model:

@@ -76,19 +76,11 @@ def running_levels(model: Model, count: int, near: float | None) -> RunningLevel
 
     Raises PhysicsError off a ring, where B vanishes, and without `near`, as there is neither a lowest nor a highest level.
     """
-    sturm = model.operator.sturm()
-    _refuse(model, sturm.B)
-    drift_by = sturm.B
-    if drift_by is None:
-        raise PhysicsError("the operator contains no derivative")
-    rate, drift = 1 / drift_by, sturm.V / drift_by
+    rate, drift, edges = _rates(model)
     domain = model.domain
-    edges = np.unique(np.concatenate([f.edges(domain.left, domain.right) for f in (rate, drift)]))
-    around = integral(rate, domain.left, domain.right, edges)
-    offset = integral(drift, domain.left, domain.right, edges)
+    around, offset, turn = running_integrals(model)
     if near is None:
         raise PhysicsError("the operator has neither a lowest nor a highest level", mend="say where to look: --near E")
-    turn = domain.phase or 0.0
     centre = round((near * around - offset) / (2 * math.pi) - turn)
     numbers = centre + np.arange(-count - 1, count + 2)
     values: Array = np.asarray((2 * math.pi * (numbers + turn) + offset) / around, dtype=np.float64)
@@ -100,6 +92,26 @@ def running_levels(model: Model, count: int, near: float | None) -> RunningLevel
     places = np.unique(np.concatenate([np.linspace(domain.left, domain.right, 4 * int(np.abs(numbers).max() + 8)), edges]))
     size = abs(integral(rate, domain.left, domain.right, edges))
     return RunningLevels(numbers, values, error, RunningStates(values, rate, drift, size, places))
+
+
+def running_integrals(model: Model) -> tuple[float, float, float]:
+    """Return the integrals of 1/B and V/B around the ring, and the Bloch phase in turns; PhysicsError as `running_levels`."""
+    rate, drift, edges = _rates(model)
+    domain = model.domain
+    around, offset = (integral(f, domain.left, domain.right, edges) for f in (rate, drift))
+    return around, offset, domain.phase or 0.0
+
+
+def _rates(model: Model) -> tuple[Function, Function, Array]:
+    """Return 1/B, V/B and the places where they jump."""
+    sturm = model.operator.sturm()
+    _refuse(model, sturm.B)
+    drift_by = sturm.B
+    if drift_by is None:
+        raise PhysicsError("the operator contains no derivative")
+    rate, drift = 1 / drift_by, sturm.V / drift_by
+    ends = (model.domain.left, model.domain.right)
+    return rate, drift, np.unique(np.concatenate([f.edges(*ends) for f in (rate, drift)]))
 
 
 def _refuse(model: Model, first: Function | None) -> None:

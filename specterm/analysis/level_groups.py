@@ -1,0 +1,92 @@
+"""Levels that cannot be told apart, and levels whose derivative means nothing."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from specterm.analysis.prepared import slips
+from specterm.arrays import Array
+from specterm.discrete.chain import count_below
+from specterm.spectrum import Spectrum
+from specterm.spectrum.refine import MIXING
+from specterm.spectrum.states import ElementStates
+
+CLOSE = 4.0
+"""Neighbours closer than so many of their errors count as one group."""
+
+
+@dataclass(frozen=True)
+class Group:
+    """Rows of levels that cannot be told apart."""
+
+    rows: tuple[int, ...]
+
+
+@dataclass(frozen=True)
+class Groups:
+    """The groups of two levels and more, and why other rows have no derivative."""
+
+    groups: tuple[Group, ...]
+    without: dict[int, str]
+
+
+def groups_of(spectrum: Spectrum) -> Groups:
+    """Return the groups among the levels of a spectrum, and the levels without a derivative."""
+    levels = spectrum.levels
+    without = {
+        row: "a box level hangs on where the domain was cut" if level.kind == "box" else "its error is not known"
+        for row, level in enumerate(levels)
+        if level.kind == "box" or level.error is None
+    }
+    values = np.array([level.value for level in levels])
+    errors = np.array([level.error or 0.0 for level in levels])
+    gaps = np.abs(np.diff(values))
+    tied = [
+        bool(gap <= CLOSE * (errors[k] + errors[k + 1])) and not {k, k + 1} & set(without) for k, gap in enumerate(gaps)
+    ]
+    groups, start = [], 0
+    for row in range(len(levels)):
+        if row == len(levels) - 1 or not tied[row]:
+            if row > start:
+                groups.append(Group(tuple(range(start, row + 1))))
+            start = row + 1
+    without |= dict.fromkeys(_cut_off(spectrum, groups), "it shares its value with a level not computed; ask for more levels")
+    return Groups(tuple(g for g in groups if not set(g.rows) & set(without)), without)
+
+
+def _cut_off(spectrum: Spectrum, groups: list[Group]) -> list[int]:
+    """Return the rows at either end whose group goes on among levels that were not computed."""
+    states, levels = spectrum.states, spectrum.levels
+    if not isinstance(states, ElementStates):
+        return []
+    values, lost = states.solved.values, []
+    for row, sign in ((0, -1.0), (len(levels) - 1, 1.0)):
+        reach = CLOSE * (levels[row].error or 0.0) + 1e-9 * max(abs(values[row]), float(states.solved.kinetic[row]))
+        below = int(count_below(states.solved.condensed, np.array([values[row] + sign * reach]))[0])
+        number = states.solved.first + row
+        if (below > number + 1) if sign > 0 else (below < number):
+            lost += next((list(group.rows) for group in groups if row in group.rows), [row])
+    return sorted(set(lost))
+
+
+def state_error(spectrum: Spectrum, groups: Groups) -> Array:
+    """Return a bound on what the states hold of others, in norm, shape (levels,); within a group, of levels outside it.
+
+    What no function of the basis can hold is not in it: `Carried.left_out` looks at that.
+    """
+    off = np.array(slips(spectrum), dtype=float)
+    values = np.array([level.value for level in spectrum.levels])
+    rows = [group.rows for group in groups.groups]
+    rows += [(row,) for row in range(len(values)) if not any(row in one for one in rows)]
+    if not isinstance(spectrum.states, ElementStates):
+        return off
+    for some in rows:
+        outside = np.delete(values, list(some))
+        for row in some:
+            size = abs(spectrum.states.solved.values[row]) + abs(spectrum.states.solved.kinetic[row])
+            gap = float(np.abs(outside - values[row]).min(initial=size))
+            if gap > 0:
+                off[row] = min(off[row], MIXING * (spectrum.levels[row].error or 0.0) / gap)
+    return off
