@@ -7,6 +7,7 @@ import numpy as np
 from specterm.arrays import Array, Flags, Values
 from specterm.discrete.quadrature import gauss_legendre
 from specterm.spectrum import Spectrum
+from specterm.spectrum.states import ElementStates
 
 POINTS = 14
 """Gauss points for each piece on which both states are smooth: exact for products of the elements' polynomials."""
@@ -29,6 +30,8 @@ def amplitudes(left: Spectrum, right: Spectrum) -> Values:
     shape = (len(left.levels), len(right.levels))
     if one is None or other is None or 0 in shape:
         return np.zeros(shape)
+    if isinstance(one, ElementStates) and isinstance(other, ElementStates) and _one_mesh(one, other):
+        return _on_one_mesh(one, other)
     low, high = max(one.places[0], other.places[0]), min(one.places[-1], other.places[-1])
     if not low < high:
         return np.zeros(shape)
@@ -42,6 +45,24 @@ def amplitudes(left: Spectrum, right: Spectrum) -> Values:
         parts.append((one.evaluate(x[some]).conj() * weights[some]) @ other.evaluate(x[some]).T)
     total: Values = np.sum(parts, axis=0)
     return total
+
+
+def _one_mesh(one: ElementStates, other: ElementStates) -> bool:
+    """Say whether the states of both are polynomials on the same elements, with nothing taken out of them."""
+    meshes = (one.mesh, other.mesh)
+    plain = all(s.twist is None for s in (one, other)) and all(m.left.power is None and m.right.power is None for m in meshes)
+    return plain and meshes[0].order == meshes[1].order and np.array_equal(meshes[0].places, meshes[1].places)
+
+
+def _on_one_mesh(one: ElementStates, other: ElementStates) -> Values:
+    """Return <a|b> from the values at the mesh's own points of integration."""
+    here, n = one.solved.condensed.grid, one.mesh.order + 1
+    bra, ket = (
+        (here.values[..., :n] @ states.solved.coefficients).reshape(here.mass.size, states.count) * states.signs
+        for states in (one, other)
+    )
+    product: Values = (bra.conj().T * here.mass.ravel()) @ ket
+    return product
 
 
 def overlaps(left: Spectrum, right: Spectrum) -> Array:
@@ -70,14 +91,14 @@ def assigned(shares: Array) -> tuple[int | None, ...]:
     free = np.ones(shares.shape, dtype=bool)
     free[rows[sure], :] = False
     free[:, columns[sure]] = False
-    for group, partners in _groups(free & (shares > LINKED)):
+    for group, partners in groups_of(free & (shares > LINKED)):
         if len(group) == len(partners) and shares[np.ix_(group, partners)].sum() >= SAME * len(group):
             for row, column in zip(group, partners, strict=True):
                 found[row] = column
     return tuple(found)
 
 
-def _groups(linked: Flags) -> list[tuple[list[int], list[int]]]:
+def groups_of(linked: Flags) -> list[tuple[list[int], list[int]]]:
     """Return rows and columns, each ascending, of the parts that hang together through `linked` (rows, columns)."""
     groups: list[tuple[list[int], list[int]]] = []
     left = [row for row in range(len(linked)) if linked[row].any()]

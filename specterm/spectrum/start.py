@@ -21,6 +21,8 @@ from specterm.spectrum.vectors import Solved, quotients
 
 APART = 1e-5
 """Levels nearer to each other than this share of theirs are left to counting from afar."""
+ABOVE = 1.5
+"""So many spacings above the last level the mesh must hold."""
 REACH = 0.25
 """How far a level may be from where it is guessed, as a share of the distance to the next guess."""
 
@@ -53,8 +55,9 @@ def start_from(ready: Setting, like: Spectrum, first: int, last: int) -> Start |
     if not np.isin(inner, mesh.places).all() or (problem.phase is None) != (mesh.phase is None):
         return None
     values = problem.sign * like.values
-    energy = float(values[-1] + 1.5 * max(values[-1] - values[-2], values[1] - values[0]))
-    if energy >= ready.threshold:
+    step = float(max(values[-1] - values[-2], (values[-1] - values[0]) / (len(values) - 1)))
+    energy = float(values[-1]) + ABOVE * step
+    if energy >= ready.threshold or step <= APART * abs(energy - ready.floor):
         return None
     mesh = resolve(replace(mesh, phase=problem.phase), ready.coefficients, energy - ready.floor, ready.look)
     return Start(mesh, energy, before)

@@ -50,7 +50,7 @@ class ElementStates:
         jet = self._powered(x, element, self._polynomials(x, element, derivative))
         if self.twist is not None:
             jet = self._turned(x, element, jet)
-        return np.where(inside, jet[derivative] * self._signs[:, None], 0)
+        return np.where(inside, jet[derivative] * self.signs[:, None], 0)
 
     def _polynomials(self, x: Array, element: Counts, highest: int) -> list[Values]:
         """Return the polynomials and their derivatives up to the highest asked for, each of shape (states, n)."""
@@ -129,7 +129,7 @@ class ElementStates:
         return angle
 
     @cached_property
-    def _signs(self) -> Values:
+    def signs(self) -> Values:
         """Factors of modulus one that make each state positive on its first lobe from the left."""
         here = self.solved.condensed.grid
         n = self.mesh.order + 1
