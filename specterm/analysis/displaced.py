@@ -12,7 +12,8 @@ import numpy as np
 from specterm.arrays import Array
 from specterm.discrete.reduce import integral
 from specterm.errors import SheetError, Span
-from specterm.language.nodes import Definition, Name, Node, Number, Sheet
+from specterm.language.edits import plain_numbers, step_of
+from specterm.language.nodes import Definition, Name, Node, Number, Sheet, Unary
 from specterm.language.order import names
 from specterm.model import Function, Model, build
 
@@ -80,7 +81,7 @@ class Displaced:
     sheet: Sheet
     folder: Path | None
     definition: Definition
-    value: float
+    number: Written
     known: dict[float, Model | str] = field(default_factory=dict)
 
     def model(self, step: float) -> Model | str:
@@ -93,26 +94,44 @@ class Displaced:
         return self.known[step]
 
     def _moved(self, step: float) -> Sheet:
-        old = self.definition.expression
-        unit = next((node.unit for node in _numbers(old)), None)
-        changed = replace(self.definition, expression=Number(old.span, self.value + step, unit))
+        span, number = self.definition.expression.span, self.number
+        changed = replace(self.definition, expression=Number(span, number.value + step, number.unit or None))
         return replace(
             self.sheet, definitions=tuple(changed if d is self.definition else d for d in self.sheet.definitions)
         )
 
 
-def _numbers(node: Node) -> Iterable[Number]:
-    """Yield the number of a plain definition."""
-    while not isinstance(node, Number):
-        node = node.operand  # type: ignore[attr-defined]
-    yield node
+@dataclass(frozen=True)
+class Written:
+    """A plain number as the sheet, or what overrides it, has it: value with sign, unit (or ""), a size to take steps by."""
+
+    value: float
+    unit: str
+    size: float
 
 
-def displaced(model: Model, name: str, value: float, folder: Path | None) -> Displaced:
-    """Return the models around `model` along its plain number `name`, whose written value is `value`."""
+def written_numbers(model: Model) -> dict[str, Written]:
+    """Return the plain numbers of a model by name, in the order written."""
+    places = plain_numbers(model.sheet)
+    found = {}
+    for definition in model.sheet.definitions:
+        if definition.name in model.plain:
+            node, sign = definition.expression, 1.0
+            while isinstance(node, Unary):
+                sign = -sign if node.operator == "-" else sign
+                node = node.operand
+            assert isinstance(node, Number)
+            place = places.get(definition.name)
+            step = float(step_of(place.text)) if place is not None else 1.0
+            found[definition.name] = Written(sign * node.value, node.unit or "", abs(node.value) or step)
+    return found
+
+
+def displaced(model: Model, name: str, number: Written, folder: Path | None) -> Displaced:
+    """Return the models around `model` along its plain number `name`."""
     sheet = needed(model)
     definition = next(d for d in sheet.definitions if d.name == name)
-    return Displaced(model, sheet, folder, definition, value)
+    return Displaced(model, sheet, folder, definition, number)
 
 
 def needed(model: Model) -> Sheet:

@@ -7,13 +7,12 @@ from pathlib import Path
 
 import numpy as np
 
-from specterm.analysis.displaced import Displaced, displaced
+from specterm.analysis.displaced import Displaced, Written, displaced
 from specterm.analysis.extrapolate import FIRST, Steps, derivative, find_steps
 from specterm.analysis.samples import Samples
 from specterm.analysis.slopes import Slope
 from specterm.arrays import Array
 from specterm.errors import SpectermError, WorkStopped
-from specterm.language.edits import NumberPlace, step_of
 from specterm.model import Model
 from specterm.spectrum import Spectrum
 from specterm.spectrum.firstorder import running_integrals
@@ -23,7 +22,7 @@ NOISE = 1e-14
 
 
 def running_slopes(
-    model: Model, spectrum: Spectrum, folder: Path | None, places: Mapping[str, NumberPlace], stop: Callable[[], bool]
+    model: Model, spectrum: Spectrum, folder: Path | None, places: Mapping[str, Written], stop: Callable[[], bool]
 ) -> Sequence[Slope | str]:
     """Return the derivatives of the levels with respect to each number, or why there is none."""
     around, offset, turn = running_integrals(model)
@@ -33,8 +32,7 @@ def running_slopes(
     for name, place in places.items():
         if stop():
             raise WorkStopped("stopped")
-        first = FIRST * abs(place.value) if place.value else FIRST * float(step_of(place.text))
-        found.append(_slope(displaced(model, name, place.value, folder), numbers, first))
+        found.append(_slope(displaced(model, name, place, folder), numbers, FIRST * place.size))
     return found
 
 

@@ -13,13 +13,13 @@ from pathlib import Path
 
 import numpy as np
 
+from specterm.analysis.displaced import Written, written_numbers
 from specterm.analysis.level_groups import Group, Groups, groups_of, state_error
 from specterm.analysis.observables import unit_of
 from specterm.analysis.running_slopes import running_slopes
 from specterm.analysis.slopes import Slope, slopes_of
 from specterm.arrays import Array
 from specterm.errors import SheetError
-from specterm.language.edits import NumberPlace, plain_numbers
 from specterm.language.suggest import nearest
 from specterm.model import Model
 from specterm.spectrum import Spectrum
@@ -77,10 +77,10 @@ def sensitivities(
     -----
     Tested against central differences of the solver for every preset, relative agreement 1e-6 or better, and closed forms.
     """
-    places = plain_numbers(model.sheet)
+    places = written_numbers(model)
     wanted = tuple(dict.fromkeys(model.plain if names is None else names))
     for name in wanted:
-        if name not in model.plain or name not in places:
+        if name not in places:
             raise SheetError(
                 f"`{name[:60]}` is not a plain number of the sheet", mend=_plain_names(name, model.plain)
             )
@@ -100,6 +100,27 @@ def sensitivities(
     notes += [_grouped(spectrum, group) for group in groups.groups]
     units = tuple(derivative_unit(model, name, places[name].unit) for name in wanted)
     return Sensitivities(wanted, units, tuple(level.index for level in spectrum.levels), derivatives, errors, tuple(notes))
+
+
+@dataclass(frozen=True)
+class LineSensitivities:
+    """Derivatives of transition energies E_to - E_from: as `Sensitivities`, with a row for each of the `lines` (from, to)."""
+
+    parameters: tuple[str, ...]
+    units: tuple[str, ...]
+    lines: tuple[tuple[int, int], ...]
+    derivatives: Array
+    errors: Array
+    notes: tuple[str, ...]
+
+
+def line_sensitivities(found: Sensitivities, starts: Sequence[int]) -> LineSensitivities:
+    """Return the derivatives of the lines from levels number `starts` to all higher ones; an error is the sum of both."""
+    rows = {index: row for row, index in enumerate(found.levels)}
+    lines = tuple((a, b) for a in starts if a in rows for b in found.levels if b > a)
+    low, high = [rows[a] for a, _ in lines], [rows[b] for _, b in lines]
+    slopes, errors = found.derivatives[high] - found.derivatives[low], found.errors[high] + found.errors[low]
+    return LineSensitivities(found.parameters, found.units, lines, slopes, errors, found.notes)
 
 
 def first_order(values: Array, found: Sensitivities, name: str, change: float) -> Array:
@@ -134,7 +155,7 @@ def _found(
     model: Model,
     spectrum: Spectrum,
     folder: Path | None,
-    places: dict[str, NumberPlace],
+    places: dict[str, Written],
     groups: Groups,
     stop: Callable[[], bool],
 ) -> Sequence[Slope | str]:

@@ -9,14 +9,13 @@ from pathlib import Path
 import numpy as np
 
 from specterm.analysis.carried_states import Carried, Totals
-from specterm.analysis.displaced import Displaced, Shape, displaced, shape_of
+from specterm.analysis.displaced import Displaced, Shape, Written, displaced, shape_of
 from specterm.analysis.extrapolate import FIRST, Steps, derivative, find_steps
 from specterm.analysis.level_groups import Groups
 from specterm.analysis.samples import Moved, Samples, moved
 from specterm.analysis.state_points import ElementSampler, Sampler, StatePoints, WaveSampler
 from specterm.arrays import Array
 from specterm.errors import PhysicsError, WorkStopped
-from specterm.language.edits import NumberPlace, step_of
 from specterm.model import Model
 from specterm.spectrum import Spectrum
 from specterm.spectrum.accuracy import NOISE
@@ -79,7 +78,7 @@ def slopes_of(
     model: Model,
     spectrum: Spectrum,
     folder: Path | None,
-    places: Mapping[str, NumberPlace],
+    places: Mapping[str, Written],
     groups: Groups,
     off: Array,
     stop: Callable[[], bool],
@@ -95,9 +94,8 @@ def slopes_of(
         if stop():
             raise WorkStopped("stopped")
         here = moved(base, base, hull, origin)
-        around = Neighbours(base, displaced(model, name, place.value, folder), hull, origin, {0.0: here})
-        first = FIRST * abs(place.value) if place.value else FIRST * float(step_of(place.text))
-        plans.append(_plan(around, points, size, first))
+        around = Neighbours(base, displaced(model, name, place, folder), hull, origin, {0.0: here})
+        plans.append(_plan(around, points, size, FIRST * place.size))
     live = [plan for plan in plans if isinstance(plan, tuple)]
     done = iter(_slopes(carried, points, live, groups, off) if live else [])
     none = np.zeros(len(spectrum.levels))

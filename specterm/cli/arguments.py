@@ -8,8 +8,8 @@ from typing import NoReturn
 
 from specterm.errors import printable
 
-VERBS = ("levels", "weights", "expectation", "transitions", "measure", "evolve", "figure", "check", "presets")
-LATER = ("sensitivities", "sweep", "fit")
+VERBS = ("levels", "weights", "expectation", "transitions", "measure", "evolve", "sensitivities", "figure", "check", "presets")
+LATER = ("sweep", "fit")
 MOST = 1_000_000
 VIEWS = ("psi", "density", "levels", "momentum")
 GLYPHS = ("braille", "block", "ascii")
@@ -47,6 +47,9 @@ def parser() -> argparse.ArgumentParser:
     _transitions(verbs.add_parser("transitions", help="lines between levels, with strengths"))
     _measure(verbs.add_parser("measure", help="a sequence of measurements on a prepared state"))
     _evolve(verbs.add_parser("evolve", help="survival probability and means at given times"))
+    slopes = _with_sheet(verbs.add_parser("sensitivities", help="derivatives of levels by the sheet's numbers"), solving=True)
+    slopes.add_argument("--parameter", dest="parameters", action="append", metavar="NAME", help="only this one (repeatable)")
+    slopes.add_argument("--transitions", action="store_true", help="of the lines between the levels instead")
     figure = _with_sheet(verbs.add_parser("figure", help="potential, levels and eigenstates as a text figure"), solving=True)
     figure.add_argument("--levels", metavar="I,J", type=_indices, help="only these levels")
     figure.add_argument("--state", metavar="STATE", help="draw this prepared state too")

@@ -105,6 +105,8 @@ def _verb(name: str) -> Callable[[argparse.Namespace, Source], Answer]:
         from specterm.cli.measure import measure as found  # noqa: PLC0415
     elif name == "evolve":
         from specterm.cli.evolve import evolve as found  # noqa: PLC0415
+    elif name == "sensitivities":
+        from specterm.cli.sensitivities import sensitivities as found  # noqa: PLC0415
     else:
         from specterm.cli import verbs  # noqa: PLC0415
 
