@@ -9,8 +9,9 @@ from pathlib import Path
 
 import numpy as np
 
+from specterm.analysis.level_waves import amplitudes, level_wave
 from specterm.analysis.measured_wave import Wave, of_prepared
-from specterm.analysis.meters import AxisMeter, LevelMeter, Meter, Outcome, amplitudes, holding, level_wave, meter_for
+from specterm.analysis.meters import LevelMeter, Meter, Outcome, cuts_sharply, holding, meter_for
 from specterm.analysis.prepared import prepare
 from specterm.arrays import Array
 from specterm.errors import SheetError
@@ -62,7 +63,9 @@ class Orders:
     """Joint probabilities of two measurements in both orders, [first value, second value], and how far they differ.
 
     `forward` measures the first before the second, `backward` the other way round, both indexed by the values of the first and
-    then of the second. `distance` is half the sum of |forward - backward|: 0 where the order does not matter, at most 1.
+    then of the second; `missing` is what either leaves out, as a rule on levels above those computed. `distance` is half the
+    sum of |forward - backward|, the missing shares compared as one more result: 0 where the order does not matter, at most 1.
+    The true one is not below it, and above it by the smaller missing share at most.
     """
 
     observables: tuple[str, str]
@@ -71,6 +74,7 @@ class Orders:
     forward: Array
     backward: Array
     distance: float
+    missing: tuple[float, float] = (0.0, 0.0)
 
 
 @dataclass
@@ -128,14 +132,9 @@ def course_of(
     """
     wave = of_prepared(prepare(model, spectrum, state, folder))
     texts = list(dict.fromkeys(observables))
-    meters = {text: meter_for(model, spectrum, text, wave, bins=bins, width=width) for text in texts}
-    if any(isinstance(meter, AxisMeter) for meter in meters.values()):
-        rough = [text for text, meter in meters.items() if isinstance(meter, LevelMeter)]
-        meters |= {text: meter_for(model, spectrum, text, wave, least=ROUGH_LEVELS) for text in rough}
-    carrier = spectrum
-    if after != 0:
-        least = ROUGH_LEVELS if any(isinstance(meter, AxisMeter) for meter in meters.values()) else 16
-        carrier = holding(model, spectrum, wave, None, least)
+    least = ROUGH_LEVELS if any(cuts_sharply(model, text) for text in texts) else 16
+    meters = {text: meter_for(model, spectrum, text, wave, bins=bins, width=width, least=least) for text in texts}
+    carrier = spectrum if after == 0 else holding(model, spectrum, wave, None, least)
     return Course(model, carrier, wave, tuple(meters[text] for text in observables), after)
 
 
@@ -214,17 +213,24 @@ def both_orders(course: Course) -> Orders:
     first, second = course.meters
     other = Course(course.model, course.spectrum, course.start, (second, first), course.after)
     forward, backward = _joint(course), {(b, a): p for (a, b), p in _joint(other).items()}
-    pairs = [*forward, *backward]
-    rows = sorted({a for a, _ in pairs}, key=lambda o: o.value)
-    columns = sorted({b for _, b in pairs}, key=lambda o: o.value)
-    tables = []
-    for joint in (forward, backward):
-        table = np.zeros((len(rows), len(columns)))
-        for (a, b), probability in joint.items():
-            table[rows.index(a), columns.index(b)] = probability
-        tables.append(table)
-    distance = float(np.abs(tables[0] - tables[1]).sum() / 2)
-    return Orders((first.text, second.text), tuple(rows), tuple(columns), tables[0], tables[1], distance)
+    rows, columns = (sorted({pair[k] for pair in (*forward, *backward)}, key=lambda o: o.value) for k in (0, 1))
+    tables = [_table(joint, rows, columns) for joint in (forward, backward)]
+    missing = (_missing(tables[0]), _missing(tables[1]))
+    distance = float(np.abs(tables[0] - tables[1]).sum() + abs(missing[0] - missing[1])) / 2
+    return Orders((first.text, second.text), tuple(rows), tuple(columns), tables[0], tables[1], distance, missing)
+
+
+def _table(joint: dict[tuple[Outcome, Outcome], float], rows: Sequence[Outcome], columns: Sequence[Outcome]) -> Array:
+    """Return joint probabilities as a matrix."""
+    places = [{outcome: place for place, outcome in enumerate(side)} for side in (rows, columns)]
+    table = np.zeros((len(rows), len(columns)))
+    for (a, b), probability in joint.items():
+        table[places[0][a], places[1][b]] = probability
+    return table
+
+
+def _missing(table: Array) -> float:
+    return max(0.0, 1.0 - float(table.sum()))
 
 
 def _joint(course: Course) -> dict[tuple[Outcome, Outcome], float]:

@@ -5,11 +5,13 @@ from __future__ import annotations
 import math
 from collections.abc import Callable
 from dataclasses import dataclass, field, replace
-from typing import Protocol
+from functools import cached_property
+from typing import Protocol, TypeVar
 
 import numpy as np
 
 from specterm.analysis.commutator import vanishing
+from specterm.analysis.level_waves import KnownLevels, Sample, amplitudes, fineness, level_wave, sampled
 from specterm.analysis.measured_wave import Wave, turned
 from specterm.analysis.observables import unit_of
 from specterm.arrays import Array, Values
@@ -65,10 +67,14 @@ class LevelMeter:
     text: str
     unit: str
     spectrum: Spectrum
-    samples: dict[int, Sample] = field(default_factory=dict, repr=False, compare=False)
+    samples: dict[int, Sample] = field(default_factory=dict, init=False, repr=False, compare=False)
+    recent: dict[int, tuple[Wave, Values]] = field(default_factory=dict, init=False, repr=False, compare=False)
 
     def amplitudes(self, wave: Wave) -> Values:
-        """Return <n|psi> for every level, shape (levels,)."""
+        """Return <n|psi> for every level, shape (levels,); those of the wave asked for last are kept."""
+        return remembered(self.recent, wave, self._projected)
+
+    def _projected(self, wave: Wave) -> Values:
         if wave.axis == "x" or self.spectrum.states is None:
             return amplitudes(self.spectrum, wave)
         parts = fineness(self.spectrum, wave)
@@ -80,7 +86,7 @@ class LevelMeter:
         """Return one outcome for each group of equal levels."""
         shares = np.abs(self.amplitudes(wave)) ** 2
         found = []
-        for group in self.groups():
+        for group in self.groups:
             levels = [self.spectrum.levels[row] for row in group]
             values = [level.value for level in levels]
             share = float(shares[list(group)].sum())
@@ -89,8 +95,9 @@ class LevelMeter:
                 found.append(Outcome(middle, share, min(values), max(values), tuple(level.index for level in levels)))
         return found
 
+    @cached_property
     def groups(self) -> list[tuple[int, ...]]:
-        """Return the rows of the spectrum, those of equal levels together."""
+        """The rows of the spectrum, those of equal levels together."""
         levels = self.spectrum.levels
         groups: list[list[int]] = []
         for row in sorted(range(len(levels)), key=lambda k: levels[k].value):
@@ -107,53 +114,27 @@ class LevelMeter:
         rows = [row for row, level in enumerate(self.spectrum.levels) if level.index in outcome.levels]
         kept = np.zeros(len(self.spectrum.levels), dtype=complex)
         kept[rows] = self.amplitudes(wave)[rows]
-        return level_wave(self.spectrum, kept)
+        return level_wave(self.spectrum, kept, self._known)
+
+    @cached_property
+    def _known(self) -> KnownLevels | None:
+        return None if self.spectrum.states is None else KnownLevels(self.spectrum.states)
 
 
-def amplitudes(spectrum: Spectrum, wave: Wave, sample: Sample | None = None) -> Values:
-    """Return <n|psi> for every level, shape (levels,), on the axis the wave is given on; `sample` is from `sampled`."""
-    states = spectrum.states
-    if states is None:
-        return np.zeros(0, dtype=complex)
-    if wave.axis == "x":
-        cut = wave.cut(states.places)
-        x, w = cut.rule
-        return np.asarray(states.evaluate(x).conj() @ (w * cut.values))
-    x, psi = sampled(spectrum, wave) if sample is None else sample
-    k, weight = wave.rule
-    total = np.zeros(len(spectrum.levels), dtype=complex)
-    for start in range(0, len(k), 500):
-        some = slice(start, start + 500)
-        momentum = psi @ np.exp(-1j * np.outer(x, k[some]))
-        total += momentum.conj() @ (weight * wave.values)[some]
-    return total
+Found = TypeVar("Found")
 
 
-Sample = tuple[Array, Values]
-"""Places (n,) and the eigenstates there times the weights of integration over sqrt(2 pi), (levels, n)."""
+def remembered(recent: dict[int, tuple[Wave, Found]], wave: Wave, compute: Callable[[Wave], Found]) -> Found:
+    """Return what was computed for this very wave last, else compute it; `recent` holds one wave."""
+    if id(wave) not in recent:
+        found = compute(wave)
+        recent.clear()
+        recent[id(wave)] = (wave, found)
+    return recent[id(wave)][1]
 
 
-def fineness(spectrum: Spectrum, wave: Wave) -> int:
-    """Return in how many parts the levels are sampled for the plane waves of a wave over k, a power of two."""
-    most = float(max(abs(wave.lows[0]), abs(wave.highs[-1])))
-    return 1 << int((spectrum.right - spectrum.left) * most / 15 + 1).bit_length()
-
-
-def sampled(spectrum: Spectrum, wave: Wave) -> Sample:
-    """Return the levels sampled finely enough for a wave over k."""
-    every = level_wave(spectrum, np.ones(len(spectrum.levels), dtype=complex))
-    x, w = every.cut(np.linspace(spectrum.left, spectrum.right, fineness(spectrum, wave) + 1)).rule
-    psi = spectrum.states.evaluate(x) if spectrum.states is not None else np.zeros((0, len(x)))
-    return x, psi * w / math.sqrt(2 * math.pi)
-
-
-def level_wave(spectrum: Spectrum, kept: Values) -> Wave:
-    """Return the normalised sum of levels with the amplitudes `kept` (levels,); PhysicsError where there are none."""
-    states = spectrum.states
-    norm = float(np.linalg.norm(kept)) if len(kept) else 0.0
-    if states is None or not norm > 0:
-        raise PhysicsError("this outcome has probability 0 in this state", mend="choose another outcome")
-    return Wave("x", lambda x: (kept / norm) @ states.evaluate(x), states.places[:-1], states.places[1:])
+Sorted = tuple[list[Outcome], Wave, Array]
+"""Outcomes, a wave with its pieces cut at the edges of bins, and the bin of each piece."""
 
 
 @dataclass(frozen=True)
@@ -173,18 +154,19 @@ class AxisMeter:
     width: float | None
     outermost: tuple[float, float] = (-math.inf, math.inf)
     span: tuple[float, float] | None = None
+    recent: dict[int, tuple[Wave, Sorted]] = field(default_factory=dict, init=False, repr=False, compare=False)
 
     def outcomes(self, wave: Wave) -> list[Outcome]:
         """Return the bins that hold something."""
-        return self._sorted(wave)[0]
+        return remembered(self.recent, wave, self._sorted)[0]
 
     def collapsed(self, wave: Wave, outcome: Outcome) -> Wave:
         """Return the part of the wave whose values lie in the bin, normalised."""
-        found, cut, bins = self._sorted(wave)
+        found, cut, bins = remembered(self.recent, wave, self._sorted)
         place = min(range(len(found)), key=lambda k: abs(found[k].value - outcome.value))
         return cut.only(bins == _bin_of(self, found[place].value))
 
-    def _sorted(self, wave: Wave) -> tuple[list[Outcome], Wave, Array]:
+    def _sorted(self, wave: Wave) -> Sorted:
         """Return the outcomes, the wave with its pieces cut at the edges of bins, and the bin of each piece."""
         here = wave if wave.axis == self.axis else turned(wave, self.span)
         cut = here.cut(self._crossings(here))
@@ -268,6 +250,11 @@ def meter_for(
         return LevelMeter(text, unit, holding(model, spectrum, wave, None, least))
     other = replace(model, main=text, operators={**model.operators, text: operator})
     return LevelMeter(text, unit, holding(other, None, wave, _near(operator, wave), least))
+
+
+def cuts_sharply(model: Model, text: str) -> bool:
+    """Say whether an observable is told apart by bins of a place or a momentum, whose edges cut a state."""
+    return _along(model, model.observable(text)) is not None
 
 
 def _along(model: Model, operator: Operator) -> tuple[str, Callable[[Array], Array], Array] | None:

@@ -64,8 +64,8 @@ def test_place_then_energy_is_not_energy_then_place():
         assert orders.backward[row, ground] == pytest.approx(between_walls(outcome.low, outcome.high), abs=1e-10)
         assert orders.forward[row, ground] == pytest.approx(between_walls(outcome.low, outcome.high) ** 2, abs=1e-10)
     kept = sum(between_walls(o.low, o.high) ** 2 for o in orders.first)
-    covered = float(orders.forward.sum())
-    assert orders.distance == pytest.approx((1 - kept + covered - kept) / 2, abs=1e-9)
+    assert orders.distance == pytest.approx(1 - kept, abs=1e-9)
+    assert orders.missing == pytest.approx((1 - orders.forward.sum(), 0), abs=1e-9)
 
 
 @pytest.mark.parametrize("observable", ["H", "x", "left", "T"])
