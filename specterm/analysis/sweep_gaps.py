@@ -132,7 +132,8 @@ def _located(dip: Dip, search: _Search) -> _Place | None:
         place = _fitted(search, at, half)
         if place is None:
             break
-        place = _Place(place.at, place.error + abs(place.at - at), half, place.slope)
+        rounding = 8 * float(np.spacing(max(abs(dip.left), abs(dip.right))))
+        place = _Place(place.at, place.error + abs(place.at - at) + rounding, half, place.slope)
         if best is not None and place.error >= best.error:
             break
         best, at, half = place, place.at, half / SMALLER

@@ -8,8 +8,11 @@ from typing import NoReturn
 
 from specterm.errors import printable
 
-VERBS = ("levels", "weights", "expectation", "transitions", "measure", "evolve", "sensitivities", "figure", "check", "presets")
-LATER = ("sweep", "fit")
+VERBS = (
+    "levels", "weights", "expectation", "transitions", "measure", "evolve", "sensitivities", "sweep", "figure", "check",
+    "presets",
+)  # fmt: skip
+LATER = ("fit",)
 MOST = 1_000_000
 VIEWS = ("psi", "density", "levels", "momentum")
 GLYPHS = ("braille", "block", "ascii")
@@ -50,6 +53,7 @@ def parser() -> argparse.ArgumentParser:
     slopes = _with_sheet(verbs.add_parser("sensitivities", help="derivatives of levels by the sheet's numbers"), solving=True)
     slopes.add_argument("--parameter", dest="parameters", action="append", metavar="NAME", help="only this one (repeatable)")
     slopes.add_argument("--transitions", action="store_true", help="of the lines between the levels instead")
+    _sweep(verbs.add_parser("sweep", help="levels against a parameter, smallest gaps; or a map over two"))
     figure = _with_sheet(verbs.add_parser("figure", help="potential, levels and eigenstates as a text figure"), solving=True)
     figure.add_argument("--levels", metavar="I,J", type=_indices, help="only these levels")
     figure.add_argument("--state", metavar="STATE", help="draw this prepared state too")
@@ -109,6 +113,26 @@ def _evolve(one: argparse.ArgumentParser) -> None:
     one.add_argument("--observable", metavar="OBSERVABLE", help="whose mean is followed (the coordinate)")
     one.add_argument("--density", action="store_true", help="|psi|^2 too; the last one is drawn")
     _with_size(one, 100, 16)
+
+
+def _sweep(one: argparse.ArgumentParser) -> None:
+    """Add what `sweep` takes."""
+    _with_sheet(one, solving=True)
+    one.add_argument(
+        "ranges", nargs="+", metavar="NAME=A:B:COUNT",
+        help="from A to B, both included, in the unit the sheet writes; log:A:B:COUNT or a list A,B,C; two of them make a map",
+    )  # fmt: skip
+    one.add_argument(
+        "--quantity", default="levels", metavar="Q",
+        help="levels (the default), transitions, expectation=OBSERVABLE, weights=STATE or strengths[=DIPOLE]",
+    )  # fmt: skip
+    one.add_argument("--from", dest="start", type=_size(0), metavar="N", help="transitions and strengths from this level (0)")
+    one.add_argument("--level", type=_size(0), metavar="N", help="the level that is strong in the figure, or that is mapped")
+    one.add_argument("--no-gaps", dest="gaps", action="store_false", help="look for no smallest gaps")
+    one.add_argument("--journal", metavar="FILE", help="keep each point there as it is done, and go on from what it holds")
+    one.add_argument("--workers", type=_size(1), metavar="N", help="this many processes")
+    one.add_argument("--cluster", metavar="ADDRESS", help="the workers of this Dask scheduler, or of the file it wrote")
+    _with_size(one, 100, 24)
 
 
 def interface_parser() -> argparse.ArgumentParser:

@@ -55,6 +55,8 @@ def _sheet_of(arguments: argparse.Namespace) -> tuple[str | None, str | None]:
     if arguments.text is not None and arguments.sheet is not None and arguments.verb == "measure":
         arguments.observables = [arguments.state, *arguments.observables]
         arguments.state, arguments.sheet = arguments.sheet, None
+    if arguments.text is not None and arguments.sheet is not None and arguments.verb == "sweep":
+        arguments.ranges, arguments.sheet = [arguments.sheet, *arguments.ranges], None
     return arguments.sheet, arguments.text
 
 
@@ -105,6 +107,8 @@ def _verb(name: str) -> Callable[[argparse.Namespace, Source], Answer]:
         from specterm.cli.measure import measure as found  # noqa: PLC0415
     elif name == "evolve":
         from specterm.cli.evolve import evolve as found  # noqa: PLC0415
+    elif name == "sweep":
+        from specterm.cli.sweep import sweep as found  # noqa: PLC0415
     elif name == "sensitivities":
         from specterm.cli.sensitivities import sensitivities as found  # noqa: PLC0415
     else:
