@@ -28,6 +28,8 @@ MIXING = 30.0
 """Rounding of the vertex matrix, which mixes neighbours, over that of the Rayleigh quotients; twice the largest seen."""
 BOLD = 0.01
 """Elements are split that hold more than this share of their part of the error wanted: few rounds rather than few elements."""
+NEARER = 4.0 ** -np.arange(12)
+"""Shares of a distance at which neighbours that were not computed are looked for."""
 LARGE = 20_000
 """From so many elements on, memory is asked for before a mesh is condensed."""
 
@@ -76,7 +78,7 @@ def refine(
     levels = request.last - request.first + 1
     refuse_above(8.0 * len(condensed.poles) * (60 * levels + 3000), f"computing {levels} levels")
     high = energy - ready.floor
-    last: Refined | None = None
+    last: tuple[Solved, Accuracy, Span] | None = None
     ruler = Ruler(0.0, ready.threshold - ready.floor if not fixed else np.inf)
     for number in range(ROUNDS):
         _report(request, number, condensed)
@@ -88,20 +90,20 @@ def refine(
                 raise PhysicsError(
                     "the levels asked for cannot be told apart in double precision", mend="ask for fewer levels"
                 ) from None
-            return last
+            return _refined(*last)
         found = accuracy(ready, solved, request.check)
         target = _targets(solved, request.tolerance, found)
         coarse = _coarse(found, target, condensed)
         wider, actions = (None, actions) if fixed else _wider(ready, found, target, solved, span, actions)
-        last = Refined(solved, found.total, _vector_error(solved, found), span)
+        last = (solved, found, span)
         if (not coarse.any() and wider is None) or number == ROUNDS - 1:
-            return last
+            return _refined(*last)
         mesh = condensed.mesh.split(coarse)
         if wider is not None:
             span = wider
             mesh = _widened(ready, mesh, wider, energy)
         if len(mesh.places) > MOST_ELEMENTS:
-            return last
+            return _refined(*last)
         condensed, groups = _without_poles(ready, mesh, energy), None
     raise AssertionError("the last round returns")
 
@@ -116,6 +118,11 @@ def _begun(ready: Setting, request: Request, start: Start) -> tuple[float, Span,
     return start.energy, Span(float(mesh.places[0]), float(mesh.places[-1]), mesh.left, mesh.right), condensed, groups
 
 
+def _refined(solved: Solved, found: Accuracy, span: Span) -> Refined:
+    """Return levels with their errors and those of their states."""
+    return Refined(solved, found.total, _vector_error(solved, found), span)
+
+
 def _vector_error(solved: Solved, found: Accuracy) -> Array:
     """Return a bound on the error of each state in norm, from the error of its value and the distance to its neighbours."""
     values = solved.values
@@ -124,10 +131,29 @@ def _vector_error(solved: Solved, found: Accuracy) -> Array:
     gap[:-1] = np.minimum(gap[:-1], steps)
     gap[1:] = np.minimum(gap[1:], steps)
     gap = np.where(np.isfinite(gap), gap, np.abs(values) + np.abs(solved.kinetic))
+    gap[[0, -1]] = np.minimum(gap[[0, -1]], _room(solved, gap[0], gap[-1]))
     with np.errstate(all="ignore"):
         off = np.sqrt((SAFETY * found.residual.sum(axis=0) + 2 * found.cut.sum(axis=0)) / gap)
         off = off + (SAFETY * found.unseen.sum(axis=0) + MIXING * found.noise) / gap
     return np.where(np.isfinite(off), np.minimum(off, 1.0), 1.0)
+
+
+def _room(solved: Solved, below: float, above: float) -> Array:
+    """Return how far the levels that were not asked for keep from the first and the last one: at least so much, by counts.
+
+    Looked for no farther than `below` and `above`.
+    """
+    first, last = float(solved.values[0]), float(solved.values[-1])
+    down = first - below * NEARER if solved.first else np.empty(0)
+    counts = count_below(solved.condensed, np.concatenate([last + above * NEARER, down]))
+    free = counts == np.array([solved.first + len(solved.values)] * len(NEARER) + [solved.first] * len(down))
+    free_above, free_below = free[: len(NEARER)], free[len(NEARER) :]
+    return np.array(
+        [
+            below * float(np.max(NEARER[free_below], initial=0.0)) if solved.first else np.inf,
+            above * float(np.max(NEARER[free_above], initial=0.0)),
+        ]
+    )
 
 
 def _report(request: Request, number: int, condensed: Condensed) -> None:

@@ -85,3 +85,17 @@ def test_deep_lattice_band():
         lowest.append((found.levels[0].value, found.levels[0].error))
     assert all(abs(value - lowest[0][0]) <= error + lowest[0][1] + 1e-12 for value, error in lowest)
     assert {level.kind for level in spectrum("H = p^2 + 3000*sin(x)^2; x in ring(0, pi), phase 0.1", 4).levels} == {"band"}
+
+
+@pytest.mark.parametrize("count", [1, 3, 5])
+def test_a_partner_that_was_not_asked_for(count):
+    """The last state computed says that it may be mixed with its partner just above, which was not (closed wells, a = 3.4)."""
+    found = spectrum(DOUBLE.format(a=3.4), count)
+    assert found.vector_error[-1] == 1
+
+
+def test_a_free_neighbour_above_does_not_blur_the_last_state():
+    """Where the next level is far, the last state is as well known as the same one among more levels, within a factor of 4."""
+    few, many = spectrum("H = p^2 + x^2; x in (-inf, inf)", 3), spectrum("H = p^2 + x^2; x in (-inf, inf)", 4)
+    assert few.vector_error[2] < 1e-7
+    assert many.vector_error[2] < 1e-7
