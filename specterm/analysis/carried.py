@@ -64,14 +64,19 @@ def carry(base: Shape, other: Shape, hull: tuple[float, float]) -> Carry | str:
 
 
 def _pairs(base: Array, other: Array) -> tuple[Array, Array] | None:
-    """Return which places go where; those that stay need no partner. None where the others do not match by number."""
+    """Return which places go where; those that stay need no partner. None where the others do not match by number.
+
+    Jumps that the base does not have yet, while all of its own stay, are left where they come up: they are small.
+    """
     if len(base) == len(other):
         return base, other
     width = SAME * max(np.abs(base).max(initial=0.0), np.abs(other).max(initial=0.0))
     loose = [~_near(a, b, width) for a, b in ((base, other), (other, base))]
+    stay = base[~loose[0]]
+    if not loose[0].any():
+        return stay, stay
     if loose[0].sum() != loose[1].sum():
         return None
-    stay = base[~loose[0]]
     places, moved = np.concatenate([stay, base[loose[0]]]), np.concatenate([stay, other[loose[1]]])
     order = np.argsort(places)
     return places[order], moved[order]

@@ -15,6 +15,8 @@ from specterm.spectrum.accuracy import SAFETY
 AGREE = 1e-12
 """A piece is done when its halves agree with it to this share of the whole."""
 ROUNDS = 60
+NARROWEST = 2.0**-40
+"""Pieces are not halved below this share of their element."""
 MOST_PIECES = 20_000
 ROUGH = 3.0
 """By how much the error of a state may bend more than the state."""
@@ -76,6 +78,7 @@ class Carried:
             finer = self._on(halves, slopes)
             off = np.abs(whole[0] - _joined(finer[0]))
             rough = (off > AGREE * scale[:, :, None]).any(axis=(0, 1))
+            rough &= pieces.high - pieces.low > NARROWEST
             if number == ROUNDS - 1 or 2 * rough.sum() > MOST_PIECES:
                 rough[:] = False
             done = np.concatenate([~rough, ~rough])

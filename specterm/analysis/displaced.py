@@ -16,6 +16,7 @@ from specterm.language.edits import plain_numbers, step_of
 from specterm.language.nodes import Definition, Name, Node, Number, Sheet, Unary
 from specterm.language.order import names
 from specterm.model import Function, Model, build
+from specterm.model.function import number
 
 SAME = 8 * float(np.finfo(float).eps)
 """Places that differ by this share of the largest are one place."""
@@ -27,7 +28,7 @@ class Shape:
 
     `terms`: ((j, k), c) for integrals of conj(D^j f) c D^k f; for operators of second order the first-order term has been taken
     into the others and into the `phase` psi collects around a ring (radians, not reduced; None off a ring). `anchors`: the
-    finite ends and every place inside where something jumps, ascending.
+    finite ends and every place inside where something jumps, ascending. There is always a term (0, 0).
     """
 
     terms: tuple[tuple[tuple[int, int], Function], ...]
@@ -51,6 +52,8 @@ def shape_of(model: Model) -> Shape:
     ends = (domain.left, domain.right)
     turn = 2 * math.pi * (domain.phase or 0.0) if domain.is_ring else None
     terms, marked = operator.form().terms if operator.order > 2 else (), []
+    if (0, 0) not in dict(terms):
+        terms = (((0, 0), number(0.0)), *terms)
     if operator.order == 2:
         sturm = operator.sturm()
         potential = sturm.V

@@ -25,6 +25,8 @@ LINEAR = 1e-3
 """Curvature beside slope below which a first step may be made longer."""
 FAINT = 1e-5
 """A first step that changes less than this share of the quotient is made longer."""
+REFUSED = 6
+"""So many steps without a model on either side, each a quarter of the one before, end the search."""
 QUADRATIC = 0.5
 """The even part of a change must fall to this share when the step is halved; to a quarter once the step is small."""
 EPS = 2.3e-16
@@ -117,12 +119,15 @@ class _Search:
 
     def run(self, step: float) -> Steps | str:
         """Return the steps from the first one on, coarse ones dropped until the change is smooth."""
-        kept = 0
+        kept, refused = 0, 0
         last: tuple[float, float] | None = None
         best: tuple[float, Steps] | None = None
         for _ in range(MOST):
             pair = self._pair(step)
             if pair is None:
+                refused += 1
+                if refused > REFUSED:
+                    break
                 kept, last, step = 0, None, step / 4
                 continue
             now = self._change(pair)

@@ -9,10 +9,15 @@ import numpy as np
 from specterm.analysis.prepared import slips
 from specterm.arrays import Array
 from specterm.discrete.chain import count_below
-from specterm.spectrum import Spectrum
+from specterm.errors import PhysicsError
+from specterm.model import Model
+from specterm.spectrum import Spectrum, solve
+from specterm.spectrum.engine import BLURRED
+from specterm.spectrum.fourier import FourierStates
 from specterm.spectrum.refine import MIXING
 from specterm.spectrum.states import ElementStates
 
+ALONE = "it cannot be told from a level not computed; ask for more levels"
 CLOSE = 4.0
 """Neighbours closer than so many of their errors count as one group."""
 
@@ -32,7 +37,7 @@ class Groups:
     without: dict[int, str]
 
 
-def groups_of(spectrum: Spectrum) -> Groups:
+def groups_of(model: Model, spectrum: Spectrum) -> Groups:
     """Return the groups among the levels of a spectrum, and the levels without a derivative."""
     levels = spectrum.levels
     without = {
@@ -52,23 +57,41 @@ def groups_of(spectrum: Spectrum) -> Groups:
             if row > start:
                 groups.append(Group(tuple(range(start, row + 1))))
             start = row + 1
-    without |= dict.fromkeys(_cut_off(spectrum, groups), "it shares its value with a level not computed; ask for more levels")
+    without |= dict.fromkeys(_cut_off(model, spectrum, groups), ALONE)
     return Groups(tuple(g for g in groups if not set(g.rows) & set(without)), without)
 
 
-def _cut_off(spectrum: Spectrum, groups: list[Group]) -> list[int]:
+def _cut_off(model: Model, spectrum: Spectrum, groups: list[Group]) -> list[int]:
     """Return the rows at either end whose group goes on among levels that were not computed."""
     states, levels = spectrum.states, spectrum.levels
+    if isinstance(states, FourierStates) and model.domain.is_ring:
+        return _cut_wave(model, spectrum, groups)
     if not isinstance(states, ElementStates):
         return []
     values, lost = states.solved.values, []
     for row, sign in ((0, -1.0), (len(levels) - 1, 1.0)):
-        reach = CLOSE * (levels[row].error or 0.0) + 1e-9 * max(abs(values[row]), float(states.solved.kinetic[row]))
-        below = int(count_below(states.solved.condensed, np.array([values[row] + sign * reach]))[0])
+        reach = CLOSE * (levels[row].error or 0.0) + BLURRED * max(abs(values[row]), float(states.solved.kinetic[row]))
+        looked = values[row] + sign * reach * np.linspace(1, 3, 5)
+        below = int(np.median(count_below(states.solved.condensed, looked)))
         number = states.solved.first + row
         if (below > number + 1) if sign > 0 else (below < number):
-            lost += next((list(group.rows) for group in groups if row in group.rows), [row])
+            lost += _with_partners(row, groups)
     return sorted(set(lost))
+
+
+def _with_partners(row: int, groups: list[Group]) -> list[int]:
+    return next((list(group.rows) for group in groups if row in group.rows), [row])
+
+
+def _cut_wave(model: Model, spectrum: Spectrum, groups: list[Group]) -> list[int]:
+    """Return the same for a basis without a count of its own: one level more is computed, where levels come in pairs."""
+    last = len(spectrum.levels) - 1
+    try:
+        more = solve(model, count=last + 2, tolerance=spectrum.tolerance).levels
+    except PhysicsError:
+        return _with_partners(last, groups)
+    reach = CLOSE * ((more[last].error or 0.0) + (more[last + 1].error or 0.0))
+    return _with_partners(last, groups) if abs(more[last + 1].value - more[last].value) <= reach else []
 
 
 def state_error(spectrum: Spectrum, groups: Groups) -> Array:

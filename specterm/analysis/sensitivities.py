@@ -85,7 +85,7 @@ def sensitivities(
                 f"`{name[:60]}` is not a plain number of the sheet", mend=_plain_names(name, model.plain)
             )
     stop = should_stop or (lambda: False)
-    groups = groups_of(spectrum)
+    groups = groups_of(model, spectrum)
     found = _found(model, spectrum, folder, {name: places[name] for name in wanted}, groups, stop)
     shape = (len(spectrum.levels), len(wanted))
     derivatives, errors, notes = np.full(shape, np.nan), np.full(shape, np.nan), []
