@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+import re
+from dataclasses import dataclass, replace
 from pathlib import Path
 
 import numpy as np
 
+from specterm.analysis.near_levels import LOST, mixing_with_others, near_rows, ranges
 from specterm.analysis.observables import Observable, observable, weak
 from specterm.analysis.prepared import Prepared, prepare
 from specterm.analysis.quadrature import POINTS, Rule
@@ -28,8 +30,6 @@ STEEPER = (3.0, 30.0, 900.0)
 """By how much a derivative of order 0, 1, 2 may enlarge the error of a state beside the state's own."""
 DIVERGES = 1e-3
 """A mean that gets this share from the last pieces at a singular place has no finite value."""
-LOST = 0.1
-"""A state that may be off by this much in norm has no error to speak of."""
 PRESSED = 1e-9
 """Share of |(A - mean) psi|^2 in the piece at the cut of an open domain from which on the value hangs on the cut."""
 
@@ -61,7 +61,31 @@ def expectation(
     nothing cancels. Checked against closed forms for wells, oscillators and hydrogen.
     """
     asked = observable(model, text)
-    return expect(model, asked, prepare(model, spectrum, state, folder))
+    return expected(model, spectrum, asked, prepare(model, spectrum, state, folder))
+
+
+def expected(model: Model, spectrum: Spectrum, asked: Observable, wave: Prepared) -> Expectation:
+    """Return mean and spread of an observable in a state; for a level among near ones the errors cover every mixture of them.
+
+    The true states of levels too near to be told apart are some mixtures of those computed: the mean then lies between the
+    lowest and the highest eigenvalue of the observable among them. Levels whose neighbours were not computed keep no error.
+    """
+    found = expect(model, asked, wave)
+    level = re.fullmatch(r"level\(\s*(-?\d+)\s*\)", wave.name)
+    if found.error is not None or level is None or spectrum.states is None or wave.slip <= LOST:
+        return found
+    rows = near_rows(spectrum, int(level[1]))
+    off = mixing_with_others(spectrum, rows)
+    if len(rows) < 2 or off > LOST:
+        return found
+    firm = expect(model, asked, replace(wave, slip=off))
+    if firm.error is None or firm.spread_error is None:
+        return found
+    mean, spread = ranges(spectrum, asked, rows, firm.mean)
+    told = f"{len(rows)} levels are too near to be told apart: the errors cover every mixture of their states"
+    wide = max(abs(mean[0]), abs(mean[1]))
+    loose = max(firm.spread - spread[0], spread[1] - firm.spread, 0.0)
+    return replace(firm, error=firm.error + wide, spread_error=firm.spread_error + loose, notes=(*firm.notes, told))
 
 
 def expect(model: Model, asked: Observable, wave: Prepared) -> Expectation:

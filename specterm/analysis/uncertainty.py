@@ -9,7 +9,7 @@ from pathlib import Path
 import numpy as np
 
 from specterm.analysis.commutator import joined, vanishing, vanishing_on_levels, written
-from specterm.analysis.expectation import Expectation, expect
+from specterm.analysis.expectation import Expectation, expect, expected
 from specterm.analysis.observables import Observable, observable, of_operator
 from specterm.analysis.prepared import Prepared, prepare
 from specterm.analysis.regularity import rule_for
@@ -40,7 +40,7 @@ def pair_of(model: Model, spectrum: Spectrum, texts: tuple[str, str], state: str
     """Return two observables in a state, by name or expression (Robertson, Phys. Rev. 34 (1929) 163, from memory)."""
     wave = prepare(model, spectrum, state, folder)
     asked = (observable(model, texts[0]), observable(model, texts[1]))
-    means = (expect(model, asked[0], wave), expect(model, asked[1], wave))
+    means = (expected(model, spectrum, asked[0], wave), expected(model, spectrum, asked[1], wave))
     double = asked[0].operator.commutator(asked[1].operator)
     gone = vanishing(double)
     commutes = gone and vanishing_on_levels(spectrum, *asked)

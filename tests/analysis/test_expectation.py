@@ -205,3 +205,29 @@ def test_lower_bound_where_the_commutator_is_of_third_order():
     found = pair(text, "p^2", "p*x^2*p", "s")
     assert abs(found.bound - 22) <= found.bound_error < 1e-5
     assert found.product > found.bound
+
+
+PARTED = "H = p^2/2 + 40*(x^2 - 4)^2\nx in ({left}, inf)"
+
+
+def test_levels_too_near_to_be_told_apart_still_have_errors():
+    """In two wells so far apart that their levels agree to rounding, <x> = 0 by symmetry lies within the error told."""
+    found = in_state(PARTED.format(left="-inf"), "x", "level(1)")
+    assert abs(found.mean) <= found.error < 5
+    assert abs(found.spread**2 + found.mean**2 - 3.971849889) < 1e-8
+    assert abs(found.spread - math.sqrt(3.971849889)) <= found.spread_error
+    assert any("too near" in note for note in found.notes)
+
+
+def test_what_all_mixtures_of_near_levels_agree_on_is_sharp():
+    """<x^2> is that of a single well of the two (the same sheet on the half line, recomputed here)."""
+    both = in_state(PARTED.format(left="-inf"), "x^2", "level(0)")
+    single = in_state(PARTED.format(left="0"), "x^2", "level(0)")
+    assert abs(both.mean - single.mean) <= both.error + single.error
+    assert abs(both.spread - single.spread) <= both.spread_error + single.spread_error
+    assert both.error < 1e-6
+
+
+def test_a_level_whose_partner_was_not_computed_has_no_error():
+    """With one level only nothing is known of its partner: <x> has no error."""
+    assert in_state(PARTED.format(left="-inf"), "x", "level(0)", 1).error is None
