@@ -171,3 +171,9 @@ def revivals(model: Model, weights: Weights) -> tuple[float | None, float | None
         2 * math.pi * model.hbar / abs(slope) if slope else None,
         4 * math.pi * model.hbar / abs(bend) if abs(bend) > flat else None,
     )
+
+
+def usual_times(model: Model, weights: Weights) -> tuple[float, float, int]:
+    """Return times worth looking at, as start, end and count: two classical periods, or a unit of time without one."""
+    classical, _ = revivals(model, weights)
+    return 0.0, 2 * classical if classical and math.isfinite(classical) else 1.0, 241

@@ -70,25 +70,26 @@ def _density(arguments: argparse.Namespace, source: Source, model: Model, spectr
 def _text(arguments: argparse.Namespace, model: Model, found: Evolution, density: tuple[Array, Array] | None) -> str:
     """Return a table over the times, what repeats, and the curves."""
     from specterm.views.cells import plain  # noqa: PLC0415 - only text needs the views
-    from specterm.views.numbers import short, with_unit  # noqa: PLC0415
+    from specterm.views.numbers import scale_of, short, with_unit  # noqa: PLC0415
     from specterm.views.plain_table import bare, sure, text_columns  # noqa: PLC0415
     from specterm.views.time_curve import density_curve, mean_curve, survival_curve  # noqa: PLC0415
 
-    unit = f" ({found.unit})" if found.unit else ""
-    times, survival = found.times.tolist(), found.survival.tolist()
+    scale, time_unit = scale_of(found.unit)
+    unit = f" ({time_unit})" if time_unit else ""
+    times, survival = (scale * found.times).tolist(), found.survival.tolist()
     moments = (bare(found.mean.tolist(), 8), bare(found.spread.tolist(), 8))
     columns = (bare(times, 8), sure(survival, found.survival_error.tolist()), *moments)
     headings = (f"time{unit}", "survival", f"<{found.observable}>", "spread")
     repeats = [
-        f"{name} {with_unit(short(value), found.unit)}"
+        f"{name} {with_unit(short(scale * value), time_unit)}"
         for name, value in (("period", found.classical), ("revival", found.revival))
         if value is not None
     ]
     size = (arguments.width, arguments.height)
     glyphs = glyphs_of(arguments.glyphs)
     figures = [
-        survival_curve(found.times, found.survival, *size, unit=found.unit, glyphs=glyphs),
-        mean_curve(found.times, found.mean, found.spread, found.observable, *size, unit=found.unit, glyphs=glyphs),
+        survival_curve(scale * found.times, found.survival, *size, unit=time_unit, glyphs=glyphs),
+        mean_curve(scale * found.times, found.mean, found.spread, found.observable, *size, unit=time_unit, glyphs=glyphs),
     ]
     if density is not None:
         figures.append(density_curve(density[0], density[1][-1], model.domain.coordinate, *size, glyphs=glyphs))

@@ -43,30 +43,12 @@ def expectation(arguments: argparse.Namespace, source: Source) -> Answer:
 
 def _text(model: Model, found: Expectation, pair: Pair | None) -> str:
     """Return one expectation, or two with the product of their spreads and its lower bound."""
-    from specterm.views.numbers import bracket, short, with_unit  # noqa: PLC0415 - only text needs the views
+    from specterm.views.mean_table import mean_line, pair_lines  # noqa: PLC0415 - only text needs the views
 
-    lines = [f"{found.state} on {expression_of(model)}"]
-    for one in (found, pair.second) if pair else (found,):
-        scale, unit = _shown_in(model, one)
-        mean = with_unit(bracket(one.mean / scale, None if one.error is None else one.error / scale), unit)
-        spread = with_unit(bracket(one.spread / scale, None if one.spread_error is None else one.spread_error / scale), unit)
-        lines.append(f"<{one.observable}> = {mean}   spread {spread}")
+    lines = [f"{found.state} on {expression_of(model)}", mean_line(model, found)]
     if pair:
-        bound = f"not below |<[A,B]>|/2 = {bracket(pair.bound, pair.bound_error)}"
-        lines.append(f"product of the spreads {short(pair.product, 10)}   {bound}")
-        verdict = "vanishes: they commute" if pair.commutes else pair.commutator
-        lines.append(f"[{found.observable},{pair.second.observable}] {'' if pair.commutes else '= '}{verdict}")
+        lines += [mean_line(model, pair.second), *pair_lines(model, pair)]
     return "\n".join(lines)
-
-
-def _shown_in(model: Model, found: Expectation) -> tuple[float, str]:
-    """Return what a number is divided by to be shown, and the unit: a momentum is shown in hbar over the unit of length."""
-    from specterm.analysis.observables import dimension_of  # noqa: PLC0415 - heavy
-    from specterm.units import ACTION, LENGTH  # noqa: PLC0415
-
-    if dimension_of(model, found.observable) == ACTION / LENGTH and model.coordinate_unit:
-        return model.hbar, f"hbar/{model.coordinate_unit}"
-    return 1.0, found.unit
 
 
 def _matrix_text(arguments: argparse.Namespace, found: MatrixElements) -> str:

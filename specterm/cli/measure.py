@@ -36,8 +36,11 @@ def measure(arguments: argparse.Namespace, source: Source) -> Answer:
     joints = repeat(course, arguments.runs, seed) if arguments.runs else ()
     pair = len(arguments.observables) == 2
     orders = both_orders(course) if pair and len(set(arguments.observables)) == 2 else None
+    data = measured_record(record, arguments.after, joints, orders)
+    if orders:
+        data.data["orders"]["missing"] = list(orders.missing)
     return answered(
-        arguments, measured_record(record, arguments.after, joints, orders),
+        arguments, data,
         lambda: _text(arguments, model, record, joints, orders), status_of(spectrum), (*spectrum.notes, *record.notes),
     )  # fmt: skip
 
@@ -57,13 +60,15 @@ def _chosen(text: str | None) -> list[float | None]:
 
 def _text(arguments: argparse.Namespace, model: Model, record: Record, joints: tuple[Joint, ...], orders: Orders | None) -> str:
     """Return the record step by step, the counts of many runs, and the two orders beside each other."""
-    from specterm.views.outcome_table import joint_table, orders_text, step_table  # noqa: PLC0415 - only text needs the views
+    from specterm.views.numbers import scale_of, short, with_unit  # noqa: PLC0415 - only text needs the views
+    from specterm.views.outcome_table import joint_table, orders_text, step_table  # noqa: PLC0415
 
     glyphs = glyphs_of(arguments.glyphs)
     lines = [f"{record.state} on {expression_of(model)}   seed {record.seed}"]
     for number, step in enumerate(record.steps):
         if number and arguments.after:
-            lines.append(f"free evolution for {arguments.after:g} {model.units.time}".rstrip())
+            scale, unit = scale_of(model.units.time)
+            lines.append(f"free evolution for {with_unit(short(scale * arguments.after), unit)}")
         lines += [f"{number + 1}. measure {step.observable}", step_table(step, glyphs=glyphs)]
     if joints:
         lines += [f"{arguments.runs} runs", joint_table([step.observable for step in record.steps], joints, arguments.runs)]

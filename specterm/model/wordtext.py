@@ -25,9 +25,23 @@ def show_word(coefficient: Scalar, slots: Sequence[Term], setting: Setting) -> s
             powers.append((show_factor(slot, setting.coordinate, setting.labels), 1))
     body = "*".join(text if n == 1 else f"{text}^{n}" for text, n in powers) or "1"
     if body == "1":
-        return show_number(coefficient)
+        return _constant(coefficient, setting)
     if abs(coefficient.value - 1) <= coefficient.slack + 1e-12:
         return body
     if abs(coefficient.value + 1) <= coefficient.slack + 1e-12:
         return "-" + body
     return f"{show_number(coefficient)}*{body}"
+
+
+def _constant(coefficient: Scalar, setting: Setting) -> str:
+    """Return a number, as a multiple of hbar where it is a simple one and hbar is not 1."""
+    ratio = coefficient / setting.hbar
+    part = complex(ratio.value)
+    fourfold = 4 * (part.imag or part.real)
+    simple = 0 in (part.real, part.imag) and fourfold and abs(fourfold - round(fourfold)) <= 1e-9 and abs(fourfold) <= 64
+    if not simple or complex(setting.hbar.value) == 1:
+        return show_number(coefficient)
+    number = round(fourfold) / 4
+    factors = (["i"] if part.imag else []) + ["hbar"]
+    sign, size = "-" if number < 0 else "", abs(number)
+    return sign + "*".join([*([] if size == 1 else [f"{size:g}"]), *factors])

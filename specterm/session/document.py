@@ -105,10 +105,15 @@ def save(document: Document, path: Path | None = None) -> Document:
 
 def write_text(path: Path, text: str) -> None:
     """Replace the file at `path` by one that holds `text`; raises SheetError."""
+    write_bytes(path, text.encode("utf-8"))
+
+
+def write_bytes(path: Path, data: bytes) -> None:
+    """Replace the file at `path` by one that holds `data`; raises SheetError."""
     try:
         real = Path(os.path.realpath(path))
         mode = _mode_of(real)
-        _replace(real, text.encode("utf-8"), mode)
+        _replace(real, data, mode)
     except (OSError, ValueError) as error:
         raise SheetError(f"cannot write {shown(path)}: {reason(error)}", mend="save under another name") from error
 

@@ -6,6 +6,7 @@ import os
 from collections.abc import Awaitable, Callable
 from dataclasses import replace
 from math import isfinite, nan
+from pathlib import Path
 from typing import Any, ClassVar
 
 from textual.binding import Binding
@@ -48,6 +49,7 @@ class Keyed(OrderedKeys):
     work: Work
     files: Files
     painter: Painter
+    folder: Path
 
     @property
     def sheet(self) -> SheetPane:
@@ -70,6 +72,11 @@ class Keyed(OrderedKeys):
     def mark_stale(self) -> None:
         """Say of the levels shown that they are not those of the text, where that is so."""
         raise NotImplementedError("the app knows its text")
+
+    @property
+    def typing(self) -> bool:
+        """Whether the keys go into the sheet."""
+        raise NotImplementedError("the app knows where the keys go")
 
     def place(self, *, typing: bool) -> None:
         """Show what the keys act on."""

@@ -5,6 +5,7 @@ from __future__ import annotations
 import gc
 import os
 import traceback
+from collections.abc import Hashable
 from dataclasses import replace
 from pathlib import Path
 
@@ -16,12 +17,15 @@ from textual.widgets import TextArea
 
 from specterm.session import presets, rescue
 from specterm.session.document import Document
-from specterm.tui.actions import Keyed
+from specterm.tui.booked import Booked
 from specterm.tui.cell_pane import CellPane
+from specterm.tui.choices import Choices
 from specterm.tui.files import Files
 from specterm.tui.layout import BESIDE, CSS, LOW, WIDE
 from specterm.tui.look import Look, usual_glyphs
 from specterm.tui.options import Options
+from specterm.tui.pages import NAMES
+from specterm.tui.pages.page import Answered, Bench
 from specterm.tui.painter import Painter
 from specterm.tui.rows import Shown
 from specterm.tui.sheet_pane import SheetPane, SheetText
@@ -34,7 +38,7 @@ _PAUSE = 0.3
 _LINES = 4
 
 
-class Specterm(Keyed):
+class Specterm(Booked):
     """One sheet and its spectrum."""
 
     ENABLE_COMMAND_PALETTE = False
@@ -53,7 +57,8 @@ class Specterm(Keyed):
         self.files = Files(self)
         self.painter = Painter(self)
         self.error = None
-        self.found: dict[int | str, MomentsText | Weighed | None] = {}
+        self.found: dict[Hashable, MomentsText | Weighed | Answered | None] = {}
+        self.bench = Bench()
         self._pause: Timer | None = None
         self._table = 0
         self._near: float | None = None
@@ -111,6 +116,7 @@ class Specterm(Keyed):
         wide = self.size.width >= WIDE
         self.sheet.display = wide or typing
         self.screen_stack[0].query_one("#figure").display = wide or not typing
+        self.screen_stack[0].query_one("#levels").display = wide or self.shown.look.page == NAMES[0]
 
     def on_descendant_focus(self) -> None:
         """Arrange anew when typing starts."""
@@ -155,6 +161,7 @@ class Specterm(Keyed):
             self.shown = replace(self.shown, stale=True)
         else:
             self.found = {}
+            self.bench = replace(self.bench, waves={})
             look = self.shown.look.fitted(outcome.spectrum, outcome.states)
             if outcome.request.near is not None and outcome.request.near != self._near:
                 look = look.nearest(outcome.request.near, outcome.spectrum)
@@ -190,6 +197,9 @@ class Specterm(Keyed):
         if outcome is None or outcome.request.number != event.number:
             return
         self.found[event.key] = event.found
+        if isinstance(event.found, Answered):
+            self.redraw()
+            return
         if event.key == self.shown.look.chosen:
             self._look_ahead(outcome)
         if isinstance(event.found, Weighed) and event.found.error is not None and event.key == self.shown.look.state:
@@ -223,7 +233,8 @@ class Specterm(Keyed):
         self.document = document
         self.folder = folder or document.folder
         self.sheet.text.load_text(document.text)
-        self.shown = replace(self.shown, look=replace(self.shown.look, chosen=0, count=None), message="")
+        self.shown = replace(self.shown, look=replace(self.shown.look, chosen=0, count=None, choices=Choices()), message="")
+        self.painter.forget()
         self.options = replace(self.options, near=None)
         self.compute()
         self.files.offer_rescued()

@@ -6,11 +6,12 @@ import os
 import re
 from collections.abc import Callable
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
-from specterm.errors import SheetError, printable
+from specterm.errors import SheetError, SpectermError, printable
 from specterm.session import presets, rescue
-from specterm.session.document import Document, load, save, shown, write_text
+from specterm.session.document import Document, load, save, shown, write_bytes, write_text
+from specterm.session.records.files import exported
 from specterm.tui.dialogs import Chooser, Entry, Question
 
 if TYPE_CHECKING:
@@ -164,6 +165,31 @@ class Files:
         if len(text) < _CLIPBOARD:
             self.app.copy_to_clipboard(text)
         self.app.say(f"sent to the terminal's clipboard, and written to {shown(path)}", "good")
+
+    def export(self, what: str, make: Callable[[], Any]) -> None:
+        """Ask for a file and write data to it, in the form that its name ends with; an existing file is asked about."""
+        start = f"{Path(self.app.document.name).stem}-{what}.csv"
+
+        def named(answer: str | None) -> None:
+            if not answer:
+                return
+            target = Path(os.path.expanduser(answer))
+            if target.exists():
+                question = Question(f"{shown(target)} exists. Replace it?", {"y": "replace it", "n": "keep it"})
+                self.app.ask(question, lambda letter: self._export(target, make) if letter == "y" else None)
+            else:
+                self._export(target, make)
+
+        self.app.ask(Chooser("Export to the file (.csv, .json or, for states, .npz)", (), free=True, text=start), named)
+
+    def _export(self, path: Path, make: Callable[[], Any]) -> None:
+        """Write the data and say so."""
+        try:
+            write_bytes(path, exported(make(), path.suffix))
+        except SpectermError as error:
+            self.app.say(f"{error.message}; {error.mend}", "warn")
+            return
+        self.app.say(f"written {shown(path)}", "good")
 
     def leave(self) -> None:
         """End the session; asks when there is unsaved text."""

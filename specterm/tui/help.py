@@ -13,6 +13,8 @@ _AREAS = {
     "level": "Levels",
     "figure": "Figure",
     "weights": "Weights of a prepared state",
+    "page": "Pages",
+    "notebook": "Notebook",
     "sheet": "Sheet",
     "work": "Computation",
     "app": "specterm",

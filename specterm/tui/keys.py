@@ -4,6 +4,12 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+ALWAYS = ("page.figure",)
+"""Keys of pages that the bottom line names on every page."""
+
+PAGED = ("page", "notebook")
+"""Areas whose keys act on pages."""
+
 CONTROL = ".control"
 """What the id of a binding to control keys ends with."""
 
@@ -43,7 +49,7 @@ KEYS = (
     Key("level.more", "plus,equals_sign", "count(1)", "level", "More", "Compute more levels", "+/- count", "+ ="),
     Key("level.fewer", "minus", "count(-1)", "level", "Fewer", "Compute fewer levels", "", "-"),
     Key("level.moments", "m", "moments", "level", "Moments", "Show or hide means and spreads of place and momentum", "", "m"),
-    Key("figure.view", "v", "view", "figure", "Next view", "psi, |psi|^2, or level lines only", "v view", "v"),
+    Key("figure.view", "v", "view", "figure", "Next view", "psi, |psi|^2, level lines only, or momenta", "v view", "v"),
     Key("figure.glyphs", "g", "glyphs", "figure", "Next glyphs", "Braille, block or plain ASCII characters", "", "g"),
     Key("figure.copy", "y", "copy", "figure", "Copy", "Levels and figure as text to a file and the clipboard", "", "y"),
     Key("level.near", "f", "near", "level", "Near an energy", "Find the levels nearest to an energy", "", "f"),
@@ -51,6 +57,34 @@ KEYS = (
     Key("level.details", "i", "details", "level", "In full", "All that the lines below say, unabridged", "", "i"),
     Key("weights.state", "s", "weigh", "weights", "Next state", "Weights of a prepared state, the level, none", "s state", "s"),
     Key("weights.any", "S", "weigh_any", "weights", "Any state", "Weights of a prepared state or a level from a list", "", "S"),
+    Key("page.figure", "1", "page('figure')", "page", "Figure", "Show the figure", "1-6 page", "1"),
+    Key("page.means", "2", "page('means')", "page", "Means", "Means and spreads of the observables", "", "2"),
+    Key("page.matrix", "3", "page('matrix')", "page", "Matrix elements", "An observable between levels: map, table", "", "3"),
+    Key("page.lines", "4", "page('lines')", "page", "Lines", "Transitions, with strengths and a spectrum", "", "4"),
+    Key("page.time", "5", "page('time')", "page", "Time", "What becomes of a state: survival, means, density", "", "5"),
+    Key("page.notebook", "6", "page('notebook')", "page", "Notebook", "Measurements, one after the other", "", "6"),
+    Key("page.next", "tab", "turn(1)", "page", "Next page", "Show the next page", "", "tab"),
+    Key("page.back", "shift+tab", "turn(-1)", "page", "Page before", "Show the page before", "", "shift+tab"),
+    Key("page.observable", "d", "observable", "page", "Observable", "The observable of the page", "d observable", "d"),
+    Key("page.second", "D", "second", "page", "Second observable", "One more; in the notebook: both orders", "D second", "D"),
+    Key("page.amount", "l", "amount", "page", "Range", "Times; temperature; logarithmic map", "l range", "l"),
+    Key("page.breadth", "b", "breadth", "page", "Breadth", "Broadening of lines; bins in the notebook", "b breadth", "b"),
+    Key("page.every", "z", "every", "page", "From all", "Lines from all levels or the chosen one", "z from all", "z"),
+    Key("page.into", "F", "into", "page", "Into a sheet", "Lines into the levels of another sheet", "F into a sheet", "F"),
+    Key("page.along", "right", "along(1)", "page", "Later", "Move the cursor along", "left/right cursor", "right"),
+    Key("page.along_back", "left", "along(-1)", "page", "Earlier", "Move the cursor back", "", "left"),
+    Key("page.along_far", "greater_than_sign", "along(10)", "page", "Ten later", "Ten steps along", "", ">"),
+    Key("page.along_far_back", "less_than_sign", "along(-10)", "page", "Ten earlier", "Ten steps back", "", "<"),
+    Key("page.scroll", "full_stop", "scroll(1)", "page", "Scroll down", "Further down the page's table", "", "."),
+    Key("page.scroll_back", "comma", "scroll(-1)", "page", "Scroll up", "Further up the page's table", "", ","),
+    Key("page.export", "E", "export", "page", "Export", "Levels, weights, the page or the states to a file", "", "E"),
+    Key("book.draw", "c", "draw", "notebook", "Draw", "Measure: an outcome is drawn", "c draw", "c"),
+    Key("book.choose", "C", "choose", "notebook", "Choose", "Measure: choose the outcome", "C choose", "C"),
+    Key("book.wait", "L", "wait", "notebook", "Wait", "Let time pass before the next measurement", "L wait", "L"),
+    Key("book.prepare", "N", "prepare", "notebook", "Prepare", "Prepare a state anew", "N prepare", "N"),
+    Key("book.runs", "R", "runs", "notebook", "Many runs", "Repeat all that was measured, and count", "R runs", "R"),
+    Key("book.undo", "U", "undo_entry", "notebook", "Undo an entry", "Take back the last entry of the notebook", "U undo", "U"),
+    Key("book.seed", "Z", "seed", "notebook", "Seed", "Set the seed of the draws", "", "Z"),
     Key("sheet.edit", "e,enter", "edit", "sheet", "Edit", "Type in the sheet; Tab comes back", "e edit", "e enter"),
     Key("sheet.undo", "u", "undo", "sheet", "Undo", "Take back the last edit of the sheet", "", "u"),
     Key("sheet.save", "w,ctrl+s", "save", "sheet", "Save", "Write the sheet to its file", "w save", "w ctrl+s"),
@@ -74,8 +108,10 @@ TYPING = (
 ACTIONS = frozenset(key.action.partition("(")[0] for key in KEYS)
 
 
-def bottom(keys: tuple[Key, ...]) -> tuple[str, ...]:
-    """Return what the bottom line says, most important first."""
-    named = {key.id: key.short for key in keys if key.short}
+def bottom(keys: tuple[Key, ...], first: tuple[str, ...] = ()) -> tuple[str, ...]:
+    """Return what the bottom line says, most important first: the keys whose ids are in `first`, then the usual ones."""
+    wanted = [key for key in keys if key.area not in PAGED or key.id in ALWAYS or key.id in first]
+    named = {key.id: key.short for key in wanted if key.short}
+    named = {**{name: named[name] for name in first if name in named}, **named}
     last = [named.pop(name) for name in ("app.help", "app.quit") if name in named]
     return (*named.values(), *last)

@@ -4,19 +4,26 @@ from __future__ import annotations
 
 import os
 from collections.abc import Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
+from typing import Any
 
 from specterm.spectrum.result import Spectrum
+from specterm.tui.choices import Choices
 from specterm.views.canvas import GLYPHS
 from specterm.views.scene import MODES
 
+VIEWS = (*MODES, "momentum")
+"""What the figure can show."""
 DEFAULT_COUNT = 6
 LARGEST_COUNT = 500
 
 
 @dataclass(frozen=True, slots=True)
 class Look:
-    """`chosen` is a place in the spectrum, `count` the number of levels asked for (None: the engine's choice)."""
+    """`chosen` is a place in the spectrum, `count` the number of levels asked for (None: the engine's choice).
+
+    `mode` is what the figure shows, `page` what stands in its place, `choices` what is chosen there.
+    """
 
     chosen: int = 0
     mode: str = "psi"
@@ -24,6 +31,8 @@ class Look:
     count: int | None = None
     state: str | None = None
     moments: bool = True
+    page: str = "figure"
+    choices: Choices = field(default_factory=Choices)
 
     def stepped(self, steps: int, spectrum: Spectrum | None) -> Look:
         """Return the look with the level `steps` higher in energy chosen, held at the ends."""
@@ -40,7 +49,15 @@ class Look:
 
     def next_view(self) -> Look:
         """Return the look with the next view."""
-        return replace(self, mode=_after(self.mode, MODES))
+        return replace(self, mode=_after(self.mode, VIEWS))
+
+    def turned(self, page: str) -> Look:
+        """Return the look with another page, from its first row on."""
+        return replace(self, page=page, choices=replace(self.choices, scroll=0))
+
+    def chose(self, **changes: Any) -> Look:  # noqa: ANN401 - any of the choices
+        """Return the look with other choices."""
+        return replace(self, choices=replace(self.choices, **changes))
 
     def next_glyphs(self) -> Look:
         """Return the look with the next set of glyphs."""

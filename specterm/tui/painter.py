@@ -10,6 +10,9 @@ from textual.geometry import Size
 from specterm.tui.cell_pane import CellPane
 from specterm.tui.complaint import sentence
 from specterm.tui.keys import KEYS, TYPING, bottom
+from specterm.tui.look import Look
+from specterm.tui.pages import page_of
+from specterm.tui.pages.page import Answered
 from specterm.tui.rows import (
     Shown,
     bottom_row,
@@ -40,6 +43,7 @@ class Painter:
         self.app = app
         self._waiting = False
         self._drawn: dict[str, tuple[object, ...]] = {}
+        self._last: dict[str, Answered] = {}
 
     @property
     def waiting(self) -> bool:
@@ -64,7 +68,7 @@ class Painter:
         with self.app.batch_update():
             for name, draw in _LARGE:
                 pane = self._pane(name)
-                of = (shown.look, shown.outcome, shown.weighed, shown.error, shown.name, pane.size)
+                of = (pane.size, replace(shown, moments=None, message="", message_style="", stale=False))
                 if _visible(pane) and self._drawn.get(name) != of:
                     self._drawn[name] = of
                     pane.show(drawn_safely(draw, shown, *pane.size))
@@ -72,12 +76,32 @@ class Painter:
             for name, line in _LINES:
                 self._pane(name).show((line(shown, width),))
             typing = self.app.typing
-            self._pane("bottom").show((bottom_row(bottom(TYPING if typing else KEYS), width),))
+            keys = bottom(TYPING) if typing else bottom(KEYS, _keys_of(shown.look))
+            self._pane("bottom").show((bottom_row(keys, width),))
             heading = self.app.sheet.heading
             row = heading_row(self.app.document, heading.size.width, typing=typing, glyphs=shown.look.glyphs)
             heading.show((row,))
             if self.app.sheet.display:
                 self.app.sheet.complain(self.app.error)
+
+    def _answer(self, shown: Shown) -> tuple[Answered | None, bool]:
+        """Return the answer for the page shown and True; ask for it where it has not come, the last one stands in meanwhile."""
+        app, page, outcome = self.app, page_of(shown.look), shown.outcome
+        if page is None or outcome is None:
+            return None, False
+        inquiry = page.inquiry(shown.look, outcome, app.bench)
+        if inquiry is None:
+            return None, False
+        found = app.found.get(inquiry)
+        if isinstance(found, Answered):
+            self._last[page.name] = found
+        else:
+            app.work.inquire(outcome, inquiry)
+        return self._last.get(page.name), isinstance(found, Answered)
+
+    def forget(self) -> None:
+        """Forget the answers of an earlier sheet."""
+        self._last.clear()
 
     def _pane(self, name: str) -> CellPane:
         """Return the pane called `name`."""
@@ -96,6 +120,8 @@ class Painter:
                 app.work.look(outcome, look.state)
             if look.moments and look.chosen not in app.found:
                 app.work.look(outcome, look.chosen)
+        answer, fresh = self._answer(shown)
+        shown = replace(shown, answer=answer, fresh=fresh, bench=app.bench)
         weighed = app.found.get(look.state) if look.state else None
         moments = app.found.get(look.chosen)
         shown = replace(
@@ -110,6 +136,12 @@ class Painter:
             return replace(shown, error=(app.error, app.document.text))
         words = shown.message or sentence(app.error, app.document.text)
         return replace(shown, message=words, message_style=shown.message_style if shown.message else "warn")
+
+
+def _keys_of(look: Look) -> tuple[str, ...]:
+    """Return the ids of the keys that the bottom line names first."""
+    page = page_of(look)
+    return page.keys if page is not None else ()
 
 
 def _visible(pane: CellPane) -> bool:

@@ -4,20 +4,23 @@ from __future__ import annotations
 
 import textwrap
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from specterm.errors import SpectermError, printable
 from specterm.session.document import Document
 from specterm.tui.complaint import complaint
 from specterm.tui.layout import BESIDE
 from specterm.tui.look import Look
+from specterm.tui.pages import NAMES, page_of
+from specterm.tui.pages.page import Answered, Bench, Room
 from specterm.tui.solving import Outcome, Weighed
 from specterm.views.cells import MARKS, Row, Rows, cut, fit_row, plain, width_of
+from specterm.views.columns import padded
 from specterm.views.level_figure import draw
 from specterm.views.level_table import table, text_table
 from specterm.views.numbers import short, with_unit
 from specterm.views.scene import Prepared, scene
-from specterm.views.status import MomentsText, join, moment_parts, state_line, state_parts, trust_line, trust_parts
+from specterm.views.status import MomentsText, Units, join, moment_parts, state_line, state_parts, trust_line, trust_parts
 
 
 @dataclass(frozen=True)
@@ -25,8 +28,9 @@ class Shown:
     """All that the panes are drawn from.
 
     `outcome` is the last one with a model, `stale` whether the text has moved on since; `weighed` and `moments` have arrived
-    for what `look` chooses, or are None; `name` is the sheet's where no other pane says it; `error`, with the text it is about,
-    has the place of the levels where there are none.
+    for what `look` chooses, or are None; `answer` is that of the page shown, perhaps an earlier one (`fresh` says not); `name`
+    is the sheet's where no other pane says it; `error`, with the text it is about, has the place of the levels where there are
+    none.
     """
 
     look: Look
@@ -34,6 +38,9 @@ class Shown:
     stale: bool = False
     weighed: Weighed | None = None
     moments: MomentsText | None = None
+    answer: Answered | None = None
+    fresh: bool = False
+    bench: Bench = field(default_factory=Bench)
     error: tuple[SpectermError, str] | None = None
     message: str = ""
     message_style: str = "plain"
@@ -85,8 +92,10 @@ def level_rows(shown: Shown, width: int, height: int) -> Rows:
 
 
 def figure_rows(shown: Shown, width: int, height: int) -> Rows:
-    """Return the figure of the chosen level."""
+    """Return the figure of the chosen level, or the page that stands in its place."""
     outcome = shown.outcome
+    if page_of(shown.look) is not None:
+        return page_rows(shown, width, height)
     if outcome is None or outcome.origin is None:
         return (((" " * max(0, width), "plain"),),) * height
     spectrum = outcome.origin.spectrum
@@ -94,6 +103,37 @@ def figure_rows(shown: Shown, width: int, height: int) -> Rows:
     zoom = shown.look.mode != "levels"
     view = scene(outcome.origin, chosen, samples=max(100, 8 * width), prepared=shown.prepared, zoom=zoom)
     return draw(view, width, height, mode=shown.look.mode, glyphs=shown.look.glyphs, name=shown.name)
+
+
+def page_rows(shown: Shown, width: int, height: int) -> Rows:
+    """Return the page shown, under the line that names all pages."""
+    page, answer, units = page_of(shown.look), shown.answer, shown.outcome.units if shown.outcome else None
+    assert page is not None
+    head: Rows = () if shown.look.page == NAMES[0] else (names_row(shown, width),)
+    room = Room(width, max(0, height - len(head)), shown.look, units or Units(), shown.bench)
+    if shown.outcome is None or shown.outcome.origin is None:
+        rows: Rows = ()
+    elif answer is not None and answer.error is None:
+        rows = page.rows(answer.result, room)
+    else:
+        rows = page.rows(None, room)[: len(shown.bench.notebook.entries) + 2] if page.alone else ()
+        if answer is not None and answer.error is not None:
+            rows = (*rows, *complaint(answer.error, "", max(10, width - 1)))
+        elif page.inquiry(shown.look, shown.outcome, shown.bench) is None:
+            rows = (*rows, fit_row(((" " + page.missing, "warn"),), width, shown.mark))
+        else:
+            rows = (*rows, fit_row(((" computing; x stops it", "dim"),), width, shown.mark))
+    return padded((*head, *rows), width, height)
+
+
+def names_row(shown: Shown, width: int) -> Row:
+    """Return the line that names the pages with their keys, the one shown marked, and says when it is an earlier answer."""
+    runs: list[tuple[str, str]] = [(" ", "plain")]
+    for number, name in enumerate(NAMES, 1):
+        runs += [(f" {number} {name} ", "bar" if name == shown.look.page else "dim")]
+    if shown.answer is not None and not shown.fresh:
+        runs.append(("  computing", "warn"))
+    return fit_row(tuple(runs), width)
 
 
 def drawn_safely(draw: Callable[[Shown, int, int], Rows], shown: Shown, width: int, height: int) -> Rows:
@@ -193,10 +233,10 @@ def as_text(shown: Shown, width: int, height: int) -> str:
 def bottom_row(texts: Sequence[str], width: int) -> Row:
     """Return the bottom line: as many of the keys as fit, the last two always."""
     kept = list(texts)
-    while len(kept) > 2 and sum(width_of(text) + 3 for text in kept) > width:
+    while len(kept) > 2 and sum(width_of(text) + 2 for text in kept) > width:
         kept.pop(-3)
     runs: list[tuple[str, str]] = [(" ", "plain")]
     for text in kept:
         key, _, words = text.partition(" ")
-        runs += [(key, "key"), (f" {words}", "dim"), ("   ", "plain")]
+        runs += [(key, "key"), (f" {words}", "dim"), ("  ", "plain")]
     return fit_row(tuple(runs[:-1]), width)

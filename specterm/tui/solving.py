@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -84,6 +85,12 @@ class Request:
     overrides: Mapping[str, str] = field(default_factory=dict)
 
 
+def digest_of(request: Request) -> str:
+    """Return a short text that differs between requests for different sheets."""
+    whole = "\0".join([request.text, *(f"{name}={value}" for name, value in sorted(request.overrides.items()))])
+    return hashlib.sha256(whole.encode("utf-8", "surrogateescape")).hexdigest()[:12]
+
+
 @dataclass(frozen=True, eq=False)
 class Outcome:
     """What came of a request: `origin` holds the spectrum and what its figure needs, `error` why there is none.
@@ -113,7 +120,7 @@ def compute(engine: Engine, request: Request, should_stop: Callable[[], bool], p
     except SpectermError as error:
         return Outcome(request, error=error)
     except Exception as error:  # the edge of the screen: a defect below must not end the session
-        return Outcome(request, error=_defect(error))
+        return Outcome(request, error=defect(error))
 
 
 def _computed(
@@ -134,14 +141,14 @@ def _computed(
     except SpectermError as error:
         failure, origin = error, _origin_without(engine, model, error)
     except Exception as error:  # as above
-        failure = _defect(error)
+        failure = defect(error)
     from specterm.views.of_model import units_of  # noqa: PLC0415 - it brings the engine, the first frame does not wait for it
 
     notes = (*model.warnings, *(spectrum.notes if spectrum else ()))
     return Outcome(request, model, origin, units_of(model), tuple(model.states), failure, notes)
 
 
-def _defect(error: Exception) -> SpectermError:
+def defect(error: Exception) -> SpectermError:
     """Return a defect of specterm itself as an error a user can read."""
     words = f"specterm failed here ({type(error).__name__}: {error})"
     return PhysicsError(words, mend="this is a defect; save the sheet and report it")
@@ -188,7 +195,7 @@ def weigh(engine: Engine, outcome: Outcome, name: str) -> Weighed:
     except SpectermError as error:
         return Weighed(name, error=error)
     except Exception as error:  # the edge of the screen: a defect below must not end the session
-        return Weighed(name, error=_defect(error))
+        return Weighed(name, error=defect(error))
     from specterm.views.of_model import prepared_of, weighing_of  # noqa: PLC0415 - as above
 
     return Weighed(name, weighing_of(found), prepared_of(found), found.mean, found.spread, found.notes)

@@ -9,7 +9,7 @@ from __future__ import annotations
 import contextlib
 import threading
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Hashable
 from dataclasses import replace
 from typing import Any
 
@@ -18,6 +18,7 @@ from textual.message import Message
 
 from specterm.session import rescue
 from specterm.session.document import Document
+from specterm.tui.pages.page import Answered, Inquiry, answered
 from specterm.tui.solving import Engine, Outcome, Request, Weighed, compute, moments_of, weigh
 from specterm.views.status import MomentsText
 
@@ -43,10 +44,10 @@ class Progressed(Message):
 
 
 class Looked(Message):
-    """Moments of a level, or weights of a state, of the outcome of request `number` have arrived."""
+    """Moments of a level, weights of a state, or the answer to an inquiry of the outcome of request `number` have arrived."""
 
-    def __init__(self, number: int, key: int | str, found: MomentsText | Weighed | None) -> None:
-        """Carry the place of the level or the name of the state, and what was found."""
+    def __init__(self, number: int, key: Hashable, found: MomentsText | Weighed | Answered | None) -> None:
+        """Carry the place of the level, the name of the state or the inquiry, and what was found."""
         super().__init__()
         self.number, self.key, self.found = number, key, found
 
@@ -62,7 +63,8 @@ class Work:
         self._kept = False
         self._keeping = threading.Lock()
         self._running: set[threading.Thread] = set()
-        self._asked: set[tuple[int, int | str]] = set()
+        self._asked: set[tuple[int, Hashable]] = set()
+        self._inquiry: Inquiry | None = None
 
     @property
     def resting(self) -> bool:
@@ -79,11 +81,17 @@ class Work:
 
     def stop(self) -> bool:
         """Forget the running computation, which ends by itself; return whether there was one."""
+        asking, self._inquiry = self._inquiry is not None, None
         if not self.busy:
-            return False
+            return asking
         self.number += 1
         self.busy = False
         return True
+
+    @property
+    def asking(self) -> bool:
+        """Whether an inquiry is being answered."""
+        return self._inquiry is not None
 
     def finished(self, number: int) -> bool:
         """Take note of the end of a request; return whether it is the newest one."""
@@ -92,8 +100,14 @@ class Work:
         self.busy = False
         return True
 
-    def look(self, outcome: Outcome, key: int | str) -> None:
-        """Find the moments of the level at place `key`, or the weights of the state called `key`, once."""
+    def inquire(self, outcome: Outcome, inquiry: Inquiry) -> None:
+        """Find the answer to an inquiry, once; an older one still being answered is asked to stop."""
+        if (outcome.request.number, inquiry) not in self._asked:
+            self._inquiry = inquiry
+            self.look(outcome, inquiry)
+
+    def look(self, outcome: Outcome, key: Hashable) -> None:
+        """Find the moments of the level at place `key`, the weights of the state called `key`, or an inquiry's answer, once."""
         wanted = (outcome.request.number, key)
         if wanted in self._asked:
             return
@@ -151,7 +165,15 @@ class Work:
         if self.busy and number == self.number:
             self.app.post_message(Progressed(number, "computing"))
 
-    def _look(self, outcome: Outcome, key: int | str) -> None:
+    def _look(self, outcome: Outcome, key: Any) -> None:  # noqa: ANN401 - one of three kinds
         """Do the work of one look; runs in a thread."""
-        found: Any = weigh(self.engine, outcome, key) if isinstance(key, str) else moments_of(self.engine, outcome, key)
+        found: Any
+        if isinstance(key, (int, str)):
+            found = weigh(self.engine, outcome, key) if isinstance(key, str) else moments_of(self.engine, outcome, key)
+        else:
+            found = answered(key, outcome, lambda: self._inquiry is not key)
+            if self._inquiry is key:
+                self._inquiry = None
+            if found is None:
+                self._asked.discard((outcome.request.number, key))
         self._tell(Looked(outcome.request.number, key, found))

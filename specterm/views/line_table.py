@@ -12,18 +12,23 @@ from specterm.views.plain_table import bare, sure, text_columns
 
 
 def line_table(lines: Sequence[Line], energy: str = "", length: str = "") -> str:
-    """Return lines as aligned plain text; columns that no line has a number for are left out."""
+    """Return lines as aligned plain text."""
+    return text_columns(*line_columns(lines, energy, length))
+
+
+def line_columns(lines: Sequence[Line], energy: str = "", length: str = "") -> tuple[list[str], list[list[str]]]:
+    """Return headings and rows of a table of lines; columns that no line has a number for are left out."""
     strengths = [line.strength for line in lines]
     columns: list[tuple[str, Sequence[str]]] = [
         ("from", [str(line.start) for line in lines]),
         ("to", [str(line.to) for line in lines]),
         (f"energy ({energy})" if energy else "energy", sure([i.energy for i in lines], [i.energy_error for i in lines])),
         ("dipole", [element_text(line.dipole, math.inf if line.dipole_error is None else line.dipole_error) for line in lines]),
-        ("|dipole|^2", [short(abs(line.dipole) ** 2) if _seen(line) else "0" for line in lines]),
         (
             "strength",
             ["-" if s is None else short(s) if _seen(line) else "0" for s, line in zip(strengths, lines, strict=True)],
         ),
+        ("|dipole|^2", [short(abs(line.dipole) ** 2) if _seen(line) else "0" for line in lines]),
         (f"wavelength ({length})" if length else "wavelength", bare([line.wavelength for line in lines])),
         ("cm^-1", bare([line.wavenumber for line in lines])),
         ("THz", bare([line.frequency for line in lines])),
@@ -32,7 +37,7 @@ def line_table(lines: Sequence[Line], energy: str = "", length: str = "") -> str
     ]
     kept = [(heading, texts) for heading, texts in columns if any(text != "-" for text in texts)]
     rows = [[texts[row] for _, texts in kept] for row in range(len(lines))]
-    return text_columns([heading for heading, _ in kept], rows)
+    return [heading for heading, _ in kept], rows
 
 
 def _seen(line: Line) -> bool:

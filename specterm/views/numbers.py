@@ -82,3 +82,12 @@ def duration(seconds: float) -> str:
     if seconds < 0.9995:
         return f"{short(seconds * 1000, 2 if seconds < 0.0995 else 3)} ms"
     return f"{short(seconds, 2) if seconds < 99.5 else format(seconds, '.0f')} s"
+
+
+def scale_of(unit: str) -> tuple[float, str]:
+    """Return what numbers in a unit are multiplied by to be shown, and the unit shown: `75.4 fs` gives (75.4, `fs`)."""
+    head, _, name = unit.partition(" ")
+    try:
+        return (float(head), name) if name else (1.0, unit)
+    except ValueError:
+        return 1.0, unit

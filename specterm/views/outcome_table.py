@@ -26,13 +26,13 @@ def outcome_text(outcome: Outcome) -> str:
     return f"{short(outcome.low)} to {short(outcome.high)}"
 
 
-def step_table(step: Step, *, glyphs: str = "braille") -> str:
-    """Return the outcomes of one measurement with their probabilities; `>` marks the one taken."""
+def step_table(step: Step, *, glyphs: str = "braille", most: int = MOST_ROWS) -> str:
+    """Return the outcomes of one measurement with their probabilities, at most `most` lines; `>` marks the one taken."""
     shown = [place for place, o in enumerate(step.outcomes) if o.probability >= SMALL or place == step.drawn]
-    hidden = len(step.outcomes) - len(shown[:MOST_ROWS])
-    if len(shown) > MOST_ROWS:
-        kept = sorted(shown, key=lambda place: -step.outcomes[place].probability)[:MOST_ROWS]
+    if len(shown) > most:
+        kept = sorted(shown, key=lambda place: -step.outcomes[place].probability)[: most - 1]
         shown = sorted({*kept, *([] if step.drawn is None else [step.drawn])})
+    hidden = len(step.outcomes) - len(shown)
     rows = [
         [
             ">" if place == step.drawn else "",
@@ -79,4 +79,6 @@ def orders_text(orders: Orders) -> str:
         for i, j in ranked
     ]
     head = f"{a} before {b} against {b} before {a}: half the sum of |differences| is {short(orders.distance)}"
+    if max(orders.missing) > SMALL:
+        head += f"\n  beyond what was computed, counted as one result: {' against '.join(short(m, 3) for m in orders.missing)}"
     return f"{head}\n{text_columns([a, b, f'{a} first', f'{b} first'], rows)}" if rows else head

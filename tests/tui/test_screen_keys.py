@@ -57,10 +57,14 @@ async def test_highest_level_stands_on_top(size):
 
 
 async def test_v_changes_the_view(size):
-    """The key v goes from psi to |psi|^2 to level lines and back."""
+    """The key v goes from psi to |psi|^2 to level lines, to momenta (which this engine does not know), and back."""
     async with app().run_test(size=size) as pilot:
         await settled(pilot)
-        for words in ("|psi|^2, level 0", "levels", "psi, level 0"):
+        for words in ("|psi|^2, level 0", "levels"):
+            await pressed(pilot, "v")
+            assert any(line.rstrip().endswith(words) for line in lines(pilot))
+        await pressed(pilot, "v")
+        for words in ("psi, level 0",):
             await pressed(pilot, "v")
             assert any(line.rstrip().endswith(words) for line in lines(pilot))
 
@@ -276,7 +280,7 @@ async def test_help_lists_the_live_keys(size, keys, leave):
         await settled(pilot)
         await pressed(pilot, *keys)
         seen = "\n".join(lines(pilot))
-        for _ in range(3):
+        for _ in range(7):
             await pressed(pilot, "pagedown")
             seen += "\n".join(lines(pilot))
         assert all(key.tooltip in seen for key in KEYS + TYPING)

@@ -190,7 +190,7 @@ def test_long_tables_scroll_and_say_so():
 def test_bottom_row_keeps_help_and_quit():
     """However narrow, help and quit stay as long as they fit."""
     row = plain([bottom_row(("up/down level", "v view", "? help", "q quit"), 24)])
-    assert row == " ? help   q quit"
+    assert row == " ? help  q quit"
 
 
 def test_weights_of_nothing():

@@ -1,0 +1,53 @@
+"""Means and spreads as text: one observable, and two beside each other."""
+
+from __future__ import annotations
+
+from specterm.analysis.expectation import Expectation
+from specterm.analysis.observables import dimension_of
+from specterm.analysis.uncertainty import Pair
+from specterm.model import Model
+from specterm.units import ACTION, LENGTH
+from specterm.views.numbers import bracket, short, with_unit
+
+
+def shown_in(model: Model, found: Expectation) -> tuple[float, str]:
+    """Return what a number is divided by to be shown, and the unit: a momentum is shown in hbar over the unit of length."""
+    if dimension_of(model, found.observable) == ACTION / LENGTH and model.coordinate_unit:
+        return model.hbar, f"hbar/{model.coordinate_unit}"
+    return 1.0, found.unit
+
+
+def mean_texts(model: Model, found: Expectation) -> tuple[str, str, str]:
+    """Return mean and spread with the digits that are sure, and their unit."""
+    scale, unit = shown_in(model, found)
+    mean = bracket(found.mean / scale, None if found.error is None else found.error / scale)
+    spread = bracket(found.spread / scale, None if found.spread_error is None else found.spread_error / scale)
+    return mean, spread, unit
+
+
+def mean_line(model: Model, found: Expectation) -> str:
+    """Return mean and spread of one observable in one line."""
+    mean, spread, unit = mean_texts(model, found)
+    return f"<{found.observable}> = {with_unit(mean, unit)}   spread {with_unit(spread, unit)}"
+
+
+def pair_lines(model: Model, pair: Pair) -> list[str]:
+    """Return the product of two spreads beside its lower bound, in the units the spreads are shown in, and the commutator."""
+    (first, left), (second, right) = shown_in(model, pair.first), shown_in(model, pair.second)
+    scale, unit = first * second, _product(left, right)
+    bound = bracket(pair.bound / scale, None if pair.bound_error is None else pair.bound_error / scale)
+    verdict = "vanishes: they commute" if pair.commutes else f"= {pair.commutator}"
+    return [
+        f"product of the spreads {with_unit(short(pair.product / scale, 10), unit)}   not below |<[A,B]>|/2 = {bound}",
+        f"[{pair.first.observable},{pair.second.observable}] {verdict}",
+    ]
+
+
+def _product(left: str, right: str) -> str:
+    """Return the unit of a product; a momentum times a length is shown in hbar."""
+    for one, other in ((left, right), (right, left)):
+        if one and other == f"hbar/{one}":
+            return "hbar"
+        if one and other == f"1/{one}":
+            return ""
+    return " ".join(unit for unit in (left, right) if unit)
