@@ -15,6 +15,8 @@ SURE = 0.6
 """States that share more than this are the same."""
 SAME = 0.5
 """Groups of as many states on either side are the same that share more than this for each state."""
+LIKELY = 0.25
+"""States that share at least this, and with no other state as much, are taken for the same when nothing better is left."""
 LINKED = 0.02
 """An overlap from which on two states may belong to one group."""
 AT_ONCE = 4096
@@ -74,7 +76,8 @@ def matched(left: Spectrum, right: Spectrum) -> tuple[int | None, ...]:
     """Return for each level of `left` the place in `right` of the level that is the same state, None where there is none.
 
     The matching of the largest overlap in all. States mixed among each other, as degenerate and nearly equal levels are, count
-    as a group that is the same on both sides; within it the order decides.
+    as a group that is the same on both sides; within it the order decides. After a large change, where states share less than
+    half with any other, those that share the most with each other are matched.
     """
     return assigned(overlaps(left, right))
 
@@ -95,6 +98,10 @@ def assigned(shares: Array) -> tuple[int | None, ...]:
         if len(group) == len(partners) and shares[np.ix_(group, partners)].sum() >= SAME * len(group):
             for row, column in zip(group, partners, strict=True):
                 found[row] = column
+    for row, column in zip(rows[~sure], columns[~sure], strict=True):
+        best = max(shares[row].max(), shares[:, column].max())
+        if found[row] is None and column not in found and shares[row, column] >= max(LIKELY, best):
+            found[row] = int(column)
     return tuple(found)
 
 

@@ -170,10 +170,11 @@ def refuse_bad(request: SweepRequest) -> Model:
         raise SheetError(f"`{min(both)}` is swept and set at once", mend="leave one of them out")
     if request.size > MOST_POINTS:
         raise SheetError(f"{request.size} points are more than the {MOST_POINTS} allowed", mend="choose smaller counts")
-    model = model_at(request, request.place(0))
-    strange = [name for name in names if name not in model.parameters and name in model.operators]
+    written = build(sheet_of(request.text), folder=Path(request.folder), overrides=dict(request.overrides))
+    strange = [name for name in names if name in written.operators or name in written.functions]
     if strange:
-        raise SheetError(f"`{strange[0]}` is an operator, no parameter", mend=f"parameters: {', '.join(model.parameters)}")
+        raise SheetError(f"`{strange[0]}` is no parameter", mend=f"parameters: {', '.join(written.parameters) or 'none'}")
+    model = model_at(request, request.place(0))
     quantity = request.quantity
     if quantity.kind == "expectation" or (quantity.kind == "strengths" and quantity.detail):
         observable(model, quantity.detail)
