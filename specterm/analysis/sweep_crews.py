@@ -58,5 +58,5 @@ def _client(address: str) -> Any:  # noqa: ANN401 - the package is optional and 
 
 def _leave(executor: Executor, client: Any) -> None:  # noqa: ANN401 - as above
     """End the work on the cluster and the connection to it; the cluster itself stays."""
-    executor.shutdown(wait=False, cancel_futures=True)
+    executor.shutdown(wait=False)
     client.close()
