@@ -5,6 +5,7 @@ import math
 import numpy as np
 import pytest
 from analysis_making import model, spectrum
+from scipy import stats
 
 from specterm.analysis.measurement import both_orders, course_of, measure, repeat
 from specterm.errors import PhysicsError, SheetError
@@ -149,6 +150,21 @@ def test_ten_thousand_runs():
     chi = sum((joint.count - 10_000 * joint.probability) ** 2 / (10_000 * joint.probability) for joint in joints)
     assert len(joints) == 20
     assert chi < CHI_1_PER_MILLE[19]
+
+
+def test_ten_thousand_runs_of_two_measurements():
+    """Energy, then place in bins, 10,000 times: chi-square over the cells of at least 5 expected, the rest as one, at 0.999."""
+    here = course(WALLS, "s", ["H", "x"], width=0.1)
+    joints = repeat(here, 10_000, 7)
+    cells = [joint for joint in joints if 10_000 * joint.probability >= 5]
+    counts = np.array([joint.count for joint in cells])
+    shares = 10_000 * np.array([joint.probability for joint in cells])
+    chi = float(((counts - shares) ** 2 / shares).sum())
+    rest = 10_000 - float(shares.sum())
+    if rest > 5:
+        chi += (10_000 - counts.sum() - rest) ** 2 / rest
+    assert len(cells) > 15
+    assert chi < stats.chi2.ppf(0.999, len(cells) - 1 + (rest > 5))
 
 
 def test_single_draws_follow_the_probabilities():
