@@ -23,7 +23,8 @@ from specterm.spectrum import Level, Spectrum, solve
 
 __all__ = [
     "Course", "Evolution", "Expectation", "Joint", "Level", "Line", "MatrixElements", "Moments", "MomentumDensity",
-    "Observable", "Orders", "Outcome", "Packet", "Pair", "Prepared", "Record", "Spectrum", "Step", "Transitions", "Weight", "Weights",
+    "Observable", "Orders", "Outcome", "Packet", "Pair", "Prepared", "Record", "Spectrum", "Step", "Transitions",
+    "Weight", "Weights",
     "both_orders", "captured_by", "course_of", "elements", "evolve", "expectation", "into_other", "level_momentum",
     "matrix_elements", "measure", "moments", "momentum_density", "observable", "other_sheet", "packet_of", "pair_of",
     "populations", "potential_curve", "prepare", "project", "repeat", "revivals", "solve", "transitions",
