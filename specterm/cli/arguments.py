@@ -9,10 +9,9 @@ from typing import NoReturn
 from specterm.errors import printable
 
 VERBS = (
-    "levels", "weights", "expectation", "transitions", "measure", "evolve", "sensitivities", "sweep", "figure", "check",
+    "levels", "weights", "expectation", "transitions", "measure", "evolve", "sensitivities", "fit", "sweep", "figure", "check",
     "presets",
 )  # fmt: skip
-LATER = ("fit",)
 MOST = 1_000_000
 VIEWS = ("psi", "density", "levels", "momentum")
 GLYPHS = ("braille", "block", "ascii")
@@ -50,6 +49,7 @@ def parser() -> argparse.ArgumentParser:
     _transitions(verbs.add_parser("transitions", help="lines between levels, with strengths"))
     _measure(verbs.add_parser("measure", help="a sequence of measurements on a prepared state"))
     _evolve(verbs.add_parser("evolve", help="survival probability and means at given times"))
+    _fit(_with_sheet(verbs.add_parser("fit", help="the sheet's numbers that match observed lines"), solving=True))
     slopes = _with_sheet(verbs.add_parser("sensitivities", help="derivatives of levels by the sheet's numbers"), solving=True)
     slopes.add_argument("--parameter", dest="parameters", action="append", metavar="NAME", help="only this one (repeatable)")
     slopes.add_argument("--transitions", action="store_true", help="of the lines between the levels instead")
@@ -133,6 +133,32 @@ def _sweep(one: argparse.ArgumentParser) -> None:
     one.add_argument("--workers", type=_size(1), metavar="N", help="this many processes")
     one.add_argument("--cluster", metavar="ADDRESS", help="the workers of this Dask scheduler, or of the file it wrote")
     _with_size(one, 100, 24)
+
+
+def _fit(one: argparse.ArgumentParser) -> None:
+    """Add what `fit` takes beside a sheet."""
+    one.add_argument("observed", metavar="OBSERVED", help="a CSV file: from,to,value,uncertainty or level,value,uncertainty")
+    one.add_argument(
+        "--vary", type=_varied, action="append", required=True, metavar="A,B=LO:HI", help="the numbers to fit, with bounds"
+    )
+    one.add_argument("--assign", action="store_true", help="accept the nearest transitions for lines without level numbers")
+    one.add_argument("--save", metavar="FILE", help="write the sheet with the fitted numbers")
+
+
+def _varied(text: str) -> list[tuple[str, tuple[float, float]]]:
+    """Return the names in `A,B=LO:HI` with their bounds."""
+    return [_one(part) for part in text.split(",")]
+
+
+def _one(part: str) -> tuple[str, tuple[float, float]]:
+    name, sign, bounds = part.partition("=")
+    low, colon, high = bounds.partition(":")
+    if not name.strip() or (sign and not colon):
+        raise argparse.ArgumentTypeError(f"{part!r}: expected NAME or NAME=LO:HI")
+    try:
+        return name.strip(), (float(low) if low.strip() else float("-inf"), float(high) if high.strip() else float("inf"))
+    except ValueError:
+        raise argparse.ArgumentTypeError(f"{part!r}: bounds are numbers, as in NAME=0:10") from None
 
 
 def interface_parser() -> argparse.ArgumentParser:

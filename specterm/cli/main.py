@@ -8,7 +8,7 @@ import sys
 from collections.abc import Callable, Sequence
 from typing import TYPE_CHECKING
 
-from specterm.cli.arguments import LATER, VERBS, interface_parser, parser
+from specterm.cli.arguments import VERBS, interface_parser, parser
 from specterm.cli.source import Source, overrides, read_source
 from specterm.errors import SpectermError, describe, printable
 
@@ -20,9 +20,6 @@ def main(words: Sequence[str]) -> int:  # noqa: PLR0911 - one return for each wa
     """Run one command; 0 done, 1 the physics says no, 2 bad input. Errors are told on standard error, never as a traceback."""
     source: Source | None = None
     try:
-        first = next((word for word in words if not word.startswith("-")), "")
-        if first in LATER and words[0] == first:
-            return _tell(f"specterm: {first} is not available yet\n  available: {', '.join(VERBS)}")
         whole = words and (words[0] in VERBS or words[0] in ("-h", "--help", "--version"))
         if whole:
             arguments = parser().parse_args(words)
@@ -109,6 +106,8 @@ def _verb(name: str) -> Callable[[argparse.Namespace, Source], Answer]:
         from specterm.cli.evolve import evolve as found  # noqa: PLC0415
     elif name == "sweep":
         from specterm.cli.sweep import sweep as found  # noqa: PLC0415
+    elif name == "fit":
+        from specterm.cli.fit import fit as found  # noqa: PLC0415
     elif name == "sensitivities":
         from specterm.cli.sensitivities import sensitivities as found  # noqa: PLC0415
     else:

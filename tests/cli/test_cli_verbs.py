@@ -6,7 +6,7 @@ import re
 import pytest
 from command_line import COHERENT, QUARTIC
 
-from specterm.cli.arguments import LATER, VERBS
+from specterm.cli.arguments import VERBS
 
 
 def levels(run, *words):
@@ -96,15 +96,6 @@ def test_presets(run):
     names = [line.split()[0] for line in ran.out.splitlines()]
     assert len(names) == len(set(names)) > 3
     assert run("levels", names[0], "-n", 2).status == 0
-
-
-def test_verbs_not_there_yet(run):
-    """A verb of the plan that is not there yet says so, with those that are: exit 2."""
-    for verb in LATER:
-        ran = run(verb, "-e", QUARTIC)
-        assert ran.status == 2
-        assert verb in ran.err
-        assert all(known in ran.err for known in VERBS)
 
 
 @pytest.mark.parametrize("words", [("--help",), ("-h",), *((verb, "--help") for verb in VERBS), ("--version",)])
