@@ -100,26 +100,28 @@ def count_below(condensed: Condensed, energies: Array) -> Counts:
 
 def _negative(diagonal: Array, side: Array) -> Counts:
     """Return the number of negative pivots of tridiagonal matrices, all columns at once."""
-    tiny = np.finfo(float).tiny ** 0.5
-    count = np.zeros(diagonal.shape[1], dtype=np.int64)
-    if len(diagonal) == 0:
-        return count
-    squares = side * side
-    pivot = diagonal[0].copy()
+    return np.count_nonzero(_pivots(diagonal, side * side, -(np.finfo(float).tiny ** 0.5)) < 0, axis=0)
+
+
+def _pivots(diagonal: Array, squares: Array, tiny: float) -> Array:
+    """Return the pivots of tridiagonal matrices in order, (vertices, columns), exact zeros replaced by `tiny`.
+
+    `squares` are those of the elements beside the diagonal. Zeros are so rare that they are looked for afterwards.
+    """
+    pivots = diagonal.copy()
+    ratio = np.empty(diagonal.shape[1:])
+    with np.errstate(all="ignore"):
+        for before, after, square in zip(pivots, pivots[1:], squares, strict=False):
+            np.divide(square, before, out=ratio)
+            np.subtract(after, ratio, out=after)
+    if pivots.all():
+        return pivots
+    pivots = diagonal.copy()
     with np.errstate(over="ignore"):
-        for row in range(len(side)):
-            pivot = _nonzero(pivot, -tiny)
-            count += pivot < 0
-            pivot = diagonal[row + 1] - squares[row] / pivot
-    count += pivot < 0
-    return count
-
-
-def _nonzero(pivot: Array, tiny: float) -> Array:
-    """Return the pivots, in place, with exact zeros replaced."""
-    if not pivot.all():
-        pivot[pivot == 0] = tiny
-    return pivot
+        for row in range(len(diagonal) - 1):
+            pivots[row][pivots[row] == 0] = tiny
+            pivots[row + 1] -= squares[row] / pivots[row]
+    return pivots
 
 
 def _negative_ring(matrix: Chain) -> Counts:
@@ -166,10 +168,7 @@ def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array, Counts]
     vertices, columns = diagonal.shape
     tiny = np.finfo(float).tiny ** 0.5
     both = np.concatenate([diagonal, diagonal[::-1]], axis=1)
-    squares = np.concatenate([side, side[::-1]], axis=1) ** 2
-    with np.errstate(over="ignore"):
-        for row in range(vertices - 1):
-            both[row + 1] -= squares[row] / _nonzero(both[row], tiny)
+    both = _pivots(both, np.concatenate([side, side[::-1]], axis=1) ** 2, tiny)
     down, up = both[:, :columns], both[::-1, columns:]
     gamma = down + up - diagonal
     twist = np.argmin(np.abs(gamma) / weight, axis=0)
@@ -181,8 +180,8 @@ def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array, Counts]
     keep = np.concatenate([rows >= twist, (rows < twist)[::-1]], axis=1)
     runs = np.zeros_like(both)
     runs[np.concatenate([twist, vertices - 1 - twist]), np.arange(2 * columns)] = 1.0
-    for row in range(vertices - 1):
-        np.multiply(factors[row], runs[row], out=runs[row + 1], where=keep[row])
+    for factor, kept, before, after in zip(factors, keep, runs, runs[1:], strict=False):
+        np.multiply(factor, before, out=after, where=kept)
     z = np.where(np.arange(vertices)[:, None] >= twist, runs[:, :columns], runs[::-1, columns:])
     return z, gamma[twist, take], np.count_nonzero(down < 0, axis=0)
 
