@@ -4,13 +4,13 @@ from __future__ import annotations
 
 import math
 import re
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
 import numpy as np
 
-from specterm.analysis.quadrature import resolved_points
+from specterm.analysis.quadrature import points_between, resolved_points
 from specterm.arrays import Array, Values
 from specterm.errors import SheetError
 from specterm.language import decode, parse
@@ -182,7 +182,19 @@ def _of_levels(
     if norm == 0 or not np.isfinite(norm):
         raise SheetError(f"the state `{name}` cannot be normalised: it is zero on the domain", mend="check its coefficients")
     slip = sum(float(np.abs(jet[0](x)).max()) * off for jet, _, _, off in terms) / norm
-    return Prepared(name, lambda y: raw(y) / norm, x, w, missed, lambda y, k: raw(y, k) / norm, places, slip=slip)
+    cut = _beyond(raw, (*grids, *edges), (low, high)) / norm**2
+    return Prepared(name, lambda y: raw(y) / norm, x, w, missed, lambda y, k: raw(y, k) / norm, places, cut, slip)
+
+
+def _beyond(raw: Callable[[Array], Values], grids: Sequence[Array], ends: tuple[float, float]) -> float:
+    """Return the integral of |f|^2 over what levels of other sheets reach beyond the domain."""
+    total = 0.0
+    every = np.unique(np.concatenate([*grids, np.array(ends)]))
+    for places in (every[every <= ends[0]], every[every >= ends[1]]):
+        if len(places) > 1:
+            x, w = points_between(places)
+            total += float((w * np.abs(np.nan_to_num(raw(x))) ** 2).sum())
+    return total
 
 
 Jet = tuple[Function, Function, Function]

@@ -17,6 +17,9 @@ from specterm.spectrum.result import States
 ROUNDING = 1e-12
 """Rounding of an eigenstate in norm; the largest seen against closed forms is half of it."""
 
+TOLD = 1e-6
+"""A share of a state that is cut off, or that no level holds, is told from here on."""
+
 
 @dataclass(frozen=True)
 class Weight:
@@ -54,7 +57,8 @@ def project(model: Model, spectrum: Spectrum, name: str, folder: Path | None = N
     """
     prepared = prepare(model, spectrum, name, folder)
     if spectrum.states is None:
-        return Weights(name, (), 0.0, float("nan"), float("nan"), ("no level to project on",), prepared.wave)
+        notes = ("no level to project on: all of the state lies in the continuum",)
+        return Weights(name, (), 0.0, float("nan"), float("nan"), notes, prepared.wave)
     amplitudes = _amplitudes(spectrum.states, len(spectrum.levels), prepared)
     errors = _errors(spectrum, prepared, amplitudes)
     values = np.array([level.value for level in spectrum.levels])
@@ -66,7 +70,7 @@ def project(model: Model, spectrum: Spectrum, name: str, folder: Path | None = N
     captured = float(shares.sum())
     mean = float((shares * values).sum() / captured) if captured > 0 else float("nan")
     spread = float(np.sqrt(max(0.0, (shares * (values - mean) ** 2).sum() / captured))) if captured > 0 else float("nan")
-    return Weights(name, weights, captured, mean, spread, _notes(spectrum, prepared, captured), prepared.wave)
+    return Weights(name, weights, captured, mean, spread, _notes(spectrum, prepared, shares), prepared.wave)
 
 
 def _amplitudes(states: States, count: int, prepared: Prepared) -> Values:
@@ -87,14 +91,22 @@ def _errors(spectrum: Spectrum, prepared: Prepared, amplitudes: Values) -> Array
     return errors
 
 
-def _notes(spectrum: Spectrum, prepared: Prepared, captured: float) -> tuple[str, ...]:
+def _notes(spectrum: Spectrum, prepared: Prepared, shares: Array) -> tuple[str, ...]:
     notes = []
-    if prepared.cut > 1e-6:
+    captured = float(shares.sum())
+    if prepared.cut > TOLD:
         notes.append("the walls of the domain cut into this state")
-    rest = 1 - captured
-    if rest > 1e-6:
-        finite = spectrum.threshold is not None and spectrum.bound is not None
-        above = "above the levels computed" + ("" if spectrum.threshold is None else ", or in the continuum")
-        where = "in the continuum" if finite and len(spectrum.levels) >= (spectrum.bound or 0) else above
-        notes.append(f"{rest:.3g} of the state lies {where}")
+    rest, boxed = 1 - captured, sum(share for level, share in zip(spectrum.levels, shares, strict=True) if level.kind == "box")
+    if rest + boxed > TOLD:
+        notes.append(f"{rest + boxed:.3g} of the state lies {_where(spectrum)}")
+    if boxed > TOLD:
+        notes.append(f"box levels stand for {boxed:.3g} of the state in the continuum; one by one they mean nothing")
     return tuple(notes)
+
+
+def _where(spectrum: Spectrum) -> str:
+    """Return where the part of a state lies that no bound level computed holds."""
+    if spectrum.threshold is None:
+        return "above the levels computed"
+    all_found = spectrum.bound is not None and len(spectrum.levels) >= spectrum.bound
+    return "in the continuum" if all_found else "above the levels computed, or in the continuum"

@@ -62,6 +62,6 @@ def _weights_text(model: Model, spectrum: Spectrum, found: Weights) -> str:
     lines = [
         f"{found.state} on {expression_of(model)}",
         text_table(spectrum.levels, energy, weighing, glyphs_of(None)),
-        "   ".join([f"captured {found.captured:.10g}", f"mean {mean}", f"spread {spread}"]),
+        "   ".join([f"captured {found.captured:.10g}", *([f"mean {mean}", f"spread {spread}"] if found.weights else [])]),
     ]
     return "\n".join(lines)

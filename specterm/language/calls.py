@@ -41,7 +41,7 @@ def parse_table(cursor: Cursor, name: Token) -> Table:
         raise cursor.unexpected("',' or ')'")
     cursor.take()
     span = cursor.span_from(name.start)
-    if len(columns) not in {0, 2}:
+    if len(columns) not in {0, 2, 3}:
         raise refuse("table-columns", span, count=len(columns))
     outside = "hold" if "hold" in options else "extend" if "extend" in options else "error"
     return Table(span, path, tuple(columns) or ((1, None), (2, None)), "linear" not in options, outside)

@@ -125,7 +125,7 @@ _EXPRESSIONS = {
         "V = (1 + 2) ‸[nm]",
     ),
     "table-columns": _row(
-        "a table has two columns, found {count}",
+        "a table has two columns, or three with an imaginary part, found {count}",
         'write `table("file.csv", 1, 2)`: the column of the coordinate, then that of the values',
         'V = ‸table("a.csv", 1)',
     ),

@@ -77,7 +77,8 @@ class ForeignLevel(Node):
 class Table(Node):
     """`table("scan.csv", "R" [angstrom], "E" [cm^-1], linear, hold)`.
 
-    `columns` are (header or number from 1, unit or None); `smooth` is False for `linear`;
+    `columns` are (header or number from 1, unit or None): coordinate, values, and an imaginary part where there are three;
+    `smooth` is False for `linear`;
     `outside` is "error", "hold" or "extend".
     """
 

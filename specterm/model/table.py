@@ -12,9 +12,11 @@ from specterm.errors import Span
 from specterm.language.catalogue import refuse
 from specterm.language.nodes import Table
 from specterm.model.domain import Domain
+from specterm.model.scalar import ONE, Scalar
 from specterm.model.spline import cubic, linear
 from specterm.model.tablefile import TableText, column, read_table
 from specterm.model.term import Term, make
+from specterm.model.term import linear as linear_sum
 from specterm.units import UnitSystem
 
 if TYPE_CHECKING:
@@ -34,9 +36,15 @@ class Points:
 def build_table(node: Table, folder: Path | None, units: UnitSystem, domain: Domain | None) -> Term:
     """Return the function a table stands for: a cubic spline (C2, not-a-knot ends) through its points, or straight lines.
 
-    A domain that reaches beyond the points is an error unless `hold` or `extend` is said.
+    A third column is the imaginary part. A domain that reaches beyond the points is an error unless `hold` or `extend` is said.
     """
-    points = _points(read_table(folder, node.path, node.span), node, units)
+    table = read_table(folder, node.path, node.span)
+    parts = [_spline(_points(table, node, units, k), node, domain) for k in range(1, len(node.columns))]
+    return parts[0] if len(parts) == 1 else linear_sum([(ONE, parts[0]), (Scalar(1j), parts[1])])
+
+
+def _spline(points: Points, node: Table, domain: Domain | None) -> Term:
+    """Return the function through some points."""
     outside = node.outside
     if domain is not None:
         covered = points.x[0] <= domain.left and domain.right <= points.x[-1]
@@ -53,8 +61,9 @@ def build_table(node: Table, folder: Path | None, units: UnitSystem, domain: Dom
     return make("spline", (), interpolate(f'table("{node.path}")', points.x, points.y, outside), real=True)
 
 
-def _points(table: TableText, node: Table, units: UnitSystem) -> Points:
-    (first, first_unit), (second, second_unit) = node.columns
+def _points(table: TableText, node: Table, units: UnitSystem, number: int) -> Points:
+    """Return the first column and another one as points."""
+    (first, first_unit), (second, second_unit) = node.columns[0], node.columns[number]
     x = column(table, first, node.span) * _factor(first_unit, units, node.span)
     y = column(table, second, node.span) * _factor(second_unit, units, node.span)
     order = np.argsort(x, kind="stable")

@@ -226,3 +226,62 @@ def test_another_sheet_must_fit(tmp_path, other):
     (tmp_path / "other.sheet").write_text(other + "\n")
     with pytest.raises(SheetError, match="coordinate or other units"):
         weights(f'{OSCILLATOR}state s = level(0) of "other.sheet"', "s", 3, tmp_path)
+
+
+WELL = "H = p^2/2; x in (0, {right})\n"
+
+
+def test_level_of_a_narrower_well(tmp_path):
+    """A wall moved at once from 1 to 2: weights 32 sin^2(n pi/2)/(pi^2 (4 - n^2)^2), 1/2 for n = 2 (closed form)."""
+    (tmp_path / "other.sheet").write_text(WELL.format(right=1))
+    found = weights(WELL.format(right=2) + 'state s = level(0) of "other.sheet"', "s", 30, tmp_path)
+    n = np.arange(1, 31)
+    exact = np.where(n == 2, 0.5, 32 * np.sin(n * np.pi / 2) ** 2 / (np.pi**2 * np.where(n == 2, 1.0, 4.0 - n**2) ** 2))
+    assert_weights(found, exact)
+    assert not any("cut" in note for note in found.notes)
+
+
+def test_level_of_a_wider_well_is_cut(tmp_path):
+    """A wall moved at once from 2 to 1 cuts half of the level away: a warning, and weights of the part left (closed form)."""
+    (tmp_path / "other.sheet").write_text(WELL.format(right=2))
+    found = weights(WELL.format(right=1) + 'state s = level(0) of "other.sheet"', "s", 6, tmp_path)
+    n = np.arange(1, 7)
+    # <n|s> = 2 int sin(n pi x) sin(pi x/2) over (0, 1), the part inside having norm 1
+    exact = (1 / np.pi * (np.sin((n - 0.5) * np.pi) / (n - 0.5) - np.sin((n + 0.5) * np.pi) / (n + 0.5))) ** 2
+    assert_weights(found, exact)
+    assert any("walls of the domain cut" in note for note in found.notes)
+
+
+def test_state_from_a_table(tmp_path):
+    """A packet written to a table (x, re, im) has Poisson weights to the accuracy of its spline (closed form)."""
+    x = np.linspace(-8, 8, 401)
+    wave = np.exp(-((x - 0.5) ** 2) / 2 + 0.7j * x)
+    rows = [f"{a!r},{b.real!r},{b.imag!r}\n" for a, b in zip(x.tolist(), wave.tolist(), strict=True)]
+    (tmp_path / "wave.csv").write_text("x,re,im\n" + "".join(rows))
+    text = 'H = p^2/2 + x^2/2; x in (-8, 8)\nstate s = table("wave.csv", "x", "re", "im")'
+    found = weights(text, "s", 8, tmp_path)
+    size = (0.5**2 + 0.7**2) / 2
+    for weight in found.weights:
+        poisson = math.exp(-size) * size**weight.index / math.factorial(weight.index)
+        assert weight.weight == pytest.approx(poisson, abs=1e-7)
+    two = text.replace('"re", "im")', '"re") + i*table("wave.csv", "x", "im")')
+    assert [w.weight for w in weights(two, "s", 8, tmp_path).weights] == pytest.approx([w.weight for w in found.weights])
+
+
+SOLITON = "H = p^2/2 - 3/cosh(x)^2; x in (-inf, inf)\nstate s = exp(-x^2/2)*(1 + x)"
+"""Bound levels -2 and -1/2, with 1/cosh(x)^2 and sinh(x)/cosh(x)^2 (closed form)."""
+
+
+@pytest.mark.parametrize(
+    ("count", "where"),
+    [(1, "above the levels computed, or in the continuum"), (2, "in the continuum"), (5, "in the continuum")],
+)
+def test_where_the_rest_lies(count, where):
+    """With some of the bound levels the rest may be above them; with all of them it is in the continuum, box levels or not."""
+    found = weights(SOLITON, "s", count)
+    told = [note for note in found.notes if "of the state lies" in note]
+    assert len(told) == 1
+    assert told[0].endswith(f"lies {where}")
+    held = sum(weight.weight for weight in found.weights[: min(count, 2)])
+    assert float(told[0].split()[0]) == pytest.approx(1 - held, rel=1e-2)
+    assert any("box levels stand for" in note for note in found.notes) == (count == 5)
