@@ -149,12 +149,20 @@ def _gram(functions: Array, weights: Array) -> Array:
 
 
 def _diagonalise(mesh: Mesh, here: Grid, form: Array, mass: Array) -> Condensed:
-    """Return the condensed form: whiten each interior, diagonalise it, take its mass overlap off the vertex functions."""
-    lower = np.linalg.cholesky(mass[:, 2:, 2:])
-    white = np.linalg.inv(lower)
-    inner = white @ form[:, 2:, 2:] @ np.swapaxes(white, 1, 2)
-    poles, modes = np.linalg.eigh((inner + np.swapaxes(inner, 1, 2)) / 2)
-    interior = np.swapaxes(white, 1, 2) @ modes
+    """Return the condensed form: whiten each interior, diagonalise it, take its mass overlap off the vertex functions.
+
+    The bubbles are orthonormal in L2(-1, 1): the mass of an interior is half the length times the unit matrix, but for the
+    factors of powered ends.
+    """
+    if mesh.left.power is None and mesh.right.power is None:
+        scale = np.sqrt(2 / mesh.lengths)[:, None, None]
+        poles, modes = np.linalg.eigh(scale**2 * form[:, 2:, 2:])
+        interior = scale * modes
+    else:
+        white = np.linalg.inv(np.linalg.cholesky(mass[:, 2:, 2:]))
+        inner = white @ form[:, 2:, 2:] @ np.swapaxes(white, 1, 2)
+        poles, modes = np.linalg.eigh((inner + np.swapaxes(inner, 1, 2)) / 2)
+        interior = np.swapaxes(white, 1, 2) @ modes
     overlap = mass[:, :2, 2:] @ interior
     pull = form[:, :2, 2:] @ interior
     coupling = pull - overlap * poles[:, None, :]

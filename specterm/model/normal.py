@@ -19,6 +19,8 @@ from specterm.model.scalar import Scalar
 from specterm.model.term import NIL, Term, linear, multiply, spread
 from specterm.model.walk import leaves_first
 
+FEW = 8
+"""Every so many places of the sample are enough to see that most sums do not vanish."""
 MOST_DERIVATIVES = 3_000
 """So many different functions are differentiated for one operator before it counts as having too many terms."""
 
@@ -98,7 +100,15 @@ def vanishes(pairs: Sequence[tuple[Scalar, Term]], domain: Domain | None, tolera
         return True
     if len(kept) == 1 and kept[0][1].kind == "constant":
         return False
-    x = _telling_places(kept, domain)
+    seen, small = _small(kept, sample(domain)[::FEW], tolerance)
+    if seen and not small:
+        return False
+    seen, small = _small(kept, _telling_places(kept, domain), tolerance)
+    return seen and small
+
+
+def _small(kept: Pairs, x: NDArray[np.float64], tolerance: float) -> tuple[bool, bool]:
+    """Say whether some of the places tells anything about a sum of terms, and whether it is zero at all of those."""
     total: Any = 0.0
     size: Any = 0.0
     noise: Any = 0.0
@@ -108,7 +118,7 @@ def vanishes(pairs: Sequence[tuple[Scalar, Term]], domain: Domain | None, tolera
             total, size = total + c.value * values, size + abs(c.value) * np.abs(values)
             noise = noise + abs(c.value) * bound
         seen = np.isfinite(total) & np.isfinite(size) & (size > 4 * noise) & (size > 0)
-        return bool(np.any(seen) and np.all(np.abs(total)[seen] <= tolerance * size[seen] + noise[seen]))
+        return bool(np.any(seen)), bool(np.all(np.abs(total)[seen] <= tolerance * size[seen] + noise[seen]))
 
 
 def generic_values(root: Term, x: NDArray[np.float64]) -> tuple[NDArray[Any], NDArray[np.float64]]:
