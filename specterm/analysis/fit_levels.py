@@ -87,14 +87,17 @@ class Levels:
         return level.value, level.error
 
     def slope(self, end: End | None) -> Array:
-        """Return the derivatives of a level by the varied numbers, zeros for none; PhysicsError where there is none."""
-        total = np.zeros(len(self.names))
+        """Return the derivatives of a level by the varied numbers and their errors, shape (2, numbers), zeros for no level.
+
+        Raises PhysicsError where a derivative is not known.
+        """
+        total = np.zeros((2, len(self.names)))
         if end is None:
             return total
         found = self._slopes(end.settings)
         row = found.levels.index(end.level) if end.level is not None else 0
-        for name, value in zip(found.parameters, found.derivatives[row], strict=True):
-            total[self.names.index(name)] = value
+        columns = [self.names.index(name) for name in found.parameters]
+        total[:, columns] = found.derivatives[row], found.errors[row]
         if not np.isfinite(total).all():
             why = next(iter(found.notes), "a derivative is not known")
             raise PhysicsError(f"level {end.label} cannot be fitted: {why}", mend="vary other numbers")
@@ -107,8 +110,11 @@ class Levels:
         return values, np.array([upper[1] + lower[1] for upper, lower in ends])
 
     def jacobian(self, lines: Sequence[Observation]) -> Array:
-        """Return the derivatives of each line by the varied numbers, (lines, numbers)."""
-        return np.array([self.slope(line.upper) - self.slope(line.lower) for line in lines])
+        """Return the derivatives of each line by the varied numbers, (lines, numbers); those below their error are 0."""
+        both = [(self.slope(line.upper), self.slope(line.lower)) for line in lines]
+        slopes = np.array([upper[0] - lower[0] for upper, lower in both])
+        doubts = np.array([upper[1] + lower[1] for upper, lower in both])
+        return np.where(np.abs(slopes) <= doubts, 0.0, slopes)
 
 
 def _text(value: float, unit: str) -> str:
