@@ -64,16 +64,18 @@ def derivative(sample: Callable[[float], Samples], steps: Steps) -> tuple[Sample
     return row[-1], row[-1] - (row[-2] if len(row) > 1 else row[-1])
 
 
-def find_steps(sample: Sampled, size: Size, first: float) -> Steps | str:
+def find_steps(sample: Sampled, size: Size, first: float, noise: float = 0.0) -> Steps | str:
     """Return steps that give the derivative as well as rounding allows, or why there are none.
 
     `sample` gives the functions at a displacement or the reason why it has none; `size` measures samples. Steps over which the
-    functions do not change smoothly (the even part of the change must fall as the square of the step) are left out.
+    functions do not change smoothly (the even part of the change must fall as the square of the step) are left out. `noise` is
+    the size of the rounding of the samples, that of their own digits aside.
     """
     base = sample(0.0)
     if isinstance(base, str):
         return base
-    search = _Search(sample, size, base, size(base))
+    whole = size(base)
+    search = _Search(sample, size, base, whole, 16 * EPS * whole + 4 * noise)
     return search.run(search.start(first))
 
 
@@ -83,6 +85,7 @@ class _Search:
     size: Size
     base: Samples
     whole: float
+    floor: float
     reason: str = "its neighbourhood is too narrow"
 
     def _pair(self, step: float) -> tuple[Samples, Samples] | None:
@@ -109,10 +112,10 @@ class _Search:
             odd, even = self._change(pair)
             if odd == 0 and even == 0:
                 break
-            if odd > FAINT * self.whole or even > max(LINEAR * odd, 8 * EPS * self.whole):
+            if odd > FAINT * self.whole or even > max(LINEAR * odd, self.floor):
                 break
             longer = self._pair(step * 16)
-            if longer is None or self._change(longer)[1] > max(LINEAR * self._change(longer)[0], 8 * EPS * self.whole):
+            if longer is None or self._change(longer)[1] > max(LINEAR * self._change(longer)[0], self.floor):
                 break
             step *= 16
         return step
@@ -131,7 +134,7 @@ class _Search:
                 kept, last, step = 0, None, step / 4
                 continue
             now = self._change(pair)
-            floor = 16 * EPS * self.whole
+            floor = self.floor
             if last is not None and (now[1] > QUADRATIC * last[1] + floor or not _halved(now[0], last[0], floor)):
                 kept = 0
             kept, last = min(kept + 1, DEEPEST), now

@@ -15,9 +15,12 @@ from specterm.spectrum import Spectrum, solve
 from specterm.spectrum.engine import BLURRED
 from specterm.spectrum.fourier import FourierStates
 from specterm.spectrum.refine import MIXING
+from specterm.spectrum.setting import DEEP
 from specterm.spectrum.states import ElementStates
 
 ALONE = "it cannot be told from a level not computed; ask for more levels"
+DECAY = 2 * DEEP
+"""Powers of e by which |psi|^2 has fallen where an open domain is cut."""
 CLOSE = 4.0
 """Neighbours closer than so many of their errors count as one group."""
 
@@ -71,6 +74,8 @@ def _cut_off(model: Model, spectrum: Spectrum, groups: list[Group]) -> list[int]
     values, lost = states.solved.values, []
     for row, sign in ((0, -1.0), (len(levels) - 1, 1.0)):
         reach = CLOSE * (levels[row].error or 0.0) + BLURRED * max(abs(values[row]), float(states.solved.kinetic[row]))
+        if spectrum.threshold is not None:
+            reach = min(reach, abs(spectrum.threshold - levels[row].value) / 4)
         looked = values[row] + sign * reach * np.linspace(1, 3, 5)
         below = int(np.median(count_below(states.solved.condensed, looked)))
         number = states.solved.first + row
@@ -94,11 +99,31 @@ def _cut_wave(model: Model, spectrum: Spectrum, groups: list[Group]) -> list[int
     return _with_partners(last, groups) if abs(more[last + 1].value - more[last].value) <= reach else []
 
 
-def state_error(spectrum: Spectrum, groups: Groups) -> Array:
-    """Return a bound on what the states hold of others, in norm, shape (levels,); within a group, of levels outside it.
+@dataclass(frozen=True)
+class Doubts:
+    """What is doubted of each state, both (levels,).
 
-    What no function of the basis can hold is not in it: `Carried.left_out` looks at that.
+    `mixed`: a bound on what it holds of others, in norm; within a group, of levels outside it. What no function of the basis
+    can hold is not in it: `Carried.left_out` looks at that. `cut`: by what share of its terms a derivative can be off because
+    an open domain was cut: the level's own error beside its depth under the threshold, times the decay to the cut.
     """
+
+    mixed: Array
+    cut: Array
+
+
+def doubts_of(spectrum: Spectrum, groups: Groups) -> Doubts:
+    """Return what is doubted of the states of a spectrum."""
+    cut = np.zeros(len(spectrum.levels))
+    if spectrum.threshold is not None:
+        errors = np.array([level.error or 0.0 for level in spectrum.levels])
+        depths = np.abs(spectrum.threshold - np.array([level.value for level in spectrum.levels]))
+        cut = DECAY * errors / np.maximum(depths, np.finfo(float).tiny)
+    return Doubts(_mixed(spectrum, groups), cut)
+
+
+def _mixed(spectrum: Spectrum, groups: Groups) -> Array:
+    """Return a bound on what each state holds of others, in norm."""
     off = np.array(slips(spectrum), dtype=float)
     values = np.array([level.value for level in spectrum.levels])
     rows = [group.rows for group in groups.groups]

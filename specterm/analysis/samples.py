@@ -77,6 +77,16 @@ class Moved:
             self._take_power(points, x, slope, parts)
         return Samples(parts, slope, self._edges(points))
 
+    def noise(self, points: StatePoints) -> Samples:
+        """Return bounds on the rounding of the functions at the points, where each stands."""
+        orders = len(points.jets)
+        x, slope = self.carry(points.x)
+        parts = np.zeros((orders, orders, *x.shape))
+        for (j, k), function in self.shape.terms:
+            bound = np.reshape(function.rounding(x.ravel()), x.shape) * slope ** float(1 - j - k)
+            parts[j, k] += np.nan_to_num(bound, nan=0.0, posinf=0.0)
+        return Samples(parts, np.zeros_like(x), np.zeros(len(points.edges)))
+
     def _take_power(self, points: StatePoints, x: Array, slope: Array, parts: Values) -> None:
         """Take from the potential what the power in the wave makes of the momenta: s(s - 1) K/d^2 + s K'/d."""
         here = points.drift != 0

@@ -14,7 +14,7 @@ from pathlib import Path
 import numpy as np
 
 from specterm.analysis.displaced import Written, written_numbers
-from specterm.analysis.level_groups import Group, Groups, groups_of, state_error
+from specterm.analysis.level_groups import Group, Groups, doubts_of, groups_of
 from specterm.analysis.observables import unit_of
 from specterm.analysis.running_slopes import running_slopes
 from specterm.analysis.slopes import Slope, slopes_of
@@ -164,4 +164,4 @@ def _found(
         return ["there is no level"] * len(places)
     if isinstance(spectrum.states, RunningStates):
         return running_slopes(model, spectrum, folder, places, stop)
-    return slopes_of(model, spectrum, folder, places, groups, state_error(spectrum, groups), stop)
+    return slopes_of(model, spectrum, folder, places, groups, doubts_of(spectrum, groups), stop)

@@ -11,7 +11,7 @@ import numpy as np
 from specterm.analysis.carried_states import Carried, Totals
 from specterm.analysis.displaced import Displaced, Shape, Written, displaced, shape_of
 from specterm.analysis.extrapolate import FIRST, Steps, derivative, find_steps
-from specterm.analysis.level_groups import Groups
+from specterm.analysis.level_groups import Doubts, Groups
 from specterm.analysis.samples import Moved, Samples, moved
 from specterm.analysis.state_points import ElementSampler, Sampler, StatePoints, WaveSampler
 from specterm.arrays import Array
@@ -80,24 +80,26 @@ def slopes_of(
     folder: Path | None,
     places: Mapping[str, Written],
     groups: Groups,
-    off: Array,
+    doubts: Doubts,
     stop: Callable[[], bool],
 ) -> Sequence[Slope | str]:
-    """Return the derivatives with respect to each number, or why there is none; `off` are the errors of the states in norm."""
+    """Return the derivatives with respect to each number, or why there is none; `doubts` are those about the states."""
     base = shape_of(model)
     carried, origin = _carried(spectrum, base, groups)
     hull = (spectrum.left, spectrum.right)
     points = carried.sampler.points(carried.sampler.whole(), base.highest, spare=True)
     size = carried.mean_size(points)
+    here = moved(base, base, hull, origin)
+    assert isinstance(here, Moved)
+    noise = here.noise(points)
     plans: list[tuple[Neighbours, Steps] | str | None] = []
     for name, place in places.items():
         if stop():
             raise WorkStopped("stopped")
-        here = moved(base, base, hull, origin)
         around = Neighbours(base, displaced(model, name, place, folder), hull, origin, {0.0: here})
-        plans.append(_plan(around, points, size, FIRST * place.size))
+        plans.append(_plan(around, points, size, FIRST * place.size, size(noise)))
     live = [plan for plan in plans if isinstance(plan, tuple)]
-    done = iter(_slopes(carried, points, live, groups, off) if live else [])
+    done = iter(_slopes(carried, points, live, groups, doubts) if live else [])
     none = np.zeros(len(spectrum.levels))
     return [next(done) if isinstance(plan, tuple) else Slope(none, none) if plan is None else plan for plan in plans]
 
@@ -116,18 +118,18 @@ def _carried(spectrum: Spectrum, base: Shape, groups: Groups) -> tuple[Carried, 
 
 
 def _plan(
-    around: Neighbours, points: StatePoints, size: Callable[[Samples], float], first: float
+    around: Neighbours, points: StatePoints, size: Callable[[Samples], float], first: float, noise: float
 ) -> tuple[Neighbours, Steps] | str | None:
     """Return how to differentiate along one number, None where the number does nothing, or why it cannot be done."""
     up, here = around.at(first), around.at(0.0)
     if not isinstance(up, str) and not isinstance(here, str) and up.shape.same(here.shape):
         return None
-    steps = find_steps(around.sampler(points), size, first)
+    steps = find_steps(around.sampler(points), size, first, noise)
     return steps if isinstance(steps, str) else (around, steps)
 
 
 def _slopes(
-    carried: Carried, points: StatePoints, plans: Sequence[tuple[Neighbours, Steps]], groups: Groups, off: Array
+    carried: Carried, points: StatePoints, plans: Sequence[tuple[Neighbours, Steps]], groups: Groups, doubts: Doubts
 ) -> list[Slope | str]:
     """Return the derivatives along each number of the plans."""
 
@@ -139,13 +141,13 @@ def _slopes(
     sample = here.at(points)
     totals = carried.integrate(slopes, len(plans))
     missing = carried.left_out(slopes, sample, points)
-    whole = _whole(carried, points, sample)
+    whole = NOISE * (_whole(carried, points, sample) + np.abs(carried.values)) + 2 * _whole(carried, points, here.noise(points))
     levels = len(carried.values)
     errors = totals.missed + 2 * totals.doubt
-    errors = errors[:, :levels] + missing + 2 * off * np.sqrt(totals.steep[:, :levels])
+    errors = errors[:, :levels] + missing + 2 * doubts.mixed * np.sqrt(totals.steep[:, :levels])
     shortest = np.array([steps.shortest for _, steps in plans])
-    errors = errors + NOISE * totals.size[:, :levels] + NOISE * whole / shortest[:, None]
     sizes = totals.size[:, :levels]
+    errors = errors + (NOISE + doubts.cut) * sizes + whole / shortest[:, None]
     return [_settled(_branches(carried, totals, groups, row), errors[row], sizes[row]) for row in range(len(plans))]
 
 
@@ -161,13 +163,13 @@ def _sure(around: Neighbours, points: StatePoints) -> Callable[[float], Samples]
 
 
 def _whole(carried: Carried, points: StatePoints, sample: Samples) -> Array:
-    """Return the integral of the moduli of the quotient's own terms for each level, shape (levels,)."""
+    """Return the integral of the moduli of the samples over each level, shape (levels,)."""
     total = np.zeros(len(carried.values))
     for a in range(len(points.jets)):
         for b in range(len(points.jets)):
             part = np.abs(sample.parts[a, b])
             total += (points.w * part * np.abs(points.jets[a]) * np.abs(points.jets[b])).sum(axis=(1, 2))
-    return total + np.abs(carried.values)
+    return total
 
 
 def _branches(carried: Carried, totals: Totals, groups: Groups, row: int) -> Array:
