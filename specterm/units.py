@@ -11,6 +11,7 @@ import unicodedata
 from dataclasses import dataclass
 from decimal import Context, Decimal
 from fractions import Fraction
+from functools import lru_cache
 
 from specterm.errors import SheetError, Span
 
@@ -251,6 +252,7 @@ _TO_PLAIN = str.maketrans("⁺⁻⁰¹²³⁴⁵⁶⁷⁸⁹", "+-0123456789")
 Quantity = tuple[Decimal, Dimension]
 
 
+@lru_cache(maxsize=512)
 def _read(text: str, span: Span | None) -> Quantity:
     """Return the SI value and the dimension of a unit such as `kV/cm`; factors are taken from left to right.
 
@@ -403,14 +405,9 @@ class UnitSystem:
 
     def convert(self, quantity: Quantity) -> float:
         """Return an SI quantity as a number in this system, rounded once."""
-        value, dimension = quantity
         if self.bases is None:
-            raise UnitError("no-units", None, unit=str(dimension))
-        energy, length, mass = self.bases
-        powers = (-dimension.time / 2, dimension.length + dimension.time, dimension.mass + dimension.time / 2)
-        for base, power in zip((energy, length, mass, _E), (*powers, dimension.charge), strict=True):
-            value = _C.divide(value, _raised((base, PLAIN), power)[0])
-        return float(value)
+            raise UnitError("no-units", None, unit=str(quantity[1]))
+        return _converted(quantity, self.bases)
 
     def parse(self, text: str, span: Span | None = None) -> tuple[float, Dimension]:
         """Return (factor, dimension) of a unit: a number in that unit times the factor is the number in this system.
@@ -427,6 +424,17 @@ class UnitSystem:
         if self.bases is None or name not in CONSTANTS:
             return None
         return self.convert(CONSTANTS[name]), CONSTANTS[name][1]
+
+
+@lru_cache(maxsize=512)
+def _converted(quantity: Quantity, bases: tuple[Decimal, Decimal, Decimal]) -> float:
+    """Return an SI quantity as a number in the system of these bases: sheets are built again and again with other numbers."""
+    value, dimension = quantity
+    energy, length, mass = bases
+    powers = (-dimension.time / 2, dimension.length + dimension.time, dimension.mass + dimension.time / 2)
+    for base, power in zip((energy, length, mass, _E), (*powers, dimension.charge), strict=True):
+        value = _C.divide(value, _raised((base, PLAIN), power)[0])
+    return float(value)
 
 
 def _base(quantity: str, text: str, span: Span | None) -> Decimal:

@@ -7,7 +7,7 @@ Within a group of levels that cannot be told apart the derivatives are those of 
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -15,15 +15,16 @@ import numpy as np
 
 from specterm.analysis.displaced import Written, written_numbers
 from specterm.analysis.level_groups import Group, Groups, doubts_of, groups_of
-from specterm.analysis.observables import unit_of
 from specterm.analysis.running_slopes import running_slopes
 from specterm.analysis.slopes import Slope, slopes_of
 from specterm.arrays import Array
 from specterm.errors import SheetError
+from specterm.language.dimensions import check_dimensions
 from specterm.language.suggest import nearest
 from specterm.model import Model
 from specterm.spectrum import Spectrum
 from specterm.spectrum.firstorder import RunningStates
+from specterm.units import ENERGY, LENGTH, MASS, TIME
 
 
 @dataclass(frozen=True)
@@ -98,7 +99,7 @@ def sensitivities(
         derivatives[row], errors[row] = np.nan, np.nan
         notes.append(f"no derivatives of level {spectrum.levels[row].index}: {reason}")
     notes += [_grouped(spectrum, group) for group in groups.groups]
-    units = tuple(derivative_unit(model, name, places[name].unit) for name in wanted)
+    units = derivative_units(model, {name: places[name].unit for name in wanted})
     return Sensitivities(wanted, units, tuple(level.index for level in spectrum.levels), derivatives, errors, tuple(notes))
 
 
@@ -129,15 +130,20 @@ def first_order(values: Array, found: Sensitivities, name: str, change: float) -
     return estimate
 
 
-def derivative_unit(model: Model, name: str, written: str) -> str:
-    """Return the unit of a level's derivative with respect to a number, `written` being the unit behind it or empty."""
-    energy, over = model.units.energy, written or unit_of(model, name)
+def derivative_units(model: Model, written: Mapping[str, str]) -> tuple[str, ...]:
+    """Return the units of a level's derivatives with respect to numbers; `written` has the unit behind each, or ""."""
+    energy = model.units.energy
     if not energy:
-        return ""
-    if not over:
-        return f"{energy} per {name}"
-    simple = over.replace("_", "").isalnum()
-    return f"{energy}/{over}" if simple else f"{energy}/({over})"
+        return ("",) * len(written)
+    known = {ENERGY: energy, LENGTH: model.units.length, MASS: model.units.mass, TIME: model.units.time}
+    dimensions = check_dimensions(model.sheet, model.units)
+    units = []
+    for name, unit in written.items():
+        dimension = None if unit else dimensions.named(name)
+        over = unit or (known.get(dimension, "") if dimension is not None else "")
+        simple = over.replace("_", "").isalnum()
+        units.append(f"{energy} per {name}" if not over else f"{energy}/{over}" if simple else f"{energy}/({over})")
+    return tuple(units)
 
 
 def _plain_names(name: str, plain: Sequence[str]) -> str:
