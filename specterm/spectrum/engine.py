@@ -209,10 +209,10 @@ def _with_boxes(ready: Setting, request: Request, refined: Refined | None, wante
 def _reach(ready: Setting) -> Span:
     """Return a span that holds all of the potential that differs from its limits, with as much room again."""
     problem, look = ready.problem, ready.look
-    marks = np.concatenate([problem.edges, problem.centres])
-    ends = [float(marks.min(initial=np.inf)), float(marks.max(initial=-np.inf))]
+    marks = np.clip(np.concatenate([problem.edges, problem.centres]), problem.left, problem.right)
     if not len(marks):
-        ends = [e if np.isfinite(e) else 0.0 for e in (problem.left, problem.right)]
+        marks = np.array([e for e in (problem.left, problem.right) if np.isfinite(e)] or [0.0])
+    ends = [float(marks.min()), float(marks.max())]
     for side, sign in ((0, -1.0), (1, 1.0)):
         end = ready.ends[side]
         if isinstance(end, FarEnd) and np.isfinite(end.limit):

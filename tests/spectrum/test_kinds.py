@@ -26,6 +26,14 @@ def test_bound_then_box():
     assert any("3 of the levels lie in the continuum" in note for note in found.notes)
 
 
+@pytest.mark.parametrize("domain", ["(0.95, inf)", "(-inf, -3)", "(7, inf)", "(-inf, inf)", "(0, inf)"])
+def test_boxes_where_nothing_happens(domain):
+    """Box levels of a free particle on any half line lie above the threshold; there is nothing to put the box around."""
+    found = spectrum(f"H = p^2; x in {domain}", 3)
+    assert kinds(found) == ["box"] * 3
+    assert all(level.value > 0 for level in found.levels)
+
+
 def test_without_a_number_only_bound_ones():
     """Without a number asked for, only the true levels are returned, ten at most."""
     assert kinds(spectrum(SECH)) == ["bound", "bound"]
