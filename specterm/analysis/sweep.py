@@ -197,10 +197,13 @@ def _notes(request: SweepRequest, known: Sequence[Point | None]) -> tuple[str, .
     """Return what is odd: points without levels, levels that are unresolved or that may be missing."""
     some = [point for point in known if point is not None]
     notes = []
-    failed = [point for point in some if point.problem]
-    if failed:
-        place = ", ".join(f"{v:.6g}" for v in request.place(failed[0].index))
-        notes.append(f"{len(failed)} points have no levels; at {place}: {failed[0].problem}")
+    for what, failed in (
+        ("levels", [point for point in some if point.problem and not point.levels]),
+        (request.quantity.kind, [point for point in some if point.problem and point.levels]),
+    ):
+        if failed:
+            place = ", ".join(f"{v:.6g}" for v in request.place(failed[0].index))
+            notes.append(f"{len(failed)} points have no {what}; at {place}: {failed[0].problem}")
     rough = sum("unresolved" in point.kinds for point in some)
     if rough:
         notes.append(f"{rough} points have levels that do not reach the tolerance")

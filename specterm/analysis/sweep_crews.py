@@ -4,7 +4,10 @@ from __future__ import annotations
 
 import multiprocessing
 import os
+import signal
+import threading
 from concurrent.futures import Executor, ProcessPoolExecutor
+from multiprocessing.connection import wait
 from typing import Any
 
 from specterm.analysis.sweep_work import Crew
@@ -21,9 +24,22 @@ def processes(workers: int) -> Crew:
     def start() -> Executor:
         for name in THREADS:
             os.environ.setdefault(name, "1")
-        return ProcessPoolExecutor(workers, mp_context=multiprocessing.get_context("spawn"))
+        return ProcessPoolExecutor(workers, mp_context=multiprocessing.get_context("spawn"), initializer=_bound)
 
     return Crew(start, workers)
+
+
+def _bound() -> None:
+    """Leave the interrupt key to the process that hands out the work, and end when it ends, however it does."""
+    signal.signal(signal.SIGINT, signal.SIG_IGN)
+    parent = multiprocessing.parent_process()
+    if parent is not None:
+        threading.Thread(target=_end_with, args=(parent.sentinel,), daemon=True).start()
+
+
+def _end_with(sentinel: int) -> None:
+    wait([sentinel])
+    os._exit(1)
 
 
 def cluster(address: str) -> Crew:

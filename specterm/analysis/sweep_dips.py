@@ -77,20 +77,27 @@ def _swaps(points: Sequence[Point | None], rows: Counts, lower: int) -> list[int
 
 
 def _brackets(gaps: Array, errors: Array, swaps: Sequence[int]) -> list[tuple[int, int]]:
-    """Return first and last point of brackets: around runs of equal gaps lower than both their neighbours, and swaps."""
+    """Return first and last point of brackets: around runs of equal gaps lower than both their neighbours, and swaps.
+
+    Gaps that are zero within their errors are equal; levels that are one all along have no smallest gap.
+    """
     last = len(gaps) - 1
+    zero = gaps <= BEYOND * errors
+
+    def above(k: int, low: int) -> bool:
+        """Say whether the gap at k is larger than at `low`, beyond errors."""
+        slack = BEYOND * (errors[k] + errors[low]) + FLAT * gaps[low]
+        return bool(gaps[k] > gaps[low] + slack) and not zero[k]
+
     found = []
     low = 0
     while low <= last:
-        slack = BEYOND * errors[low] + FLAT * gaps[low]
         high = low
-        while high < last and abs(gaps[high + 1] - gaps[low]) <= slack:
+        while high < last and np.isfinite(gaps[high + 1]) and not above(high + 1, low) and not above(low, high + 1):
             high += 1
-        falls = low > 0 and gaps[low - 1] > gaps[low] + slack
-        rises = high < last and gaps[high + 1] > gaps[low] + slack
-        zero = gaps[low] <= BEYOND * errors[low]
-        if (falls or (low == 0 and zero)) and (rises or (high == last and zero)) and (falls or rises):
+        falls, rises = low > 0 and above(low - 1, low), high < last and above(high + 1, low)
+        if (falls or (low == 0 and zero[0])) and (rises or (high == last and zero[last])) and (falls or rises):
             found.append((max(0, low - 1), min(last, high + 1)))
         low = high + 1
     unseen = [k for k in swaps if not any(low <= k and k + 1 <= high for low, high in found)]
-    return found + [(max(0, k - 1), min(last, k + 2)) for k in unseen]
+    return found + [(max(0, k - 1), min(last, k + 2)) for k in unseen if not (zero[k] and zero[k + 1])]

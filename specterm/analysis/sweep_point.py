@@ -14,7 +14,7 @@ from specterm.analysis.overlap import amplitudes
 from specterm.analysis.sweep_request import Quantity, SweepRequest, model_at
 from specterm.analysis.transitions import transitions
 from specterm.analysis.weights import project
-from specterm.errors import SpectermError, WorkStopped
+from specterm.errors import PhysicsError, SpectermError, WorkStopped
 from specterm.model import Model
 from specterm.spectrum import Spectrum, solve
 
@@ -30,7 +30,7 @@ class Point:
 
     For each level: `numbers` (its index), `levels` (value), `errors` (None without one), `kinds`; `quantity` and
     `quantity_errors` (None where unknown). `links` are (a, b, re, im) for <a|b> with level a at the point before, by place,
-    that is not negligible; none at the start of a row. `problem` says why there are no levels.
+    that is not negligible; none at the start of a row. `problem` says why there are no levels, or no quantity.
     """
 
     index: int
@@ -106,22 +106,28 @@ def _point(
         spectrum = solve(
             model, count=request.count, near=request.near, tolerance=request.tolerance, should_stop=should_stop, like=before
         )
-        levels = spectrum.levels
-        quantity, errors = _quantity(model, spectrum, request.quantity, request.folder) if whole else ((), ())
     except WorkStopped:
         raise
     except SpectermError as error:
         return Point(index, (), (), (), (), (), (), problem=error.message), None
+    levels, problem = spectrum.levels, ""
+    quantity: Known = ()
+    errors: Known = ()
+    try:
+        quantity, errors = _quantity(model, spectrum, request.quantity, request.folder) if whole else ((), ())
+    except SpectermError as error:
+        quantity, errors, problem = (None,) * len(levels), (None,) * len(levels), error.message
     point = Point(
         index,
         tuple(level.index for level in levels),
         tuple(level.value for level in levels),
-        tuple(level.error for level in levels),
+        tuple(_known(level.error) for level in levels),
         tuple(level.kind for level in levels),
         quantity,
         errors,
         _links(before, spectrum) if whole and before is not None else (),
-        complete=spectrum.complete,
+        problem,
+        spectrum.complete,
     )
     return point, spectrum
 
@@ -143,8 +149,8 @@ def _quantity(model: Model, spectrum: Spectrum, asked: Quantity, folder: str) ->
         weights = project(model, spectrum, asked.detail, Path(folder)).weights
         return tuple(_known(one.weight) for one in weights), tuple(_known(one.error) for one in weights)
     if asked.kind == "expectation":
-        means = [expectation(model, spectrum, asked.detail, f"level({level.index})") for level in levels]
-        return tuple(_known(one.mean) for one in means), tuple(_known(one.error) for one in means)
+        means = [_mean(model, spectrum, asked.detail, level.index) for level in levels]
+        return tuple(mean for mean, _ in means), tuple(error for _, error in means)
     if asked.kind == "strengths":
         lines = transitions(model, spectrum, (asked.start,), asked.detail or None).lines
         return tuple(_known(line.strength) for line in lines), tuple(_known(line.strength_error) for line in lines)
@@ -154,6 +160,15 @@ def _quantity(model: Model, spectrum: Spectrum, asked: Quantity, folder: str) ->
     errors = [None if one.error is None or lower.error is None else one.error + lower.error for one in levels]
     sure = tuple(0.0 if one is lower else error for one, error in zip(levels, errors, strict=True))
     return tuple(one.value - lower.value for one in levels), sure
+
+
+def _mean(model: Model, spectrum: Spectrum, text: str, number: int) -> tuple[float | None, float | None]:
+    """Return the mean of an observable in a level and its error, None where it has no finite mean."""
+    try:
+        found = expectation(model, spectrum, text, f"level({number})")
+    except PhysicsError:
+        return None, None
+    return _known(found.mean), _known(found.error)
 
 
 def _known(value: float | None) -> float | None:

@@ -67,7 +67,8 @@ def solve(
     should_stop, progress
         Asked now and then whether to give up (WorkStopped), and told in words how far the work is.
     like
-        Levels of a nearby operator, to begin with: where they fit, the same levels are found in less than half the time.
+        Levels of a nearby operator, to begin with: where they fit, the same levels are found in about half the time. Parities
+        may stay unknown where the operator has moved.
 
     Raises
     ------

@@ -178,3 +178,11 @@ def test_stop():
     with pytest.raises(WorkStopped):
         sweep(request(ANHARMONIC, "lam=0.1:1:50", count=3), on_point=points.append, should_stop=lambda: len(points) >= 7)
     assert len(points) == 7
+
+
+def test_quantities_that_do_not_exist_leave_the_levels():
+    """Where a level that lines start from is missing, the levels are there without them, and a note says why."""
+    found = sweep(request(ANHARMONIC, "lam=0.1,0.2", count=2, quantity=Quantity("strengths", "", 5)))
+    assert np.isfinite(found.levels).all()
+    assert np.isnan(found.quantity).all()
+    assert any("level 5" in note for note in found.notes)

@@ -92,3 +92,9 @@ def test_gaps_beyond_double_precision_are_no_crossings():
     (gap,) = found.gaps
     assert not gap.crossing
     assert any("never cross" in note for note in found.notes)
+
+
+def test_pairs_that_are_degenerate_all_along_have_no_smallest_gap():
+    """With threefold symmetry on a ring levels come in pairs at any height: rounding between them is no gap (symmetry)."""
+    found = sweep(request("H = p^2 + V3*cos(3*x); V3 = 4; x in ring(0, 2*pi)", "V3=3.6:4.4:9", count=6))
+    assert [gap for gap in found.gaps if gap.gap < 1e-6] == []

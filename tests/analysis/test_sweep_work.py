@@ -2,7 +2,10 @@
 
 import json
 import os
+import select
 import signal
+import subprocess
+import sys
 from concurrent.futures import ProcessPoolExecutor
 from dataclasses import replace
 
@@ -165,3 +168,34 @@ def test_a_cluster_that_is_not_there():
     """Without the package, or with nobody at the address, the way out is told."""
     with pytest.raises(SheetError, match=r"distributed|answers"):
         cluster("no-such-scheme://here")
+
+
+def test_workers_end_with_the_process_that_started_them(tmp_path):
+    """When the process that hands out the work is killed, its workers end too."""
+    script = tmp_path / "parent.py"
+    script.write_text(
+        "import os, time\n"
+        "from specterm.analysis.sweep_crews import processes\n"
+        "if __name__ == '__main__':\n"
+        "    pool = processes(1).start()\n"
+        "    print(pool.submit(os.getpid).result(), flush=True)\n"
+        "    time.sleep(600)\n"
+    )
+    environment = os.environ | {"PYTHONPATH": os.pathsep.join(sys.path)}
+    with subprocess.Popen([sys.executable, script], stdout=subprocess.PIPE, env=environment) as parent:
+        worker = int(parent.stdout.readline())
+        watched = os.pidfd_open(worker)
+        parent.kill()
+    ended, _, _ = select.select([watched], [], [], 60)
+    os.close(watched)
+    assert ended
+
+
+def test_a_dask_cluster(uncut):
+    """Any Dask scheduler does: the result is the same to the last bit, and the cluster is left running."""
+    distributed = pytest.importorskip("distributed")
+    with distributed.LocalCluster(
+        n_workers=1, threads_per_worker=2, processes=False, dashboard_address=None, protocol="tcp", host="127.0.0.1"
+    ) as local:
+        for _ in range(2):
+            assert_same(sweep(ASKED, crew=cluster(local.scheduler_address), gaps=False), uncut)

@@ -1,7 +1,8 @@
 """Points per second of a 1,000-point sweep of 20 levels: in this process, in one and two others, and on a local Dask scheduler.
 
-Run: python tests/bench/sweep.py [--points 1000] [--levels 20]. Not collected by pytest; nothing is asserted but that no point is
-lost or changed. Then the same with a worker killed in the middle. One thread each. Start-up of workers is timed apart.
+Run: python tests/bench/sweep.py [--points 1000] [--levels 20]. Not collected by pytest; nothing is asserted: each line says how
+many points came out and whether to the same bits, also with a worker killed in the middle. One thread each. Start-up of workers
+is timed apart.
 """
 
 from __future__ import annotations
@@ -31,26 +32,24 @@ from specterm.analysis.sweep_work import Crew
 SHEET = "H = p^2/2 + x^2/2 + lam*x^4; lam = 0.1; x in (-inf, inf)"
 
 
-def timed(request: SweepRequest, crew: Crew | None, on_point: Callable[[Point], None] | None = None) -> tuple[Sweep, float, float]:
+def timed(request: SweepRequest, crew: Crew | None, on_point: Callable[[Point], None]) -> tuple[Sweep, float, float]:
     """Return the sweep, points per second from the first point on, and seconds until it."""
     first: list[float] = []
-    number = [0]
     start = time.perf_counter()
 
     def seen(point: Point) -> None:
         if not first:
             first.append(time.perf_counter())
-            number[0] = 0
-        number[0] += 1
-        if on_point is not None:
-            on_point(point)
+        on_point(point)
 
     found = sweep(request, crew=crew, gaps=False, on_point=seen)
     end = time.perf_counter()
     return found, request.size / (end - start if crew is None else end - first[0]), first[0] - start
 
 
-def report(name: str, request: SweepRequest, crew: Crew | None, reference: Sweep | None, kill: Callable[[], None] | None = None) -> Sweep:
+def report(
+    name: str, request: SweepRequest, crew: Crew | None, reference: Sweep | None, kill: Callable[[], None] | None = None
+) -> Sweep:
     """Print one line; a worker is killed at half of the points where `kill` is given."""
     done = [0]
 
@@ -69,7 +68,7 @@ def killing(crew: Crew) -> tuple[Crew, Callable[[], None]]:
     """Return the crew, and what kills one of its first processes."""
     made: list = []
 
-    def start():  # noqa: ANN202 - an executor
+    def start():
         made.append(crew.start())
         return made[-1]
 
@@ -83,12 +82,11 @@ def scheduler(workers: int) -> Iterator[str]:
         file = str(Path(folder) / "scheduler.json")
         environment = os.environ | {"PYTHONPATH": str(Path(__file__).resolve().parent.parent.parent)}
         common = {"env": environment, "stdout": subprocess.DEVNULL, "stderr": subprocess.DEVNULL, "cwd": folder}
-        started = [subprocess.Popen(  # noqa: S603
+        started = [subprocess.Popen(
             [sys.executable, "-m", "distributed.cli.dask_scheduler", "--scheduler-file", file, "--port", "0", "--no-dashboard"],
             **common)]  # fmt: skip
-        started += [subprocess.Popen(  # noqa: S603
-            [sys.executable, "-m", "distributed.cli.dask_worker", "--scheduler-file", file, "--nthreads", "1", "--no-dashboard"],
-            **common) for _ in range(workers)]  # fmt: skip
+        worker = [sys.executable, "-m", "distributed.cli.dask_worker", "--scheduler-file", file, "--nthreads", "1"]
+        started += [subprocess.Popen([*worker, "--no-dashboard"], **common) for _ in range(workers)]
         try:
             yield file
         finally:
