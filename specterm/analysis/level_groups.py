@@ -21,6 +21,10 @@ from specterm.spectrum.states import ElementStates
 ALONE = "it cannot be told from a level not computed; ask for more levels"
 DECAY = 2 * DEEP
 """Powers of e by which |psi|^2 has fallen where an open domain is cut."""
+SHARP = 1e-9
+"""Counts on a line tell levels apart by this share of them; on a ring only by `BLURRED`."""
+RUNGS = 24
+"""So many energies are looked at for the nearest level that was not computed."""
 CLOSE = 4.0
 """Neighbours closer than so many of their errors count as one group."""
 
@@ -72,8 +76,9 @@ def _cut_off(model: Model, spectrum: Spectrum, groups: list[Group]) -> list[int]
     if not isinstance(states, ElementStates):
         return []
     values, lost = states.solved.values, []
+    blur = BLURRED if model.domain.is_ring else SHARP
     for row, sign in ((0, -1.0), (len(levels) - 1, 1.0)):
-        reach = CLOSE * (levels[row].error or 0.0) + BLURRED * max(abs(values[row]), float(states.solved.kinetic[row]))
+        reach = CLOSE * (levels[row].error or 0.0) + blur * max(abs(values[row]), float(states.solved.kinetic[row]))
         if spectrum.threshold is not None:
             reach = min(reach, abs(spectrum.threshold - levels[row].value) / 4)
         looked = values[row] + sign * reach * np.linspace(1, 3, 5)
@@ -124,17 +129,32 @@ def doubts_of(spectrum: Spectrum, groups: Groups) -> Doubts:
 
 def _mixed(spectrum: Spectrum, groups: Groups) -> Array:
     """Return a bound on what each state holds of others, in norm."""
-    off = np.array(slips(spectrum), dtype=float)
-    values = np.array([level.value for level in spectrum.levels])
+    off, states = np.array(slips(spectrum), dtype=float), spectrum.states
+    if not isinstance(states, ElementStates):
+        return off
+    values = states.solved.values
+    beyond = _beyond(states)
     rows = [group.rows for group in groups.groups]
     rows += [(row,) for row in range(len(values)) if not any(row in one for one in rows)]
-    if not isinstance(spectrum.states, ElementStates):
-        return off
     for some in rows:
         outside = np.delete(values, list(some))
         for row in some:
-            size = abs(spectrum.states.solved.values[row]) + abs(spectrum.states.solved.kinetic[row])
-            gap = float(np.abs(outside - values[row]).min(initial=size))
+            size = abs(values[row]) + abs(states.solved.kinetic[row])
+            seen = float(np.abs(outside - values[row]).min(initial=size))
+            gap = float(np.abs(beyond - values[row]).min(initial=seen))
             if gap > 0:
-                off[row] = min(off[row], MIXING * (spectrum.levels[row].error or 0.0) / gap)
+                off[row] = min(off[row] * seen / gap, MIXING * (spectrum.levels[row].error or 0.0) / gap)
     return off
+
+
+def _beyond(states: ElementStates) -> Array:
+    """Return energies nearer to the levels than any level of the mesh that was not computed, below (if any) and above them."""
+    solved = states.solved
+    found = []
+    for row, sign, count in ((0, -1.0, solved.first), (-1, 1.0, solved.first + len(solved.values))):
+        if sign > 0 or count > 0:
+            size = abs(float(solved.values[row])) + abs(float(solved.kinetic[row]))
+            rungs = float(solved.values[row]) + sign * size * np.geomspace(BLURRED, 1.0, RUNGS)
+            free = count_below(solved.condensed, rungs) == count
+            found.append(rungs[max(int(np.argmin(free)) - 1, 0)] if not free.all() else rungs[-1])
+    return np.array(found)

@@ -283,3 +283,51 @@ def test_work_can_be_stopped():
     model = build(parse("H = p^2 + a*x^2; x in (-inf, inf); a = 1"))
     with pytest.raises(WorkStopped):
         sensitivities(model, solve(model, count=2), should_stop=lambda: True)
+
+
+def test_a_partner_not_computed_counts():
+    """Tunnelling pairs: by parity no level moves with a tilt, within the error told, whether its partner is known or not."""
+    text = "H = p^2/2 + h*((x/b)^2 - 1)^2 + t*x; h = 30; b = 2; t = 0; x in (-inf, inf)"
+    for count in (1, 2, 3, 4):
+        _, slopes = found(text, count)
+        assert (np.abs(slopes.column("t")) <= slopes.errors[:, slopes.parameters.index("t")]).all()
+
+
+@pytest.mark.parametrize("seed", range(8))
+def test_errors_are_honest(seed):
+    """Random Morse, sech^2 and Coulomb problems: every derivative lies within its error of the closed form."""
+    rng = np.random.default_rng(seed)
+    D, a, V, Z, m = np.exp(rng.uniform(np.log([3, 0.1, 1, 0.1, 0.1]), np.log([500, 1.2, 500, 10, 100]))).tolist()
+    depth = (math.sqrt(1 + 8 * V / a**2) - 1) / 2
+    steep = 2 / math.sqrt(1 + 8 * V / a**2)
+    r, turn = rng.uniform(-3, 50), rng.uniform(-0.4, 4)
+    problems = [
+        (
+            f"H = p^2/2 + D0*(1 - exp(-a*(x - r)))^2; x in (-inf, inf); D0 = {D!r}; a = {a!r}; r = {r!r}",
+            max(1, min(int(math.sqrt(2 * D) / a - 0.5), 8)),
+            {
+                "D0": lambda k, _E: a * (k + 0.5) / math.sqrt(2 * D),
+                "a": lambda k, _E: math.sqrt(2 * D) * (k + 0.5) - a * (k + 0.5) ** 2,
+                "r": lambda _k, _E: 0,
+            },
+        ),
+        (  # E = -a^2 (s - k)^2/2 with s (s + 1) = 2 V/a^2
+            f"H = p^2/2 - V/cosh(a*x)^2; x in (-inf, inf); V = {V!r}; a = {a!r}",
+            max(1, min(int(depth), 8)),
+            {
+                "V": lambda k, _E: -(depth - k) * steep,
+                "a": lambda k, _E: -a * (depth - k) ** 2 + 2 * V / a * (depth - k) * steep,
+            },
+        ),
+        (
+            f"H = p^2/(2*m) - Z/r + l*(l + 1)/(2*m*r^2); r in (0, inf); Z = {Z!r}; l = {turn!r}; m = {m!r}",
+            6,
+            {
+                "Z": lambda k, _E: -Z * m / (k + turn + 1) ** 2,
+                "l": lambda k, _E: m * Z**2 / (k + turn + 1) ** 3,
+                "m": lambda _k, E: E / m,
+            },
+        ),
+    ]
+    for text, count, exact in problems:
+        check(text, count, exact)
