@@ -15,6 +15,7 @@ from specterm.model.normal import Pairs, vanishes
 from specterm.model.polynomial import coefficients
 from specterm.model.scalar import Scalar
 from specterm.model.term import COORDINATE, UNIT, Term, multiply, split
+from specterm.model.word import gathered, word
 from specterm.model.wordtext import show_word
 from specterm.spectrum import Spectrum
 
@@ -66,6 +67,16 @@ def written(operator: Operator) -> str:
             parts += [show_word(c, (term, *[UNIT] * power), operator.setting) for c, term in _multiplied_out(pairs)]
     text = " + ".join(parts).replace("+ -", "- ")
     return text if len(text) <= LONGEST else text[: LONGEST - 3] + "..."
+
+
+def simplified(operator: Operator) -> Operator:
+    """Return the operator with derivatives on the right and what cancels left out; unchanged where a jump is differentiated."""
+    domain = operator.setting.domain
+    kept = {power: pairs for power, pairs in operator.normal.items() if not vanishes(pairs, domain)}
+    if any(term.broken for pairs in kept.values() for _, term in pairs):
+        return operator
+    words = (word(c, (term, *[UNIT] * power)) for power, pairs in kept.items() for c, term in _multiplied_out(pairs))
+    return Operator(gathered(words), operator.setting)
 
 
 def _multiplied_out(pairs: Pairs) -> Pairs:

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from specterm.analysis.commutator import simplified
 from specterm.analysis.expectation import expect
 from specterm.analysis.lines import Line, made_line
 from specterm.analysis.matrix_elements import MatrixElements, elements
@@ -99,7 +100,7 @@ def _refuse_missing(spectrum: Spectrum, starts: tuple[int, ...]) -> None:
 def sum_rule_scale(model: Model, spectrum: Spectrum, asked: Observable, start: int) -> tuple[float | None, float, list[str]]:
     """Return <a|[d,[H,d]]|a> for a level, a bound on its error, and notes; None where it vanishes or has no value."""
     d, H = asked.operator, model.operator
-    double = d.commutator(H.commutator(d))
+    double = simplified(d.commutator(H.commutator(d)))
     if not double.words:
         return None, 0.0, [f"no strengths: `{asked.text}` commutes with what it does to `{model.main}`"]
     try:

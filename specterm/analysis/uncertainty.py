@@ -8,7 +8,7 @@ from pathlib import Path
 
 import numpy as np
 
-from specterm.analysis.commutator import joined, vanishing, vanishing_on_levels, written
+from specterm.analysis.commutator import joined, simplified, vanishing, vanishing_on_levels, written
 from specterm.analysis.expectation import Expectation, expect, expected
 from specterm.analysis.observables import Observable, observable, of_operator
 from specterm.analysis.prepared import Prepared, prepare
@@ -59,7 +59,7 @@ def pair_of(model: Model, spectrum: Spectrum, texts: tuple[str, str], state: str
 def of_written(double: Operator, texts: tuple[str, str]) -> Observable | None:
     """Return i [A, B] as an observable, None where its weak form is out of reach."""
     try:
-        return of_operator(double * (-1j), f"i[{texts[0]},{texts[1]}]")
+        return of_operator(simplified(double * (-1j)), f"i[{texts[0]},{texts[1]}]")
     except PhysicsError:
         return None
 

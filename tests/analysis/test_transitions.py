@@ -7,6 +7,7 @@ import pytest
 from analysis_making import model, spectrum
 
 from specterm.analysis.matrix_elements import matrix_elements
+from specterm.analysis import solve
 from specterm.analysis.transitions import into_other, populations, transitions
 from specterm.errors import PhysicsError, SheetError
 
@@ -123,3 +124,20 @@ def test_levels_not_computed_are_named():
         lines(OSCILLATOR, 40)
     with pytest.raises(PhysicsError, match="Hermitian"):
         lines(OSCILLATOR, dipole="x*p")
+
+
+def test_sum_of_the_strengths_of_a_dipole_with_momenta():
+    """Strengths of (x p + p x)/2 in an anharmonic trap sum to 1: its double commutator 2 p^2 + 2 x^2 + ... loses the rest."""
+    text = "H = p^2/2 + x^2/2 + 0.08*x^3 + 0.025*x^4\nx in (-inf, inf)\nd = (x*p + p*x)/2"
+    found = transitions(model(text), spectrum(text, 24), (0,), "d")
+    assert found.sums[0] == pytest.approx(1, abs=1e-8)
+
+
+def test_no_strengths_where_the_double_commutator_vanishes():
+    """With H of first order [x,[H,x]] is 0: lines without strengths, and a note."""
+    text = "H = p + cos(x)\nx in ring(0, 2*pi)"
+    here = solve(model(text), count=5, near=0.0)
+    found = transitions(model(text), here, (0,), "sin(x)")
+    assert found.sums[0] is None
+    assert all(line.strength is None for line in found.lines)
+    assert any("no strengths" in note for note in found.notes)
