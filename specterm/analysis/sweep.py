@@ -204,6 +204,8 @@ def _notes(request: SweepRequest, known: Sequence[Point | None]) -> tuple[str, .
         if failed:
             place = ", ".join(f"{v:.6g}" for v in request.place(failed[0].index))
             notes.append(f"{len(failed)} points have no {what}; at {place}: {failed[0].problem}")
+    if some and not any(point.levels or point.problem for point in some):
+        notes.append("no level is bound at any point: ask for a number of levels with -n")
     rough = sum("unresolved" in point.kinds for point in some)
     if rough:
         notes.append(f"{rough} points have levels that do not reach the tolerance")
