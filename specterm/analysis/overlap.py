@@ -58,12 +58,8 @@ def _one_mesh(one: ElementStates, other: ElementStates) -> bool:
 
 def _on_one_mesh(one: ElementStates, other: ElementStates) -> Values:
     """Return <a|b> from the values at the mesh's own points of integration."""
-    here, n = one.solved.condensed.grid, one.mesh.order + 1
-    bra, ket = (
-        (here.values[..., :n] @ states.solved.coefficients).reshape(here.mass.size, states.count) * states.signs
-        for states in (one, other)
-    )
-    product: Values = (bra.conj().T * here.mass.ravel()) @ ket
+    weights = one.solved.condensed.grid.mass.ravel()
+    product: Values = (one.sampled.conj().T * weights) @ other.sampled
     return product
 
 

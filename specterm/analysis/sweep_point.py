@@ -133,11 +133,10 @@ def _point(
 
 
 def _links(before: Spectrum, now: Spectrum) -> tuple[tuple[int, int, float, float], ...]:
-    shares = amplitudes(before, now)
-    return tuple(
-        (int(a), int(b), round(float(np.real(shares[a, b])), DIGITS), round(float(np.imag(shares[a, b])), DIGITS))
-        for a, b in zip(*np.nonzero(np.abs(shares) ** 2 > KEPT), strict=True)
-    )
+    found = np.round(amplitudes(before, now), DIGITS)
+    rows, columns = np.nonzero(np.abs(found) ** 2 > KEPT)
+    kept = found[rows, columns]
+    return tuple(zip(rows.tolist(), columns.tolist(), np.real(kept).tolist(), np.imag(kept).tolist(), strict=True))
 
 
 def _quantity(model: Model, spectrum: Spectrum, asked: Quantity, folder: str) -> tuple[Known, Known]:

@@ -129,11 +129,21 @@ class ElementStates:
         return angle
 
     @cached_property
+    def _sampled(self) -> Values:
+        """The states, up to factors of modulus one, at the mesh's points of integration: shape (points, states)."""
+        here = self.solved.condensed.grid
+        psi = here.values[..., : self.mesh.order + 1] @ self.solved.coefficients
+        return (psi * here.factor[:, :, None]).reshape(-1, self.count)
+
+    @cached_property
+    def sampled(self) -> Values:
+        """The states at the mesh's own points of integration, shape (points, states), without the phase that was taken out."""
+        return self._sampled * self.signs
+
+    @cached_property
     def signs(self) -> Values:
         """Factors of modulus one that make each state positive on its first lobe from the left."""
-        here = self.solved.condensed.grid
-        n = self.mesh.order + 1
-        psi = ((here.values[..., :n] @ self.solved.coefficients) * here.factor[:, :, None]).reshape(-1, self.count)
+        psi = self._sampled
         size = np.abs(psi)
         first = np.argmax(size > 1e-6 * size.max(axis=0), axis=0)
         lead = psi[first, np.arange(self.count)]
