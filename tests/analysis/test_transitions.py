@@ -6,8 +6,8 @@ import numpy as np
 import pytest
 from analysis_making import model, spectrum
 
-from specterm.analysis.matrix_elements import matrix_elements
 from specterm.analysis import solve
+from specterm.analysis.matrix_elements import matrix_elements
 from specterm.analysis.transitions import into_other, populations, transitions
 from specterm.errors import PhysicsError, SheetError
 
