@@ -35,10 +35,10 @@ def sensitivities(arguments: argparse.Namespace, source: Source) -> Answer:
 
 def _levels_text(model: Model, spectrum: Spectrum, found: Sensitivities) -> str:
     """Return the derivatives of levels as a table."""
-    from specterm.views.derivative_table import derivative_table  # noqa: PLC0415 - only text needs the views
+    from specterm.views.derivative_table import derivative_table, parameter_headings  # noqa: PLC0415 - only text
 
     levels = spectrum.levels
-    headings = ("level", _with_unit("value", model.units.energy), *_headings(found.parameters, found.units))
+    headings = ("level", _with_unit("value", model.units.energy), *parameter_headings(found.parameters, found.units))
     table = derivative_table(
         [str(level.index) for level in levels], [level.value for level in levels], [level.error for level in levels],
         found.derivatives, found.errors, headings,
@@ -48,18 +48,14 @@ def _levels_text(model: Model, spectrum: Spectrum, found: Sensitivities) -> str:
 
 def _lines_text(model: Model, spectrum: Spectrum, found: LineSensitivities) -> str:
     """Return the derivatives of lines as a table."""
-    from specterm.views.derivative_table import derivative_table  # noqa: PLC0415
+    from specterm.views.derivative_table import derivative_table, parameter_headings  # noqa: PLC0415
 
     known = {level.index: level for level in spectrum.levels}
     energies = [known[b].value - known[a].value for a, b in found.lines]
     doubts = [_sum(known[a].error, known[b].error) for a, b in found.lines]
-    headings = ("line", _with_unit("energy", model.units.energy), *_headings(found.parameters, found.units))
+    headings = ("line", _with_unit("energy", model.units.energy), *parameter_headings(found.parameters, found.units))
     labels = [f"{a}-{b}" for a, b in found.lines]
     return f"{expression_of(model)}\n{derivative_table(labels, energies, doubts, found.derivatives, found.errors, headings)}"
-
-
-def _headings(parameters: tuple[str, ...], units: tuple[str, ...]) -> list[str]:
-    return [name if " per " in unit else _with_unit(name, unit) for name, unit in zip(parameters, units, strict=True)]
 
 
 def _with_unit(name: str, unit: str) -> str:

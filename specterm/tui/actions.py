@@ -69,6 +69,14 @@ class Keyed(OrderedKeys):
         """Compute the text as it stands."""
         raise NotImplementedError("the app computes")
 
+    def take_typed(self) -> None:
+        """Take the text of the pane into the document."""
+        raise NotImplementedError("the app knows its document")
+
+    def take_text(self, text: str) -> None:
+        """Replace the text, as an edit that can be undone."""
+        raise NotImplementedError("the app knows its text")
+
     def mark_stale(self) -> None:
         """Say of the levels shown that they are not those of the text, where that is so."""
         raise NotImplementedError("the app knows its text")
@@ -250,7 +258,8 @@ class Keyed(OrderedKeys):
         self.say("stopped; r computes again" if stopped else "nothing is running", "warn" if stopped else "plain")
 
     def action_again(self) -> None:
-        """Compute again."""
+        """Compute again; what was stopped goes on."""
+        self.work.retry()
         self.compute()
 
     def action_commands(self) -> None:

@@ -17,7 +17,6 @@ from textual.widgets import TextArea
 
 from specterm.session import presets, rescue
 from specterm.session.document import Document
-from specterm.tui.booked import Booked
 from specterm.tui.cell_pane import CellPane
 from specterm.tui.choices import Choices
 from specterm.tui.files import Files
@@ -27,9 +26,11 @@ from specterm.tui.options import Options
 from specterm.tui.pages import NAMES
 from specterm.tui.pages.page import Answered, Bench
 from specterm.tui.painter import Painter
+from specterm.tui.pinned import Pinned
 from specterm.tui.rows import Shown
 from specterm.tui.sheet_pane import SheetPane, SheetText
 from specterm.tui.solving import BuiltIn, Engine, Outcome, Request, Weighed
+from specterm.tui.tuned import Tuned
 from specterm.tui.watch import watch_signals
 from specterm.tui.work import Looked, Progressed, Solved, Work
 from specterm.views.status import MomentsText
@@ -38,7 +39,7 @@ _PAUSE = 0.3
 _LINES = 4
 
 
-class Specterm(Booked):
+class Specterm(Tuned):
     """One sheet and its spectrum."""
 
     ENABLE_COMMAND_PALETTE = False
@@ -59,6 +60,7 @@ class Specterm(Booked):
         self.error = None
         self.found: dict[Hashable, MomentsText | Weighed | Answered | None] = {}
         self.bench = Bench()
+        self.pins: tuple[Pinned, ...] = ()
         self._pause: Timer | None = None
         self._table = 0
         self._near: float | None = None

@@ -25,6 +25,7 @@ LOOKS: dict[str, Style] = {
     "wall": Style(),
     "weight": Style(color="magenta"),
     "dim": Style(dim=True),
+    "pinned": Style(color="yellow", dim=True),
     "good": Style(),
     "warn": Style(bold=True, color="red"),
     "key": Style(bold=True),

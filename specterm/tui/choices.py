@@ -10,7 +10,8 @@ class Choices:
     """`observable` and `other` are names or expressions (None: the usual ones); the rest belongs to single pages.
 
     lines: `every` level as a start, `temperature`, `broadening`, `into` another sheet; time: `times` (from, to, count) and the
-    `cursor`; matrix: `logarithmic`; notebook: `bins`, `runs`, `orders`; `scroll` is the first row of the page's table.
+    `cursor`; matrix: `logarithmic`; notebook: `bins`, `runs`, `orders`;
+    sweep: the ranges, such as `F=0:20:41`, and the `quantity` followed; `scroll` is the first row of the page's table.
     """
 
     observable: str | None = None
@@ -25,4 +26,6 @@ class Choices:
     bins: int = 24
     runs: int = 0
     orders: bool = False
+    sweep: tuple[str, ...] = ()
+    quantity: str = "levels"
     scroll: int = 0

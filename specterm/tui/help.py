@@ -13,6 +13,8 @@ _AREAS = {
     "level": "Levels",
     "figure": "Figure",
     "weights": "Weights of a prepared state",
+    "parameter": "Numbers of the sheet",
+    "pins": "Pins",
     "page": "Pages",
     "notebook": "Notebook",
     "sheet": "Sheet",
@@ -35,7 +37,9 @@ def readable(key: str) -> str:
     """Return a key's name as a reader knows it."""
     known = {
         "plus": "+", "equals_sign": "=", "minus": "-", "slash": "/", "colon": ":", "question_mark": "?", "pageup": "page up",
-        "pagedown": "page down", "tab": "Tab", "enter": "Enter", "shift+tab": "shift+Tab",
+        "pagedown": "page down", "tab": "Tab", "enter": "Enter", "shift+tab": "shift+Tab", "right_square_bracket": "]",
+        "left_square_bracket": "[", "right_curly_bracket": "}", "left_curly_bracket": "{", "full_stop": ".", "comma": ",",
+        "greater_than_sign": ">", "less_than_sign": "<",
     }
     return known.get(key, key)
 

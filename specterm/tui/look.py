@@ -14,6 +14,8 @@ from specterm.views.scene import MODES
 
 VIEWS = (*MODES, "momentum")
 """What the figure can show."""
+COLUMNS = ("none", "slope", "shift")
+"""What the table of levels can hold besides: nothing, derivatives by the parameter picked, shifts from the pin beside."""
 DEFAULT_COUNT = 6
 LARGEST_COUNT = 500
 
@@ -22,7 +24,9 @@ LARGEST_COUNT = 500
 class Look:
     """`chosen` is a place in the spectrum, `count` the number of levels asked for (None: the engine's choice).
 
-    `mode` is what the figure shows, `page` what stands in its place, `choices` what is chosen there.
+    `mode` is what the figure shows, `page` what stands in its place, `choices` what is chosen there,
+    `column` the column of choice in the table, `parameter` the number that is nudged, in steps of its
+    last digit times ten to the power `fineness`.
     """
 
     chosen: int = 0
@@ -32,6 +36,9 @@ class Look:
     state: str | None = None
     moments: bool = True
     page: str = "figure"
+    column: str = "none"
+    parameter: str | None = None
+    fineness: int = 0
     choices: Choices = field(default_factory=Choices)
 
     def stepped(self, steps: int, spectrum: Spectrum | None) -> Look:
@@ -50,6 +57,10 @@ class Look:
     def next_view(self) -> Look:
         """Return the look with the next view."""
         return replace(self, mode=_after(self.mode, VIEWS))
+
+    def next_column(self) -> Look:
+        """Return the look with the next column of choice."""
+        return replace(self, column=_after(self.column, COLUMNS))
 
     def turned(self, page: str) -> Look:
         """Return the look with another page, from its first row on."""

@@ -7,6 +7,7 @@ from collections.abc import Callable
 from math import isfinite
 from typing import Any
 
+from specterm.errors import SheetError, SpectermError
 from specterm.tui.actions import Keyed
 from specterm.tui.dialogs import Chooser, Entry
 from specterm.tui.pages import NAMES, page_of
@@ -49,6 +50,9 @@ class Paged(Keyed):
 
     def action_observable(self) -> None:
         """Choose the observable of the page."""
+        if self.shown.look.page == "sweep":
+            self._ask_quantity()
+            return
         words = "Dipole of the lines" if self.shown.look.page == "lines" else "Observable"
         self._ask_observable(words, lambda name: self._choose(observable=name, scroll=0))
 
@@ -87,8 +91,10 @@ class Paged(Keyed):
             self._ask_value(f"Temperature{unit}; nothing: none", choices.temperature, "temperature", every=True)
         elif page == "time":
             self._ask_times()
+        elif page == "sweep":
+            self._ask_sweep()
         else:
-            self.say("pages 3, 4 and 5 have a range to set", "warn")
+            self.say("pages 3, 4, 5 and 8 have a range to set", "warn")
 
     def action_breadth(self) -> None:
         """Ask for the broadening of lines, or the number of bins."""
@@ -151,10 +157,49 @@ class Paged(Keyed):
         words = "Times as first:last:how many" + (f" ({unit})" if unit else "") + "; nothing: two periods"
         self.ask(Chooser(words, (), free=True, text=start), answered)
 
+    def _ask_sweep(self) -> None:
+        """Ask for the range of a sweep; the number picked is proposed."""
+        look, outcome = self.shown.look, self.shown.outcome
+        start = " ".join(look.choices.sweep)
+        if not start and outcome is not None and outcome.model is not None and look.parameter in outcome.model.plain:
+            start = f"{look.parameter}="
+
+        def answered(text: str | None) -> None:
+            if text is None:
+                return
+            from specterm.analysis.sweep_request import axis_of  # noqa: PLC0415 - heavy
+
+            try:
+                ranges = tuple(text.split())
+                for one in ranges:
+                    axis_of(one)
+                if len(ranges) > 2:
+                    raise SheetError("a sweep has one or two ranges", mend="leave some out")
+            except SpectermError as error:
+                self.say(f"{error.message}; {error.mend}", "warn")
+                return
+            self._choose(sweep=ranges, cursor=0)
+
+        self.ask(Chooser("Sweep NAME=first:last:how many; two of them make a map", (), free=True, text=start), answered)
+
+    def _ask_quantity(self) -> None:
+        """Ask what a sweep follows."""
+        states = self.shown.outcome.states if self.shown.outcome else ()
+        entries = [Entry("levels", "levels"), Entry("transitions", "transitions", "energies from the chosen level")]
+        entries += [Entry("strengths", "strengths", "of the lines from the chosen level")]
+        entries += [Entry(f"weights={name}", f"weights of {name}") for name in states]
+        entries += [Entry("expectation", "expectation", "type expectation=OBSERVABLE")]
+
+        def chosen(text: str | None) -> None:
+            if text:
+                self._choose(quantity=text)
+
+        self.ask(Chooser("Against the parameter", entries, free=True), chosen)
+
     def action_every(self) -> None:
         """Show the lines from all levels, or from the chosen one."""
-        if self.shown.look.page != "lines":
-            self.say("page 4 shows lines from all levels, or from the chosen one", "warn")
+        if self.shown.look.page not in ("lines", "slopes"):
+            self.say("pages 4 and 7 show lines from all levels, or from the chosen one", "warn")
             return
         self._choose(every=not self.shown.look.choices.every, scroll=0)
 
@@ -222,8 +267,9 @@ def exporter(what: str, outcome: Outcome, state: str | None) -> Callable[[], Any
 
 def page_length(answer: Answered | None) -> int:
     """Return how many places the cursor of a page has."""
-    evolution = getattr(answer.result, "evolution", None) if answer is not None else None
-    return 0 if evolution is None else len(evolution.times)
+    result = answer.result if answer is not None else None
+    evolution = getattr(result, "evolution", None)
+    return len(evolution.times) if evolution is not None else len(getattr(result, "places", ()))
 
 
 def number(text: str) -> float:

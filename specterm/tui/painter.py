@@ -12,7 +12,8 @@ from specterm.tui.complaint import sentence
 from specterm.tui.keys import KEYS, TYPING, bottom
 from specterm.tui.look import Look
 from specterm.tui.pages import page_of
-from specterm.tui.pages.page import Answered
+from specterm.tui.pages.page import Answered, Inquiry
+from specterm.tui.pinned import Moved
 from specterm.tui.rows import (
     Shown,
     bottom_row,
@@ -25,7 +26,9 @@ from specterm.tui.rows import (
     moments_row,
     trusted_row,
 )
-from specterm.tui.solving import Weighed
+from specterm.tui.solving import Outcome, Weighed
+from specterm.tui.table_columns import column_inquiry, column_of
+from specterm.views.level_table import Extra
 from specterm.views.status import MomentsText
 
 if TYPE_CHECKING:
@@ -84,20 +87,48 @@ class Painter:
             if self.app.sheet.display:
                 self.app.sheet.complain(self.app.error)
 
-    def _answer(self, shown: Shown) -> tuple[Answered | None, bool]:
-        """Return the answer for the page shown and True; ask for it where it has not come, the last one stands in meanwhile."""
+    def _answers(self, shown: Shown) -> Shown:
+        """Return what is shown with the answers that have arrived; ask for those that have not, the last ones stand in."""
         app, page, outcome = self.app, page_of(shown.look), shown.outcome
-        if page is None or outcome is None:
-            return None, False
-        inquiry = page.inquiry(shown.look, outcome, app.bench)
+        asked: list[Inquiry] = []
+        if page is not None and outcome is not None:
+            inquiry = page.inquiry(shown.look, outcome, app.bench)
+            if inquiry is not None:
+                shown = self._with_answer(shown, page.name, inquiry, asked)
+            if page.also is not None and shown.answer is not None and shown.answer.error is None:
+                second = page.also(shown.answer.result, shown.look, outcome)
+                if second is not None:
+                    shown = replace(shown, also=self._known(second, asked))
+        if outcome is not None and shown.pinned is not None:
+            moved = self._known(Moved(shown.pinned), asked)
+            shown = replace(shown, moved=moved.result if moved is not None and moved.error is None else None)
+        if outcome is not None:
+            shown = replace(shown, extra=self._extra(shown, outcome, asked))
+            app.work.inquire(outcome, asked)
+        return replace(shown, asking=app.work.asking, tuned=app.tuned_words())
+
+    def _with_answer(self, shown: Shown, name: str, inquiry: Inquiry, asked: list[Inquiry]) -> Shown:
+        """Return what is shown with the answer of the page called `name`."""
+        found = self._known(inquiry, asked)
+        if found is not None:
+            self._last[name] = found
+        last = self._last.get(name)
+        return replace(shown, answer=last, fresh=last is not None and last.whole and last.inquiry == inquiry)
+
+    def _known(self, inquiry: Inquiry, asked: list[Inquiry]) -> Answered | None:
+        """Return the answer to an inquiry; None, and one more to be asked, where there is none or only a part."""
+        found = self.app.found.get(inquiry)
+        known = found if isinstance(found, Answered) else None
+        if known is None or not known.whole:
+            asked.append(inquiry)
+        return known
+
+    def _extra(self, shown: Shown, outcome: Outcome, asked: list[Inquiry]) -> Extra | None:
+        """Return the column of choice."""
+        inquiry = column_inquiry(shown, outcome)
         if inquiry is None:
-            return None, False
-        found = app.found.get(inquiry)
-        if isinstance(found, Answered):
-            self._last[page.name] = found
-        else:
-            app.work.inquire(outcome, inquiry)
-        return self._last.get(page.name), isinstance(found, Answered)
+            return None
+        return column_of(shown, outcome, self._known(inquiry, asked))
 
     def forget(self) -> None:
         """Forget the answers of an earlier sheet."""
@@ -120,8 +151,7 @@ class Painter:
                 app.work.look(outcome, look.state)
             if look.moments and look.chosen not in app.found:
                 app.work.look(outcome, look.chosen)
-        answer, fresh = self._answer(shown)
-        shown = replace(shown, answer=answer, fresh=fresh, bench=app.bench)
+        shown = self._answers(replace(shown, bench=app.bench))
         weighed = app.found.get(look.state) if look.state else None
         moments = app.found.get(look.chosen)
         shown = replace(

@@ -5,6 +5,7 @@ from __future__ import annotations
 import textwrap
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
+from typing import Any
 
 from specterm.errors import SpectermError, printable
 from specterm.session.document import Document
@@ -13,11 +14,12 @@ from specterm.tui.layout import BESIDE
 from specterm.tui.look import Look
 from specterm.tui.pages import NAMES, page_of
 from specterm.tui.pages.page import Answered, Bench, Room
+from specterm.tui.pinned import Pinned
 from specterm.tui.solving import Outcome, Weighed
 from specterm.views.cells import MARKS, Row, Rows, cut, fit_row, plain, width_of
 from specterm.views.columns import padded
 from specterm.views.level_figure import draw
-from specterm.views.level_table import table, text_table
+from specterm.views.level_table import Extra, table, text_table
 from specterm.views.numbers import short, with_unit
 from specterm.views.scene import Prepared, scene
 from specterm.views.status import MomentsText, Units, join, moment_parts, state_line, state_parts, trust_line, trust_parts
@@ -28,9 +30,10 @@ class Shown:
     """All that the panes are drawn from.
 
     `outcome` is the last one with a model, `stale` whether the text has moved on since; `weighed` and `moments` have arrived
-    for what `look` chooses, or are None; `answer` is that of the page shown, perhaps an earlier one (`fresh` says not); `name`
-    is the sheet's where no other pane says it; `error`, with the text it is about, has the place of the levels where there are
-    none.
+    for what `look` chooses, or are None; `tuned` says what number is picked; `answer` is that of the page shown, perhaps an
+    earlier one (`fresh` says not) and `also` its second one, `asking` whether more is on its way; `extra` is the column of
+    choice, `pinned` stands beside and the levels have `moved` since; `name` is the sheet's where no other pane says it;
+    `error`, with the text it is about, has the place of the levels where there are none.
     """
 
     look: Look
@@ -40,6 +43,12 @@ class Shown:
     moments: MomentsText | None = None
     answer: Answered | None = None
     fresh: bool = False
+    asking: bool = False
+    tuned: str = ""
+    also: Answered | None = None
+    extra: Extra | None = None
+    pinned: Pinned | None = None
+    moved: tuple[Any, ...] | None = None
     bench: Bench = field(default_factory=Bench)
     error: tuple[SpectermError, str] | None = None
     message: str = ""
@@ -83,12 +92,18 @@ def level_rows(shown: Shown, width: int, height: int) -> Rows:
     first = max(0, min(chosen - room // 2, len(levels) - room))
     rows = table(
         levels, width, height - more, unit=outcome.units.energy, chosen=chosen, first=first,
-        weighing=shown.weighed.weighing if shown.weighed else None, glyphs=shown.look.glyphs,
-    )
+        weighing=shown.weighed.weighing if shown.weighed else None, extra=_turned(shown.extra, flip=flip),
+        glyphs=shown.look.glyphs,
+    )  # fmt: skip
     if more:
         words = f" {len(levels)} levels, rows {first + 1}-{first + room}"
         rows = (*rows, fit_row(((words, "dim"),), width, shown.mark))
     return rows
+
+
+def _turned(extra: Extra | None, *, flip: bool) -> Extra | None:
+    """Return the column of choice with energies up."""
+    return Extra(extra.heading, extra.texts[::-1]) if extra and flip else extra
 
 
 def figure_rows(shown: Shown, width: int, height: int) -> Rows:
@@ -101,7 +116,8 @@ def figure_rows(shown: Shown, width: int, height: int) -> Rows:
     spectrum = outcome.origin.spectrum
     chosen = shown.look.chosen if spectrum and spectrum.levels else None
     zoom = shown.look.mode != "levels"
-    view = scene(outcome.origin, chosen, samples=max(100, 8 * width), prepared=shown.prepared, zoom=zoom)
+    behind = shown.pinned.behind(chosen, shown.moved) if shown.pinned else None
+    view = scene(outcome.origin, chosen, samples=max(100, 8 * width), prepared=shown.prepared, behind=behind, zoom=zoom)
     return draw(view, width, height, mode=shown.look.mode, glyphs=shown.look.glyphs, name=shown.name)
 
 
@@ -110,7 +126,8 @@ def page_rows(shown: Shown, width: int, height: int) -> Rows:
     page, answer, units = page_of(shown.look), shown.answer, shown.outcome.units if shown.outcome else None
     assert page is not None
     head: Rows = () if shown.look.page == NAMES[0] else (names_row(shown, width),)
-    room = Room(width, max(0, height - len(head)), shown.look, units or Units(), shown.bench)
+    also = shown.also.result if shown.also is not None else None
+    room = Room(width, max(0, height - len(head)), shown.look, units or Units(), shown.bench, also)
     if shown.outcome is None or shown.outcome.origin is None:
         rows: Rows = ()
     elif answer is not None and answer.error is None:
@@ -122,17 +139,18 @@ def page_rows(shown: Shown, width: int, height: int) -> Rows:
         elif page.inquiry(shown.look, shown.outcome, shown.bench) is None:
             rows = (*rows, fit_row(((" " + page.missing, "warn"),), width, shown.mark))
         else:
-            rows = (*rows, fit_row(((" computing; x stops it", "dim"),), width, shown.mark))
+            words = " computing; x stops it" if shown.asking else " stopped; r computes again"
+            rows = (*rows, fit_row(((words, "dim"),), width, shown.mark))
     return padded((*head, *rows), width, height)
 
 
 def names_row(shown: Shown, width: int) -> Row:
     """Return the line that names the pages with their keys, the one shown marked, and says when it is an earlier answer."""
-    runs: list[tuple[str, str]] = [(" ", "plain")]
+    runs: list[tuple[str, str]] = []
     for number, name in enumerate(NAMES, 1):
-        runs += [(f" {number} {name} ", "bar" if name == shown.look.page else "dim")]
-    if shown.answer is not None and not shown.fresh:
-        runs.append(("  computing", "warn"))
+        runs += [(" " if number > 1 else "", "plain"), (f"{number} {name}", "bar" if name == shown.look.page else "dim")]
+    if shown.asking and not shown.fresh:
+        runs.append((" ...", "warn"))
     return fit_row(tuple(runs), width)
 
 
@@ -178,7 +196,7 @@ def message_row(shown: Shown, width: int) -> Row:
     if shown.message:
         return fit_row(((" " + cut(shown.message, width - 1, shown.mark), shown.message_style),), width)
     outcome = shown.outcome
-    words = weighed_parts(shown)
+    words = [*([shown.tuned] if shown.tuned else []), *weighed_parts(shown)]
     if words:
         return fit_row(((" " + join(words, width - 1, shown.mark), "weight"),), width)
     notes = "; ".join(outcome.notes) if outcome else ""
@@ -225,7 +243,7 @@ def as_text(shown: Shown, width: int, height: int) -> str:
         return ""
     weighing = shown.weighed.weighing if shown.weighed else None
     lines = plain([chosen_row(shown, 200), trusted_row(shown, 200)])
-    levels = text_table(outcome.spectrum.levels, outcome.units.energy, weighing, shown.look.glyphs)
+    levels = text_table(outcome.spectrum.levels, outcome.units.energy, weighing, shown.look.glyphs, shown.extra)
     figure = plain(figure_rows(shown, max(width, 60), max(height, 20)))
     return f"{lines}\n\n{levels}\n\n{figure}\n"
 

@@ -13,11 +13,12 @@ from textual.containers import Vertical
 from textual.message import Message
 from textual.widgets import TextArea
 
-from specterm.errors import Span, SpectermError
+from specterm.errors import Span, SpectermError, position
 from specterm.tui.cell_pane import CellPane
 from specterm.tui.complaint import complaint
 from specterm.tui.keys import TYPING
 
+_POINTED = Style(bold=True, reverse=True)
 _MARKED = Style(underline=True, bold=True, color="red")
 
 
@@ -39,11 +40,34 @@ class SheetText(TextArea):
         self.cursor_blink = False
         self.compact = True
         self._marks: dict[int, tuple[int, int]] = {}
+        self._pointed: dict[int, tuple[int, int]] = {}
 
     def action_done(self) -> None:
         """Leave the text at once, so that the next key is no text any more."""
         self.screen.set_focus(None)
         self.post_message(self.Left())
+
+    def put(self, span: Span, text: str) -> None:
+        """Replace the characters of `span`, as an edit that can be undone; the cursor stays."""
+        here = self.cursor_location
+        start, end = (self._location(place) for place in (span.start, span.end))
+        self.history.checkpoint()
+        self.replace(text, start, end, maintain_selection_offset=False)
+        self.history.checkpoint()
+        self.move_cursor(here)
+
+    def point(self, span: Span | None) -> None:
+        """Show the characters of `span` strong, and bring them into view."""
+        self._pointed = marks_of(self.text, span)
+        if span is not None:
+            self.scroll_to(y=max(0, self._location(span.start)[0] - self.size.height // 2), animate=False)
+        self._line_cache.clear()
+        self.refresh()
+
+    def _location(self, place: int) -> tuple[int, int]:
+        """Return row and column, from 0, of a place in the text."""
+        row, column = position(self.text, place)
+        return row - 1, column - 1
 
     def mark(self, span: Span | None) -> None:
         """Underline the characters of `span`, or nothing."""
@@ -56,6 +80,9 @@ class SheetText(TextArea):
     def get_line(self, line_index: int) -> Text:
         """Return one line with the place of the error underlined."""
         line = super().get_line(line_index)
+        pointed = self._pointed.get(line_index)
+        if pointed is not None:
+            line.stylize(_POINTED, *pointed)
         place = self._marks.get(line_index)
         if place is not None:
             line.stylize(_MARKED, *place)

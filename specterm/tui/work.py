@@ -1,5 +1,7 @@
 """The computations behind the screen: the newest request wins, results come back as messages.
 
+One computation is under way, one at most waits for it.
+
 Each runs in a daemon thread of its own, so that leaving never waits for one; what was overtaken or stopped is forgotten at
 once and ends when it next asks whether to go on.
 """
@@ -9,7 +11,7 @@ from __future__ import annotations
 import contextlib
 import threading
 import time
-from collections.abc import Callable, Hashable
+from collections.abc import Callable, Hashable, Iterable
 from dataclasses import replace
 from typing import Any
 
@@ -23,6 +25,8 @@ from specterm.tui.solving import Engine, Outcome, Request, Weighed, compute, mom
 from specterm.views.status import MomentsText
 
 _PACE = 0.5
+_GRACE = 0.25
+"""A computation younger than this is waited for, so that a key held down shows every state that there is time for."""
 
 
 class Solved(Message):
@@ -60,11 +64,14 @@ class Work:
         self.app, self.engine = app, engine
         self.number = 0
         self.busy = False
+        self._solving, self._since = 0, 0.0
+        self._next: tuple[Request, Document] | None = None
         self._kept = False
         self._keeping = threading.Lock()
         self._running: set[threading.Thread] = set()
         self._asked: set[tuple[int, Hashable]] = set()
-        self._inquiry: Inquiry | None = None
+        self._wanted: set[Inquiry] = set()
+        self._refused: set[Inquiry] = set()
 
     @property
     def resting(self) -> bool:
@@ -76,14 +83,30 @@ class Work:
         self.number += 1
         self.busy = True
         numbered = replace(request, number=self.number)
-        self._start(lambda: self._solve(numbered, document))
         self.app.set_timer(_PACE, lambda: self._remind(numbered.number))
+        if self._solving and time.monotonic() - self._since < _GRACE:
+            if self._next is None:
+                self.app.set_timer(_GRACE, self._go_on)
+            self._next = (numbered, document)
+        else:
+            self._begin(numbered, document)
+
+    def _begin(self, request: Request, document: Document) -> None:
+        """Start a computation; older ones are asked to stop."""
+        self._next, self._solving, self._since = None, request.number, time.monotonic()
+        self._start(lambda: self._solve(request, document))
+
+    def _go_on(self) -> None:
+        """Start the computation that waits, if there is one."""
+        if self._next is not None and self.busy:
+            self._begin(*self._next)
 
     def stop(self) -> bool:
         """Forget the running computation, which ends by itself; return whether there was one."""
-        asking, self._inquiry = self._inquiry is not None, None
+        asking, self._refused, self._wanted = bool(self._wanted), self._refused | self._wanted, set()
         if not self.busy:
             return asking
+        self._next, self._solving = None, 0
         self.number += 1
         self.busy = False
         return True
@@ -91,20 +114,42 @@ class Work:
     @property
     def asking(self) -> bool:
         """Whether an inquiry is being answered."""
-        return self._inquiry is not None
+        return bool(self._wanted)
 
     def finished(self, number: int) -> bool:
-        """Take note of the end of a request; return whether it is the newest one."""
-        if number != self.number:
+        """Take note of the end of a request; return whether it is wanted: the newest one, or one that another waited for."""
+        if number != self._solving:
             return False
-        self.busy = False
+        self._solving = 0
+        if number == self.number:
+            self.busy = False
+        self._go_on()
         return True
 
-    def inquire(self, outcome: Outcome, inquiry: Inquiry) -> None:
-        """Find the answer to an inquiry, once; an older one still being answered is asked to stop."""
-        if (outcome.request.number, inquiry) not in self._asked:
-            self._inquiry = inquiry
-            self.look(outcome, inquiry)
+    def inquire(self, outcome: Outcome, inquiries: Iterable[Inquiry]) -> None:
+        """Find the answers to inquiries, each once; others still being answered are asked to stop."""
+        now = set(inquiries) - self._refused
+        self._wanted &= now
+        for inquiry in now:
+            if (outcome.request.number, inquiry) not in self._asked:
+                self._wanted.add(inquiry)
+                self.look(outcome, inquiry)
+
+    def retry(self) -> None:
+        """Let inquiries that were stopped be asked again."""
+        self._refused = set()
+
+    def _partly(self, outcome: Outcome, inquiry: Inquiry) -> Callable[[Callable[[], Any]], None]:
+        """Return what shows a part of an answer, at most twice a second."""
+        last = time.monotonic()
+
+        def tell(make: Callable[[], Any]) -> None:
+            nonlocal last
+            if time.monotonic() - last >= _PACE:
+                self._tell(Looked(outcome.request.number, inquiry, Answered(inquiry, make(), whole=False)))
+                last = time.monotonic()
+
+        return tell
 
     def look(self, outcome: Outcome, key: Hashable) -> None:
         """Find the moments of the level at place `key`, the weights of the state called `key`, or an inquiry's answer, once."""
@@ -131,7 +176,7 @@ class Work:
         """Do the work of a request; runs in a thread."""
         with self._keeping:
             self._keep(document)
-        outcome = compute(self.engine, request, lambda: request.number != self.number, self._progress(request.number))
+        outcome = compute(self.engine, request, lambda: request.number != self._solving, self._progress(request.number))
         self._tell(Solved(outcome))
 
     def _tell(self, message: Message) -> None:
@@ -171,9 +216,9 @@ class Work:
         if isinstance(key, (int, str)):
             found = weigh(self.engine, outcome, key) if isinstance(key, str) else moments_of(self.engine, outcome, key)
         else:
-            found = answered(key, outcome, lambda: self._inquiry is not key)
-            if self._inquiry is key:
-                self._inquiry = None
+            found = answered(key, outcome, lambda: key not in self._wanted, self._partly(outcome, key))
+            self._wanted.discard(key)
             if found is None:
                 self._asked.discard((outcome.request.number, key))
+                self._tell(Looked(outcome.request.number, key, None))
         self._tell(Looked(outcome.request.number, key, found))

@@ -55,14 +55,19 @@ class Canvas:
         """Dots down."""
         return int(self.dots.shape[0])
 
-    def curve(self, column: NDArray[np.float64], row: NDArray[np.float64], style: str, *, over: bool = False) -> None:
+    def curve(
+        self, column: NDArray[np.float64], row: NDArray[np.float64], style: str, *, over: bool = False,
+        dash: tuple[int, int] = (1, 0),
+    ) -> None:  # fmt: skip
         """Draw the polyline through (column, row), shapes (n,), column ascending; NaN makes a gap.
 
-        `over` clears what else stands in the cells it passes, so that it can be told from a hatched ground.
+        `over` clears what else stands in the cells it passes, so that it can be told from a hatched ground; `dash` =
+        (dots drawn, dots left out) along its way.
         """
         low, high = self._extents(column, row)
         places = np.arange(self.rows)[:, None]
-        self._stamp((places >= low) & (places <= high), style, over=over)
+        drawn = (np.arange(self.columns)[None, :] + places) % sum(dash) < dash[0]
+        self._stamp((places >= low) & (places <= high) & drawn, style, over=over)
 
     def hatch(self, column: NDArray[np.float64], row: NDArray[np.float64], base: float, style: str) -> None:
         """Hatch between the polyline and the row `base`: every second dot column, one a cell for braille and block."""

@@ -15,6 +15,7 @@ Rows = tuple[Row, ...]
 
 STYLES = (
     "plain", "title", "axis", "potential", "chosen", "forbidden", "other", "threshold", "wall", "weight", "dim", "good", "warn",
+    "pinned",
 )
 MARKS = {"braille": "…", "block": "…", "ascii": "~"}
 

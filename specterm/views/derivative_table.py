@@ -10,9 +10,6 @@ from specterm.arrays import Array
 from specterm.views.numbers import bracket, short
 from specterm.views.plain_table import sure, text_columns
 
-SURE = 1e-6
-"""Derivatives known better than this share of them are shown to six digits without a bracket."""
-
 
 def derivative_table(
     labels: Sequence[str], values: Sequence[float], value_errors: Sequence[float | None], derivatives: Array, errors: Array,
@@ -24,15 +21,21 @@ def derivative_table(
     """
     shown = sure(values, value_errors)
     rows = [
-        [label, text, *(_cell(float(d), float(e)) for d, e in zip(row, doubt, strict=True))]
+        [label, text, *(cell_text(float(d), float(e)) for d, e in zip(row, doubt, strict=True))]
         for label, text, row, doubt in zip(labels, shown, derivatives, errors, strict=True)
     ]
     return text_columns(headings, rows)
 
 
-def _cell(value: float, error: float) -> str:
+def cell_text(value: float, error: float, digits: int = 6) -> str:
+    """Return one derivative with the digits that are sure, at most `digits` of them; `-` for nan."""
     if np.isnan(value):
         return "-"
-    if abs(value) <= error:
+    if abs(value) <= error < np.inf:
         return "0"
-    return short(value) if error < SURE * abs(value) else bracket(value, error)
+    return short(value, digits) if error < 10.0**-digits * abs(value) else bracket(value, error)
+
+
+def parameter_headings(parameters: Sequence[str], units: Sequence[str]) -> list[str]:
+    """Return the headings of the parameters, each with the unit of its column where that says more than the name."""
+    return [name if " per " in unit or not unit else f"{name} ({unit})" for name, unit in zip(parameters, units, strict=True)]

@@ -121,6 +121,7 @@ def _draw_all(painter: Painter) -> None:
     scene, canvas = painter.scene, painter.canvas
     if scene.threshold is not None:
         canvas.horizontal(painter.row(scene.threshold), "threshold", dash=(4, 4))
+    _draw_behind(painter)
     _draw_others(painter)
     if scene.prepared is not None:
         _, mean, wave = scene.prepared
@@ -132,6 +133,21 @@ def _draw_all(painter: Painter) -> None:
     _draw_walls(painter)
     if scene.chosen is not None:
         _draw_chosen(painter, scene.chosen)
+
+
+def _draw_behind(painter: Painter) -> None:
+    """Draw a pinned potential, level and state in dots."""
+    scene, canvas = painter.scene, painter.canvas
+    if scene.behind is None:
+        return
+    potential, value, wave = scene.behind
+    canvas.curve(painter.across, painter.rows_of(potential), "pinned", dash=(1, 2))
+    if value is None or not np.isfinite(value):
+        return
+    canvas.horizontal(painter.row(value), "pinned", dash=(1, 5))
+    if wave is not None and painter.mode != "levels":
+        line, _ = painter.shape_of(wave)
+        canvas.curve(painter.across, painter.row(value) - painter.usual * line, "pinned", dash=(1, 2))
 
 
 def _draw_others(painter: Painter) -> None:

@@ -11,6 +11,8 @@ from specterm.views.cells import MARKS, Row, Rows, cut, fit_row, plain, width_of
 from specterm.views.numbers import bracket, short
 from specterm.views.weight_bars import bar, percent
 
+_SMALLEST = 6
+"""The fewest columns for a column of choice."""
 _NARROWEST = 12
 """The fewest columns for a bar with its percentage."""
 
@@ -23,6 +25,14 @@ class Weighing:
     weights: Mapping[int, float]
     errors: Mapping[int, float | None]
     captured: float
+
+
+@dataclass(frozen=True)
+class Extra:
+    """A column of choice: its heading and a text for every level."""
+
+    heading: str
+    texts: tuple[str, ...]
 
 
 @dataclass(frozen=True)
@@ -61,17 +71,20 @@ def _head(text: str) -> str:
 
 
 @lru_cache(maxsize=4)
-def _columns(levels: tuple[Level, ...], unit: str) -> list[_Column]:
+def _columns(levels: tuple[Level, ...], unit: str, extra: Extra | None = None) -> list[_Column]:
     """Return the columns in the order they matter; kept, as stepping through many levels asks for the same ones each time."""
     value = f"value ({unit})" if unit else "value"
+    chosen = [_Column(extra.heading, extra.texts)] if extra else []
     made = [
         _Column("n", tuple(str(level.index) for level in levels), right=True),
         _Column(value, aligned([value_text(level) for level in levels])),
+        *chosen,
         _Column("kind", tuple(level.kind for level in levels)),
         _Column("nodes", tuple("-" if level.nodes is None else str(level.nodes) for level in levels), right=True),
         _Column("parity", tuple(level.parity or "-" for level in levels)),
     ]
-    return [column for column in made if column.heading in ("n", value, "kind") or any(text != "-" for text in column.texts)]
+    always = ("n", value, "kind", extra.heading if extra else "")
+    return [column for column in made if column.heading in always or any(text != "-" for text in column.texts)]
 
 
 def table(
@@ -83,17 +96,20 @@ def table(
     chosen: int | None = None,
     first: int = 0,
     weighing: Weighing | None = None,
+    extra: Extra | None = None,
     glyphs: str = "braille",
 ) -> Rows:
     """Return `height` rows of `width` columns: a heading and the levels from place `first` on; `chosen` is a place.
 
     Columns that do not fit are left out from the right, the weight's bar and the value never; a value that is cut shows it.
+    `extra` stands behind the value.
     """
     if width <= 0 or height <= 0:
         return ((),) * max(0, height)
     mark = MARKS[glyphs]
-    columns = _columns(tuple(levels), unit)
+    columns = _columns(tuple(levels), unit, extra)
     tail = _tail(columns, width) if weighing else 0
+    columns = _with_room(columns, width - tail - 1, mark) if extra else columns
     kept = _fitting(columns, width - tail - 1)
     look = _Look(width, tail, chosen, weighing, glyphs)
     rows = [_heading(kept, width, weighing, tail, mark)]
@@ -115,6 +131,15 @@ def _fitting(columns: Sequence[_Column], width: int) -> list[_Column]:
     while len(kept) > 2 and sum(column.width + 1 for column in kept) > width:
         kept.pop()
     return kept
+
+
+def _with_room(columns: list[_Column], width: int, mark: str) -> list[_Column]:
+    """Return the columns with the column of choice cut to the room behind number and value, where there is some."""
+    room = width - sum(column.width + 1 for column in columns[:2]) - 1
+    if not _SMALLEST <= room < columns[2].width:
+        return columns
+    texts = tuple(cut(text, room, mark) for text in columns[2].texts)
+    return [*columns[:2], _Column(cut(columns[2].heading, room, mark), texts), *columns[3:]]
 
 
 def _cells(columns: Sequence[_Column], texts: Sequence[str]) -> str:
@@ -163,10 +188,13 @@ def _line(columns: Sequence[_Column], level: Level, place: int, look: _Look) -> 
     return (*head, (" " + text, "weight"))
 
 
-def text_table(levels: Sequence[Level], unit: str = "", weighing: Weighing | None = None, glyphs: str = "braille") -> str:
+def text_table(
+    levels: Sequence[Level], unit: str = "", weighing: Weighing | None = None, glyphs: str = "braille",
+    extra: Extra | None = None,
+) -> str:  # fmt: skip
     """Return the whole table as aligned plain text, as wide as it needs to be."""
-    columns = _columns(tuple(levels), unit)
+    columns = _columns(tuple(levels), unit, extra)
     width = sum(column.width + 1 for column in columns) + 1 + (40 if weighing else 0)
     if weighing:
         width = max(width, 4 * 32)
-    return plain(table(levels, width, len(levels) + 1, unit=unit, weighing=weighing, glyphs=glyphs))
+    return plain(table(levels, width, len(levels) + 1, unit=unit, weighing=weighing, extra=extra, glyphs=glyphs))

@@ -42,6 +42,18 @@ class Prepared:
 
 
 @dataclass(frozen=True)
+class Behind:
+    """A pinned spectrum to draw faintly behind: its potential, the chosen level there and the wave of its state, if any.
+
+    `potential` and `wave` map places (n,) to (n,); outside its own domain the potential is nan and the wave 0.
+    """
+
+    potential: Callable[[Floats], Floats]
+    value: float | None = None
+    wave: Callable[[Floats], NDArray[Any]] | None = None
+
+
+@dataclass(frozen=True)
 class Source:
     """A spectrum with what its figures need besides: the potential, the axes, and where each state lives, shape (levels, 2)."""
 
@@ -70,6 +82,7 @@ class Scene:
     energies: Window
     from_top: bool = False
     prepared: tuple[str, float, NDArray[Any]] | None = None
+    behind: tuple[Floats, float | None, NDArray[Any] | None] | None = None
 
     @property
     def is_complex(self) -> bool:
@@ -96,6 +109,7 @@ def scene(
     samples: int = 800,
     only: tuple[int, ...] | None = None,
     prepared: Prepared | None = None,
+    behind: Behind | None = None,
     zoom: bool = True,
 ) -> Scene:
     """Return the scene for the chosen level (its place in the spectrum, or None); `only` keeps levels with these indices.
@@ -124,6 +138,7 @@ def scene(
         axes, x, potential, tuple(levels[place] for place in kept), waves, focus, threshold, shown,
         energies, from_top,
         (prepared.name, prepared.mean, np.asarray(prepared.wave(x))) if prepared else None,
+        (behind.potential(x), behind.value, np.asarray(behind.wave(x)) if behind.wave else None) if behind else None,
     )
 
 

@@ -16,6 +16,11 @@ from specterm.tui.options import Options
 SHEET = "# An oscillator (invented)\nH = p^2/2 + x^2/2\nx in (-inf, inf)\nstate packet = exp(-(x-1)^2/2)\n"
 
 
+def unknown(text):
+    """Know no observable."""
+    raise SheetError(f"unknown name {text!r}", mend="this engine has no observables")
+
+
 class FakeEngine:
     """`bad` in a sheet cannot be understood, with `unphysical` there are no levels, `slow` waits, `deaf` does not listen."""
 
@@ -34,7 +39,8 @@ class FakeEngine:
         domain = SimpleNamespace(coordinate="x", left=-np.inf, right=np.inf, left_end="open", right_end="open")
         states = tuple(line.split()[1] for line in text.split("\n") if line.startswith("state "))
         parts = {"units": units, "domain": domain, "states": states, "coordinate_unit": "nm"}
-        return SimpleNamespace(text=text, warnings=(), hbar=0.5, **parts)
+        parts |= {"main": "H", "plain": (), "operators": {}, "functions": {}}
+        return SimpleNamespace(text=text, warnings=(), hbar=0.5, observable=unknown, **parts)
 
     def solve(self, model, *, count, near, tolerance, should_stop, progress):
         """Return the oscillator's levels."""

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 from specterm.session.records import Record
 from specterm.tui.look import Look
-from specterm.tui.pages.page import Bench, Page, Room, Stop
+from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell
 from specterm.tui.solving import Outcome
 from specterm.views.cells import Row, Rows, fit_row
 from specterm.views.columns import padded, table_rows
@@ -26,7 +26,7 @@ class Lines:
     temperature: float | None
     into: str | None
 
-    def answer(self, outcome: Outcome, should_stop: Stop) -> Transitions:
+    def answer(self, outcome: Outcome, should_stop: Stop, _: Tell) -> Transitions:
         """Return the lines."""
         from specterm.analysis.prepared import other_sheet  # noqa: PLC0415 - heavy
         from specterm.analysis.transitions import into_other, transitions  # noqa: PLC0415

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from specterm.session.records import Record
 from specterm.tui.look import Look
-from specterm.tui.pages.page import Bench, Page, Room, Stop
+from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell
 from specterm.tui.solving import Outcome
 from specterm.views.cells import Row, Rows, fit_row
 from specterm.views.columns import padded, text_rows
@@ -22,7 +22,7 @@ class Matrix:
 
     observable: str
 
-    def answer(self, outcome: Outcome, _: Stop) -> MatrixElements:
+    def answer(self, outcome: Outcome, _: Stop, __: Tell) -> MatrixElements:
         """Return the matrix with its errors."""
         from specterm.analysis.matrix_elements import matrix_elements  # noqa: PLC0415 - heavy
 

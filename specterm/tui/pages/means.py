@@ -9,7 +9,7 @@ from typing import Any
 from specterm.errors import SpectermError, WorkStopped
 from specterm.session.records import Record
 from specterm.tui.look import Look
-from specterm.tui.pages.page import Bench, Page, Room, Stop
+from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell
 from specterm.tui.solving import Outcome
 from specterm.views.cells import Row, Rows, fit_row
 from specterm.views.columns import padded, table_rows
@@ -23,7 +23,7 @@ class Means:
     first: str | None
     second: str | None
 
-    def answer(self, outcome: Outcome, should_stop: Stop) -> MeansFound:
+    def answer(self, outcome: Outcome, should_stop: Stop, _: Tell) -> MeansFound:
         """Return means and spreads of all the observables there are."""
         from specterm.analysis.named import expectations, named_observables  # noqa: PLC0415 - heavy
 

@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING
 
 from specterm.session.records import Record
 from specterm.tui.look import Look
-from specterm.tui.pages.page import Bench, Page, Room, Stop, subject_of
+from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell, subject_of
 from specterm.tui.solving import Outcome
 from specterm.views.cells import Rows
 
@@ -21,7 +21,7 @@ class Momenta:
 
     state: str
 
-    def answer(self, outcome: Outcome, _: Stop) -> MomentaFound:
+    def answer(self, outcome: Outcome, _: Stop, __: Tell) -> MomentaFound:
         """Return the density."""
         from specterm.analysis.momentum import momentum_density  # noqa: PLC0415 - heavy
         from specterm.analysis.prepared import prepare  # noqa: PLC0415

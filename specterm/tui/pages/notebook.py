@@ -9,7 +9,7 @@ from specterm.errors import SheetError
 from specterm.session.notebook import Entry, Notebook
 from specterm.session.records import Record
 from specterm.tui.look import Look
-from specterm.tui.pages.page import Bench, Page, Room, Stop
+from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell
 from specterm.tui.solving import Outcome
 from specterm.views.cells import Row, Rows, fit_row
 from specterm.views.columns import padded, text_rows
@@ -38,7 +38,7 @@ class Next:
     seed: int
     waves: dict[Any, Any] = field(compare=False, hash=False, repr=False)
 
-    def answer(self, outcome: Outcome, should_stop: Stop) -> NextFound:
+    def answer(self, outcome: Outcome, should_stop: Stop, _: Tell) -> NextFound:
         """Return what could come out now."""
         from specterm.analysis.measurement import both_orders, repeat  # noqa: PLC0415 - heavy
 

@@ -15,28 +15,30 @@ from specterm.views.cells import Rows
 from specterm.views.status import Units
 
 Stop = Callable[[], bool]
+Tell = Callable[[Callable[[], Any]], None]
 
 
 class Inquiry(Hashable, Protocol):
     """A question about one outcome, compared by value; answered off the event loop."""
 
-    def answer(self, outcome: Outcome, should_stop: Stop) -> Any:  # noqa: ANN401 - every page has its own result
-        """Return the result; raises SpectermError."""
+    def answer(self, outcome: Outcome, should_stop: Stop, tell: Tell) -> Any:  # noqa: ANN401 - every page has its own result
+        """Return the result; raises SpectermError. `tell` takes what makes a result of what is there already."""
 
 
 @dataclass(frozen=True, eq=False)
 class Answered:
-    """The result of an inquiry, or the error in its place."""
+    """The result of an inquiry, or the error in its place; `whole` says that no more is to come."""
 
     inquiry: Inquiry
     result: Any = None
     error: SpectermError | None = None
+    whole: bool = True
 
 
-def answered(inquiry: Inquiry, outcome: Outcome, should_stop: Stop) -> Answered | None:
+def answered(inquiry: Inquiry, outcome: Outcome, should_stop: Stop, tell: Tell) -> Answered | None:
     """Return what came of an inquiry, None when it was stopped; nothing is raised."""
     try:
-        return Answered(inquiry, inquiry.answer(outcome, should_stop))
+        return Answered(inquiry, inquiry.answer(outcome, should_stop, tell))
     except WorkStopped:
         return None
     except SpectermError as error:
@@ -60,13 +62,14 @@ class Bench:
 
 @dataclass(frozen=True)
 class Room:
-    """What the rows of a page are drawn for: its size, the look, the names of the units, the notebook."""
+    """What the rows of a page are drawn for: its size, the look, the names of the units, the notebook, the second answer."""
 
     width: int
     height: int
     look: Look
     units: Units
     bench: Bench
+    also: Any = None
 
     @property
     def glyphs(self) -> str:
@@ -78,7 +81,8 @@ class Room:
 class Page:
     """One page: its name, what it asks (None where there is nothing to ask), its rows, its data, what to do about None.
 
-    `alone` says that the rows make sense without a result; `keys` are the ids of the keys that act on it.
+    `alone` says that the rows make sense without a result; `keys` are the ids of the keys that act on it; `also` is a second
+    question that follows from the first answer.
     """
 
     name: str
@@ -88,6 +92,7 @@ class Page:
     missing: str = ""
     alone: bool = False
     keys: tuple[str, ...] = ()
+    also: Callable[[Any, Look, Outcome], Inquiry | None] | None = None
 
 
 def subject_of(look: Look, outcome: Outcome) -> str | None:

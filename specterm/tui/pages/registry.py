@@ -9,10 +9,12 @@ from specterm.tui.pages.means import MEANS
 from specterm.tui.pages.momentum import MOMENTUM
 from specterm.tui.pages.notebook import NOTEBOOK
 from specterm.tui.pages.page import Page
+from specterm.tui.pages.slopes import SLOPES
+from specterm.tui.pages.sweep import SWEEP
 from specterm.tui.pages.time import TIME
 
 FIGURE = "figure"
-PAGES = (MEANS, MATRIX, LINES, TIME, NOTEBOOK)
+PAGES = (MEANS, MATRIX, LINES, TIME, NOTEBOOK, SLOPES, SWEEP)
 NAMES = (FIGURE, *(page.name for page in PAGES))
 _BY_NAME = {page.name: page for page in PAGES}
 

@@ -9,7 +9,7 @@ import numpy as np
 
 from specterm.session.records import Record
 from specterm.tui.look import Look
-from specterm.tui.pages.page import Bench, Page, Room, Stop
+from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell
 from specterm.tui.solving import Outcome
 from specterm.views.cells import Row, Rows, fit_row
 from specterm.views.columns import padded
@@ -33,7 +33,7 @@ class Course:
     times: tuple[float, float, int] | None
     observable: str | None
 
-    def answer(self, outcome: Outcome, should_stop: Stop) -> CourseFound:
+    def answer(self, outcome: Outcome, should_stop: Stop, _: Tell) -> CourseFound:
         """Return survival, means and the packet itself."""
         from specterm.analysis.capture import captured_by  # noqa: PLC0415 - heavy
         from specterm.analysis.evolution import evolve, packet_of, usual_times  # noqa: PLC0415

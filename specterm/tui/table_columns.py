@@ -1,0 +1,60 @@
+"""The column of choice in the table of levels: derivatives by the parameter picked, or shifts from the pin beside."""
+
+from __future__ import annotations
+
+from math import inf
+from typing import TYPE_CHECKING, Any
+
+from specterm.tui.pages.page import Answered, Inquiry
+from specterm.tui.pages.slopes import Slopes
+from specterm.tui.pinned import Moved
+from specterm.tui.solving import Outcome
+from specterm.views.level_table import Extra, aligned
+
+if TYPE_CHECKING:
+    from specterm.tui.rows import Shown
+
+
+def column_inquiry(shown: Shown, outcome: Outcome) -> Inquiry | None:
+    """Return what the column asks for, None without a column."""
+    if outcome.spectrum is None or not outcome.spectrum.levels:
+        return None
+    name = shown.look.parameter
+    if shown.look.column == "slope" and name is not None and name in outcome.model.plain:
+        return Slopes((name,))
+    return Moved(shown.pinned) if shown.look.column == "shift" and shown.pinned is not None else None
+
+
+def column_of(shown: Shown, outcome: Outcome, answer: Answered | None) -> Extra | None:
+    """Return the column, with dots while its numbers are on their way."""
+    heading = f"dE/d{shown.look.parameter}" if shown.look.column == "slope" else "shift"
+    assert outcome.spectrum is not None
+    count = len(outcome.spectrum.levels)
+    if answer is None or answer.error is not None:
+        return Extra(heading, ("..." if answer is None else "-",) * count)
+    texts = _slopes(answer.result) if shown.look.column == "slope" else _shifts(answer.result, outcome)
+    return Extra(heading, texts) if len(texts) == count else None
+
+
+def _slopes(found: Any) -> tuple[str, ...]:  # noqa: ANN401 - SlopesFound
+    from specterm.views.derivative_table import cell_text  # noqa: PLC0415 - it brings the engine
+
+    pairs = zip(found.slopes.derivatives[:, 0].tolist(), found.slopes.errors[:, 0].tolist(), strict=True)
+    return aligned([cell_text(value, error, 5) for value, error in pairs])
+
+
+def _shifts(found: Any, outcome: Outcome) -> tuple[str, ...]:  # noqa: ANN401 - shifts
+    """Return shifts with their errors, and the number a level had where it is another one now."""
+    from specterm.views.derivative_table import cell_text  # noqa: PLC0415 - it brings the engine
+
+    assert outcome.spectrum is not None
+    texts = []
+    for shift, level in zip(found, outcome.spectrum.levels, strict=True):
+        if shift.shift is None:
+            texts.append("new")
+            continue
+        value = cell_text(shift.shift, inf if shift.error is None else shift.error, 5)
+        sign = "+" if value[0] not in "-~0" else ""
+        was = "" if shift.before == level.index else f" was {shift.before}"
+        texts.append(f"{sign}{value}{was}")
+    return tuple(texts)
