@@ -8,7 +8,7 @@ import numpy as np
 
 from specterm.analysis.observables import Jet, Observable, observable, weak
 from specterm.analysis.prepared import slips
-from specterm.analysis.quadrature import Rule, resolve
+from specterm.analysis.quadrature import POINTS, Rule, resolve
 from specterm.arrays import Array, Values
 from specterm.model import Model
 from specterm.spectrum import Spectrum
@@ -21,6 +21,10 @@ LOST = 0.1
 BLOCK = 2_000
 """Points taken at once, so that many levels on large meshes fit into memory."""
 MOST_PIECES = 6_000
+MOST_VALUES = 4_000_000
+"""Values of all levels at all points of a rule, at most about."""
+UNRESOLVED = 1e-18
+"""A rule that may have missed more than this share of a norm adds that to the errors."""
 
 
 @dataclass(frozen=True)
@@ -63,6 +67,9 @@ def elements(asked: Observable, left: Spectrum, right: Spectrum) -> MatrixElemen
     off = (slips(left) + ROUNDING, slips(right) + ROUNDING)
     rough = 1e4 * off[0][:, None] * off[1] * (norms[0][:, None] + norms[1])
     errors = off[0][:, None] * norms[1] + norms[0][:, None] * off[1] + rough + 1e-14 * sizes
+    unseen = float(rule.missed.max(initial=0.0))
+    if unseen > UNRESOLVED:
+        errors = errors + np.sqrt(unseen) * (norms[0][:, None] + norms[1] + sizes)
     lost = (off[0][:, None] > LOST) | (off[1] > LOST)
     return MatrixElements(asked.text, rows, columns, values, np.where(lost, np.inf, errors), asked.unit)
 
@@ -84,6 +91,12 @@ def shared_rule(asked: Observable, left: States, right: States) -> Rule:
     def envelope(x: Array) -> Values:
         waves = [*left.evaluate(x), *([] if right is left else right.evaluate(x))]
         with np.errstate(all="ignore"):
-            return np.array([*waves, *(np.nan_to_num(f(x) * wave) for f in functions for wave in waves[-1:])])
+            return np.array([*waves, *(_finite(f(x) * wave) for f in functions for wave in waves[-1:])])
 
-    return resolve(envelope, places, 1e-12, MOST_PIECES)
+    count = left.evaluate(places[:1]).shape[0] + right.evaluate(places[:1]).shape[0]
+    return resolve(envelope, places, 1e-12, max(2 * len(places), min(MOST_PIECES, MOST_VALUES // (POINTS * count))))
+
+
+def _finite(values: Values) -> Values:
+    """Return values with 0 for those that are not finite."""
+    return np.nan_to_num(values, nan=0.0, posinf=0.0, neginf=0.0)

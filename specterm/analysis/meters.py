@@ -21,6 +21,8 @@ from specterm.model.regular import regular_part, regular_slope
 from specterm.model.term import linear
 from specterm.spectrum import Spectrum, solve
 
+LARGEST = 1e140
+"""Values above this cannot be told apart by bins."""
 SMALLEST = 1e-10
 """Outcomes less probable than this are left out."""
 MOST_BINS = 4_000
@@ -294,6 +296,9 @@ def _binned(meter: AxisMeter, wave: Wave, bins: int, width: float | None) -> Axi
     here = wave if wave.axis == meter.axis else turned(wave)
     values = meter.function(here.rule[0])
     share = here.rule[1] * np.abs(here.values) ** 2
+    if (share[~(np.abs(values) < LARGEST)]).sum() > SMALLEST * share.sum():
+        why = f"`{meter.text}` is not finite, or above {LARGEST:g}, where the state is"
+        raise PhysicsError(why, mend="choose another observable")
     order = np.argsort(values)
     rising = np.cumsum(share[order]) / share.sum()
     low, high = (float(values[order[min(int(np.searchsorted(rising, q)), len(order) - 1)]]) for q in (5e-5, 1 - 5e-5))

@@ -9,9 +9,11 @@ import numpy as np
 
 from specterm.arrays import Array, Values
 from specterm.discrete.quadrature import gauss_legendre
+from specterm.errors import PhysicsError
 
 POINTS = 20
 MOST_PIECES = 200_000
+LARGEST = 1e140
 
 
 @dataclass(frozen=True)
@@ -41,6 +43,10 @@ def resolve(
         half = np.diff(places)[:, None] / 2
         x = places[:-1, None] + half * (1 + t)
         values = np.nan_to_num(np.atleast_2d(functions(x.ravel())))
+        if np.abs(values).max(initial=0.0) > LARGEST:
+            raise PhysicsError(
+                f"values above {LARGEST:g} are too large to be squared and integrated", mend="divide by a large number"
+            )
         values = values.reshape(len(values), *x.shape)
         norm = np.einsum("eq,feq->f", half * w, np.abs(values) ** 2)
         tail = 2 * half[:, 0] * np.abs(values @ projector).max(axis=2) ** 2

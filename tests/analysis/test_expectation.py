@@ -231,3 +231,10 @@ def test_what_all_mixtures_of_near_levels_agree_on_is_sharp():
 def test_a_level_whose_partner_was_not_computed_has_no_error():
     """With one level only nothing is known of its partner: <x> has no error."""
     assert in_state(PARTED.format(left="-inf"), "x", "level(0)", 1).error is None
+
+
+@pytest.mark.parametrize("observable", ["1e308*x", "1e200*x"])
+def test_values_too_large_to_be_squared_are_refused(observable):
+    """What cannot be squared in double precision is told, not returned as infinity."""
+    with pytest.raises(PhysicsError, match="too large"):
+        in_state(WALLS, observable, "level(0)")

@@ -190,3 +190,10 @@ def test_what_is_not_covered_is_told():
     rest = record.steps[1].rest
     assert 1e-4 < rest < 0.1
     assert any("lies beyond" in note for note in record.notes)
+
+
+@pytest.mark.parametrize("observable", ["log(x)", "1e308*x", "1e200*x"])
+def test_observables_without_finite_values_are_refused(observable):
+    """A logarithm on the whole line, or values beyond double precision, cannot be sorted into bins."""
+    with pytest.raises(PhysicsError, match="not finite"):
+        course(LINE, "c", [observable])
