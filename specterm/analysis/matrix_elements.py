@@ -58,7 +58,7 @@ def elements(asked: Observable, left: Spectrum, right: Spectrum) -> MatrixElemen
     sizes, reach = np.zeros(values.shape), [np.zeros(len(rows)), np.zeros(len(columns))]
     for start in range(0, len(rule.x), BLOCK):
         x, w = rule.x[start : start + BLOCK], rule.w[start : start + BLOCK]
-        bra, ket = jets(left.states, x, asked.order), jets(right.states, x, asked.order)
+        bra, ket = jets(left.states, x, asked.highest), jets(right.states, x, asked.highest)
         part, size = weak(asked.terms, bra, ket, x, w)
         values, sizes = values + part, sizes + size
         for side, jet in enumerate((bra, ket)):

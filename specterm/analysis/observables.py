@@ -40,6 +40,11 @@ class Observable:
         """The highest derivative in it."""
         return len(self.parts) - 1
 
+    @property
+    def highest(self) -> int:
+        """The highest derivative that is taken of a wave, in the weak form too."""
+        return max([self.order, *(max(key) for key, _ in self.terms)])
+
     def functions(self) -> tuple[Function, ...]:
         """Return every function in it."""
         return (*self.parts, *(c for _, c in self.terms))

@@ -22,8 +22,8 @@ PAIRED = 1e-6
 """On a ring, levels closer than this share of theirs are solved together: they come as pairs."""
 GROUP_SWEEPS = 12
 """So many inverse iterations are spent on a group at most."""
-DENSE = 700
-"""Up to so many vertices groups are solved with a dense matrix."""
+DENSE = 80
+"""Up to so many vertices groups are solved with a dense matrix: beyond, sparse ones win more than their import costs."""
 
 
 @dataclass(frozen=True)
@@ -321,4 +321,10 @@ def _solver(matrix: Chain):  # type: ignore[no-untyped-def]  # noqa: ANN202 - a 
         return solve
     from scipy.sparse.linalg import splu  # noqa: PLC0415 - as above
 
-    return splu(whole).solve
+    try:
+        return splu(whole).solve
+    except RuntimeError:
+        from scipy.sparse import eye_array  # noqa: PLC0415 - as above
+
+        shake = np.finfo(float).eps * np.abs(whole.data).max()
+        return splu(whole + shake * eye_array(whole.shape[0], format="csc")).solve

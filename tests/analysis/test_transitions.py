@@ -141,3 +141,9 @@ def test_no_strengths_where_the_double_commutator_vanishes():
     assert found.sums[0] is None
     assert all(line.strength is None for line in found.lines)
     assert any("no strengths" in note for note in found.notes)
+
+
+def test_matrix_of_a_commutator_written_as_such():
+    """The matrix of [p, x], whose weak form still has derivatives in it, is -i between equal levels (closed form)."""
+    matrix = matrix_elements(model(WALLS), spectrum(WALLS, 4), "commutator(p, x)")
+    assert np.allclose(matrix.values, -1j * np.eye(4), atol=1e-9)

@@ -99,3 +99,12 @@ def test_a_free_neighbour_above_does_not_blur_the_last_state():
     few, many = spectrum("H = p^2 + x^2; x in (-inf, inf)", 3), spectrum("H = p^2 + x^2; x in (-inf, inf)", 4)
     assert few.vector_error[2] < 1e-7
     assert many.vector_error[2] < 1e-7
+
+
+def test_many_levels_of_a_ring():
+    """A free ring of 60 vertices and more, solved with sparse matrices: (n + f)^2 with a Bloch phase f (closed form)."""
+    found = spectrum("H = p^2; x in ring(0, 2*pi), phase 0.2", 90)
+    exact = np.sort((np.arange(-60, 61) + 0.2) ** 2)[:90]
+    assert found.complete
+    for level, value in zip(found.levels, exact, strict=True):
+        assert abs(level.value - value) <= level.error + 1e-13 * value
