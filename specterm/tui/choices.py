@@ -11,7 +11,8 @@ class Choices:
 
     lines: `every` level as a start, `temperature`, `broadening`, `into` another sheet; time: `times` (from, to, count) and the
     `cursor`; matrix: `logarithmic`; notebook: `bins`, `runs`, `orders`;
-    sweep: the ranges, such as `F=0:20:41`, and the `quantity` followed; `scroll` is the first row of the page's table.
+    sweep: the ranges, such as `F=0:20:41`, and the `quantity` followed;
+    fit: the file of `observed` lines, and what to `vary` with its bounds; `scroll` is the first row of the page's table.
     """
 
     observable: str | None = None
@@ -28,4 +29,6 @@ class Choices:
     orders: bool = False
     sweep: tuple[str, ...] = ()
     quantity: str = "levels"
+    observed: str | None = None
+    vary: tuple[tuple[str, tuple[float, float]], ...] = ()
     scroll: int = 0

@@ -65,14 +65,15 @@ KEYS = (
     Key("page.notebook", "6", "page('notebook')", "page", "Notebook", "Measurements, one after the other", "", "6"),
     Key("page.slopes", "7", "page('slopes')", "page", "Slopes", "Derivatives of levels by the numbers of the sheet", "", "7"),
     Key("page.sweep", "8", "page('sweep')", "page", "Sweep", "Levels against a number of the sheet", "", "8"),
+    Key("page.fit", "K", "page('fit')", "page", "Fit", "Numbers of the sheet that match observed lines", "", "K"),
     Key("page.next", "tab", "turn(1)", "page", "Next page", "Show the next page", "", "tab"),
     Key("page.back", "shift+tab", "turn(-1)", "page", "Page before", "Show the page before", "", "shift+tab"),
     Key("page.observable", "d", "observable", "page", "Observable", "The observable of the page", "d observable", "d"),
     Key("page.second", "D", "second", "page", "Second observable", "One more; in the notebook: both orders", "D second", "D"),
     Key("page.amount", "l", "amount", "page", "Range", "Times; temperature; sweep; logarithmic map", "l range", "l"),
     Key("page.breadth", "b", "breadth", "page", "Breadth", "Broadening of lines; bins in the notebook", "b breadth", "b"),
-    Key("page.every", "z", "every", "page", "From all", "Lines from all levels or the chosen one", "z from all", "z"),
-    Key("page.into", "F", "into", "page", "Into a sheet", "Lines into the levels of another sheet", "F into a sheet", "F"),
+    Key("page.every", "z", "every", "page", "From all", "Lines from all levels; approve a match", "z from all", "z"),
+    Key("page.into", "F", "into", "page", "Into a sheet", "Lines into another sheet; the lines to fit", "F into a sheet", "F"),
     Key("page.along", "right", "along(1)", "page", "Later", "Move the cursor along", "left/right cursor", "right"),
     Key("page.along_back", "left", "along(-1)", "page", "Earlier", "Move the cursor back", "", "left"),
     Key("page.along_far", "greater_than_sign", "along(10)", "page", "Ten later", "Ten steps along", "", ">"),
@@ -98,7 +99,7 @@ KEYS = (
     Key("tune.down", "left_square_bracket", "nudge(-1)", "parameter", "Nudge down", "One step down", "", "["),
     Key("tune.coarser", "right_curly_bracket", "fineness(1)", "parameter", "Coarser", "Steps ten times as large", "", "}"),
     Key("tune.finer", "left_curly_bracket", "fineness(-1)", "parameter", "Finer", "Steps a tenth as large", "", "{"),
-    Key("tune.take", "T", "take_value", "page", "Take", "Write the value at the cursor into the sheet", "T take", "T"),
+    Key("tune.take", "T", "take_value", "page", "Take", "Write what was found into the sheet", "T take", "T"),
     Key("tune.column", "V", "column", "parameter", "Column", "Table: nothing more, slopes, shifts from a pin", "", "V"),
     Key("pin.pin", "P", "pin", "pins", "Pin", "Keep this spectrum; it stands beside the next ones", "P pin", "P"),
     Key("pin.list", "B", "pins", "pins", "Pins", "Stand beside, swap, rename or drop a pin", "", "B"),
@@ -119,10 +120,15 @@ TYPING = (
 ACTIONS = frozenset(key.action.partition("(")[0] for key in KEYS)
 
 
-def bottom(keys: tuple[Key, ...], first: tuple[str, ...] = ()) -> tuple[str, ...]:
-    """Return what the bottom line says, most important first: the keys whose ids are in `first`, then the usual ones."""
+def bottom(keys: tuple[Key, ...], first: tuple[str | tuple[str, str], ...] = ()) -> tuple[str, ...]:
+    """Return what the bottom line says, most important first: the keys whose ids are in `first`, then the usual ones.
+
+    An id may come with other words than the usual ones.
+    """
+    said = dict(one for one in first if isinstance(one, tuple))
+    first = tuple(one if isinstance(one, str) else one[0] for one in first)
     wanted = [key for key in keys if key.area not in PAGED or key.id in ALWAYS or key.id in first]
-    named = {key.id: key.short for key in wanted if key.short}
+    named = {key.id: said.get(key.id, key.short) for key in wanted if key.short}
     named = {**{name: named[name] for name in first if name in named}, **named}
     last = [named.pop(name) for name in ("app.help", "app.quit") if name in named]
     return (*named.values(), *last)

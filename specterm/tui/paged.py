@@ -11,6 +11,7 @@ from specterm.errors import SheetError, SpectermError
 from specterm.tui.actions import Keyed
 from specterm.tui.dialogs import Chooser, Entry
 from specterm.tui.pages import NAMES, page_of
+from specterm.tui.pages.fit import vary_from
 from specterm.tui.pages.page import Answered, Bench, Room
 from specterm.tui.solving import Outcome
 from specterm.views.numbers import scale_of, short
@@ -52,6 +53,9 @@ class Paged(Keyed):
         """Choose the observable of the page."""
         if self.shown.look.page == "sweep":
             self._ask_quantity()
+            return
+        if self.shown.look.page == "fit":
+            self._ask_vary()
             return
         words = "Dipole of the lines" if self.shown.look.page == "lines" else "Observable"
         self._ask_observable(words, lambda name: self._choose(observable=name, scroll=0))
@@ -198,13 +202,16 @@ class Paged(Keyed):
 
     def action_every(self) -> None:
         """Show the lines from all levels, or from the chosen one."""
-        if self.shown.look.page not in ("lines", "slopes"):
+        if self.shown.look.page not in ("lines", "slopes", "fit"):
             self.say("pages 4 and 7 show lines from all levels, or from the chosen one", "warn")
             return
         self._choose(every=not self.shown.look.choices.every, scroll=0)
 
     def action_into(self) -> None:
-        """Choose another sheet that the lines lead into."""
+        """Choose another sheet that the lines lead into, or the observed lines of a fit."""
+        if self.shown.look.page == "fit":
+            self._ask_observed()
+            return
         if self.shown.look.page != "lines":
             self.say("page 4 shows lines into another sheet", "warn")
             return
@@ -216,6 +223,34 @@ class Paged(Keyed):
                 self._choose(into=os.path.expanduser(name) or None, observable=None, scroll=0)
 
         self.ask(Chooser("Lines into the levels of the sheet", entries, free=True), chosen)
+
+    def _ask_observed(self) -> None:
+        """Choose the file of observed lines."""
+        found = sorted(path.name for path in self.folder.glob("*.csv"))[:500]
+
+        def chosen(name: str | None) -> None:
+            if name:
+                self._choose(observed=os.path.expanduser(name), every=False, scroll=0)
+                if not self.shown.look.choices.vary:
+                    self._ask_vary()
+
+        words = "Observed lines: a file with the columns from, to, value, uncertainty"
+        self.ask(Chooser(words, [Entry(name, name) for name in found], free=True), chosen)
+
+    def _ask_vary(self) -> None:
+        """Ask which numbers a fit varies."""
+        look = self.shown.look
+        start = " ".join(_with_bounds(name, *bounds) for name, bounds in look.choices.vary) or look.parameter or ""
+
+        def answered(text: str | None) -> None:
+            if text is None:
+                return
+            try:
+                self._choose(vary=vary_from(text), every=False, scroll=0)
+            except SpectermError as error:
+                self.say(f"{error.message}; {error.mend}", "warn")
+
+        self.ask(Chooser("Numbers to vary, such as  F m=0.05:0.08", (), free=True, text=start), answered)
 
     # What leaves the screen
 
@@ -263,6 +298,12 @@ def exporter(what: str, outcome: Outcome, state: str | None) -> Callable[[], Any
         return weights_record(project(outcome.model, outcome.spectrum, state or "", outcome.request.folder))
 
     return made
+
+
+def _with_bounds(name: str, low: float, high: float) -> str:
+    """Return a number to vary as it is typed."""
+    ends = [short(end, 12) if isfinite(end) else "" for end in (low, high)]
+    return f"{name}={ends[0]}:{ends[1]}" if any(ends) else name
 
 
 def page_length(answer: Answered | None) -> int:

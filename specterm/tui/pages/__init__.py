@@ -1,5 +1,5 @@
 """What the figure's place can show instead of the figure: one file a page."""
 
-from specterm.tui.pages.registry import NAMES, PAGES, page_of
+from specterm.tui.pages.registry import LETTERS, NAMES, PAGES, page_of
 
-__all__ = ["NAMES", "PAGES", "page_of"]
+__all__ = ["LETTERS", "NAMES", "PAGES", "page_of"]

@@ -81,7 +81,8 @@ class Room:
 class Page:
     """One page: its name, what it asks (None where there is nothing to ask), its rows, its data, what to do about None.
 
-    `alone` says that the rows make sense without a result; `keys` are the ids of the keys that act on it; `also` is a second
+    `alone` says that the rows make sense without a result; `keys` are the ids of the keys that act on it, with
+    what the bottom line says of one where it differs; `also` is a second
     question that follows from the first answer.
     """
 
@@ -91,7 +92,7 @@ class Page:
     record: Callable[[Any, Room], Record | None]
     missing: str = ""
     alone: bool = False
-    keys: tuple[str, ...] = ()
+    keys: tuple[str | tuple[str, str], ...] = ()
     also: Callable[[Any, Look, Outcome], Inquiry | None] | None = None
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from specterm.tui.look import Look
+from specterm.tui.pages.fit import FIT
 from specterm.tui.pages.lines import LINES
 from specterm.tui.pages.matrix import MATRIX
 from specterm.tui.pages.means import MEANS
@@ -14,8 +15,10 @@ from specterm.tui.pages.sweep import SWEEP
 from specterm.tui.pages.time import TIME
 
 FIGURE = "figure"
-PAGES = (MEANS, MATRIX, LINES, TIME, NOTEBOOK, SLOPES, SWEEP)
+PAGES = (MEANS, MATRIX, LINES, TIME, NOTEBOOK, SLOPES, SWEEP, FIT)
 NAMES = (FIGURE, *(page.name for page in PAGES))
+LETTERS = {FIT.name: "K"}
+"""The keys of the pages that have no digit."""
 _BY_NAME = {page.name: page for page in PAGES}
 
 
