@@ -98,6 +98,7 @@ def evolve(
             mend="ask for more levels with -n; what lies in the continuum stays out of reach",
         )
     at = np.asarray(times, dtype=float)
+    _refuse_endless(model, spectrum, at)
     packet = packet_of(model, spectrum, weights)
     survival, error = _survival(model, spectrum, weights, at)
     asked = observable(model, observed or model.domain.coordinate)
@@ -111,6 +112,14 @@ def evolve(
         state, asked.text, at, survival, error, mean, spread, weights.captured, *revivals(model, weights),
         model.units.time, tuple(notes),
     )  # fmt: skip
+
+
+def _refuse_endless(model: Model, spectrum: Spectrum, times: Array) -> None:
+    """Raise PhysicsError for times whose phases are beyond all numbers."""
+    reach = max((abs(level.value) for level in spectrum.levels), default=0.0) / model.hbar
+    with np.errstate(over="ignore", invalid="ignore"):
+        if not np.isfinite(4 * times * reach).all():
+            raise PhysicsError("the phases at such times are beyond all numbers", mend="ask for shorter times")
 
 
 def _survival(model: Model, spectrum: Spectrum, weights: Weights, times: Array) -> tuple[Array, Array]:

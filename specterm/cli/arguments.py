@@ -13,6 +13,7 @@ VERBS = (
     "presets",
 )  # fmt: skip
 MOST = 1_000_000
+WIDEST = 2_000
 VIEWS = ("psi", "density", "levels", "momentum")
 GLYPHS = ("braille", "block", "ascii")
 
@@ -58,8 +59,8 @@ def parser() -> argparse.ArgumentParser:
     figure.add_argument("--levels", metavar="I,J", type=_indices, help="only these levels")
     figure.add_argument("--state", metavar="STATE", help="draw this prepared state too")
     figure.add_argument("--view", choices=VIEWS, default="psi", help="drawn at each level; or momentum, of one state")
-    figure.add_argument("--width", type=_size(20), default=100, metavar="W", help="columns (100)")
-    figure.add_argument("--height", type=_size(5), default=32, metavar="H", help="rows (32)")
+    figure.add_argument("--width", type=_size(20, WIDEST), default=100, metavar="W", help="columns (100)")
+    figure.add_argument("--height", type=_size(5, WIDEST), default=32, metavar="H", help="rows (32)")
     _with_glyphs(figure)
     _with_sheet(verbs.add_parser("check", help="well formed, Hermitian, bounded below?"), solving=False)
     presets = verbs.add_parser("presets", help="the sheets that come along, one a line")
@@ -191,8 +192,8 @@ def _with_glyphs(one: argparse.ArgumentParser) -> None:
 
 def _with_size(one: argparse.ArgumentParser, width: int, height: int) -> None:
     """Add the size of the figure under the table."""
-    one.add_argument("--width", type=_size(20), default=width, metavar="W", help=f"columns of the figure ({width})")
-    one.add_argument("--height", type=_size(5), default=height, metavar="H", help=f"rows of the figure ({height})")
+    one.add_argument("--width", type=_size(20, WIDEST), default=width, metavar="W", help=f"columns of the figure ({width})")
+    one.add_argument("--height", type=_size(5, WIDEST), default=height, metavar="H", help=f"rows of the figure ({height})")
     _with_glyphs(one)
 
 
@@ -205,13 +206,13 @@ def _with_output(one: argparse.ArgumentParser, *, data: bool = True) -> None:
     one.add_argument("-o", dest="output", metavar="FILE", help="write the result there")
 
 
-def _size(least: int):  # type: ignore[no-untyped-def]  # noqa: ANN202 - a converter for argparse
-    """Return a converter to whole numbers of at least `least`."""
+def _size(least: int, most: int = MOST):  # type: ignore[no-untyped-def]  # noqa: ANN202 - a converter for argparse
+    """Return a converter to whole numbers from `least` to `most`."""
 
     def whole(text: str) -> int:
         value = int(text)
-        if value < least or value > MOST:
-            raise argparse.ArgumentTypeError(f"{text} is not a number from {least} to {MOST}")
+        if value < least or value > most:
+            raise argparse.ArgumentTypeError(f"{text} is not a number from {least} to {most}")
         return value
 
     whole.__name__ = "whole number"
@@ -266,4 +267,4 @@ def _times(text: str) -> tuple[float, ...]:
     first, last, count = _number(parts[0]), _number(parts[1]), _size(1)(parts[2])
     if count == 1:
         return (first,)
-    return tuple(first + (last - first) * (k / (count - 1)) for k in range(count))
+    return tuple(first * ((count - 1 - k) / (count - 1)) + last * (k / (count - 1)) for k in range(count))

@@ -27,12 +27,12 @@ def broadened(sticks: Sequence[Stick], energies: NDArray[np.float64], width: flo
     """Return the sum of the lines at the energies, each a curve of area `intensity` and full width at half maximum `width`."""
     places = np.array([stick.energy for stick in sticks])[:, None]
     sizes = np.array([stick.intensity for stick in sticks])[:, None]
-    half = width / 2
-    if shape == "gauss":
-        sigma = half / np.sqrt(2 * np.log(2))
-        curves = np.exp(-((energies - places) ** 2) / (2 * sigma**2)) / (sigma * np.sqrt(2 * np.pi))
-    else:
-        curves = half / np.pi / ((energies - places) ** 2 + half**2)
+    with np.errstate(over="ignore", under="ignore"):
+        away = (energies - places) / (width / 2)
+        if shape == "gauss":
+            curves = np.exp(-np.log(2) * away**2) * 2 * np.sqrt(np.log(2) / np.pi) / width
+        else:
+            curves = 2 / np.pi / width / (1 + away**2)
     total: NDArray[np.float64] = (sizes * curves).sum(axis=0)
     return total
 
