@@ -52,7 +52,8 @@ def level_wave(spectrum: Spectrum, kept: Values, known: Callable[[Array], Values
         raise PhysicsError("this outcome has probability 0 in this state", mend="choose another outcome")
     rows = np.flatnonzero(kept)
     shares, evaluate = kept[rows] / norm, known or states.evaluate
-    return Wave("x", lambda x: shares @ evaluate(x)[rows], states.places[:-1], states.places[1:])
+    ends = states.places[:-1], states.places[1:]
+    return Wave("x", lambda x: shares @ evaluate(x)[rows], *ends, (states, kept / norm))
 
 
 def amplitudes(spectrum: Spectrum, wave: Wave, sample: Sample | None = None) -> Values:
@@ -60,6 +61,8 @@ def amplitudes(spectrum: Spectrum, wave: Wave, sample: Sample | None = None) -> 
     states = spectrum.states
     if states is None:
         return np.zeros(0, dtype=complex)
+    if wave.origin is not None and wave.origin[0] is states:
+        return wave.origin[1]
     total = np.zeros(len(spectrum.levels), dtype=complex)
     if wave.axis == "x":
         cut = wave.cut(states.places)

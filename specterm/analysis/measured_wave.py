@@ -14,6 +14,7 @@ from specterm.analysis.quadrature import POINTS
 from specterm.arrays import Array, Flags, Values
 from specterm.discrete.quadrature import gauss_legendre, legendre_projector
 from specterm.errors import PhysicsError
+from specterm.spectrum.result import States
 
 SEEN = 1e-5
 """A change of axis takes in ever more of the other one until less than this share of the norm is missing."""
@@ -29,13 +30,15 @@ ALIVE = 1e-20
 class Wave:
     """A state as `at`, from places (n,) on its `axis` ("x" or "k", the wave number) to values (n,).
 
-    It lives on pieces from `lows` to `highs` (m,), ascending, on each of which it is smooth and resolved by 20 points.
+    It lives on pieces from `lows` to `highs` (m,), ascending, on each of which it is smooth and resolved by 20 points. A sum of
+    eigenstates has them and its amplitudes (levels,) as its `origin`.
     """
 
     axis: str
     at: Callable[[Array], Values]
     lows: Array
     highs: Array
+    origin: tuple[States, Values] | None = None
 
     @cached_property
     def rule(self) -> tuple[Array, Array]:

@@ -5,11 +5,12 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from functools import cached_property
 from pathlib import Path
 
 import numpy as np
 
-from specterm.analysis.level_waves import amplitudes, level_wave
+from specterm.analysis.level_waves import KnownLevels, amplitudes, level_wave
 from specterm.analysis.measured_wave import Wave, of_prepared
 from specterm.analysis.meters import LevelMeter, Meter, Outcome, cuts_sharply, holding, meter_for
 from specterm.analysis.prepared import prepare
@@ -102,16 +103,20 @@ class Course:
         if path not in self.waves:
             before = path[:-1]
             found = self.meters[len(before)].collapsed(self.wave(before), self.outcomes(before)[path[-1]])
-            self.waves[path] = evolved(self.model, self.spectrum, found, self.after)
+            self.waves[path] = evolved(self.model, self.spectrum, found, self.after, self._evaluate)
         return self.waves[path]
 
+    @cached_property
+    def _evaluate(self) -> KnownLevels | None:
+        return None if self.spectrum.states is None else KnownLevels(self.spectrum.states)
 
-def evolved(model: Model, spectrum: Spectrum, wave: Wave, time: float) -> Wave:
+
+def evolved(model: Model, spectrum: Spectrum, wave: Wave, time: float, known: KnownLevels | None = None) -> Wave:
     """Return the state a time later, from its amplitudes on the levels; the part they do not hold is left out."""
     if time == 0:
         return wave
     values = np.array([level.value for level in spectrum.levels])
-    return level_wave(spectrum, amplitudes(spectrum, wave) * np.exp(-1j * (values - values[0]) * time / model.hbar))
+    return level_wave(spectrum, amplitudes(spectrum, wave) * np.exp(-1j * (values - values[0]) * time / model.hbar), known)
 
 
 def course_of(
@@ -134,8 +139,16 @@ def course_of(
     texts = list(dict.fromkeys(observables))
     least = ROUGH_LEVELS if any(cuts_sharply(model, text) for text in texts) else 16
     meters = {text: meter_for(model, spectrum, text, wave, bins=bins, width=width, least=least) for text in texts}
-    carrier = spectrum if after == 0 else holding(model, spectrum, wave, None, least)
+    carrier = spectrum if after == 0 else _carrier(model, spectrum, wave, meters, least)
     return Course(model, carrier, wave, tuple(meters[text] for text in observables), after)
+
+
+def _carrier(model: Model, spectrum: Spectrum, wave: Wave, meters: dict[str, Meter], least: int) -> Spectrum:
+    """Return the levels that carry a state through free evolution: those its energy is measured with, where it is."""
+    for text, meter in meters.items():
+        if isinstance(meter, LevelMeter) and text.strip() == model.main:
+            return meter.spectrum
+    return holding(model, spectrum, wave, None, least)
 
 
 def measure(course: Course, state: str, seed: int, chosen: Sequence[float | None] = ()) -> Record:
