@@ -23,6 +23,8 @@ TRUSTED = 1 - 1e-6
 NEEDED = 0.5
 MISMATCH = 1e-6
 """Where the mean taken on the wave differs from that of the matrix by this share, the wave bends and the spread is infinite."""
+BLURRED = 1e-3
+"""Phases off by more than this on the mean are told."""
 BLOCK = 2_000
 
 
@@ -106,6 +108,10 @@ def evolve(
     notes = list(weights.notes)
     if weights.captured < TRUSTED:
         notes.append(f"mean and spread are those of the {weights.captured:.7g} of the state that the levels hold")
+    blurred = at[_phase_slip(model, spectrum, weights, at) > BLURRED]
+    if len(blurred):
+        first = blurred[np.argmin(np.abs(blurred))]
+        notes.append(f"from time {first:.6g} on the levels are not sure enough for the phases: trust no means there")
     if np.isinf(spread).any():
         notes.append(f"the spread of `{asked.text}` is infinite: the wave bends where it cannot be applied twice")
     return Evolution(
@@ -126,15 +132,24 @@ def _survival(model: Model, spectrum: Spectrum, weights: Weights, times: Array) 
     """Return |sum of w exp(-i E t/hbar)|^2 and a bound on its error: what is not captured, errors of weights and of phases."""
     w = np.array([weight.weight for weight in weights.weights])
     values = np.array([level.value for level in spectrum.levels])
-    blur = np.array([np.inf if level.error is None else level.error for level in spectrum.levels])
     turns = np.outer(times, values - values[np.argmax(w)]) / model.hbar
     amplitude = np.exp(-1j * turns) @ w
-    with np.errstate(invalid="ignore"):
-        phase = np.abs(times)[:, None] / model.hbar * (blur + blur[np.argmax(w)]) + 4 * np.finfo(float).eps * np.abs(turns)
-    slip = np.minimum(np.where(times[:, None] == 0, 0.0, phase), 2.0) @ w
+    slip = _phase_slip(model, spectrum, weights, times)
     off = max(0.0, 1 - weights.captured) + slip + sum(weight.error for weight in weights.weights)
     size = np.abs(amplitude)
     return size**2, np.minimum(2 * size * off + off**2, 1.0)
+
+
+def _phase_slip(model: Model, spectrum: Spectrum, weights: Weights, times: Array) -> Array:
+    """Return bounds on the mean error of the phase factors at each time, from the errors of the levels and rounding."""
+    w = np.array([weight.weight for weight in weights.weights])
+    values = np.array([level.value for level in spectrum.levels])
+    blur = np.array([np.inf if level.error is None else level.error for level in spectrum.levels])
+    turns = np.outer(times, values - values[np.argmax(w)]) / model.hbar
+    with np.errstate(invalid="ignore"):
+        phase = np.abs(times)[:, None] / model.hbar * (blur + blur[np.argmax(w)]) + 4 * np.finfo(float).eps * np.abs(turns)
+    slip: Array = np.minimum(np.where(times[:, None] == 0, 0.0, phase), 2.0) @ w
+    return slip
 
 
 def _moments(spectrum: Spectrum, packet: Packet, asked: Observable, times: Array) -> tuple[Array, Array]:

@@ -112,3 +112,24 @@ def test_revivals_need_levels():
     """One level neither beats nor revives."""
     found = spectrum(WALLS, 1)
     assert revivals(model(WALLS), project(model(WALLS), found, "level(0)")) == (None, None)
+
+
+def test_times_too_long_for_the_phases():
+    """Far beyond hbar over the errors of the levels nothing is known: the survival has error 1 and a note says so."""
+    found = evolve(model(WALLS), spectrum(WALLS, 8), "level(1)", [0.0, 1.0])
+    assert not any("phases" in note for note in found.notes)
+    text = WALLS + "\nstate both = level(0) + level(1)"
+    late = evolve(model(text), spectrum(text, 8), "both", [0.0, 1e20])
+    assert late.survival_error[1] == 1
+    assert any("from time 1e+20 on" in note for note in late.notes)
+    with pytest.raises(PhysicsError, match="beyond all numbers"):
+        evolve(model(text), spectrum(text, 8), "both", [1e308])
+
+
+def test_a_share_out_of_reach_is_not_chased():
+    """A constant between walls jumps at them: 1 - 1e-9 of it is out of reach of 300 levels, and 128 tell as much."""
+    found, weights = captured_by(model(WALLS), "flat", 1 - 1e-9, most=300)
+    assert len(found.levels) == 128
+    assert weights.captured == pytest.approx(1 - 4 / (np.pi**2 * 128), abs=1e-4)
+    found, weights = captured_by(model(WALLS), "flat", 0.999, most=1000)
+    assert weights.captured >= 0.999
