@@ -53,14 +53,14 @@ def captured_by(
         found = project(model, spectrum, state, folder)
         bound_only = spectrum.bound is not None and len(spectrum.levels) >= spectrum.bound
         series = spectrum.threshold is not None and 0 < found.captured - before < SLOW * (1 - found.captured)
-        series = series or (count >= ENOUGH and _out_of_reach((before, found.captured), share, most / count))
+        series = series or (count >= ENOUGH and out_of_reach((before, found.captured), share, most / count))
         if found.captured >= share or count >= most or bound_only or series or not spectrum.levels:
             return spectrum, found
         before = found.captured
         count = min(2 * count, most)
 
 
-def _out_of_reach(captured: tuple[float, float], share: float, room: float) -> bool:
+def out_of_reach(captured: tuple[float, float], share: float, room: float) -> bool:
     """Say whether a share cannot be had with `room` times the levels, by the rate of the last doubling."""
     missing = (1 - captured[0], 1 - captured[1])
     if captured[0] < SETTLED or missing[1] <= 0:

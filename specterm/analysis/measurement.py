@@ -139,7 +139,7 @@ def course_of(
     texts = list(dict.fromkeys(observables))
     least = ROUGH_LEVELS if any(cuts_sharply(model, text) for text in texts) else 16
     meters = {text: meter_for(model, spectrum, text, wave, bins=bins, width=width, least=least) for text in texts}
-    carrier = spectrum if after == 0 else _carrier(model, spectrum, wave, meters, least)
+    carrier = spectrum if after == 0 or len(observables) < 2 else _carrier(model, spectrum, wave, meters, least)
     return Course(model, carrier, wave, tuple(meters[text] for text in observables), after)
 
 

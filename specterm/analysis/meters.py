@@ -10,6 +10,7 @@ from typing import Protocol, TypeVar
 
 import numpy as np
 
+from specterm.analysis.capture import ENOUGH, out_of_reach
 from specterm.analysis.commutator import vanishing
 from specterm.analysis.level_waves import KnownLevels, Sample, amplitudes, fineness, level_wave, sampled
 from specterm.analysis.measured_wave import Wave, turned
@@ -334,12 +335,15 @@ def holding(model: Model, known: Spectrum | None, wave: Wave, near: float | None
     """Return as many levels of the main operator as it takes to hold a wave, from those known on."""
     count = max(16, least)
     found = known if known is not None and len(known.levels) >= count else solve(model, count=count, near=near)
+    before = 0.0
     while True:
         if found.bound is not None and len(found.levels) > found.bound > 0:
             return solve(model, count=found.bound)
-        held = float((np.abs(amplitudes(found, wave)) ** 2).sum())
-        if held >= WANTED * wave.norm or count >= MOST_LEVELS or (found.bound is not None and len(found.levels) >= found.bound):
+        held = float((np.abs(amplitudes(found, wave)) ** 2).sum()) / wave.norm
+        hopeless = count >= ENOUGH and out_of_reach((before, held), WANTED, MOST_LEVELS / count)
+        if held >= WANTED or count >= MOST_LEVELS or hopeless or (found.bound is not None and len(found.levels) >= found.bound):
             return found
+        before = held
         count = min(2 * max(count, len(found.levels)), MOST_LEVELS)
         found = solve(model, count=count, near=near)
 
