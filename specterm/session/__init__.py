@@ -1,1 +1,1 @@
-"""What outlives a single computation: the document, its file, the presets, rescued text."""
+"""What outlives a single computation: the document, its file, the presets, sessions, pins, notebook."""

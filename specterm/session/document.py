@@ -57,8 +57,8 @@ def load(path: Path) -> Document:
     return Document(text, path, text)
 
 
-def read_text(path: Path) -> str:
-    """Return the text of a regular file of at most 1 MB; raises SheetError as `load` does."""
+def read_text(path: Path, largest: int = LARGEST) -> str:
+    """Return the text of a regular file of at most `largest` bytes; raises SheetError as `load` does."""
     try:
         handle = os.open(path, os.O_RDONLY | os.O_NONBLOCK | os.O_CLOEXEC)
     except (OSError, ValueError) as error:
@@ -67,13 +67,14 @@ def read_text(path: Path) -> str:
         if not stat.S_ISREG(os.fstat(handle).st_mode):
             raise SheetError(f"{shown(path)} is not a regular file", mend="give the path of a text file")
         with os.fdopen(handle, "rb", closefd=False) as file:
-            data = file.read(LARGEST + 1)
+            data = file.read(largest + 1)
     except OSError as error:
         raise SheetError(f"cannot read {shown(path)}: {reason(error)}", mend="check the file system") from error
     finally:
         os.close(handle)
-    if len(data) > LARGEST:
-        raise SheetError(f"{shown(path)} is larger than 1 MB", mend="long tables belong in files of their own")
+    if len(data) > largest:
+        words = f"{shown(path)} is larger than {largest // 1_000_000} MB"
+        raise SheetError(words, mend="long tables belong in files of their own")
     try:
         text = data.decode("utf-8-sig").replace("\r\n", "\n")
     except UnicodeDecodeError as error:
@@ -103,17 +104,17 @@ def save(document: Document, path: Path | None = None) -> Document:
     return Document(document.text, target, document.text)
 
 
-def write_text(path: Path, text: str) -> None:
-    """Replace the file at `path` by one that holds `text`; raises SheetError."""
-    write_bytes(path, text.encode("utf-8"))
+def write_text(path: Path, text: str, *, durable: bool = True) -> None:
+    """Replace the file at `path` by one that holds `text`, on the disk itself where `durable`; raises SheetError."""
+    write_bytes(path, text.encode("utf-8"), durable=durable)
 
 
-def write_bytes(path: Path, data: bytes) -> None:
-    """Replace the file at `path` by one that holds `data`; raises SheetError."""
+def write_bytes(path: Path, data: bytes, *, durable: bool = True) -> None:
+    """Replace the file at `path` by one that holds `data`, on the disk itself where `durable`; raises SheetError."""
     try:
         real = Path(os.path.realpath(path))
         mode = _mode_of(real)
-        _replace(real, data, mode)
+        _replace(real, data, mode, durable=durable)
     except (OSError, ValueError) as error:
         raise SheetError(f"cannot write {shown(path)}: {reason(error)}", mend="save under another name") from error
 
@@ -129,7 +130,7 @@ def _mode_of(path: Path) -> int | None:
     return stat.S_IMODE(found.st_mode)
 
 
-def _replace(path: Path, data: bytes, mode: int | None) -> None:
+def _replace(path: Path, data: bytes, mode: int | None, *, durable: bool) -> None:
     """Write a new file beside `path`, force it to the disk, and let it take the place of `path`."""
     fresh = path.with_name(f".{path.name[:100]}.{os.getpid()}.new")
     flags = os.O_WRONLY | os.O_CREAT | os.O_TRUNC | os.O_NOFOLLOW | os.O_CLOEXEC
@@ -140,13 +141,15 @@ def _replace(path: Path, data: bytes, mode: int | None) -> None:
                 os.fchmod(handle, mode)
             file.write(data)
             file.flush()
-            os.fsync(handle)
+            if durable:
+                os.fsync(handle)
         fresh.replace(path)
     except BaseException:
         with contextlib.suppress(OSError):
             fresh.unlink()
         raise
-    _sync_folder(path.parent)
+    if durable:
+        _sync_folder(path.parent)
 
 
 def _sync_folder(folder: Path) -> None:

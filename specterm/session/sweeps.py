@@ -7,7 +7,7 @@ from pathlib import Path
 
 from specterm.analysis.sweep import SweepRequest
 from specterm.analysis.sweep_request import fingerprint
-from specterm.session.rescue import folder
+from specterm.session.place import folder
 
 KEPT = 20
 """So many journals are kept, the newest ones."""

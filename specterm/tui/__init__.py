@@ -20,7 +20,7 @@ def run(text: str, path: Path | None = None, options: Options | None = None) -> 
     settle(os.environ)
     from dataclasses import replace  # noqa: PLC0415 - the environment is settled first
 
-    from specterm.session.rescue import folder  # noqa: PLC0415 - as above
+    from specterm.session.place import folder  # noqa: PLC0415 - as above
     from specterm.tui.app import make_app  # noqa: PLC0415 - as above
 
     chosen = replace(options or Options(), guarded=True)

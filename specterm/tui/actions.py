@@ -13,12 +13,12 @@ from textual.binding import Binding
 from textual.screen import ModalScreen
 
 from specterm.errors import SpectermError, position, printable
-from specterm.session import rescue
 from specterm.session.document import Document
 from specterm.spectrum.result import Spectrum
 from specterm.tui import help as help_text
 from specterm.tui.dialogs import Chooser, Entry, Help
 from specterm.tui.files import Files
+from specterm.tui.keeping import Keeping
 from specterm.tui.keyboard import OrderedKeys
 from specterm.tui.keys import ACTIONS, KEYS
 from specterm.tui.look import Look
@@ -49,6 +49,7 @@ class Keyed(OrderedKeys):
     work: Work
     files: Files
     painter: Painter
+    keeping: Keeping
     folder: Path
 
     @property
@@ -57,8 +58,9 @@ class Keyed(OrderedKeys):
         return self.screen_stack[0].query_one(SheetPane)
 
     def redraw(self) -> None:
-        """Ask for what has changed to be drawn."""
+        """Ask for what has changed to be drawn, and saved."""
         self.painter.ask()
+        self.keeping.soon()
 
     def say(self, words: str, style: str = "plain") -> None:
         """Put words on the message line; they go with the next key that changes what is shown."""
@@ -197,8 +199,8 @@ class Keyed(OrderedKeys):
         if os.getpgrp() == os.getsid(0):
             self.say("there is no shell to go back to", "warn")
             return
-        rescue.keep(self.document)
-        self.action_suspend_process()
+        self.keeping.now()
+        self.painter.quiet(self.action_suspend_process)
 
     def check_action(self, action: str, parameters: tuple[object, ...]) -> bool | None:
         """Keep the keys, which come before all others, out of dialogs, and plain letters out of texts."""

@@ -8,6 +8,8 @@ import traceback
 from collections.abc import Hashable
 from dataclasses import replace
 from pathlib import Path
+from time import monotonic
+from typing import Any
 
 from textual import events
 from textual.app import ComposeResult
@@ -15,11 +17,13 @@ from textual.containers import Container
 from textual.timer import Timer
 from textual.widgets import TextArea
 
-from specterm.session import presets, rescue
+from specterm.session import presets
 from specterm.session.document import Document
+from specterm.session.place import folder as state_folder
 from specterm.tui.cell_pane import CellPane
 from specterm.tui.choices import Choices
 from specterm.tui.files import Files
+from specterm.tui.keeping import Keeping
 from specterm.tui.layout import BESIDE, CSS, LOW, WIDE
 from specterm.tui.look import Look, usual_glyphs
 from specterm.tui.options import Options
@@ -57,6 +61,7 @@ class Specterm(Tuned):
         self.work = Work(self, engine)
         self.files = Files(self)
         self.painter = Painter(self)
+        self.keeping = Keeping(self)
         self.error = None
         self.found: dict[Hashable, MomentsText | Weighed | Answered | None] = {}
         self.bench = Bench()
@@ -90,7 +95,7 @@ class Specterm(Tuned):
         self.app_resume_signal.subscribe(self, lambda _: self.refresh(layout=True))
         self.compute()
         self.redraw()
-        self.files.offer_rescued()
+        self.keeping.offer()
         if not self.document.text and self.document.path is None and len(self.screen_stack) == 1:
             self.files.preset("Start from a preset, or Tab for an empty sheet")
 
@@ -136,6 +141,7 @@ class Specterm(Tuned):
         text = self.sheet.text.text
         if text == self.document.text:
             return
+        self.keeping.noted(self.document.text, monotonic())
         self.document = self.document.edited(text)
         if self._pause is not None:
             self._pause.stop()
@@ -151,7 +157,7 @@ class Specterm(Tuned):
         request = Request(
             0, self.document.text, self.folder, self.shown.look.count, options.near, options.tolerance, options.overrides
         )
-        self.work.solve(request, self.document)
+        self.work.solve(request)
 
     def on_solved(self, event: Solved) -> None:
         """Show the outcome of the newest request."""
@@ -169,7 +175,8 @@ class Specterm(Tuned):
                 look = look.nearest(outcome.request.near, outcome.spectrum)
             self._near = outcome.request.near
             self.shown = replace(self.shown, outcome=outcome, stale=False, look=look)
-        self.say("" if outcome.error else "; ".join(outcome.notes))
+        if outcome.error or outcome.notes or self.shown.message_style != "good":
+            self.say("" if outcome.error else "; ".join(outcome.notes))
         self._share(outcome)
         self.call_later(_settle_memory)
 
@@ -221,6 +228,21 @@ class Specterm(Tuned):
         self._arrange()
         self.redraw()
 
+    # The terminal
+
+    def post_display_hook(self) -> None:
+        """Take note that a frame has been sent."""
+        self.painter.displayed()
+
+    def on_cursor_position(self) -> None:
+        """Take the terminal's word that a frame has arrived."""
+        self.painter.answered()
+
+    def exit(self, result: int | None = None, return_code: int = 0, message: Any = None) -> None:
+        """Leave, once the terminal has answered what it was asked."""
+        leave = super().exit
+        self.painter.quiet(lambda: leave(result, return_code, message))
+
     # The document
 
     def adopt(self, document: Document) -> None:
@@ -239,7 +261,7 @@ class Specterm(Tuned):
         self.painter.forget()
         self.options = replace(self.options, near=None)
         self.compute()
-        self.files.offer_rescued()
+        self.keeping.offer()
 
     def take_text(self, text: str) -> None:
         """Replace the text, as an edit that can be undone."""
@@ -252,10 +274,10 @@ class Specterm(Tuned):
             super()._fatal_error()
             return
         os.write(2, traceback.format_exc().encode("utf-8", "replace"))
-        kept = rescue.keep(self.document)
-        self.last_words = f"specterm failed; details are in {rescue.folder() / 'log'}"
-        if kept is not None:
-            self.last_words += f"\nunsaved text is kept in {kept} and offered when the sheet is opened again"
+        kept = self.keeping.now() and self.document.changed
+        self.last_words = f"specterm failed; details are in {state_folder() / 'log'}"
+        if kept:
+            self.last_words += f"\nunsaved text is kept in {self.keeping.store.file} and offered when the sheet is opened again"
         self._close_messages_no_wait()
 
 

@@ -70,12 +70,12 @@ class CellPane(Widget):
         """The rows shown."""
         return self._rows
 
-    def show(self, rows: Rows) -> None:
-        """Show other rows; only the cells that differ are sent to the terminal."""
+    def show(self, rows: Rows) -> bool:
+        """Show other rows, only the cells that differ are sent to the terminal; return whether there are any to be seen."""
         before, self._rows = self._rows, rows
         if len(before) != len(rows):
             self.refresh()
-            return
+            return bool(self.display)
         regions = []
         for number, (old, new) in enumerate(zip(before, rows, strict=True)):
             changed = changed_columns(old, new)
@@ -83,6 +83,7 @@ class CellPane(Widget):
                 regions.append(Region(changed[0], number, changed[1], 1))
         if regions:
             self.refresh(*regions)
+        return bool(regions and self.display)
 
     def on_resize(self) -> None:
         """Tell the app."""

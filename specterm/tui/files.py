@@ -9,8 +9,9 @@ from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from specterm.errors import SheetError, SpectermError, printable
-from specterm.session import presets, rescue
+from specterm.session import presets
 from specterm.session.document import Document, load, save, shown, write_bytes, write_text
+from specterm.session.place import folder as state_folder
 from specterm.session.records.files import exported
 from specterm.tui.dialogs import Chooser, Entry, Question
 
@@ -74,7 +75,6 @@ class Files:
             self.app.say(f"{error.message}; {error.mend}", "warn")
             return
         left = _left_behind(document.text, self.app.folder, path.parent)
-        rescue.drop(self.app.document.path)
         self.app.adopt(document)
         if left:
             self.app.say(f"saved, but {left[0]} is not beside it: copy it from {shown(left[1])}", "warn")
@@ -145,7 +145,6 @@ class Files:
             if letter == "w":
                 self.save(go_on)
             elif letter == "d":
-                rescue.drop(self.app.document.path)
                 go_on()
 
         self.app.ask(Question(f"{self.app.document.name} has unsaved text.", answers), answered)
@@ -155,7 +154,7 @@ class Files:
         if not text:
             self.app.say("there is nothing to copy", "warn")
             return
-        path = rescue.folder() / "copied.txt"
+        path = state_folder() / "copied.txt"
         try:
             path.parent.mkdir(mode=0o700, parents=True, exist_ok=True)
             write_text(path, text)
@@ -196,22 +195,7 @@ class Files:
 
         def go() -> None:
             self.app.work.stop()
+            self.app.keeping.close(keep_text=False)
             self.app.exit(0)
 
         self._guarded(go)
-
-    def offer_rescued(self) -> None:
-        """Offer unsaved text of an earlier session, if there is any."""
-        text = rescue.found(self.app.document)
-        if text is None:
-            return
-
-        def answered(letter: str | None) -> None:
-            if letter == "r":
-                self.app.take_text(text)
-            elif letter == "d":
-                rescue.drop(self.app.document.path)
-
-        words = f"Unsaved text of {self.app.document.name} was kept earlier."
-        answers = {"r": "take that text", "d": "drop it", "n": "not now; it goes with the next edit"}
-        self.app.ask(Question(words, answers), answered)

@@ -2,15 +2,18 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from textual.geometry import Size
+from textual.timer import Timer
 
 from specterm.tui.cell_pane import CellPane
 from specterm.tui.complaint import sentence
 from specterm.tui.keys import KEYS, TYPING, bottom
 from specterm.tui.look import Look
+from specterm.tui.pace import QUESTION, Pace, behind_multiplexer
 from specterm.tui.pages import page_of
 from specterm.tui.pages.page import Answered, Inquiry
 from specterm.tui.pinned import Moved
@@ -38,13 +41,20 @@ _LINES = (("message", message_row), ("chosen", chosen_row), ("moments", moments_
 _LARGE = (("figure", figure_rows), ("levels", level_rows))
 
 
+_LAST = 1.0
+"""Seconds that the last answer of the terminal is waited for at the end."""
+
+
 class Painter:
-    """The one place where an app is drawn, and where drawing can be paced."""
+    """The one place where an app is drawn, at the pace that the line allows: the newest state wins."""
 
     def __init__(self, app: Specterm) -> None:
         """Draw `app`."""
         self.app = app
         self._waiting = False
+        self._pace = Pace(careful=behind_multiplexer())
+        self._later: Timer | None = None
+        self._then: Callable[[], object] | None = None
         self._drawn: dict[str, tuple[object, ...]] = {}
         self._last: dict[str, Answered] = {}
 
@@ -60,7 +70,44 @@ class Painter:
         """
         if not self._waiting:
             self._waiting = True
+            self._in_time()
+
+    def _in_time(self) -> None:
+        """Draw as soon as the line allows, for a single key at once."""
+        delay = self._pace.delay()
+        if delay > 0:
+            self._later = self.app.set_timer(delay, self._in_time)
+        else:
+            self._later = None
             self.app.call_later(self._draw)
+
+    def displayed(self) -> None:
+        """Ask the terminal to say when it has what has just been sent; the app calls this."""
+        if self._pace.sent() and self.app._driver is not None and not self.app.is_headless:
+            self.app._driver.write(QUESTION)
+
+    def answered(self) -> None:
+        """Take the terminal's answer; what has changed since is drawn now."""
+        self._pace.answered()
+        if self._later is not None:
+            self._later.stop()
+            self._in_time()
+        if self._then is not None and not self._pace.owed:
+            self._at_last()
+
+    def quiet(self, then: Callable[[], object]) -> None:
+        """Call `then` once no answer is owed by the terminal, which whoever reads from it next would take for keys."""
+        self._then = then
+        if self._pace.owed:
+            self.app.set_timer(_LAST, self._at_last)
+        else:
+            self._at_last()
+
+    def _at_last(self) -> None:
+        """Do what waited for the last answer, once."""
+        then, self._then = self._then, None
+        if then is not None:
+            then()
 
     def _draw(self) -> None:
         """Draw every pane from what is shown now."""
@@ -68,24 +115,27 @@ class Painter:
         if not self.app.is_running or not self.app.screen_stack:
             return
         shown = self.complete()
+        changed = False
         with self.app.batch_update():
             for name, draw in _LARGE:
                 pane = self._pane(name)
                 of = (pane.size, replace(shown, moments=None, message="", message_style="", stale=False))
                 if _visible(pane) and self._drawn.get(name) != of:
                     self._drawn[name] = of
-                    pane.show(drawn_safely(draw, shown, *pane.size))
+                    changed |= pane.show(drawn_safely(draw, shown, *pane.size))
             width = self.app.size.width
             for name, line in _LINES:
-                self._pane(name).show((line(shown, width),))
+                changed |= self._pane(name).show((line(shown, width),))
             typing = self.app.typing
             keys = bottom(TYPING) if typing else bottom(KEYS, _keys_of(shown.look))
-            self._pane("bottom").show((bottom_row(keys, width),))
+            changed |= self._pane("bottom").show((bottom_row(keys, width),))
             heading = self.app.sheet.heading
             row = heading_row(self.app.document, heading.size.width, typing=typing, glyphs=shown.look.glyphs)
-            heading.show((row,))
+            changed |= heading.show((row,))
             if self.app.sheet.display:
-                self.app.sheet.complain(self.app.error)
+                changed |= self.app.sheet.complain(self.app.error)
+            if changed:
+                self._pace.drawn()
 
     def _answers(self, shown: Shown) -> Shown:
         """Return what is shown with the answers that have arrived; ask for those that have not, the last ones stand in."""

@@ -136,10 +136,10 @@ class SheetPane(Vertical):
         yield self.text
         yield self.error
 
-    def complain(self, error: SpectermError | None) -> None:
-        """Mark the place of an error and say what it is, or clear both."""
+    def complain(self, error: SpectermError | None) -> bool:
+        """Mark the place of an error and say what it is, or clear both; return whether that changes what is seen."""
         self.text.mark(error.span if error else None)
         rows = complaint(error, self.text.text, max(20, self.size.width)) if error else ()
         if len(rows) != len(self.error.rows):
             self.error.styles.height = len(rows)
-        self.error.show(rows)
+        return self.error.show(rows)

@@ -12,7 +12,9 @@ from specterm.tui.dialogs import Chooser, Entry, Question
 from specterm.tui.pages.sweep import There
 from specterm.tui.pinned import Pinned
 from specterm.tui.rows import Shown
+from specterm.tui.solving import Outcome, Request
 from specterm.tui.table_columns import numbers_of
+from specterm.tui.work import PinSolved
 from specterm.views.numbers import short, with_unit
 
 if TYPE_CHECKING:
@@ -151,6 +153,20 @@ class Tuned(Booked):
         column = "shift" if pinned is not None else ("none" if self.shown.look.column == "shift" else self.shown.look.column)
         self.shown = replace(self.shown, pinned=pinned)
         self._look(replace(self.shown.look, column=column))
+
+    def restore_pins(self, pins: tuple[Pin, ...]) -> None:
+        """Take up pins of an earlier session; their spectra are computed one by one."""
+        self.pins = tuple(
+            Pinned(pin, Outcome(Request(0, pin.text, pin.folder, pin.count, pin.near, pin.tolerance))) for pin in pins
+        )
+        for pin in pins:
+            self.work.pin(pin)
+
+    def on_pin_solved(self, event: PinSolved) -> None:
+        """Take the spectrum of a pin that has been taken up again."""
+        self.pins = tuple(replace(one, outcome=event.outcome) if one.pin == event.pin else one for one in self.pins)
+        self.shown = replace(self.shown, pinned=self.pins[-1] if self.pins else None)
+        self.redraw()
 
     def action_pins(self) -> None:
         """Choose a pin, and what to do with it."""

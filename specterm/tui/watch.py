@@ -7,8 +7,6 @@ import os
 import signal
 from typing import TYPE_CHECKING
 
-from specterm.session import rescue
-
 if TYPE_CHECKING:
     from specterm.tui.app import Specterm
 
@@ -29,12 +27,12 @@ def watch_signals(app: Specterm, guarded: bool) -> None:
 def _end(app: Specterm, status: int) -> None:
     """Keep the text and close the app."""
     app.take_typed()
-    rescue.keep(app.document)
+    app.keeping.now()
     app.exit(status, return_code=status)
 
 
 def _check(app: Specterm) -> None:
     """Keep the text and go when standard input is no terminal any more; the input thread would spin for ever."""
     if not os.isatty(0):
-        rescue.keep(app.document)
+        app.keeping.now()
         os._exit(_EXITS[signal.SIGHUP])

@@ -18,8 +18,7 @@ from typing import Any
 from textual.app import App
 from textual.message import Message
 
-from specterm.session import rescue
-from specterm.session.document import Document
+from specterm.session.pins import Pin
 from specterm.tui.pages.page import Answered, Inquiry, answered
 from specterm.tui.solving import Engine, Outcome, Request, Weighed, compute, moments_of, weigh
 from specterm.views.status import MomentsText
@@ -56,6 +55,15 @@ class Looked(Message):
         self.number, self.key, self.found = number, key, found
 
 
+class PinSolved(Message):
+    """The spectrum of a pin has been computed."""
+
+    def __init__(self, pin: Pin, outcome: Outcome) -> None:
+        """Carry both."""
+        super().__init__()
+        self.pin, self.outcome = pin, outcome
+
+
 class Work:
     """Starts computations of one app and forgets those that were overtaken."""
 
@@ -65,9 +73,7 @@ class Work:
         self.number = 0
         self.busy = False
         self._solving, self._since = 0, 0.0
-        self._next: tuple[Request, Document] | None = None
-        self._kept = False
-        self._keeping = threading.Lock()
+        self._next: Request | None = None
         self._running: set[threading.Thread] = set()
         self._asked: set[tuple[int, Hashable]] = set()
         self._wanted: set[Inquiry] = set()
@@ -78,8 +84,8 @@ class Work:
         """Whether no thread runs any more."""
         return not self._running
 
-    def solve(self, request: Request, document: Document) -> None:
-        """Compute `request`, numbered anew; what ran before is asked to stop, and unsaved text is kept safe first."""
+    def solve(self, request: Request) -> None:
+        """Compute `request`, numbered anew; what ran before for long is asked to stop."""
         self.number += 1
         self.busy = True
         numbered = replace(request, number=self.number)
@@ -87,19 +93,19 @@ class Work:
         if self._solving and time.monotonic() - self._since < _GRACE:
             if self._next is None:
                 self.app.set_timer(_GRACE, self._go_on)
-            self._next = (numbered, document)
+            self._next = numbered
         else:
-            self._begin(numbered, document)
+            self._begin(numbered)
 
-    def _begin(self, request: Request, document: Document) -> None:
+    def _begin(self, request: Request) -> None:
         """Start a computation; older ones are asked to stop."""
         self._next, self._solving, self._since = None, request.number, time.monotonic()
-        self._start(lambda: self._solve(request, document))
+        self._start(lambda: self._solve(request))
 
     def _go_on(self) -> None:
         """Start the computation that waits, if there is one."""
         if self._next is not None and self.busy:
-            self._begin(*self._next)
+            self._begin(self._next)
 
     def stop(self) -> bool:
         """Forget the running computation, which ends by itself; return whether there was one."""
@@ -172,10 +178,8 @@ class Work:
         self._running.add(thread)
         thread.start()
 
-    def _solve(self, request: Request, document: Document) -> None:
+    def _solve(self, request: Request) -> None:
         """Do the work of a request; runs in a thread."""
-        with self._keeping:
-            self._keep(document)
         outcome = compute(self.engine, request, lambda: request.number != self._solving, self._progress(request.number))
         self._tell(Solved(outcome))
 
@@ -185,13 +189,10 @@ class Work:
             with contextlib.suppress(RuntimeError):  # it may be left just now
                 self.app.post_message(message)
 
-    def _keep(self, document: Document) -> None:
-        """Keep unsaved text safe, and drop what this session kept once there is none."""
-        if document.changed:
-            self._kept = rescue.keep(document) is not None or self._kept
-        elif self._kept:
-            rescue.drop(document.path)
-            self._kept = False
+    def pin(self, pin: Pin) -> None:
+        """Compute the spectrum of a pin that was taken up again."""
+        request = Request(0, pin.text, pin.folder, pin.count, pin.near, pin.tolerance)
+        self._start(lambda: self._tell(PinSolved(pin, compute(self.engine, request, lambda: False, lambda _: None))))
 
     def _progress(self, number: int) -> Callable[[str], None]:
         """Return what reports progress, at most twice a second."""

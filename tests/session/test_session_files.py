@@ -8,7 +8,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from specterm.errors import SheetError
-from specterm.session import presets, rescue
+from specterm.session import presets
 from specterm.session.document import LARGEST, Document, checked, load, save
 
 
@@ -115,26 +115,3 @@ def test_presets_by_name(tmp_path):
 def test_presets_have_a_place():
     """The presets lie in the package or beside it."""
     assert presets.folder().name == "presets"
-
-
-def test_rescue_keeps_unsaved_text(tmp_path, monkeypatch):
-    """Unsaved text is kept outside the user's file, found again, and dropped once saved."""
-    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))
-    path = tmp_path / "a.sheet"
-    document = save(Document("old"), path)
-    assert rescue.keep(document) is None
-    kept = rescue.keep(document.edited("new"))
-    assert kept is not None
-    assert kept.is_relative_to(tmp_path / "state")
-    assert path.read_text() == "old"
-    assert rescue.found(load(path)) == "new"
-    assert rescue.keep(save(document.edited("new"))) is None
-    assert rescue.found(load(path)) is None
-
-
-def test_rescue_never_raises(tmp_path, monkeypatch):
-    """Where nothing can be written nothing is, and the work goes on."""
-    (tmp_path / "file").write_text("")
-    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "file"))
-    assert rescue.keep(Document("text")) is None
-    assert rescue.found(Document("text")) is None

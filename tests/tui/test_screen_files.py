@@ -3,8 +3,11 @@
 import pytest
 from fake import SHEET, app, lines, settled
 
-from specterm.session import presets, rescue
+from specterm.session import presets
 from specterm.session.document import Document
+from specterm.session.place import folder
+from specterm.session.saved import Saved
+from specterm.session.store import Store, left_behind
 
 
 async def pressed(pilot, *keys):
@@ -124,7 +127,7 @@ async def test_copying_the_screen():
         await settled(pilot)
         await pressed(pilot, "up", "s", "y")
         assert "sent to the terminal's clipboard" in "\n".join(lines(pilot))
-        text = (rescue.folder() / "copied.txt").read_text()
+        text = (folder() / "copied.txt").read_text()
     for words in ("level 1  1.500000000000(4) meV", "error <= 3e-12 meV", "5.500000000000(4) bound", "30.33%", "psi, level 1"):
         assert words in text
 
@@ -158,21 +161,82 @@ async def test_dropping_changes(sheet):
     async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
         await settled(pilot)
         await pressed(pilot, "e", "#", "tab")
-        assert rescue.place(sheet).read_text() == "#" + SHEET
+        await kept(pilot)
+        assert pilot.app.keeping.store.file is not None
+        assert pilot.app.keeping.store.file.exists()
         await pilot.press("q", "d")
     assert sheet.read_text() == SHEET
-    assert not rescue.place(sheet).exists()
+    assert left_behind(sheet) == ()
 
 
-async def test_rescued_text_is_offered(sheet):
-    """Text kept from a session that broke off is offered, taken as an edit that can be undone."""
-    rescue.keep(Document("# rescued\n", sheet, SHEET))
+def broken_off(document, folder_, **more):
+    """Leave a session behind as a kill does."""
+    store = Store()
+    assert store.keep(Saved(document, folder_, **more))
+    store.leave()
+
+
+async def test_a_session_that_broke_off_is_offered(sheet):
+    """Text of a session that broke off is offered, taken as an edit; undo goes on into the past of that session."""
+    broken_off(Document("# third\n", sheet, SHEET), sheet.parent, past=(SHEET, "# second\n"))
     async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
         await settled(pilot)
         assert "was kept earlier" in "\n".join(lines(pilot))
-        assert rescue.place(sheet).read_text() == "# rescued\n"
+        assert len(left_behind(sheet)) == 1
         await pressed(pilot, "r")
-        assert pilot.app.document.text == "# rescued\n"
+        assert pilot.app.document.text == "# third\n"
         assert pilot.app.document.changed
+        assert left_behind(sheet) == ()
+        await pressed(pilot, "u")
+        assert pilot.app.document.text == "# second\n"
         await pressed(pilot, "u")
         assert pilot.app.document.text == SHEET
+
+
+async def test_not_now_offers_it_again(sheet):
+    """Not now leaves the broken session where it is; dropping it removes it."""
+    broken_off(Document("# other\n", sheet, SHEET), sheet.parent)
+    for key, count in (("n", 1), ("d", 0)):
+        async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
+            await settled(pilot)
+            await pressed(pilot, key)
+            await pilot.press("q")
+        assert len(left_behind(sheet)) == count
+
+
+async def test_pins_notebook_and_view_come_back(sheet):
+    """After leaving in order with a pin, the next session for the same sheet has pin and view again without a question."""
+    async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "P", "up", "v")
+        await pilot.press("q")
+    async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        assert [one.pin.text for one in pilot.app.pins] == [SHEET]
+        assert pilot.app.pins[0].outcome.spectrum is not None
+        assert (pilot.app.shown.look.chosen, pilot.app.shown.look.mode) == (1, "density")
+        assert "pins and notebook of the last session are back" in "\n".join(lines(pilot))
+
+
+async def test_two_instances_keep_apart(sheet):
+    """Two sessions on one sheet have files of their own, and neither is offered the other's while it runs."""
+    async with app(SHEET, sheet).run_test(size=(80, 24)) as one:
+        await settled(one)
+        await pressed(one, "e", "1", "tab")
+        await kept(one)
+        async with app(SHEET, sheet).run_test(size=(80, 24)) as other:
+            await settled(other)
+            assert len(other.app.screen_stack) == 1
+            await pressed(other, "e", "2", "tab")
+            await kept(other)
+            files = {pilot.app.keeping.store.file for pilot in (one, other)}
+            assert len(files) == 2
+            assert all(file.exists() for file in files)
+
+
+async def kept(pilot):
+    """Wait until the session has been written."""
+    for _ in range(200):
+        await pilot.pause(0.02)
+        if pilot.app.keeping.settled:
+            return

@@ -12,6 +12,7 @@ import pexpect
 import pyte
 import pytest
 
+from specterm.session.saved import saved_from
 from specterm.tui import terminal
 
 CHILD = Path(__file__).parent / "child.py"
@@ -107,8 +108,8 @@ def test_signals_keep_the_text_and_the_terminal(tmp_path, number, status):
     assert found == status
     assert session.sane(raw)
     assert session.path.read_text() == SHEET
-    (kept,) = (session.state / "specterm").glob("well-*.sheet")
-    assert kept.read_text() == "#" + SHEET
+    (kept,) = (session.state / "specterm" / "sessions").glob("well-*.json")
+    assert saved_from(kept.read_text()).document.text == "#" + SHEET
 
 
 def test_a_closed_connection_ends_the_session(tmp_path):
@@ -124,8 +125,8 @@ def test_a_closed_connection_ends_the_session(tmp_path):
     while time.monotonic() < end and Path(f"/proc/{session.child.pid}/stat").read_text().rpartition(")")[2].split()[0] != "Z":
         time.sleep(0.05)
     assert Path(f"/proc/{session.child.pid}/stat").read_text().rpartition(")")[2].split()[0] == "Z"
-    (kept,) = (session.state / "specterm").glob("well-*.sheet")
-    assert kept.read_text() == "#" + SHEET
+    (kept,) = (session.state / "specterm" / "sessions").glob("well-*.json")
+    assert saved_from(kept.read_text()).document.text == "#" + SHEET
     os.waitpid(session.child.pid, 0)
 
 
@@ -145,7 +146,7 @@ def test_a_defect_leaves_words_and_the_text(tmp_path):
     assert b"specterm failed; details are in" in said
     assert b"Traceback" not in raw
     assert "ZeroDivisionError" in (session.state / "specterm" / "log").read_text()
-    (kept,) = (session.state / "specterm").glob("well-*.sheet")
+    (kept,) = (session.state / "specterm" / "sessions").glob("well-*.json")
     assert str(kept).encode() in said.replace(b"\r\n", b"\n")
 
 
