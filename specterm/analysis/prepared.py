@@ -18,6 +18,7 @@ from specterm.language.catalogue import refuse
 from specterm.model import Domain, Function, Model, State, build
 from specterm.model.function import number
 from specterm.model.regular import regular_slope
+from specterm.regular import NotRegularError, TooLargeError, read_regular
 from specterm.spectrum import Spectrum, solve
 from specterm.spectrum.result import States
 
@@ -246,10 +247,10 @@ def _units(model: Model) -> tuple[str, str, str]:
 def _text(place: Path) -> str:
     """Return the text of another sheet; SheetError where it is not a readable, regular, small file."""
     try:
-        if not place.is_file() or place.stat().st_size > LARGEST_SHEET:
-            raise SheetError(
-                f"there is no sheet {place.name} here, or it is larger than 1 MB", mend="the path starts at the sheet's folder"
-            )
-        return decode(place.read_bytes())
+        return decode(read_regular(place, LARGEST_SHEET))
+    except (FileNotFoundError, NotRegularError, TooLargeError):
+        raise SheetError(
+            f"there is no sheet {place.name} here, or it is larger than 1 MB", mend="the path starts at the sheet's folder"
+        ) from None
     except OSError as error:
         raise SheetError(f"{place.name} cannot be read: {error.strerror}", mend="check the path and its permissions") from None

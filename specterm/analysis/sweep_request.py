@@ -17,6 +17,7 @@ from specterm.language import parse
 from specterm.language.edits import plain_numbers
 from specterm.language.nodes import Sheet
 from specterm.model import Model, build
+from specterm.regular import read_regular
 
 MOST_POINTS = 1_000_000
 QUANTITIES = ("levels", "transitions", "expectation", "weights", "strengths")
@@ -200,8 +201,7 @@ def fingerprint(request: SweepRequest) -> str:
     for path in sorted(set(re.findall(r'"([^"\n]{1,500})"', request.text))):
         place = Path(request.folder) / path
         try:
-            if place.is_file() and place.stat().st_size <= LARGEST_FILE:
-                hashed.update(path.encode() + place.read_bytes())
+            hashed.update(path.encode() + read_regular(place, LARGEST_FILE))
         except (OSError, ValueError):
             continue
     return hashed.hexdigest()

@@ -13,6 +13,7 @@ import numpy as np
 from specterm.arrays import Array, Counts, Values
 from specterm.discrete.elements import Condensed
 from specterm.discrete.mesh import Mesh
+from specterm.stopping import check
 
 BLOCK = 512
 """Energies counted at once, to bound the memory taken."""
@@ -91,6 +92,7 @@ def count_below(condensed: Condensed, energies: Array) -> Counts:
     """Return the number of levels of the mesh below each energy, by the inertia of the shifted matrix (Sylvester)."""
     if len(energies) > BLOCK:
         return np.concatenate([count_below(condensed, energies[k : k + BLOCK]) for k in range(0, len(energies), BLOCK)])
+    check()
     matrix = chain(condensed, energies)
     below = np.count_nonzero(condensed.poles[:, :, None] < energies, axis=(0, 1))
     if matrix.corner is None:

@@ -20,9 +20,12 @@ from specterm.arrays import Array
 from specterm.discrete.mesh import Edge, Mesh
 from specterm.discrete.quadrature import gauss_jacobi, gauss_legendre
 from specterm.discrete.reference import SPARE, functions, tabulated
+from specterm.stopping import check
 
 Coefficient = Callable[[Array], Array]
 
+AT_ONCE = 4096
+"""So many interiors are diagonalised before anybody is asked whether to go on."""
 EXTRA_POINTS = 8
 """Gauss points beyond the order of the polynomials."""
 
@@ -156,12 +159,12 @@ def _diagonalise(mesh: Mesh, here: Grid, form: Array, mass: Array) -> Condensed:
     """
     if mesh.left.power is None and mesh.right.power is None:
         scale = np.sqrt(2 / mesh.lengths)[:, None, None]
-        poles, modes = np.linalg.eigh(scale**2 * form[:, 2:, 2:])
+        poles, modes = _diagonal(scale**2 * form[:, 2:, 2:])
         interior = scale * modes
     else:
         white = np.linalg.inv(np.linalg.cholesky(mass[:, 2:, 2:]))
         inner = white @ form[:, 2:, 2:] @ np.swapaxes(white, 1, 2)
-        poles, modes = np.linalg.eigh((inner + np.swapaxes(inner, 1, 2)) / 2)
+        poles, modes = _diagonal((inner + np.swapaxes(inner, 1, 2)) / 2)
         interior = np.swapaxes(white, 1, 2) @ modes
     overlap = mass[:, :2, 2:] @ interior
     pull = form[:, :2, 2:] @ interior
@@ -175,6 +178,19 @@ def _diagonalise(mesh: Mesh, here: Grid, form: Array, mass: Array) -> Condensed:
     basis[:, 2:, :2] = -interior @ turned
     basis[:, 2:, 2:] = interior
     return Condensed(mesh, here, poles, coupling, stiff, heavy, basis)
+
+
+def _diagonal(interiors: Array) -> tuple[Array, Array]:
+    """Return eigenvalues and eigenvectors of each interior, some at a time where they are many."""
+    if len(interiors) <= AT_ONCE:
+        poles, modes = np.linalg.eigh(interiors)
+        return poles, modes
+    poles, modes = np.empty(interiors.shape[:2]), np.empty(interiors.shape)
+    for start in range(0, len(interiors), AT_ONCE):
+        check()
+        some = slice(start, start + AT_ONCE)
+        poles[some], modes[some] = np.linalg.eigh(interiors[some])
+    return poles, modes
 
 
 def residual_share(condensed: Condensed, coefficients: Array, values: Array) -> Array:

@@ -11,6 +11,10 @@ from specterm.arrays import Array
 from specterm.discrete.problem import Problem
 from specterm.errors import PhysicsError
 
+NEAREST = 1e-250
+"""Places nearer to an end than this are taken for the end itself."""
+FEWEST = 3
+"""With fewer values at doubling distances nothing can be said about an open end."""
 STEEP = 6.0
 """From this power of the distance on, psi near a singular end is cut off where it has died instead of factored."""
 
@@ -115,7 +119,7 @@ def room_at(problem: Problem, end: float, side: int) -> float:
     """Return the distance from an end to the next edge or centre inwards, or to the other end."""
     marks = np.concatenate([problem.edges, problem.centres, [problem.left, problem.right]])
     distance = marks - end if side == 0 else end - marks
-    distance = distance[np.isfinite(distance) & (distance > 1e-9 * abs(end))]
+    distance = distance[np.isfinite(distance) & (distance > max(1e-9 * abs(end), NEAREST))]
     return float(distance.min()) if len(distance) else max(1.0, abs(end))
 
 
@@ -137,6 +141,10 @@ def _strength(
     best = smooth if abs(smooth - shortest) <= 1e-3 * max(1e-3, abs(shortest)) else shortest
     straight = _limit_at(problem, end, sign, float(d[0]))
     best = straight if abs(straight - shortest) <= 1e-2 * max(1.0, abs(shortest)) else best
+    if not abs(best) < 1e300:
+        raise PhysicsError(
+            f"what happens at the end {end:.6g} is out of the range of numbers", mend="choose units that make lengths nearer to 1"
+        )
     near = round(4 * best) / 4
     slack = 1e-9 if critical + 4 * near > 0.01 else 4e-14
     return near if abs(best - near) <= slack * max(1.0, abs(near)) else best
@@ -161,6 +169,8 @@ def _limit_at(problem: Problem, end: float, sign: float, shortest: float) -> flo
 
 def _power(value: float) -> float:
     """Return the nearest multiple of 1/4 of a power read off at a short distance, if it is that near."""
+    if not abs(value) < 1e300:
+        return value
     near = round(4 * value) / 4
     return near if abs(value - near) <= 1e-6 else value
 
@@ -186,6 +196,8 @@ def far_end(problem: Problem, side: int) -> FarEnd:
     stop = len(d) if finite[start:].all() else start + int(np.argmin(finite[start:]))
     first_lost = values[stop] if stop < len(d) and 1e-100 < stiffness[stop] < 1e100 else np.nan
     values, d, stiffness = values[start:stop], d[start:stop], stiffness[start:stop]
+    if len(values) < FEWEST and not np.isinf(first_lost):
+        raise PhysicsError(f"the potential has no value beyond {middle:.6g}", mend="narrow the domain")
     verdict = _settles(values, first_lost)
     where = "x -> -inf" if side == 0 else "x -> inf"
     if verdict == "rises":

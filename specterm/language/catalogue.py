@@ -386,6 +386,9 @@ _MODEL = {
     "table-column-unknown": _model("{path} has no column {name}", "{near}the columns are {names}"),
     "table-conflict": _model("{path}: lines {first} and {second} give two values at {place}", "keep one of the two"),
     "table-too-short": _model("{path} has {found} points", "a table needs at least two points"),
+    "table-steep": _model(
+        "{path}: the points near {place} cannot be joined in double precision", "take some out, or scale the columns"
+    ),
     "table-outside": _model(
         "the table covers {left} to {right}, the domain is {domain}", "say `hold` or `extend`, or narrow the domain"
     ),

@@ -78,7 +78,7 @@ def call(name: str, *args: Term) -> Term:
 
 def folded(value: Callable[..., Values], args: tuple[Term, ...], ulps: float) -> Term:
     """Return the constant value(*args) with its slack: what the slack of each argument does, plus the function's own error."""
-    numbers = [a.data.value for a in args]
+    numbers = [np.complex128(v) if isinstance(v := a.data.value, complex) else np.float64(v) for a in args]
     with np.errstate(all="ignore"):
         result = _number(value(*numbers))
         slack = (ulps + 1) * ULP * abs(result)

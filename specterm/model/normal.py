@@ -18,6 +18,7 @@ from specterm.model.rounding import step
 from specterm.model.scalar import Scalar
 from specterm.model.term import NIL, Term, linear, multiply, spread
 from specterm.model.walk import leaves_first
+from specterm.stopping import check
 
 FEW = 8
 """Every so many places of the sample are enough to see that most sums do not vanish."""
@@ -127,6 +128,7 @@ def generic_values(root: Term, x: NDArray[np.float64]) -> tuple[NDArray[Any], ND
     bounds: dict[int, Any] = {}
     with np.errstate(all="ignore"):
         for term in leaves_first(root):
+            check()
             if term.kind == "edge":
                 values[term.digest], bounds[term.digest] = _arbitrary(term, x), 0.0
                 continue

@@ -18,6 +18,7 @@ from specterm.model.scalar import ULP
 from specterm.model.tape import runner
 from specterm.model.term import Term
 from specterm.model.walk import leaves_first
+from specterm.stopping import check
 
 Bounds = NDArray[np.float64]
 
@@ -28,6 +29,7 @@ def rounding(root: Term, x: NDArray[np.float64]) -> Bounds:
     bounds: dict[int, Values] = {}
     with np.errstate(all="ignore"):
         for term in leaves_first(root):
+            check()
             inputs = [values[a.digest] for a in term.args]
             errors = [bounds[a.digest] for a in term.args]
             values[term.digest], bounds[term.digest] = step(term, x, inputs, errors)

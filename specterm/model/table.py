@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import NDArray
 
-from specterm.errors import Span
+from specterm.errors import Span, printable
 from specterm.language.catalogue import refuse
 from specterm.language.nodes import Table
 from specterm.model.domain import Domain
@@ -23,6 +23,8 @@ if TYPE_CHECKING:
     from pathlib import Path
 
 Floats = NDArray[np.float64]
+STEEPEST = 1e140
+"""Values, distances, slopes and bends of a table stay below this, so that their squares are numbers."""
 
 
 @dataclass(frozen=True)
@@ -57,8 +59,19 @@ def _spline(points: Points, node: Table, domain: Domain | None) -> Term:
                 domain=f"({domain.left:g}, {domain.right:g})",
             )
         outside = "extend" if covered else outside
+    _check_steepness(points, node)
     interpolate = cubic if node.smooth else linear
     return make("spline", (), interpolate(f'table("{node.path}")', points.x, points.y, outside), real=True)
+
+
+def _check_steepness(points: Points, node: Table) -> None:
+    """Refuse points between which slopes, or what a cubic needs beyond them, leave the range of numbers."""
+    with np.errstate(all="ignore"):
+        gaps = np.diff(points.x)
+        bend = np.abs(np.diff(points.y)) / gaps / np.minimum(gaps, 1.0) ** 2
+        steep = np.flatnonzero(~(bend < STEEPEST) | ~(gaps < STEEPEST) | ~(np.abs(points.y[1:]) < STEEPEST))
+    if steep.size:
+        raise refuse("table-steep", node.span, path=printable(node.path), place=f"{points.x[steep[0]]:g}")
 
 
 def _points(table: TableText, node: Table, units: UnitSystem, number: int) -> Points:

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import os
 import re
-import stat
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
@@ -14,6 +13,7 @@ from numpy.typing import NDArray
 from specterm.errors import Span, printable
 from specterm.language.catalogue import refuse
 from specterm.language.suggest import nearest
+from specterm.regular import NotRegularError, TooLargeError, read_regular
 
 if TYPE_CHECKING:
     from pathlib import Path
@@ -41,21 +41,16 @@ def read_table(folder: Path | None, path: str, span: Span) -> TableText:
     shown = printable(path)
     full = path if folder is None else os.path.join(folder, path)
     try:
-        found = os.stat(full)
-        _check_file(found, shown, span)
-        with open(full, "rb") as file:
-            return _cut(shown, file.read(LARGEST_FILE + 1), span)
+        return _cut(shown, read_regular(full, LARGEST_FILE), span)
+    except NotRegularError:
+        raise refuse("file-special", span, path=shown) from None
+    except TooLargeError as error:
+        found, limit = f"{error.size} bytes", f"{LARGEST_FILE} bytes"
+        raise refuse("file-too-large", span, path=shown, found=found, limit=limit) from None
     except FileNotFoundError:
         raise refuse("file-missing", span, path=shown) from None
     except OSError as error:
         raise refuse("file-unreadable", span, path=shown, reason=error.strerror) from None
-
-
-def _check_file(found: os.stat_result, shown: str, span: Span) -> None:
-    if not stat.S_ISREG(found.st_mode):
-        raise refuse("file-special", span, path=shown)
-    if found.st_size > LARGEST_FILE:
-        raise refuse("file-too-large", span, path=shown, found=f"{found.st_size} bytes", limit=f"{LARGEST_FILE} bytes")
 
 
 def _cut(path: str, data: bytes, span: Span) -> TableText:

@@ -14,6 +14,7 @@ from specterm.model.compose import COMPARISONS
 from specterm.model.elementary import FUNCTIONS
 from specterm.model.term import UNIT, Term
 from specterm.model.walk import leaves_first
+from specterm.stopping import check
 
 
 @dataclass(frozen=True)
@@ -42,6 +43,7 @@ class Tape:
             registers[self.place] = x
         with np.errstate(all="ignore"):
             for step in self.instructions:
+                check()
                 registers[step.out] = step.run(*[registers[k] for k in step.inputs])
                 for k in step.done:
                     registers[k] = None

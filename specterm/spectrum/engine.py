@@ -29,6 +29,7 @@ from specterm.spectrum.start import start_from
 from specterm.spectrum.states import ElementStates
 from specterm.spectrum.symmetry import parities
 from specterm.spectrum.vectors import Solved
+from specterm.stopping import stopping
 
 FROM_TOP = "the operator has a highest level and no lowest: levels are counted from the top"
 MISSED = "some levels do not reach the tolerance: kind unresolved"
@@ -84,13 +85,10 @@ def solve(
     """
     start = time.perf_counter()
     _refuse_bad(count, tolerance)
-    operator = model.operator
-    fault = operator.hermitian()
-    if fault is not None:
-        raise PhysicsError(fault.reason, mend=fault.mend)
     stop, tell = should_stop or (lambda: False), progress or (lambda _: None)
     try:
-        with np.errstate(all="ignore"):
+        with np.errstate(all="ignore"), stopping(should_stop):
+            _refuse_asymmetric(model)
             found = _by_order(model, count, near, tolerance, stop, tell, like)
     except np.linalg.LinAlgError:
         raise PhysicsError(
@@ -124,6 +122,12 @@ def _refuse_bad(count: int | None, tolerance: float) -> None:
         raise PhysicsError(f"{count} levels cannot be computed", mend="ask for 1 or more")
     if not 0 < tolerance < 1:
         raise PhysicsError(f"a tolerance of {tolerance:g} makes no sense", mend="use one between 0 and 1, such as 1e-8")
+
+
+def _refuse_asymmetric(model: Model) -> None:
+    fault = model.operator.hermitian()
+    if fault is not None:
+        raise PhysicsError(fault.reason, mend=fault.mend)
 
 
 def _timed(spectrum: Spectrum, seconds: float) -> Spectrum:
