@@ -7,6 +7,9 @@ from __future__ import annotations
 
 from dataclasses import dataclass
 
+LONGEST = 1000
+"""So many characters of a message are shown, and of its mend."""
+
 
 @dataclass(frozen=True, slots=True)
 class Span:
@@ -58,19 +61,24 @@ def position(text: str, offset: int) -> tuple[int, int]:
 
 def describe(error: SpectermError, text: str = "", source: str = "sheet") -> str:
     """Return the message with file, line, column, the line itself, a caret under the place, and the mend."""
-    lines = []
+    lines, message, mend = [], _cut(error.message), _cut(error.mend)
     if error.span is None or not text:
-        lines.append(f"{source}: {error.message}" if source else error.message)
+        lines.append(f"{source}: {message}" if source else message)
     else:
         row, column = position(text, error.span.start)
-        lines.append(f"{source}:{row}:{column}: {error.message}")
+        lines.append(f"{source}:{row}:{column}: {message}")
         rows = text.split("\n")
         shown, offset = _window(rows[row - 1] if row <= len(rows) else "", column - 1)
         length = max(1, min(error.span.end - error.span.start, len(shown) - offset))
         lines += [f"    {shown}", f"    {' ' * offset}{'^' * length}"]
-    if error.mend:
-        lines.append(f"  {error.mend}")
+    if mend:
+        lines.append(f"  {mend}")
     return printable("\n".join(lines))
+
+
+def _cut(words: str) -> str:
+    """Return words without an end cut short: what a user gave may be quoted in them."""
+    return words if len(words) <= LONGEST else words[: LONGEST - 3] + "..."
 
 
 def _window(line: str, offset: int, width: int = 100) -> tuple[str, int]:

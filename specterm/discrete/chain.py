@@ -17,6 +17,8 @@ from specterm.stopping import check
 
 BLOCK = 512
 """Energies counted at once, to bound the memory taken."""
+LARGEST_BLOCK = 1_000_000
+"""Elements times energies counted at once, also to hear a stop in time."""
 
 
 @dataclass(frozen=True)
@@ -90,8 +92,9 @@ def _joined(mesh: Mesh, terms: Array) -> Chain:
 
 def count_below(condensed: Condensed, energies: Array) -> Counts:
     """Return the number of levels of the mesh below each energy, by the inertia of the shifted matrix (Sylvester)."""
-    if len(energies) > BLOCK:
-        return np.concatenate([count_below(condensed, energies[k : k + BLOCK]) for k in range(0, len(energies), BLOCK)])
+    block = max(4, min(BLOCK, LARGEST_BLOCK // len(condensed.poles)))
+    if len(energies) > block:
+        return np.concatenate([count_below(condensed, energies[k : k + block]) for k in range(0, len(energies), block)])
     check()
     matrix = chain(condensed, energies)
     below = np.count_nonzero(condensed.poles[:, :, None] < energies, axis=(0, 1))

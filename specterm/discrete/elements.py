@@ -17,6 +17,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from specterm.arrays import Array
+from specterm.discrete.memory import refuse_above
 from specterm.discrete.mesh import Edge, Mesh
 from specterm.discrete.quadrature import gauss_jacobi, gauss_legendre
 from specterm.discrete.reference import SPARE, functions, tabulated
@@ -25,7 +26,7 @@ from specterm.stopping import check
 Coefficient = Callable[[Array], Array]
 
 AT_ONCE = 4096
-"""So many interiors are diagonalised before anybody is asked whether to go on."""
+"""So many elements are condensed before anybody is asked whether to go on."""
 EXTRA_POINTS = 8
 """Gauss points beyond the order of the polynomials."""
 
@@ -66,17 +67,21 @@ def grid(mesh: Mesh, coefficients: Coefficients) -> Grid:
     points = mesh.order + EXTRA_POINTS
     t, w = gauss_legendre(points)
     h = mesh.lengths
+    powered = mesh.left.power is not None or mesh.right.power is not None
+    tables = 2 * (mesh.order + 1 + SPARE) if powered else 0
+    refuse_above(8.0 * len(h) * points * (10 + tables), f"a mesh of {len(h)} elements")
     x = mesh.places[:-1, None] + (h / 2)[:, None] * (t + 1)
     right_half = t > 0
     x[:, right_half] = mesh.places[1:, None] - (h / 2)[:, None] * (1 - t[right_half])
     stiffness = coefficients.stiffness(x.ravel()).reshape(x.shape)
     potential = coefficients.potential(x.ravel()).reshape(x.shape)
+    check()
     weight = (h / 2)[:, None] * w
     factor = np.ones_like(x)
     edge = np.zeros(2)
     values, slopes = tabulated(mesh.order, points)
     values, slopes = values[None], slopes[None]
-    if mesh.left.power is not None or mesh.right.power is not None:
+    if powered:
         values, slopes = np.repeat(values, len(h), axis=0), np.repeat(slopes, len(h), axis=0)
         for side, end in ((0, mesh.left), (-1, mesh.right)):
             if end.power is not None:
@@ -134,16 +139,38 @@ def gentlest(condensed: Condensed) -> float:
 
 
 def condense(mesh: Mesh, here: Grid) -> Condensed:
-    """Assemble the element matrices and diagonalise the interiors."""
+    """Assemble the element matrices and diagonalise the interiors, some elements at a time where they are many."""
+    count = len(mesh.lengths)
+    parts = _some_condensed(mesh, here, slice(0, min(count, AT_ONCE)))
+    if count > AT_ONCE:
+        whole = [np.empty((count, *part.shape[1:])) for part in parts]
+        for start in range(0, count, AT_ONCE):
+            check()
+            some = slice(start, min(start + AT_ONCE, count))
+            for array, part in zip(whole, _some_condensed(mesh, here, some) if start else parts, strict=True):
+                array[some] = part
+        parts = (whole[0], whole[1], whole[2], whole[3], whole[4])
+    return Condensed(mesh, here, *parts)
+
+
+Parts = tuple[Array, Array, Array, Array, Array]
+"""Poles, coupling, stiff, heavy and basis of some elements, as in `Condensed`."""
+
+
+def _some_condensed(mesh: Mesh, here: Grid, some: slice) -> Parts:
+    """Return the condensed matrices of some neighbouring elements."""
     n = mesh.order + 1
-    values, slopes = here.values[..., :n], here.slopes[..., :n]
-    form = _gram(slopes, here.kinetic) + _gram(values, here.potential)
-    mass = _gram(values, here.mass)
-    form[0, 1, 1] += here.edge[0]
-    form[-1, 0, 0] += here.edge[1]
-    form[0, 0, 0] += mesh.left.pull
-    form[-1, 1, 1] += mesh.right.pull
-    return _diagonalise(mesh, here, form, mass)
+    own = some if len(here.values) > 1 else slice(None)
+    values, slopes = here.values[own, ..., :n], here.slopes[own, ..., :n]
+    form = _gram(slopes, here.kinetic[some]) + _gram(values, here.potential[some])
+    mass = _gram(values, here.mass[some])
+    if some.start == 0:
+        form[0, 1, 1] += here.edge[0]
+        form[0, 0, 0] += mesh.left.pull
+    if some.stop == len(mesh.lengths):
+        form[-1, 0, 0] += here.edge[1]
+        form[-1, 1, 1] += mesh.right.pull
+    return _diagonalise(mesh, mesh.lengths[some], form, mass)
 
 
 def _gram(functions: Array, weights: Array) -> Array:
@@ -151,20 +178,20 @@ def _gram(functions: Array, weights: Array) -> Array:
     return np.swapaxes(functions, -1, -2) @ (weights[:, :, None] * functions)
 
 
-def _diagonalise(mesh: Mesh, here: Grid, form: Array, mass: Array) -> Condensed:
+def _diagonalise(mesh: Mesh, lengths: Array, form: Array, mass: Array) -> Parts:
     """Return the condensed form: whiten each interior, diagonalise it, take its mass overlap off the vertex functions.
 
     The bubbles are orthonormal in L2(-1, 1): the mass of an interior is half the length times the unit matrix, but for the
     factors of powered ends.
     """
     if mesh.left.power is None and mesh.right.power is None:
-        scale = np.sqrt(2 / mesh.lengths)[:, None, None]
-        poles, modes = _diagonal(scale**2 * form[:, 2:, 2:])
+        scale = np.sqrt(2 / lengths)[:, None, None]
+        poles, modes = np.linalg.eigh(scale**2 * form[:, 2:, 2:])
         interior = scale * modes
     else:
         white = np.linalg.inv(np.linalg.cholesky(mass[:, 2:, 2:]))
         inner = white @ form[:, 2:, 2:] @ np.swapaxes(white, 1, 2)
-        poles, modes = _diagonal((inner + np.swapaxes(inner, 1, 2)) / 2)
+        poles, modes = np.linalg.eigh((inner + np.swapaxes(inner, 1, 2)) / 2)
         interior = np.swapaxes(white, 1, 2) @ modes
     overlap = mass[:, :2, 2:] @ interior
     pull = form[:, :2, 2:] @ interior
@@ -177,20 +204,7 @@ def _diagonalise(mesh: Mesh, here: Grid, form: Array, mass: Array) -> Condensed:
     basis[:, 0, 0] = basis[:, 1, 1] = 1.0
     basis[:, 2:, :2] = -interior @ turned
     basis[:, 2:, 2:] = interior
-    return Condensed(mesh, here, poles, coupling, stiff, heavy, basis)
-
-
-def _diagonal(interiors: Array) -> tuple[Array, Array]:
-    """Return eigenvalues and eigenvectors of each interior, some at a time where they are many."""
-    if len(interiors) <= AT_ONCE:
-        poles, modes = np.linalg.eigh(interiors)
-        return poles, modes
-    poles, modes = np.empty(interiors.shape[:2]), np.empty(interiors.shape)
-    for start in range(0, len(interiors), AT_ONCE):
-        check()
-        some = slice(start, start + AT_ONCE)
-        poles[some], modes[some] = np.linalg.eigh(interiors[some])
-    return poles, modes
+    return poles, coupling, stiff, heavy, basis
 
 
 def residual_share(condensed: Condensed, coefficients: Array, values: Array) -> Array:

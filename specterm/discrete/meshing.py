@@ -13,6 +13,7 @@ from specterm.discrete.problem import Problem
 from specterm.discrete.quadrature import gauss_jacobi, legendre_projector
 from specterm.discrete.scan import Scan
 from specterm.errors import PhysicsError
+from specterm.stopping import check
 
 ALLOWED = 2.0
 """Phase of the wave in one element, in radians; below pi, so that interiors have no level under the energies sought."""
@@ -107,6 +108,7 @@ def resolve(mesh: Mesh, coefficients: Coefficients, energy: float, look: Scan | 
             rough |= _missed(mesh, here, look, coefficients.origin, energy)
         if not rough.any():
             return mesh
+        check()
         _refuse_poles(mesh, rough)
         mesh = replace(mesh, places=graded(mesh.split(rough).places))
         if len(mesh.places) > MOST_ELEMENTS:
@@ -130,6 +132,7 @@ def _refuse_poles(mesh: Mesh, rough: Flags) -> None:
 
 def unresolved(mesh: Mesh, here: Grid, coefficients: Coefficients, energy: float) -> Flags:
     """Say of each element whether its coefficients, or waves of this energy, are too rough for its length and order."""
+    check()
     with np.errstate(all="ignore"):
         potential = here.potential / here.mass - energy
         stiffness = here.kinetic / here.mass * (mesh.lengths[:, None] / 2) ** 2
@@ -140,6 +143,7 @@ def unresolved(mesh: Mesh, here: Grid, coefficients: Coefficients, energy: float
         high_potential, high_stiffness = unseen(mesh, here, coefficients)
         rough = high_potential > np.where(plain, 1e-10, 1e-6) * size
         rough |= high_stiffness > 1e-9 * np.abs(here.kinetic / here.mass).max(axis=1)
+        check()
         low = stiffness.min(axis=1)
         rounding = 1e-14 * np.abs(energy)
         phase = np.sqrt(np.maximum(-potential - rounding, 0).max(axis=1) / low) * mesh.lengths
@@ -161,6 +165,7 @@ def unseen(mesh: Mesh, here: Grid, coefficients: Coefficients) -> tuple[Array, A
     so high a degree are what the rule gets wrong against a squared eigenfunction.
     """
     with np.errstate(all="ignore"):
+        check()
         potential, stiffness = here.potential / here.mass, here.kinetic / here.mass
         parts = [_high(potential), _high(stiffness)]
         steep = np.ones(here.x.shape), np.broadcast_to((2 / mesh.lengths[:, None]) ** 2, here.x.shape)
@@ -183,6 +188,7 @@ def unseen(mesh: Mesh, here: Grid, coefficients: Coefficients) -> tuple[Array, A
 
 def _high(values: Array) -> Array:
     """Return the size of the last Legendre coefficients of values at Gauss points (elements, points)."""
+    check()
     points = values.shape[1]
     tail = np.abs((values - values[:, points // 2, None]) @ legendre_projector(points)[:, points - 4 :]).max(axis=1)
     noise: Array = np.where(tail > 4 * np.finfo(float).eps * np.abs(values).max(axis=1), tail, 0.0)
@@ -199,6 +205,7 @@ def _high_powered(values: Array, beta: float) -> float:
 
 def _missed(mesh: Mesh, here: Grid, look: Scan, origin: float, energy: float) -> Flags:
     """Mark elements in which the scan saw values of V far from what the Gauss points of the element tell."""
+    check()
     rough = np.zeros(len(mesh.lengths), dtype=bool)
     inside = (look.x > mesh.places[0]) & (look.x < mesh.places[-1]) & np.isfinite(look.potential)
     x, v = look.x[inside], look.potential[inside] - origin - energy

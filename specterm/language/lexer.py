@@ -28,7 +28,11 @@ _TOKEN = re.compile(
     |(?P<op>\*\*|==|!=|<=|>=|[-+*/^()=<>,:;−·⋅×≤≥≠∞∈])""",
     re.VERBOSE,
 )
-_CONTROL = re.compile("[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\ud800-\udfff]|\r(?!\n)")
+_CONTROL = re.compile(
+    r"[\x00-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\xad\u061c\u180e\u200b-\u200f\u2028-\u202e\u2060-\u206f\ud800-\udfff\ufff9-\ufffb"
+    r"\U000e0000-\U000e007f]|\r(?!\n)|(?<=[\s\S])\ufeff"
+)
+"""Control characters, and those that show nothing or turn the text around so that it reads other than it is."""
 _OPERATORS = {"**": "^", "−": "-", "·": "*", "⋅": "*", "×": "*", "≤": "<=", "≥": ">=", "≠": "!="}
 _NAMES = {"π": "pi", "ħ": "hbar"}
 _SIGNS = {"∞": "inf", "∈": "in"}

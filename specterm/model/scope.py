@@ -73,19 +73,19 @@ class Scope:
     def ensure(self, names: Iterable[str]) -> None:
         """Resolve the user's names among `names`, those they need first. Raises SheetError on a cycle."""
         stack = [(name, False) for name in names]
-        path: list[str] = []
+        path: dict[str, None] = {}
         while stack:
             key, ready = self._key(stack[-1][0]), stack[-1][1]
             if key is None or key in self.values or key in self.layers:
                 stack.pop()
             elif ready:
                 stack.pop()
-                path.remove(key)
+                del path[key]
                 self._resolve(key)
             else:
                 self._check_cycle(key, path)
                 stack[-1] = (key, True)
-                path.append(key)
+                path[key] = None
                 stack.extend((need, False) for need in self._needs(key))
 
     def _key(self, name: str) -> str | None:
@@ -94,9 +94,10 @@ class Scope:
             return name
         return self.columns.get(name)
 
-    def _check_cycle(self, key: str, path: list[str]) -> None:
+    def _check_cycle(self, key: str, path: dict[str, None]) -> None:
         if key in path:
-            circle = [*path[path.index(key) :], key]
+            names = list(path)
+            circle = [*names[names.index(key) :], key]
             first = next((k for k in circle if k in self.definitions), None)
             span = self.definitions[first].name_span if first else self.blocks[key].span
             shown = " -> ".join("layers" if k in self.blocks else k for k in circle)
