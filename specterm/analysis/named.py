@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from specterm.analysis.expectation import Expectation, expect
+from specterm.analysis.expectation import Expectation, expected
 from specterm.analysis.observables import observable
 from specterm.analysis.prepared import prepare
 from specterm.errors import SpectermError
@@ -38,7 +38,7 @@ def expectations(
     found: list[Expectation | SpectermError] = []
     for name in names:
         try:
-            found.append(expect(model, observable(model, name), wave))
+            found.append(expected(model, spectrum, observable(model, name), wave))
         except SpectermError as error:
             found.append(error)
     return tuple(found)

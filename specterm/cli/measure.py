@@ -37,8 +37,6 @@ def measure(arguments: argparse.Namespace, source: Source) -> Answer:
     pair = len(arguments.observables) == 2
     orders = both_orders(course) if pair and len(set(arguments.observables)) == 2 else None
     data = measured_record(record, arguments.after, joints, orders)
-    if orders:
-        data.data["orders"]["missing"] = list(orders.missing)
     return answered(
         arguments, data,
         lambda: _text(arguments, model, record, joints, orders), status_of(spectrum), (*spectrum.notes, *record.notes),

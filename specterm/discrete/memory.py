@@ -14,10 +14,27 @@ SMALL = 3e7
 
 
 def memory_left() -> float:
-    """Return the bytes left to this process: the least of the machine's and the control group's; inf where neither tells."""
-    left = [_machine(), _group("memory.max", "memory.current", Path("/sys/fs/cgroup"))]
-    left.append(_group("memory.limit_in_bytes", "memory.usage_in_bytes", Path("/sys/fs/cgroup/memory")))
+    """Return the bytes left to this process: the least of the machine's and its control groups'; inf where none tells."""
+    left = [_machine()]
+    left += [_group("memory.max", "memory.current", folder) for folder in _groups(Path("/sys/fs/cgroup"), "")]
+    old = Path("/sys/fs/cgroup/memory")
+    left += [_group("memory.limit_in_bytes", "memory.usage_in_bytes", folder) for folder in _groups(old, "memory")]
     return min(left)
+
+
+def _groups(root: Path, controller: str, told: Path = Path("/proc/self/cgroup")) -> list[Path]:
+    """Return the folders of this process's control group and of all above it, up to `root`."""
+    found = [root]
+    try:
+        lines = told.read_text(encoding="utf-8").splitlines()
+    except (OSError, ValueError):
+        return found
+    for line in lines:
+        _, controllers, path = (*line.split(":", 2), "", "")[:3]
+        if controller in controllers.split(","):
+            parts = [part for part in path.split("/") if part not in ("", "..")]
+            found += [root.joinpath(*parts[:depth]) for depth in range(1, len(parts) + 1)]
+    return found
 
 
 def _machine() -> float:

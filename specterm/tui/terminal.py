@@ -95,3 +95,18 @@ def give_back(stream: TextIO) -> None:
         stream.flush()
     os.dup2(stream.fileno(), 2)
     _draw_on(sys.stderr)
+
+
+def start_tracker() -> None:
+    """Start what multiprocessing keeps beside its processes, once.
+
+    It wants a descriptor of the stream for errors, which a full-screen program has put something without one in the place of.
+    """
+    from multiprocessing import resource_tracker  # noqa: PLC0415 - only for work in other processes
+
+    captured = sys.stderr
+    sys.stderr = sys.__stderr__
+    try:
+        resource_tracker.ensure_running()
+    finally:
+        sys.stderr = captured

@@ -18,12 +18,16 @@ from typing import Any
 from textual.app import App
 from textual.message import Message
 
+from specterm.errors import WorkStopped
 from specterm.session.pins import Pin
+from specterm.tui.child import ChildEngine
 from specterm.tui.pages.page import Answered, Inquiry, answered
-from specterm.tui.solving import Engine, Outcome, Request, Weighed, compute, moments_of, weigh
+from specterm.tui.solving import BuiltIn, Engine, Outcome, Request, Weighed, compute, moments_of, weigh
 from specterm.views.status import MomentsText
 
 _PACE = 0.5
+_HERE = 1.0
+"""Seconds after which a computation goes on, from its start, in a process of its own."""
 _GRACE = 0.25
 """A computation younger than this is waited for, so that a key held down shows every state that there is time for."""
 
@@ -70,6 +74,7 @@ class Work:
     def __init__(self, app: App[int], engine: Engine) -> None:
         """Start with no request."""
         self.app, self.engine = app, engine
+        self.portable = isinstance(engine, BuiltIn)
         self.number = 0
         self.busy = False
         self._solving, self._since = 0, 0.0
@@ -180,7 +185,18 @@ class Work:
 
     def _solve(self, request: Request) -> None:
         """Do the work of a request; runs in a thread."""
-        outcome = compute(self.engine, request, lambda: request.number != self._solving, self._progress(request.number))
+        began = time.monotonic()
+
+        def overtaken() -> bool:
+            return request.number != self._solving
+
+        def long() -> bool:
+            return overtaken() or (self.portable and time.monotonic() - began > _HERE)
+
+        progress = self._progress(request.number)
+        outcome = compute(self.engine, request, long, progress)
+        if isinstance(outcome.error, WorkStopped) and not overtaken():
+            outcome = compute(ChildEngine(self.engine, request), request, overtaken, progress)
         self._tell(Solved(outcome))
 
     def _tell(self, message: Message) -> None:

@@ -31,6 +31,7 @@ def measured_record(run: Run, after: float, joints: tuple[Joint, ...], orders: O
             "forward": orders.forward.tolist(),
             "backward": orders.backward.tolist(),
             "distance": orders.distance,
+            "missing": list(orders.missing),
         }
     if joints:
         heading = (*(step.observable for step in run.steps), "probability", "count")

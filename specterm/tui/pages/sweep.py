@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
@@ -11,6 +12,7 @@ from specterm.session.sweeps import journal_of
 from specterm.tui.look import Look
 from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell
 from specterm.tui.solving import BuiltIn, Outcome, Request, compute
+from specterm.tui.terminal import start_tracker
 from specterm.views.cells import Row, Rows, fit_row
 from specterm.views.columns import padded, text_rows
 from specterm.views.level_figure import draw
@@ -21,23 +23,34 @@ if TYPE_CHECKING:
     from specterm.analysis.sweep import Point, Sweep, SweepRequest
 
 
+HERE = 1.5
+"""Seconds of expected work above which a sweep goes to other processes, of which there are as many as:"""
+WORKERS = 2
+
+
 @dataclass(frozen=True)
 class Swept:
     """Asks for a sweep; what is done is told on the way and kept in a journal."""
 
     request: SweepRequest
 
-    def answer(self, _: Outcome, should_stop: Stop, tell: Tell) -> Sweep:
-        """Return the whole sweep."""
+    def answer(self, outcome: Outcome, should_stop: Stop, tell: Tell) -> Sweep:
+        """Return the whole sweep; one that lasts is left to processes of its own."""
         from specterm.analysis.sweep import assemble, sweep  # noqa: PLC0415 - heavy
+        from specterm.analysis.sweep_crews import processes  # noqa: PLC0415
 
+        seconds = outcome.spectrum.seconds * self.request.size if outcome.spectrum is not None else 0.0
+        crew = None
+        if seconds > HERE:
+            start_tracker()
+            crew = processes(min(WORKERS, len(os.sched_getaffinity(0))))
         points: list[Point] = []
 
         def taken(point: Point) -> None:
             points.append(point)
             tell(lambda: assemble(self.request, list(points)))
 
-        return sweep(self.request, journal=journal_of(self.request), should_stop=should_stop, on_point=taken)
+        return sweep(self.request, crew=crew, journal=journal_of(self.request), should_stop=should_stop, on_point=taken)
 
 
 @dataclass(frozen=True)
