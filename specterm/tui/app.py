@@ -208,6 +208,7 @@ class Specterm(Tuned):
         self.found[event.key] = event.found
         if isinstance(event.found, Answered):
             self.redraw()
+            self.on_answer()
             return
         if event.key == self.shown.look.chosen:
             self._look_ahead(outcome)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import secrets
+from collections.abc import Callable
 from dataclasses import replace
 from typing import Any
 
@@ -17,8 +18,11 @@ from specterm.views.numbers import scale_of
 class Booked(Paged):
     """The part of the app that measures."""
 
-    def _next(self) -> Any:  # noqa: ANN401 - what could come next
-        """Return what the next measurement could give, None (said) while it is not known."""
+    waiting: Callable[[], None] | None = None
+
+    def _next(self, then: Callable[[], None]) -> Any:  # noqa: ANN401 - what could come next
+        """Return what the next measurement could give; None while it is not known, and `then` follows when it is."""
+        self.waiting = None
         if self.shown.look.page != "notebook":
             self.action_page("notebook")
         shown = self.painter.complete()
@@ -26,8 +30,15 @@ class Booked(Paged):
         if shown.answer is not None and shown.fresh and shown.answer.error is not None:
             self.say(shown.answer.error.message, "warn")
         elif found is None:
-            self.say("the outcomes are being computed: press again when they are there", "dim")
+            self.waiting = then
+            self.say("as soon as the outcomes are there", "dim")
         return found
+
+    def on_answer(self) -> None:
+        """Do what waited for the outcomes, where they are there."""
+        then = self.waiting
+        if then is not None and self.shown.look.page == "notebook" and self.painter.complete().fresh:
+            then()
 
     def _note(self, *lines: Line) -> None:
         """Write lines into the notebook; a preparation comes first where there is none for this sheet."""
@@ -56,7 +67,7 @@ class Booked(Paged):
         """Measure: draw an outcome by its probability."""
         import numpy as np  # noqa: PLC0415 - loaded by now
 
-        found = self._next()
+        found = self._next(self.action_draw)
         if found is None:
             return
         from specterm.analysis.once import drawn  # noqa: PLC0415 - heavy
@@ -83,7 +94,7 @@ class Booked(Paged):
 
     def action_choose(self) -> None:
         """Measure: choose the outcome."""
-        found = self._next()
+        found = self._next(self.action_choose)
         if found is None:
             return
         from specterm.analysis.once import chosen as taken  # noqa: PLC0415 - heavy

@@ -171,7 +171,9 @@ def chosen_row(shown: Shown, width: int) -> Row:
     if outcome is None or spectrum is None or not spectrum.levels:
         return fit_row((("", "plain"),), width)
     moments = shown.moments if shown.look.moments and width >= BESIDE else None
-    row = state_line(spectrum.levels[shown.look.chosen], outcome.units, width - 1, moments=moments, mark=shown.mark)
+    more = [f"{shown.extra.heading} {shown.extra.texts[shown.look.chosen].strip()}"] if shown.extra else []
+    level = spectrum.levels[shown.look.chosen]
+    row = state_line(level, outcome.units, width - 1, moments=moments, more=more, mark=shown.mark)
     return fit_row(((" ", "plain"), *row), width)
 
 

@@ -33,11 +33,14 @@ class MomentsText:
     spread_p: float
 
 
-def state_line(level: Level | None, units: Units, width: int, *, moments: MomentsText | None = None, mark: str = "…") -> Row:
-    """Return the line for the chosen state; parts at the end that do not fit leave a mark."""
+def state_line(
+    level: Level | None, units: Units, width: int, *, moments: MomentsText | None = None, more: Sequence[str] = (),
+    mark: str = "…",
+) -> Row:  # fmt: skip
+    """Return the line for the chosen state, with `more` to be said of it; parts at the end that do not fit leave a mark."""
     if level is None:
         return ((cut("no level", width, mark), "warn"),)
-    parts = list(state_parts(level, units))
+    parts = [*state_parts(level, units), *more]
     if moments is not None:
         parts += moment_parts(moments, units)
     line = join(parts, width, mark)
