@@ -9,8 +9,8 @@ from collections.abc import Hashable
 from dataclasses import replace
 from pathlib import Path
 from time import monotonic
-from typing import Any
 
+from rich.console import RenderableType
 from textual import events
 from textual.app import ComposeResult
 from textual.containers import Container
@@ -239,7 +239,7 @@ class Specterm(Tuned):
         """Take the terminal's word that a frame has arrived."""
         self.painter.answered()
 
-    def exit(self, result: int | None = None, return_code: int = 0, message: Any = None) -> None:
+    def exit(self, result: int | None = None, return_code: int = 0, message: RenderableType | None = None) -> None:
         """Leave, once the terminal has answered what it was asked."""
         leave = super().exit
         self.painter.quiet(lambda: leave(result, return_code, message))

@@ -83,8 +83,9 @@ class Painter:
 
     def displayed(self) -> None:
         """Ask the terminal to say when it has what has just been sent; the app calls this."""
-        if self._pace.sent() and self.app._driver is not None and not self.app.is_headless:
-            self.app._driver.write(QUESTION)
+        driver = self.app._driver
+        if driver is not None and not driver.is_headless and self._pace.sent():
+            driver.write(QUESTION)
 
     def answered(self) -> None:
         """Take the terminal's answer; what has changed since is drawn now."""
