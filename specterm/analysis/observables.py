@@ -10,7 +10,7 @@ import numpy as np
 from specterm.arrays import Array, Values
 from specterm.errors import PhysicsError, SheetError
 from specterm.language import parse_expression
-from specterm.language.dimensions import check_dimensions
+from specterm.language.dimensions import check_dimensions, lengthy
 from specterm.model import Function, Model, Operator
 from specterm.model.regular import regular_part
 from specterm.model.term import linear
@@ -112,7 +112,8 @@ def dimension_of(model: Model, text: str) -> Dimension | None:
     if text.strip() == model.domain.coordinate and model.coordinate_unit:
         return LENGTH
     try:
-        return check_dimensions(model.sheet, model.units).of(parse_expression(text))
+        known = lengthy(model.sheet, model.units) if model.coordinate_unit else check_dimensions(model.sheet, model.units)
+        return known.of(parse_expression(text))
     except SheetError:
         return None
 

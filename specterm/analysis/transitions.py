@@ -86,7 +86,18 @@ def _lines(
         notes += why
     if any(level.kind == "box" for level in upper.levels):
         notes.append("lines to box levels stand for parts of a continuum: only their sum over a range means something")
+    if _jumps_at_seam(model, asked):
+        notes.append(f"`{asked.text}` jumps where the ring closes: its strengths obey no sum rule; take a periodic dipole")
     return tuple(lines), sums, tuple(dict.fromkeys(notes))
+
+
+def _jumps_at_seam(model: Model, asked: Observable) -> bool:
+    """Say whether a function taken for the dipole on a ring has another value at one end than at the other."""
+    domain = model.domain
+    if not domain.is_ring or asked.order > 0:
+        return False
+    first, last = (complex(asked.parts[0](np.array([end]))[0]) for end in (domain.left, domain.right))
+    return abs(last - first) > 1e-9 * max(abs(first), abs(last))
 
 
 def _refuse_missing(spectrum: Spectrum, starts: tuple[int, ...]) -> None:

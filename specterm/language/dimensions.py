@@ -210,6 +210,11 @@ def check_dimensions(sheet: Sheet, units: UnitSystem) -> Dimensions:
     return Dimensions(sheet, units, INFERRED) if found.evidence else found
 
 
+def lengthy(sheet: Sheet, units: UnitSystem) -> Dimensions:
+    """Return what is known where the coordinate is a length; raise SheetError where two terms are then known not to fit."""
+    return Dimensions(sheet, units, SAID)
+
+
 def _known(kind: Kind | None) -> Dimension | None:
     """Return the dimension of a kind where it is really known."""
     return kind.dimension if kind is not None and kind.known else None

@@ -147,3 +147,14 @@ def test_matrix_of_a_commutator_written_as_such():
     """The matrix of [p, x], whose weak form still has derivatives in it, is -i between equal levels (closed form)."""
     matrix = matrix_elements(model(WALLS), spectrum(WALLS, 4), "commutator(p, x)")
     assert np.allclose(matrix.values, -1j * np.eye(4), atol=1e-9)
+
+
+def test_a_dipole_that_jumps_on_a_ring_is_told():
+    """The coordinate jumps where a ring closes, so that a note says so; a periodic dipole has no such note and sums to 1."""
+    ring = model("L = 5.0; H = p^2/2; x in ring(0, L), phase 0.2; s = sin(2*pi*x/L)")
+    found_levels = solve(ring, count=9)
+    assert any("jumps where the ring closes" in note for note in transitions(ring, found_levels).notes)
+    found = transitions(ring, found_levels, dipole="s")
+    assert not any("jumps" in note for note in found.notes)
+    # the double commutator of sin(k x) is k^2 cos(k x)^2, and two lines carry all of it
+    assert found.sums[0] == pytest.approx(1.0, abs=1e-9)
