@@ -60,10 +60,18 @@ def line_spectrum(
     total = broadened(seen, energies, wide, shape)
     strongest = sorted(seen, key=lambda stick: -stick.intensity)[:LABELLED]
     top = float(total.max())
-    labels = [
-        Label(stick.energy, min(1.0, float(np.interp(stick.energy, energies, total)) / top + 0.08), stick.name, "chosen")
-        for stick in strongest
-    ]
+    labels: list[Label] = []
+    for stick in strongest:
+        place = min(1.0, float(np.interp(stick.energy, energies, total)) / top + 0.08)
+        label = Label(stick.energy, place, stick.name, "chosen")
+        if not any(_overlap(label, one, (high - low) / width, 1.08 / height) for one in labels):
+            labels.append(label)
     across = f"energy ({unit})" if unit else "energy"
     curve = Curve(energies, total / top, "chosen")
     return chart([curve], width, height, glyphs=glyphs, xlabel=across, xlim=(low, high), ylim=(0.0, 1.08), labels=labels)
+
+
+def _overlap(one: Label, other: Label, column: float, row: float) -> bool:
+    """Say whether two labels would stand on each other, given the size of a column and of a row."""
+    wide = (max(len(one.text), len(other.text)) + 1) * column
+    return abs(one.x - other.x) < wide and abs(one.y - other.y) < 1.5 * row
