@@ -17,6 +17,8 @@ from specterm.stopping import check
 
 BLOCK = 512
 """Energies counted at once, to bound the memory taken."""
+ROWS = 30_000
+"""Vertices eliminated before anybody is asked whether to go on."""
 LARGEST_BLOCK = 1_000_000
 """Elements times energies counted at once, also to hear a stop in time."""
 
@@ -116,14 +118,19 @@ def _pivots(diagonal: Array, squares: Array, tiny: float) -> Array:
     pivots = diagonal.copy()
     ratio = np.empty(diagonal.shape[1:])
     with np.errstate(all="ignore"):
-        for before, after, square in zip(pivots, pivots[1:], squares, strict=False):
-            np.divide(square, before, out=ratio)
-            np.subtract(after, ratio, out=after)
+        for start in range(0, len(pivots), ROWS):
+            check()
+            some = slice(start, start + ROWS)
+            for before, after, square in zip(pivots[some], pivots[1:][some], squares[some], strict=False):
+                np.divide(square, before, out=ratio)
+                np.subtract(after, ratio, out=after)
     if pivots.all():
         return pivots
     pivots = diagonal.copy()
     with np.errstate(over="ignore"):
         for row in range(len(diagonal) - 1):
+            if row % ROWS == 0:
+                check()
             pivots[row][pivots[row] == 0] = tiny
             pivots[row + 1] -= squares[row] / pivots[row]
     return pivots
@@ -148,6 +155,8 @@ def eliminate_ring(matrix: Chain) -> tuple[Counts, Array, list[tuple[Array, Valu
     pivot = matrix.diagonal[1].copy()
     link = matrix.side[0].astype(complex)
     for row in range(1, vertices):
+        if row % ROWS == 0:
+            check()
         final = row == vertices - 1
         if final:
             link = link + matrix.corner
@@ -185,8 +194,11 @@ def twisted_vectors(matrix: Chain, weight: Array) -> tuple[Array, Array, Counts]
     keep = np.concatenate([rows >= twist, (rows < twist)[::-1]], axis=1)
     runs = np.zeros_like(both)
     runs[np.concatenate([twist, vertices - 1 - twist]), np.arange(2 * columns)] = 1.0
-    for factor, kept, before, after in zip(factors, keep, runs, runs[1:], strict=False):
-        np.multiply(factor, before, out=after, where=kept)
+    for start in range(0, len(runs), ROWS):
+        check()
+        some = slice(start, start + ROWS)
+        for factor, kept, before, after in zip(factors[some], keep[some], runs[some], runs[1:][some], strict=False):
+            np.multiply(factor, before, out=after, where=kept)
     z = np.where(np.arange(vertices)[:, None] >= twist, runs[:, :columns], runs[::-1, columns:])
     return z, gamma[twist, take], np.count_nonzero(down < 0, axis=0)
 

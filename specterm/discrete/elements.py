@@ -82,7 +82,7 @@ def grid(mesh: Mesh, coefficients: Coefficients) -> Grid:
     values, slopes = tabulated(mesh.order, points)
     values, slopes = values[None], slopes[None]
     if powered:
-        values, slopes = np.repeat(values, len(h), axis=0), np.repeat(slopes, len(h), axis=0)
+        values, slopes = _repeated(values, len(h)), _repeated(slopes, len(h))
         for side, end in ((0, mesh.left), (-1, mesh.right)):
             if end.power is not None:
                 parts = _powered(mesh, coefficients, side, end)
@@ -90,6 +90,15 @@ def grid(mesh: Mesh, coefficients: Coefficients) -> Grid:
                 values[side], slopes[side] = parts[6:]
     mass = weight * factor**2
     return Grid(x, factor, mass * stiffness * (2 / h[:, None]) ** 2, mass * potential, mass, edge, values, slopes)
+
+
+def _repeated(table: Array, count: int) -> Array:
+    """Return one table for each element, all alike."""
+    whole = np.empty((count, *table.shape[1:]))
+    for start in range(0, count, AT_ONCE):
+        check()
+        whole[start : start + AT_ONCE] = table
+    return whole
 
 
 def _powered(mesh: Mesh, coefficients: Coefficients, side: int, end: Edge) -> tuple[Array, ...]:

@@ -23,6 +23,8 @@ ORDER, ORDER_BETWEEN_KNOTS = 12, 6
 GROWTH = 2.5
 """How much longer than its neighbour an element may be."""
 MOST_ELEMENTS = 400_000
+AT_ONCE = 20_000
+"""The rounding of the coefficients is worked out in so many elements at once."""
 
 
 @dataclass(frozen=True)
@@ -61,15 +63,14 @@ def _first_places(problem: Problem, look: Scan, span: Span, energy: float, round
         [[span.left], problem.edges[(problem.edges > span.left) & (problem.edges < span.right)], [span.right]]
     )
     at = np.interp(marks, x, share)
-    pieces = np.maximum(1, np.ceil(np.diff(at) - 1e-9)).astype(int)
-    if len(marks) == 2:
-        pieces = np.maximum(pieces, 2)
-    if pieces.sum() > MOST_ELEMENTS:
+    wanted = np.maximum(1 if len(marks) > 2 else 2, np.ceil(np.diff(at) - 1e-9))
+    if not wanted.sum() <= MOST_ELEMENTS:
         worst = x[int(np.argmax(np.diff(share)))]
         raise PhysicsError(
-            f"this needs some {pieces.sum():.2g} elements, more than the {MOST_ELEMENTS} allowed, most near {worst:.6g}",
+            f"this needs some {wanted.sum():.2g} elements, more than the {MOST_ELEMENTS} allowed, most near {worst:.6g}",
             mend="ask for fewer or lower levels; if the potential is singular there, end the domain there",
         )
+    pieces = wanted.astype(int)
     if pieces.sum() == len(marks) - 1:
         return marks
     fresh = [
@@ -173,10 +174,11 @@ def unseen(mesh: Mesh, here: Grid, coefficients: Coefficients) -> tuple[Array, A
             (parts[0], coefficients.noise_potential, steep[0]),
             (parts[1], coefficients.noise_stiffness, steep[1]),
         ):
-            seen = part > 0
-            if seen.any():
-                level = (noise(here.x[seen].ravel()).reshape(-1, here.x.shape[1]) * scale[seen]).max(axis=1)
-                part[seen] = np.maximum(0, part[seen] - 2 * level)
+            seen = np.flatnonzero(part > 0)
+            for start in range(0, len(seen), AT_ONCE):
+                some = seen[start : start + AT_ONCE]
+                level = (noise(here.x[some].ravel()).reshape(-1, here.x.shape[1]) * scale[some]).max(axis=1)
+                part[some] = np.maximum(0, part[some] - 2 * level)
         for side, end, place in ((0, mesh.left, mesh.places[0]), (-1, mesh.right, mesh.places[-1])):
             if end.power is not None:
                 distance = np.abs(here.x[side] - place) / mesh.lengths[side]

@@ -63,8 +63,9 @@ def _sign(stiffness: Function, left: float, right: float) -> int:
         start = finite[0] if finite else 0.0
         out = np.geomspace(1e-6, 1e6, 64) * max(1.0, abs(start))
         x = start + out if np.isfinite(left) or not finite else start - out
-    values = stiffness(x)
-    return -1 if np.nanmedian(np.sign(values)) < 0 else 1
+    signs = np.sign(stiffness(x))
+    signs = signs[~np.isnan(signs)]
+    return -1 if len(signs) and np.median(signs) < 0 else 1
 
 
 def _phase(model: Model, twist: Function | None) -> float:

@@ -45,6 +45,11 @@ def scan(problem: Problem) -> Scan:
     x, stiffness, potential = x[~lone], stiffness[~lone], potential[~lone]
     good = _trusted(x, stiffness, potential, problem)
     x, stiffness, potential = x[good], stiffness[good], potential[good]
+    if len(x) < 2:
+        raise PhysicsError(
+            "there is hardly a place in the domain where the operator has a value",
+            mend="move the domain, or choose units that make lengths nearer to 1",
+        )
     _refuse_poles(problem, x, potential)
     if np.isnan(potential).any():
         place = x[np.flatnonzero(np.isnan(potential))[0]]

@@ -23,10 +23,10 @@ def derivative(root: Term) -> Term:
     """
     slopes: dict[int, Term] = {}
     order = leaves_first(root)
-    for term in order:
-        slopes[term.digest] = _slope(term, slopes) if term.varies else NIL
     if len(order) > MOST_TERMS:
         raise refuse("too-many-terms", None, limit=MOST_TERMS)
+    for term in order:
+        slopes[term.digest] = _slope(term, slopes) if term.varies else NIL
     return slopes[root.digest]
 
 

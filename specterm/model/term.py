@@ -12,6 +12,7 @@ from dataclasses import dataclass
 from typing import Any
 
 from specterm.model.scalar import ONE, ZERO, Scalar
+from specterm.stopping import check
 
 Data = Any
 """What a term carries beside its arguments; see the kinds in `Term`."""
@@ -172,6 +173,7 @@ def negative(a: Term) -> Term:
 
 def multiply(*terms: Term) -> Term:
     """Return the product, constants pulled out in front, equal factors and reciprocals collected into whole powers."""
+    check()
     coefficient = ONE
     powers: dict[int, tuple[Term, int]] = {}
     for term in terms:

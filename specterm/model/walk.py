@@ -6,6 +6,7 @@ from collections.abc import Callable
 
 from specterm.model.scalar import Scalar
 from specterm.model.term import Term, constant, divide, linear, make, multiply
+from specterm.stopping import check
 
 
 def leaves_first(root: Term) -> list[Term]:
@@ -21,6 +22,7 @@ def leaves_first(root: Term) -> list[Term]:
             done.add(term.digest)
             order.append(term)
             continue
+        check()
         stack.append((term, True))
         stack.extend((arg, False) for arg in reversed(term.args) if arg.digest not in done)
     return order

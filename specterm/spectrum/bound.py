@@ -11,6 +11,7 @@ from specterm.discrete.elements import condense, grid
 from specterm.discrete.ends import FarEnd, NearEnd
 from specterm.discrete.mesh import Edge
 from specterm.discrete.meshing import Span, build
+from specterm.errors import PhysicsError
 from specterm.spectrum.setting import DEEP, Setting, span_at
 
 MARGIN = 1e-13
@@ -91,7 +92,9 @@ def other_end(ready: Setting, side: int) -> tuple[float, Edge]:
     apart = Setting(ready.problem, ready.look, ready.outer, _alone(ready, side), ready.extra, ready.floor, ready.threshold)
     span = span_at(apart, ready.threshold, (2 * DEEP, 2 * DEEP))
     if span is None:
-        raise ArithmeticError("an end above the threshold must close")
+        raise PhysicsError(
+            "states at the threshold reach farther out than numbers go", mend="choose units that make lengths nearer to 1"
+        )
     return (span.left, span.left_edge) if side == 0 else (span.right, span.right_edge)
 
 

@@ -16,6 +16,7 @@ from specterm.arrays import Array, Values
 from specterm.discrete.memory import refuse_above
 from specterm.errors import PhysicsError, WorkStopped
 from specterm.model import Form, Model
+from specterm.stopping import check
 
 MOST_POINTS = 3001
 NOISE = 30 * float(np.finfo(float).eps)
@@ -43,6 +44,7 @@ class FourierStates:
 
     def evaluate(self, x: Array, derivative: int = 0) -> Values:
         """Return psi or d psi/dx of every state at the places x: shape (states, len(x))."""
+        check()
         x = np.asarray(x, dtype=float)
         waves = np.exp(1j * np.outer(x - self.left, self.waves)) / math.sqrt(self.right - self.left)
         if derivative:
@@ -185,6 +187,7 @@ def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> _Solutio
     matrix = np.zeros((n, n), dtype=complex)
     floor, terms = 0.0, []
     for (j, k), coefficient in form.terms:
+        check()
         values = coefficient(x)
         if not np.isfinite(values).all():
             raise PhysicsError(
@@ -195,6 +198,7 @@ def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> _Solutio
         matrix += np.conj((1j * waves) ** j)[:, None] * inner * (1j * waves) ** k
         floor += float(np.min(values.real)) if j == k == 0 else 0.0
     matrix = (matrix + matrix.conj().T) / 2
+    check()
     if not vectors:
         return np.asarray(np.linalg.eigvalsh(matrix), dtype=np.float64), matrix[:0], np.zeros(1), floor
     values, states = np.linalg.eigh(matrix)

@@ -14,6 +14,7 @@ from specterm.discrete.mesh import Edge
 from specterm.discrete.meshing import Span
 from specterm.discrete.problem import Problem
 from specterm.discrete.scan import Scan, energy_for, scan
+from specterm.errors import PhysicsError
 
 FINER = 8
 """Into so many pieces the intervals of the scan are cut where the decay of a state is added up."""
@@ -57,6 +58,10 @@ class Setting:
         ceiling = self.threshold
         if span is not None:
             inside = (look.x >= span.left) & (look.x <= span.right)
+            if not inside.any():
+                raise PhysicsError(
+                    f"places between {span.left:.9g} and {span.right:.9g} cannot be told apart", mend="move the domain nearer to 0"
+                )
             look, extra = Scan(look.x[inside], look.stiffness[inside], look.potential[inside]), extra[inside]
             ceiling = math.inf
         return energy_for(look, count, extra, self.floor, ceiling)
@@ -75,6 +80,8 @@ def setting(problem: Problem) -> Setting:
             share = 0.5 if end.kind == "power" and end.power < 1 else 0.25
             extra = extra + share * look.stiffness / (look.x - place) ** 2
     height = (look.potential + extra)[np.isfinite(look.potential)]
+    if not len(height):
+        raise PhysicsError("the potential is nowhere a finite number", mend="mend the expression, or move the domain")
     floor = float(height.min())
     if not ends[0] and not ends[1]:
         floor = float(look.potential.min())

@@ -14,6 +14,10 @@ from specterm.discrete.reference import curvatures, functions
 from specterm.model import Function
 from specterm.model.regular import regular_slope
 from specterm.spectrum.vectors import Solved
+from specterm.stopping import check
+
+AT_ONCE = 30_000
+"""States are evaluated at so many places at once."""
 
 
 @dataclass(frozen=True)
@@ -43,7 +47,11 @@ class ElementStates:
 
         0 outside the mesh. The second derivative is that of the polynomials on each element.
         """
+        check()
         x = np.asarray(x, dtype=float)
+        if len(x) > AT_ONCE:
+            parts = [self.evaluate(x[k : k + AT_ONCE], derivative) for k in range(0, len(x), AT_ONCE)]
+            return np.concatenate(parts, axis=1)
         places = self.places
         element = np.clip(np.searchsorted(places, x, side="right") - 1, 0, len(places) - 2)
         inside = (x >= places[0]) & (x <= places[-1])
@@ -99,8 +107,8 @@ class ElementStates:
                 here = element == number
                 d = np.maximum(np.abs(x[here] - place), np.finfo(float).tiny)
                 factor[here] = (d / lengths[number]) ** end.power
-                growth[here] = sign * end.power / d
                 with np.errstate(over="ignore"):
+                    growth[here] = sign * end.power / d
                     bend[here] = end.power * (end.power - 1) / d / d if end.power != 1 else 0.0
         return factor, growth, bend
 

@@ -98,6 +98,8 @@ def solve_levels(
     start = parts[0].first
     take = slice(first - start, last + 1 - start)
     values, kinetic = (np.concatenate([getattr(p, name) for p in parts])[take] for name in ("values", "kinetic"))
+    if not len(values):
+        raise np.linalg.LinAlgError("no level of the numbers asked for")
     return Solved(condensed, first, values, np.concatenate([p.coefficients for p in parts], axis=2)[:, :, take], kinetic)
 
 
@@ -327,4 +329,7 @@ def _solver(matrix: Chain):  # type: ignore[no-untyped-def]  # noqa: ANN202 - a 
         from scipy.sparse import eye_array  # noqa: PLC0415 - as above
 
         shake = np.finfo(float).eps * np.abs(whole.data).max()
-        return splu(whole + shake * eye_array(whole.shape[0], format="csc")).solve
+        try:
+            return splu(whole + shake * eye_array(whole.shape[0], format="csc")).solve
+        except RuntimeError as error:
+            raise np.linalg.LinAlgError(str(error)) from None

@@ -81,11 +81,11 @@ def _sheet(verdict: Verdict, text: str, folder: Path, *, solving: bool) -> None:
     from specterm.language import parse  # noqa: PLC0415
     from specterm.model import build  # noqa: PLC0415
 
-    start = time.process_time()
+    start = time.perf_counter()
     model = None
     with refusals(verdict, text):
         model = build(parse(text), folder=folder)
-    verdict.building = time.process_time() - start
+    verdict.building = time.perf_counter() - start
     if model is None:
         verdict.ways.add("refused")
         return

@@ -18,12 +18,14 @@ from typing import Any
 
 from fuzz_guard import guard
 
+from specterm.stopping import stopping
+
 LIMIT = 2.0
 """Seconds of processor time after which an input counts as hanging."""
 ASKED, PROMPT = 1.0, 0.3
-"""Solves are asked to stop after so many seconds, and are late when they go on for more than so many after that."""
-LEVELS = 4
-"""At most so many levels are asked for."""
+"""Work is asked to stop after so many seconds, and is late when it goes on for more than so many after that."""
+LEVELS, MOST_LEVELS = 3, 12
+"""So many levels are computed where nobody says how many, and at most."""
 
 
 class Hanging(BaseException):
@@ -45,36 +47,26 @@ def _alarm(_signal: int, _frame: Any) -> None:
 
 
 def prepare() -> None:
-    """Bound every solve of this process in levels and time, and let the clock of `LIMIT` ring."""
+    """Bound every solve of this process in levels and tolerance, and let the clock of `LIMIT` ring."""
     import specterm.spectrum as spectrum  # noqa: PLC0415 - wrapped before anything takes `solve` from it
     from specterm.spectrum import engine  # noqa: PLC0415
 
     whole = engine.solve
 
     def limited(model: Any, **options: Any) -> Any:
-        start = time.process_time()
-        asked = options.get("should_stop") or (lambda: False)
-        options["should_stop"] = lambda: asked() or time.process_time() - start > ASKED
-        options["count"] = min(options.get("count") or LEVELS, LEVELS)
+        options["count"] = min(options.get("count") or LEVELS, MOST_LEVELS)
         options["tolerance"] = max(options.get("tolerance", 1e-4), 1e-4)
-        try:
-            return whole(model, **options)
-        finally:
-            late.append(time.process_time() - start - ASKED)
+        return whole(model, **options)
 
     spectrum.solve = limited
     signal.signal(signal.SIGPROF, _alarm)
 
 
-late: list[float] = []
-
-
 def judged(work: Callable[[Verdict], None], *mine: str) -> Verdict:
     """Run `work` under the guard and the clock; `mine` are files it may write."""
     verdict = Verdict()
-    late.clear()
     start = time.process_time()
-    with guard.watching(*mine) as seen:
+    with guard.watching(*mine) as seen, stopping(lambda: time.process_time() - start > ASKED):
         signal.setitimer(signal.ITIMER_PROF, LIMIT)
         try:
             work(verdict)
@@ -90,8 +82,10 @@ def judged(work: Callable[[Verdict], None], *mine: str) -> Verdict:
     verdict.faults += [("written" if event.startswith("written") else "code", event) for event in seen]
     if verdict.seconds > LIMIT and not any(sort == "hang" for sort, _ in verdict.faults):
         verdict.faults.append(("hang", f"{verdict.seconds:.1f} s in all"))
-    if late and max(late) > PROMPT:
-        verdict.faults.append(("late", f"stopped {max(late):.2f} s after it was asked to"))
+    if verdict.building > ASKED and verdict.seconds > ASKED:
+        verdict.faults.append(("slow", f"{verdict.building:.1f} s from text to model"))
+    if ASKED + PROMPT < verdict.seconds <= LIMIT:
+        verdict.faults.append(("late", f"stopped {verdict.seconds - ASKED:.2f} s after it was asked to"))
     return verdict
 
 

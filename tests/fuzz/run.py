@@ -12,6 +12,7 @@ import os
 import sys
 import tempfile
 import time
+import warnings
 from collections import Counter
 from collections.abc import Callable
 from dataclasses import dataclass, field
@@ -21,12 +22,14 @@ from typing import Any
 
 for _name in ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS"):
     os.environ.setdefault(_name, "1")
-sys.path[:0] = [str(Path(__file__).parent), str(Path(__file__).resolve().parents[2])]
+ROOT = Path(__file__).resolve().parents[2]
+sys.path[:0] = [str(Path(__file__).parent), str(ROOT)]
 
 from fuzz_inputs import Trial, sheet_trial, table_trial, try_sheet, try_table  # noqa: E402 - found through the path above
 from fuzz_trial import Verdict, bounded, fixtures, prepare  # noqa: E402
 
-SORTS = ("crash", "hang", "late", "written", "code", "control")
+SORTS = ("crash", "hang", "slow", "late", "written", "code", "control")
+FOREIGN = ("scipy.linalg", "scipy.optimize", "scipy.special", "scipy.sparse.linalg", "encodings.ascii", "encodings.idna")
 STUCK = 90.0
 """Seconds without a new input after which a child counts as hanging inside compiled code, and is ended."""
 MEMORY = 3_000_000_000
@@ -57,8 +60,10 @@ def warmed(folder: Path) -> None:
     """Use every part once, so that nothing is imported later, under the guard."""
     from fuzz_mutation import known_sheets  # noqa: PLC0415
 
-    for name in ("scipy.linalg", "scipy.optimize", "scipy.special", "scipy.sparse.linalg", "encodings.ascii", "specterm.analysis.physics"):
-        importlib.import_module(name)
+    own = [path.relative_to(ROOT).with_suffix("") for path in (ROOT / "specterm").rglob("*.py") if path.parent.name != "pages"]
+    parts = [".".join(path.parts) for path in own if "tui" not in path.parts and path.name != "__main__"]
+    for name in (*FOREIGN, *parts):
+        importlib.import_module(name.removesuffix(".__init__"))
     sheet = known_sheets()[0]
     for words in (
         ["levels"], ["levels", "--json"], ["check"], ["figure"], ["expectation", "x"], ["weights", "level(0)"], ["transitions"],
@@ -79,6 +84,7 @@ def child(kind: str, numbers: range, seed: int, folder: str, now: Any, results: 
     os.chdir(place)
     warmed(place)
     bounded(MEMORY)
+    warnings.simplefilter("error")
     tally = Tally()
     made, tried = KINDS[kind]
     for number in numbers:
@@ -147,7 +153,7 @@ def report(tally: Tally, seed: int) -> None:
     print(f"seed {seed}: {tally.ways['sheets']} sheets, {tally.ways['tables']} tables")
     print("ways: " + ", ".join(f"{name} {count}" for name, count in sorted(tally.ways.items())))
     words = {
-        "crash": "crashes", "hang": "hangs over 2 s", "late": "stops later than 0.3 s", "written": "files written",
+        "crash": "crashes", "hang": "hangs over 2 s", "slow": "models over 1 s", "late": "stops later than 0.3 s", "written": "files written",
         "code": "code or processes run", "control": "control characters passed through",
     }  # fmt: skip
     for sort in SORTS:
@@ -172,6 +178,7 @@ def again(kind: str, number: int, seed: int) -> None:
         prepare()
         warmed(Path(scratch))
         bounded(MEMORY)
+        warnings.simplefilter("error")
         verdict = KINDS[kind][1](trial, Path(scratch))
     print(f"{verdict.seconds:.3f} s, model {verdict.building:.3f} s, {sorted(verdict.ways)}, {verdict.faults}")
 
