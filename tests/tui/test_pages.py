@@ -185,6 +185,33 @@ async def test_notebook_waits_counts_and_compares_orders(size):
         assert len(pilot.app.bench.chain(pilot.app.shown.outcome)) == 1
 
 
+async def test_tables_scroll(size):
+    """The keys . and , move the table of the page, and stop at its ends."""
+    async with well().run_test(size=size) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "plus", "plus", "plus", "plus", "plus", "plus", "4", "z")
+        assert "rows 1-" in words(pilot)
+        await pressed(pilot, "full_stop")
+        assert "rows 6-" in words(pilot)
+        await pressed(pilot, "comma", "comma")
+        assert "rows 1-" in words(pilot)
+
+
+async def test_bins_of_the_notebook(size):
+    """The key b sets how finely a continuous observable is told apart: about as many outcomes as bins."""
+    async with well().run_test(size=size) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "6", "d")
+        await typed(pilot, "x")
+        await pressed(pilot, "b", "ctrl+u")
+        await typed(pilot, "4")
+        outcomes = pilot.app.painter.complete().answer.result.step.outcomes
+        assert 3 <= len(outcomes) <= 8
+        await pressed(pilot, "b", "ctrl+u")
+        await typed(pilot, "0")
+        assert "whole number from 1 to 1000" in words(pilot)
+
+
 async def test_same_seed_same_record():
     """Two sessions with the same seed draw the same outcomes."""
     records = []
