@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 import os
 import stat
 from pathlib import Path
@@ -27,11 +28,11 @@ def read_regular(path: Path | str, most: int) -> bytes:
     try:
         handle = os.open(path, os.O_RDONLY | os.O_NONBLOCK | os.O_NOCTTY | os.O_CLOEXEC)
     except ValueError as error:
-        raise OSError(0, f"no path: {error}") from None
+        raise OSError(errno.EINVAL, str(error)) from None
     try:
         found = os.fstat(handle)
         if not stat.S_ISREG(found.st_mode):
-            raise NotRegularError(0, "it is not a regular file")
+            raise NotRegularError(errno.EINVAL, "it is not a regular file")
         if found.st_size > most:
             raise TooLargeError(found.st_size)
         with os.fdopen(handle, "rb", closefd=False) as file:

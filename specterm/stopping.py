@@ -40,7 +40,7 @@ def stopping(should_stop: Callable[[], bool] | None) -> Iterator[None]:
 
 
 def check() -> None:
-    """Raise WorkStopped where the work is to stop. Cheap: it asks at most every `OFTEN` seconds, and nobody where none is set."""
+    """Raise WorkStopped where the work is to stop; asks at most every `OFTEN` seconds, and nobody where none is set."""
     asked = _ASKED.get()
     if asked is None:
         return

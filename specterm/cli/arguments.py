@@ -6,7 +6,7 @@ import argparse
 import math
 from typing import NoReturn
 
-from specterm.errors import printable
+from specterm.errors import LONGEST, printable
 
 VERBS = (
     "levels", "weights", "expectation", "transitions", "measure", "evolve", "sensitivities", "fit", "sweep", "figure", "check",
@@ -29,7 +29,7 @@ class Parser(argparse.ArgumentParser):
 
     def error(self, message: str) -> NoReturn:
         """Say what is wrong with the command line, cleaned, and leave with status 2."""
-        super().error(printable(message))
+        super().error(printable(message if len(message) <= LONGEST else message[: LONGEST - 3] + "..."))
 
 
 def parser() -> argparse.ArgumentParser:

@@ -31,6 +31,8 @@ def read_source(sheet: str | None, text: str | None) -> Source:
     if sheet is None:
         raise SheetError("no sheet is given", mend="name a file or a preset, or write -e 'H = p^2 + x^4; x in (-inf, inf)'")
     if sheet == "-":
+        if sys.stdin is None:
+            raise SheetError("standard input is closed", mend="name a file, or write the sheet behind -e")
         data = sys.stdin.buffer.read(LARGEST + 1)
         if len(data) > LARGEST:
             raise SheetError("standard input is too large: a sheet holds at most 1 MB", mend="take data out into a table")

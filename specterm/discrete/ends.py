@@ -143,7 +143,8 @@ def _strength(
     best = straight if abs(straight - shortest) <= 1e-2 * max(1.0, abs(shortest)) else best
     if not abs(best) < 1e300:
         raise PhysicsError(
-            f"what happens at the end {end:.6g} is out of the range of numbers", mend="choose units that make lengths nearer to 1"
+            f"what happens at the end {end:.6g} is out of the range of numbers",
+            mend="choose units that make lengths nearer to 1",
         )
     near = round(4 * best) / 4
     slack = 1e-9 if critical + 4 * near > 0.01 else 4e-14

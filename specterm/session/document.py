@@ -10,6 +10,7 @@ from dataclasses import dataclass, replace
 from pathlib import Path
 
 from specterm.errors import SheetError, printable
+from specterm.regular import NotRegularError, TooLargeError, read_regular
 
 LARGEST = 1_000_000
 """The largest sheet in bytes."""
@@ -60,21 +61,14 @@ def load(path: Path) -> Document:
 def read_text(path: Path, largest: int = LARGEST) -> str:
     """Return the text of a regular file of at most `largest` bytes; raises SheetError as `load` does."""
     try:
-        handle = os.open(path, os.O_RDONLY | os.O_NONBLOCK | os.O_CLOEXEC)
-    except (OSError, ValueError) as error:
-        raise SheetError(f"cannot read {shown(path)}: {reason(error)}", mend="check the path and its permissions") from error
-    try:
-        if not stat.S_ISREG(os.fstat(handle).st_mode):
-            raise SheetError(f"{shown(path)} is not a regular file", mend="give the path of a text file")
-        with os.fdopen(handle, "rb", closefd=False) as file:
-            data = file.read(largest + 1)
-    except OSError as error:
-        raise SheetError(f"cannot read {shown(path)}: {reason(error)}", mend="check the file system") from error
-    finally:
-        os.close(handle)
-    if len(data) > largest:
+        data = read_regular(path, largest)
+    except NotRegularError as error:
+        raise SheetError(f"{shown(path)} is not a regular file", mend="give the path of a text file") from error
+    except TooLargeError as error:
         words = f"{shown(path)} is larger than {largest // 1_000_000} MB"
-        raise SheetError(words, mend="long tables belong in files of their own")
+        raise SheetError(words, mend="long tables belong in files of their own") from error
+    except OSError as error:
+        raise SheetError(f"cannot read {shown(path)}: {reason(error)}", mend="check the path and its permissions") from error
     try:
         text = data.decode("utf-8-sig").replace("\r\n", "\n")
     except UnicodeDecodeError as error:

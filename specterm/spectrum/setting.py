@@ -60,7 +60,8 @@ class Setting:
             inside = (look.x >= span.left) & (look.x <= span.right)
             if not inside.any():
                 raise PhysicsError(
-                    f"places between {span.left:.9g} and {span.right:.9g} cannot be told apart", mend="move the domain nearer to 0"
+                    f"places between {span.left:.9g} and {span.right:.9g} cannot be told apart",
+                    mend="move the domain nearer to 0",
                 )
             look, extra = Scan(look.x[inside], look.stiffness[inside], look.potential[inside]), extra[inside]
             ceiling = math.inf
