@@ -114,6 +114,11 @@ class Operator:
 
     def sturm(self) -> Sturm:
         """Return the real functions K, B and V of a Hermitian operator of order <= 2 (see `specterm.model.form.sturm`)."""
+        return self._sturm
+
+    @cached_property
+    def _sturm(self) -> Sturm:
+        """K, B and V, found once."""
         return sturm(self.words, self.setting)
 
 

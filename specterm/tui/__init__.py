@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+import contextlib
 import os
 import sys
 from pathlib import Path
+from typing import NoReturn
 
 from specterm.tui.options import Options
 from specterm.tui.terminal import give_back, own_stream, settle, take_keyboard, usable
@@ -15,7 +17,8 @@ __all__ = ["Options", "run", "usable"]
 def run(text: str, path: Path | None = None, options: Options | None = None) -> int:
     """Show a sheet full screen until the user leaves; return the exit status.
 
-    `path` is the sheet's file, or None. Call `usable` first: without a terminal there is nothing to show it on.
+    `path` is the sheet's file, or None. Call `usable` first: without a terminal there is nothing to show it on. Where a
+    computation still runs the process ends here and now: an interpreter in order would wait for it, and all is saved.
     """
     settle(os.environ)
     from dataclasses import replace  # noqa: PLC0415 - the environment is settled first
@@ -33,4 +36,15 @@ def run(text: str, path: Path | None = None, options: Options | None = None) -> 
         give_back(stream)
     if app.last_words:
         print(app.last_words, file=sys.stderr)
-    return app.return_code or status or 0
+    found = app.return_code or status or 0
+    if not app.work.resting:
+        _end(found)
+    return found
+
+
+def _end(status: int) -> NoReturn:
+    """End the process at once; computations in processes of their own end with it."""
+    for stream in (sys.stdout, sys.stderr):
+        with contextlib.suppress(OSError, ValueError):
+            stream.flush()
+    os._exit(status)

@@ -13,6 +13,8 @@ _HOPELESS = ("", "dumb", "unknown")
 _THREADS = ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS")
 _LOG_SIZE = 1_000_000
 _TERMINAL = "/dev/tty"
+_FRAMES = "250"
+"""Frames a second that the library may draw: how often is decided here (pace.py), what it adds is only delay."""
 
 
 def usable() -> bool:
@@ -51,7 +53,7 @@ def settle(environ: MutableMapping[str, str]) -> None:
     """Set in the environment what libraries read once when they are imported.
 
     The size is asked of the terminal, not of COLUMNS and LINES; one BLAS thread; the terminal's own sixteen colours; 256
-    colours in GNU screen, which misreads true colour.
+    colours in GNU screen, which misreads true colour; no delay of frames.
     """
     environ.pop("COLUMNS", None)
     environ.pop("LINES", None)
@@ -59,6 +61,7 @@ def settle(environ: MutableMapping[str, str]) -> None:
         environ.setdefault(name, "1")
     environ["TEXTUAL_THEME"] = "ansi-dark"
     environ.setdefault("TEXTUAL_ANIMATIONS", "none")
+    environ.setdefault("TEXTUAL_FPS", _FRAMES)
     in_screen = "STY" in environ or environ.get("TERM", "").startswith("screen")
     if in_screen and "TMUX" not in environ:
         environ["TEXTUAL_COLOR_SYSTEM"] = "256"

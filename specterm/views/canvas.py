@@ -5,25 +5,29 @@ Drawing takes places in dots, row 0 at the top, any finite or non-finite number;
 
 from __future__ import annotations
 
+import itertools
+import sys
 from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import NDArray
 
-from specterm.views.cells import Row, Rows, runs
+from specterm.views.cells import Row, Rows
 
 GLYPHS = ("braille", "block", "ascii")
 DOTS = {"braille": (2, 4), "block": (2, 2), "ascii": (1, 3)}
-_BRAILLE = np.array([[0x01, 0x08], [0x02, 0x10], [0x04, 0x20], [0x40, 0x80]])
-_BLOCK = np.array([[1, 2], [4, 8]])
-_ASCII = np.array([[1], [2], [4]])
+_BRAILLE = np.array([[0x01, 0x08], [0x02, 0x10], [0x04, 0x20], [0x40, 0x80]], dtype=np.uint8)
+_BLOCK = np.array([[1, 2], [4, 8]], dtype=np.uint8)
+_ASCII = np.array([[1], [2], [4]], dtype=np.uint8)
 _WEIGHTS = {"braille": _BRAILLE, "block": _BLOCK, "ascii": _ASCII}
 _CHARACTERS = {
     "braille": " " + "".join(chr(0x2800 + mask) for mask in range(1, 256)),
     "block": " ▘▝▀▖▌▞▛▗▚▐▜▄▙▟█",
     "ascii": " '-|.:||",
 }
+_TABLES = {glyphs: np.array(list(characters)) for glyphs, characters in _CHARACTERS.items()}
+_UTF_32 = f"utf-32-{sys.byteorder[0]}e"
 
 
 @dataclass
@@ -65,20 +69,21 @@ class Canvas:
         (dots drawn, dots left out) along its way.
         """
         low, high = self._extents(column, row)
-        places = np.arange(self.rows)[:, None]
-        drawn = (np.arange(self.columns)[None, :] + places) % sum(dash) < dash[0]
-        self._stamp((places >= low) & (places <= high) & drawn, style, over=over)
+        places = self._places(low, high)
+        mask = (places >= low) & (places <= high)
+        if dash[1]:
+            mask &= (np.arange(self.columns) + places) % sum(dash) < dash[0]
+        self._stamp(mask, places, style, over=over)
 
     def hatch(self, column: NDArray[np.float64], row: NDArray[np.float64], base: float, style: str) -> None:
         """Hatch between the polyline and the row `base`: every second dot column, one a cell for braille and block."""
         low, high = self._extents(column, row)
         level = round(min(max(base, -1.0), float(self.rows))) if np.isfinite(base) else -1
-        known = low <= high
+        known = (low <= high) & (np.arange(self.columns) % 2 == 0)
         top = np.where(known, np.minimum(low, level), 1)
         bottom = np.where(known, np.maximum(high, level), 0)
-        places = np.arange(self.rows)[:, None]
-        stripes = (np.arange(self.columns) % 2 == 0)[None, :]
-        self._stamp((places >= top) & (places <= bottom) & stripes, style)
+        places = self._places(top, bottom)
+        self._stamp((places >= top) & (places <= bottom), places, style)
 
     def horizontal(
         self, row: float, style: str, *, dash: tuple[int, int] = (1, 0), where: NDArray[np.bool_] | None = None
@@ -96,9 +101,8 @@ class Canvas:
         """Draw a line down at `column`."""
         if not np.isfinite(column) or not -0.5 <= column < self.columns - 0.5:
             return
-        mask = np.zeros_like(self.dots)
-        mask[:, round(column)] = np.arange(self.rows) % sum(dash) < dash[0]
-        self._stamp(mask, style)
+        places = np.arange(self.rows)[:, None]
+        self._stamp((places % sum(dash) < dash[0]) & (np.arange(self.columns) == round(column)), places, style)
 
     def write(self, column: int, row: int, text: str, style: str) -> None:
         """Write single-column characters into cells from (column, row) on; what falls outside is left out."""
@@ -108,31 +112,47 @@ class Canvas:
 
     def cells(self) -> Rows:
         """Return what was drawn, `height` rows of exactly `width` columns."""
+        if not self.dots.size:
+            return ((),) * self.height
         across, down = DOTS[self.glyphs]
-        blocks = self.dots.reshape(self.height, down, self.width, across)
-        masks = np.einsum("idja,da->ij", blocks.astype(np.int64), _WEIGHTS[self.glyphs]) if self.dots.size else None
-        return tuple(self._row(number, masks) for number in range(self.height))
-
-    def _row(self, number: int, masks: NDArray[np.int64] | None) -> Row:
-        """Return one row of cells."""
-        if masks is None:
-            return ()
-        table = _CHARACTERS[self.glyphs]
-        characters = [table[mask] for mask in masks[number].tolist()]
-        styles = [self.names[index] for index in _carried(self.style[number], masks[number] > 0)]
+        weights = _WEIGHTS[self.glyphs]
+        masks = np.zeros((self.height, self.width), dtype=np.uint8)
+        for row in range(down):
+            for column in range(across):
+                masks += self.dots[row::down, column::across] * weights[row, column]
+        characters, styles = _TABLES[self.glyphs][masks], _carried(self.style, masks > 0)
         for (row, place), (character, style) in self.letters.items():
-            if row == number:
-                characters[place], styles[place] = character, style
-        return runs(characters, styles)
+            characters[row, place], styles[row, place] = character, self._number(style)
+        return tuple(self._row(*of) for of in zip(characters, styles, strict=True))
 
-    def _stamp(self, mask: NDArray[np.bool_], style: str, *, over: bool = False) -> None:
-        """Add the dots of `mask` and give their cells the style."""
+    def _row(self, characters: NDArray[np.str_], styles: NDArray[np.int16]) -> Row:
+        """Return one row of cells, neighbours of one style joined."""
+        text = characters.tobytes().decode(_UTF_32)
+        edges = [0, *(np.flatnonzero(np.diff(styles)) + 1).tolist(), self.width]
+        return tuple((text[first:last], self.names[styles[first]]) for first, last in itertools.pairwise(edges))
+
+    def _places(self, low: NDArray[np.int64], high: NDArray[np.int64]) -> NDArray[np.int64]:
+        """Return the dot rows (rows, 1) of the cells from the first to the last that the columns reach, perhaps none."""
+        down = DOTS[self.glyphs][1]
+        known = low <= high
+        first = max(0, int(low[known].min(initial=self.rows))) // down * down
+        last = min(self.rows - 1, int(high[known].max(initial=-1)))
+        return np.arange(first, -(-(last + 1) // down) * down)[:, None]
+
+    def _stamp(self, mask: NDArray[np.bool_], places: NDArray[np.int64], style: str, *, over: bool = False) -> None:
+        """Add the dots of `mask` in the dot rows `places` of whole cells, and give their cells the style."""
+        if not mask.size:
+            return
         across, down = DOTS[self.glyphs]
-        touched = mask.reshape(self.height, down, self.width, across).any(axis=(1, 3))
+        touched = mask[::down].copy()
+        for row in range(1, down):
+            touched |= mask[row::down]
+        touched = np.logical_or.reduce([touched[:, column::across] for column in range(across)])
+        rows = slice(int(places[0, 0]), int(places[-1, 0]) + 1)
         if over:
-            self.dots[np.repeat(np.repeat(touched, down, axis=0), across, axis=1)] = False
-        self.dots |= mask
-        self.style[touched] = self._number(style)
+            self.dots[rows][np.repeat(np.repeat(touched, down, axis=0), across, axis=1)] = False
+        self.dots[rows] |= mask
+        self.style[rows.start // down : rows.stop // down][touched] = self._number(style)
 
     def _number(self, style: str) -> int:
         """Return the number that stands for a style."""
@@ -150,10 +170,10 @@ class Canvas:
         return _rows_between(low, high)
 
 
-def _carried(style: NDArray[np.int16], drawn: NDArray[np.bool_]) -> list[int]:
-    """Return the styles of one row with blank cells taking the style before them, so that a row has few runs."""
-    last = np.maximum.accumulate(np.where(drawn, np.arange(len(style)), -1))
-    return [int(index) for index in np.where(last >= 0, style[np.maximum(last, 0)], 0)]
+def _carried(style: NDArray[np.int16], drawn: NDArray[np.bool_]) -> NDArray[np.int16]:
+    """Return the styles (rows, columns) with blank cells taking the style before them in the row, so that it has few runs."""
+    last = np.maximum.accumulate(np.where(drawn, np.arange(style.shape[1]), -1), axis=1)
+    return np.where(last >= 0, np.take_along_axis(style, np.maximum(last, 0), axis=1), 0).astype(np.int16)
 
 
 def _rows_between(low: NDArray[np.float64], high: NDArray[np.float64]) -> tuple[NDArray[np.int64], NDArray[np.int64]]:

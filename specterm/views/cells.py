@@ -6,8 +6,9 @@ whoever shows it. Widths are terminal columns.
 
 from __future__ import annotations
 
+import re
 import unicodedata
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable
 
 Run = tuple[str, str]
 Row = tuple[Run, ...]
@@ -20,9 +21,13 @@ STYLES = (
 MARKS = {"braille": "…", "block": "…", "ascii": "~"}
 
 
+_NARROW = re.compile("[ -~\u2500-\u25a0\u2800-\u28ff\u2026]*")
+"""Characters of one column that figures are made of: ASCII, lines, blocks, braille."""
+
+
 def width_of(text: str) -> int:
     """Return how many columns `text` takes: two for wide East Asian characters, none for combining ones."""
-    if text.isascii():
+    if text.isascii() or _NARROW.fullmatch(text):
         return len(text)
     return sum(_columns(character) for character in text)
 
@@ -83,14 +88,3 @@ def fit_row(row: Row, width: int, mark: str = "…") -> Row:
 def plain(rows: Iterable[Row]) -> str:
     """Return rows as text, one line a row, blanks at the ends removed."""
     return "\n".join("".join(text for text, _ in row).rstrip() for row in rows)
-
-
-def runs(characters: Sequence[str], styles: Sequence[str]) -> Row:
-    """Return a row from single characters and the style of each, neighbours of one style joined."""
-    made: list[Run] = []
-    start = 0
-    for place in range(1, len(characters) + 1):
-        if place == len(characters) or styles[place] != styles[start]:
-            made.append(("".join(characters[start:place]), styles[start]))
-            start = place
-    return tuple(made)

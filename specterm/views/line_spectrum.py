@@ -9,7 +9,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specterm.views.cells import Rows
-from specterm.views.plot import Curve, Label, chart
+from specterm.views.line_chart import chart
+from specterm.views.plot import Curve, Label
 
 LABELLED = 6
 

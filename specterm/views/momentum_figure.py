@@ -9,7 +9,8 @@ from numpy.typing import NDArray
 
 from specterm.analysis.momentum import MomentumDensity
 from specterm.views.cells import Rows
-from specterm.views.plot import Curve, chart
+from specterm.views.line_chart import chart
+from specterm.views.plot import Curve
 
 Floats = NDArray[np.float64]
 

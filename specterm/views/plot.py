@@ -1,4 +1,4 @@
-"""Line charts with ticks through plotext, behind one narrow door.
+"""Line charts with ticks through plotext, behind one narrow door: figures that leave the screen as text.
 
 plotext draws a curve far outside its limits point by point and fails on infinite numbers and equal limits, so nothing unclean
 reaches it: curves are thinned and clipped to the view here, gaps are NaN, limits are finite and differ, and every chart has a
@@ -8,7 +8,7 @@ figure of its own with an explicit size.
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 from typing import Any, TypeAlias
 
@@ -24,7 +24,8 @@ _ASCII = str.maketrans("│─┌┐└┘┤┬├┴┼", "|-+++++++++")
 _Limits = tuple[float, float]
 _Plotext: TypeAlias = Any
 _COLOUR = re.compile(r"\x1b\[([0-9;]*)m")
-_SMALLEST = (12, 5)
+SMALLEST = (12, 5)
+"""Columns and rows below which there is no room for a chart."""
 
 
 @dataclass(frozen=True)
@@ -63,9 +64,8 @@ def chart(
 
     NaN and infinite points are gaps. A size below 12 x 5 has no room for a chart and gives blank rows.
     """
-    blank = (((" " * max(0, width), "plain"),) if width > 0 else (),) * max(0, height)
-    if width < _SMALLEST[0] or height < _SMALLEST[1]:
-        return blank
+    if width < SMALLEST[0] or height < SMALLEST[1]:
+        return blank(width, height)
     xlim = limits([curve.x for curve in curves]) if xlim is None else limits([np.array(xlim)])
     ylim = limits([curve.y for curve in curves]) if ylim is None else limits([np.array(ylim)])
     styles: list[str] = []
@@ -79,7 +79,12 @@ def chart(
             figure.text(label.text, x=label.x, y=label.y, color=_colour(styles, label.style))
     _surround(figure, xlim, ylim, (width, height), (title, xlabel, ylabel))
     rows = _parse(figure.build(), styles, ascii_only=glyphs == "ascii")
-    return tuple(fit_row(row, width) for row in (*rows, *blank)[:height])
+    return tuple(fit_row(row, width) for row in (*rows, *blank(width, height))[:height])
+
+
+def blank(width: int, height: int) -> Rows:
+    """Return blank rows."""
+    return (((" " * width, "plain"),) if width > 0 else (),) * max(0, height)
 
 
 def _figure(width: int, height: int) -> _Plotext:
@@ -99,21 +104,21 @@ def _surround(figure: _Plotext, xlim: _Limits, ylim: _Limits, size: tuple[int, i
     figure.ylim(*ylim)
     across = ticks(*xlim, max(1, size[0] // 12))
     up = ticks(*ylim, max(1, size[1] // 4))
-    _set_ticks(figure.xticks, across, xlim)
-    _set_ticks(figure.yticks, up, ylim)
+    for setter, marks in ((figure.xticks, inside(across, xlim)), (figure.yticks, inside(up, ylim))):
+        setter(list(marks.places), list(marks.labels))
     title, xlabel, ylabel = words
     figure.title(title)
-    figure.xlabel(_noted(xlabel, across))
-    figure.ylabel(_noted(ylabel, up))
+    figure.xlabel(noted(xlabel, across))
+    figure.ylabel(noted(ylabel, up))
 
 
-def _set_ticks(setter: Callable[[list[float], list[str]], None], marks: Ticks, ends: _Limits) -> None:
-    """Hand over the ticks that lie inside the ends."""
-    inside = [(place, label) for place, label in zip(marks.places, marks.labels, strict=True) if ends[0] <= place <= ends[1]]
-    setter([place for place, _ in inside], [label for _, label in inside])
+def inside(marks: Ticks, ends: _Limits) -> Ticks:
+    """Return the ticks that lie inside the ends."""
+    kept = [n for n, place in enumerate(marks.places) if ends[0] <= place <= ends[1]]
+    return Ticks(tuple(marks.places[n] for n in kept), tuple(marks.labels[n] for n in kept), marks.note)
 
 
-def _noted(label: str, marks: Ticks) -> str:
+def noted(label: str, marks: Ticks) -> str:
     """Return an axis title with the note of its ticks."""
     return f"{label} [{marks.note}]" if marks.note and label else label
 

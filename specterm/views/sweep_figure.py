@@ -7,9 +7,10 @@ import numpy as np
 from specterm.analysis.sweep import Sweep
 from specterm.views.cells import Rows
 from specterm.views.heat_map import heat_map
+from specterm.views.line_chart import chart
 from specterm.views.numbers import bracket, short, with_unit
 from specterm.views.plain_table import sure, text_columns
-from specterm.views.plot import Curve, Label, chart
+from specterm.views.plot import Curve, Label
 
 WORDS = {"levels": "levels", "transitions": "transition energies", "strengths": "strengths"}
 LABELS = {"expectation": "<{}>", "weights": "weights of {}"}

@@ -6,7 +6,8 @@ import numpy as np
 from numpy.typing import NDArray
 
 from specterm.views.cells import Rows
-from specterm.views.plot import Curve, chart
+from specterm.views.line_chart import chart
+from specterm.views.plot import Curve
 
 Floats = NDArray[np.float64]
 

@@ -32,7 +32,8 @@ def test_the_title_never_promises_more_than_is_held():
 def test_sticks_stand_at_their_momenta():
     """On a ring each momentum is one upright stick, the middle one twice as high as the others."""
     text = plain(momentum_rows(STICKS, 40, 14, "ascii")).split("\n")
-    heights = [sum(row[column : column + 1] == "*" for row in text) for column in range(40)]
+    inside = [row[4:-1] for row in text if row.endswith("|")]
+    heights = [sum(row[column : column + 1] == "|" for row in inside) for column in range(40)]
     columns = [column for column, height in enumerate(heights) if height]
     assert len(columns) == 3
     assert heights[columns[1]] == max(heights)
@@ -42,4 +43,4 @@ def test_sticks_stand_at_their_momenta():
 def test_one_momentum_alone_has_room():
     """A single stick is drawn with room on both sides."""
     one = MomentumDensity(np.array([2.0]), np.array([1.0]), True, "", 1.0)
-    assert "*" in plain(momentum_rows(one, 30, 8, "ascii"))
+    assert {row[15] for row in plain(momentum_rows(one, 30, 8, "ascii")).split("\n")[2:5]} == {"|"}

@@ -6,7 +6,7 @@ from hypothesis import given
 from hypothesis import strategies as st
 
 from specterm.views.canvas import GLYPHS, Canvas
-from specterm.views.cells import cut, fit_row, pad, plain, row_width, runs, width_of
+from specterm.views.cells import cut, fit_row, pad, plain, row_width, width_of
 
 
 def test_cut_leaves_a_mark():
@@ -31,10 +31,16 @@ def test_fit_row_is_exact(texts, width):
     assert all(text for text, _ in row)
 
 
-def test_runs_join_neighbours():
-    """Neighbouring cells of one style become one run."""
-    assert runs("abc", ["x", "x", "y"]) == (("ab", "x"), ("c", "y"))
-    assert runs("", []) == ()
+def test_neighbours_of_one_style_are_one_run():
+    """A row of the canvas has one run for neighbouring cells of one style, blanks counted with what stands before them."""
+    canvas = Canvas(6, 1, "ascii")
+    canvas.write(0, 0, "ab", "axis")
+    canvas.write(3, 0, "c", "axis")
+    canvas.write(5, 0, "d", "chosen")
+    assert canvas.cells() == ((("ab", "axis"), (" ", "plain"), ("c", "axis"), (" ", "plain"), ("d", "chosen")),)
+    drawn = Canvas(6, 1, "ascii")
+    drawn.curve(np.array([1.0, 2.0]), np.array([1.0, 1.0]), "other")
+    assert drawn.cells() == (((" ", "plain"), ("--   ", "other")),)
 
 
 @pytest.mark.parametrize(
