@@ -57,6 +57,7 @@ KEYS = (
     Key("level.details", "i", "details", "level", "In full", "All that the lines below say, unabridged", "", "i"),
     Key("weights.state", "s", "weigh", "weights", "Next state", "Weights of a prepared state, the level, none", "s state", "s"),
     Key("weights.any", "S", "weigh_any", "weights", "Any state", "Weights of a prepared state or a level from a list", "", "S"),
+    Key("weights.share", "W", "share", "weights", "Hold a share", "As many levels as hold a share of the state", "", "W"),
     Key("page.figure", "1", "page('figure')", "page", "Figure", "Show the figure", "1-8 page", "1"),
     Key("page.means", "2", "page('means')", "page", "Means", "Means and spreads of the observables", "", "2"),
     Key("page.matrix", "3", "page('matrix')", "page", "Matrix elements", "An observable between levels: map, table", "", "3"),

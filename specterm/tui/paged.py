@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import os
 from collections.abc import Callable
+from dataclasses import replace
 from math import isfinite
 from typing import Any
 
@@ -14,6 +15,7 @@ from specterm.tui.pages import NAMES, page_of
 from specterm.tui.pages.fit import vary_from
 from specterm.tui.pages.page import Answered, Bench, Room
 from specterm.tui.solving import Outcome
+from specterm.tui.work import Counted
 from specterm.views.numbers import scale_of, short
 
 FASTEST = 5
@@ -251,6 +253,34 @@ class Paged(Keyed):
                 self.say(f"{error.message}; {error.mend}", "warn")
 
         self.ask(Chooser("Numbers to vary, such as  F m=0.05:0.08", (), free=True, text=start), answered)
+
+    def action_share(self) -> None:
+        """Ask for a share of the state weighed, and compute as many levels as hold it."""
+        outcome, state = self.shown.outcome, self.shown.look.state
+        if outcome is None or outcome.spectrum is None or state is None:
+            self.say("weigh a state first: s goes through those of the sheet", "warn")
+            return
+
+        def answered(text: str | None) -> None:
+            if text is None:
+                return
+            share = number(text)
+            if 0 < share < 1 and self.shown.outcome is outcome:
+                self.say(f"looking for the levels that hold {text} of {state}; x stops it", "dim")
+                self.work.share(outcome, state, share)
+            else:
+                self.say(f"{text!r} does not do here: a share between 0 and 1 is wanted, such as 0.999", "warn")
+
+        self.ask(Chooser(f"Share of {state} that the levels are to hold", (), free=True, text="0.999"), answered)
+
+    def on_counted(self, event: Counted) -> None:
+        """Compute the levels that hold a share, now that their number is known."""
+        if event.error is not None:
+            self.say(f"{event.error.message}; {event.error.mend}", "warn")
+            return
+        self._look(replace(self.shown.look, count=event.count))
+        self.say(f"{event.count} levels hold {short(event.captured, 8)} of {event.state}", "good")
+        self.compute()
 
     # What leaves the screen
 

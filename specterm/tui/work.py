@@ -18,9 +18,10 @@ from typing import Any
 from textual.app import App
 from textual.message import Message
 
-from specterm.errors import WorkStopped
+from specterm.errors import SpectermError, WorkStopped
 from specterm.session.pins import Pin
 from specterm.tui.child import ChildEngine
+from specterm.tui.held import Share
 from specterm.tui.pages.page import Answered, Inquiry, answered
 from specterm.tui.solving import BuiltIn, Engine, Outcome, Request, Weighed, compute, moments_of, weigh
 from specterm.views.status import MomentsText
@@ -68,6 +69,15 @@ class PinSolved(Message):
         self.pin, self.outcome = pin, outcome
 
 
+class Counted(Message):
+    """It has been found how many levels hold a share of a state, or why that cannot be told."""
+
+    def __init__(self, state: str, count: int, captured: float, error: SpectermError | None = None) -> None:
+        """Carry them."""
+        super().__init__()
+        self.state, self.count, self.captured, self.error = state, count, captured, error
+
+
 class Work:
     """Starts computations of one app and forgets those that were overtaken."""
 
@@ -82,6 +92,7 @@ class Work:
         self._running: set[threading.Thread] = set()
         self._asked: set[tuple[int, Hashable]] = set()
         self._wanted: set[Inquiry] = set()
+        self._share: Share | None = None
         self._refused: set[Inquiry] = set()
 
     @property
@@ -114,7 +125,8 @@ class Work:
 
     def stop(self) -> bool:
         """Forget the running computation, which ends by itself; return whether there was one."""
-        asking, self._refused, self._wanted = bool(self._wanted), self._refused | self._wanted, set()
+        asking = self._share is not None or bool(self._wanted)
+        self._share, self._refused, self._wanted = None, self._refused | self._wanted, set()
         if not self.busy:
             return asking
         self._next, self._solving = None, 0
@@ -204,6 +216,19 @@ class Work:
         if self.app.is_running:
             with contextlib.suppress(RuntimeError):  # it may be left just now
                 self.app.post_message(message)
+
+    def share(self, outcome: Outcome, state: str, share: float) -> None:
+        """Find how many levels hold a share of a state."""
+        inquiry = self._share = Share(state, share)
+
+        def run() -> None:
+            found = answered(inquiry, outcome, lambda: self._share is not inquiry, lambda _: None)
+            if found is not None and self._share is inquiry:
+                self._share = None
+                count, captured = found.result or (0, 0.0)
+                self._tell(Counted(state, count, captured, found.error))
+
+        self._start(run)
 
     def pin(self, pin: Pin) -> None:
         """Compute the spectrum of a pin that was taken up again."""

@@ -185,6 +185,23 @@ async def test_notebook_waits_counts_and_compares_orders(size):
         assert len(pilot.app.bench.chain(pilot.app.shown.outcome)) == 1
 
 
+async def test_levels_that_hold_a_share(size):
+    """The key W asks for a share of the state weighed and computes as many levels as hold it; none weighed is said."""
+    text = WELL + "state narrow = exp(-40*(x - 1)^2)\n"
+    async with well(text).run_test(size=size) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "W")
+        assert "weigh a state first" in words(pilot)
+        await pressed(pilot, "s", "s", "W", "ctrl+u")
+        await typed(pilot, "0.99999")
+        for _ in range(50):
+            if len(pilot.app.shown.outcome.spectrum.levels) > 10:
+                break
+            await settled(pilot)
+        weighed = pilot.app.painter.complete().weighed
+        assert weighed.weighing.captured >= 0.99999
+
+
 async def test_tables_scroll(size):
     """The keys . and , move the table of the page, and stop at its ends."""
     async with well().run_test(size=size) as pilot:
