@@ -194,11 +194,11 @@ async def test_levels_that_hold_a_share(size):
         assert "weigh a state first" in words(pilot)
         await pressed(pilot, "s", "s", "W", "ctrl+u")
         await typed(pilot, "0.99999")
-        for _ in range(50):
-            if len(pilot.app.shown.outcome.spectrum.levels) > 10:
+        for _ in range(200):
+            weighed = pilot.app.painter.complete().weighed
+            if len(pilot.app.shown.outcome.spectrum.levels) > 10 and weighed is not None:
                 break
             await settled(pilot)
-        weighed = pilot.app.painter.complete().weighed
         assert weighed.weighing.captured >= 0.99999
 
 
