@@ -279,6 +279,6 @@ def _limit(values: Array) -> float:
 def _fall(rest: Array, d: Array, last: int) -> float:
     """Return the power with which the tail falls over the octave up to number `last`."""
     first = max(0, last - 1)
-    if first == last or np.sign(rest[first]) != np.sign(rest[last]):
+    if not d[last] > d[first] or np.sign(rest[first]) != np.sign(rest[last]):
         return math.inf
     return float(-math.log2(rest[last] / rest[first]) / math.log2(d[last] / d[first]))

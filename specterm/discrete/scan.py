@@ -217,4 +217,6 @@ def _first_step(look: Scan, floor: float) -> float:
     width = np.maximum(np.abs(look.x - deepest), (look.x[-1] - look.x[0]) * 1e-18)
     with np.errstate(all="ignore"):
         packet = look.stiffness / width**2 + np.maximum(look.potential - floor, 0)
+    if np.isnan(packet).all():
+        raise PhysicsError("energies on this domain are out of the range of numbers", mend="choose units nearer to the problem")
     return max(float(np.nanmin(packet)) / 64, np.finfo(float).tiny * 1e20)

@@ -85,6 +85,7 @@ def folded(value: Callable[..., Values], args: tuple[Term, ...], ulps: float) ->
         for k, argument in enumerate(args):
             if argument.data.slack > 0:
                 slack += argument.data.slack * _slope(value, numbers, k, argument.data.slack)
+    slack = float(slack)
     if not any(isinstance(n, complex) for n in numbers):
         return constant(Scalar(result, slack))
     return constant(Scalar(snap(result, slack), slack))

@@ -13,6 +13,7 @@ from specterm.session.records.record import Record
 KINDS = ("prepared", "measured", "waited")
 _NUMBERS = ("value", "low", "high", "probability")
 _WORDS = ("text", "unit", "sheet", "digest")
+LARGEST_SEED = 2**63
 MOST = 10_000
 """Entries of one notebook."""
 
@@ -87,8 +88,11 @@ def notebook_from(data: Any) -> Notebook:  # noqa: ANN401 - from a file of whate
     """Return the notebook that plain data describe; raises SheetError where they do not."""
     try:
         entries = tuple(_entry(one) for one in data["entries"][:MOST])
-        return Notebook(entries, int(data["seed"]))
-    except (TypeError, ValueError, KeyError, OverflowError) as error:
+        seed = int(data["seed"])
+        if not 0 <= seed < LARGEST_SEED:
+            raise ValueError("seed")
+        return Notebook(entries, seed)
+    except (TypeError, ValueError, KeyError, OverflowError, RecursionError) as error:
         raise SheetError("this is no notebook", mend="start a new one") from error
 
 

@@ -44,7 +44,7 @@ def pin_from(data: Any) -> Pin:  # noqa: ANN401 - from a file of whatever conten
             None if count is None else min(max(1, int(count)), 100_000),
             None if data["near"] is None else float(data["near"]), float(data["tolerance"]),
         )  # fmt: skip
-    except (TypeError, ValueError, KeyError, OverflowError) as error:
+    except (TypeError, ValueError, KeyError, OverflowError, RecursionError) as error:
         raise SheetError("this is no pin", mend="pin the spectrum again") from error
 
 

@@ -84,7 +84,7 @@ def solve(
     = 1000 levels, lengths and energies from 1e-9 to 1e9 and splittings to 1e-14 of the level.
     """
     start = time.perf_counter()
-    _refuse_bad(count, tolerance)
+    _refuse_bad(count, tolerance, near)
     stop, tell = should_stop or (lambda: False), progress or (lambda _: None)
     try:
         with np.errstate(all="ignore"), stopping(should_stop):
@@ -117,9 +117,11 @@ def _by_order(
     return found
 
 
-def _refuse_bad(count: int | None, tolerance: float) -> None:
+def _refuse_bad(count: int | None, tolerance: float, near: float | None) -> None:
     if count is not None and count < 1:
         raise PhysicsError(f"{count} levels cannot be computed", mend="ask for 1 or more")
+    if near is not None and not math.isfinite(near):
+        raise PhysicsError(f"there are no levels near {near:g}", mend="look near a finite energy")
     if not 0 < tolerance < 1:
         raise PhysicsError(f"a tolerance of {tolerance:g} makes no sense", mend="use one between 0 and 1, such as 1e-8")
 

@@ -15,6 +15,8 @@ from specterm.model import Function, Model
 from specterm.model.regular import regular_slope
 
 
+MOST_WAVES = 1_000_000
+
 @dataclass(frozen=True)
 class RunningStates:
     """States exp(i integral of (E - V)/B) / sqrt(|B|), normalised, for the energies `values`."""
@@ -81,7 +83,10 @@ def running_levels(model: Model, count: int, near: float | None) -> RunningLevel
     around, offset, turn = running_integrals(model)
     if near is None:
         raise PhysicsError("the operator has neither a lowest nor a highest level", mend="say where to look: --near E")
-    centre = round((near * around - offset) / (2 * math.pi) - turn)
+    middle = (near * around - offset) / (2 * math.pi) - turn
+    if not abs(middle) + count < MOST_WAVES:
+        raise PhysicsError(f"levels with more than {MOST_WAVES:,} waves around the ring are out of reach", mend="look nearer to 0")
+    centre = round(middle)
     numbers = centre + np.arange(-count - 1, count + 2)
     values: Array = np.asarray((2 * math.pi * (numbers + turn) + offset) / around, dtype=np.float64)
     nearest = np.sort(np.argsort(np.abs(values - near), kind="stable")[:count])

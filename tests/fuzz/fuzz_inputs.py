@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import shlex
 from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
@@ -130,6 +131,20 @@ def table_trial(seed: int, number: int) -> Trial:
     return Trial("", json.dumps(data).encode(), (part,))
 
 
+def kept_trials(path: Path) -> list[Trial]:
+    """Return what is tried with a file of the corpus: as its first line says, or every way in."""
+    data = path.read_bytes()
+    if path.suffix == ".sheet":
+        text = data.decode("utf-8", "surrogateescape")
+        first = text.split("\n", 1)[0]
+        words = shlex.split(first.removeprefix("# words: ")) if first.startswith("# words: ") else []
+        return [Trial(text, b"", ("command", *words) if words else ("solve",))]
+    if path.name.startswith(("pin", "notebook", "session", "journal", "observed")):
+        return [Trial("", data, (path.name.split("-")[0],))]
+    ways = ("", ", linear, hold", ", extend", ", 2, 1, hold")
+    return [Trial(f'H = p^2/2 + V\nV = table("table.csv"{how})\nx in (-1, 1)', data, ("table", "solve")) for how in ways]
+
+
 def try_table(trial: Trial, folder: Path) -> Verdict:
     """Write the file (outside the guard) and read it as what it is."""
     file = folder / "table.csv"
@@ -140,6 +155,7 @@ def try_table(trial: Trial, folder: Path) -> Verdict:
         "journal": lambda verdict: _journal(verdict, file),
         "pin": lambda verdict: _plain(verdict, trial.data, "pin"),
         "notebook": lambda verdict: _plain(verdict, trial.data, "notebook"),
+        "session": lambda verdict: _session(verdict, trial.data),
     }
     kept = (str(file),) if trial.words[0] == "journal" else ()
     return judged(ways[trial.words[0]], *kept)
@@ -182,6 +198,16 @@ def _journal(verdict: Verdict, file: Path) -> None:
         verdict.ways.add("journal")
         for point in journal_of.points.values():
             shown(verdict, point.problem, "the problem of a point")
+
+
+def _session(verdict: Verdict, data: bytes) -> None:
+    from specterm.session.saved import saved_from, text_of  # noqa: PLC0415
+
+    with refusals(verdict, ""):
+        session = saved_from(data.decode())
+        verdict.ways.add("session")
+        shown(verdict, session.document.name, "the name of a session")
+        text_of(session)
 
 
 def _plain(verdict: Verdict, data: bytes, part: str) -> None:

@@ -21,6 +21,10 @@ ENTRY = {
     "kind": "measured", "text": "x", "value": 1.0, "low": 0.5, "high": None, "probability": 0.3, "unit": "nm", "levels": [1, 2],
     "chosen": False, "sheet": "a.sheet", "digest": "00",
 }  # fmt: skip
+SESSION = {
+    "specterm": 1, "text": PIN["text"], "path": None, "saved": None, "title": "untitled", "folder": "/", "past": ["H = p^2"],
+    "pins": [PIN], "notebook": {"seed": 7, "entries": [ENTRY]}, "view": {"a": 1}, "near": None, "tolerance": 1e-8, "closed": False,
+}  # fmt: skip
 NOTEBOOK = {"seed": 7, "entries": [ENTRY, {**ENTRY, "kind": "prepared"}, {**ENTRY, "kind": "waited"}]}
 
 
@@ -88,8 +92,10 @@ def journal(header: bytes, random: Random) -> bytes:
 
 def plain(random: Random) -> tuple[str, object]:
     """Return the name of a part of a session file and data for it."""
-    if random.random() < 0.5:
+    if random.random() < 0.3:
         return "pin", mutated_data(PIN, random)
+    if random.random() < 0.6:
+        return "session", mutated_data(SESSION, random)
     return "notebook", mutated_data(NOTEBOOK, random)
 
 

@@ -20,9 +20,11 @@ from fuzz_guard import guard
 
 from specterm.stopping import stopping
 
-LIMIT = 2.0
+PATIENCE = float(os.environ.get("FUZZ_PATIENCE", "1"))
+"""The limits of time are so many times as long: the test suite must not depend on the speed of the machine."""
+LIMIT = 2.0 * PATIENCE
 """Seconds of processor time after which an input counts as hanging."""
-ASKED, PROMPT = 1.0, 0.3
+ASKED, PROMPT = 1.0, 0.3 * PATIENCE
 """Work is asked to stop after so many seconds, and is late when it goes on for more than so many after that."""
 LEVELS, MOST_LEVELS = 3, 12
 """So many levels are computed where nobody says how many, and at most."""
@@ -40,6 +42,20 @@ class Verdict:
     building: float = 0.0
     seconds: float = 0.0
     ways: set[str] = field(default_factory=set)
+
+
+def faults(folder: Path) -> list[Callable[[Verdict], None]]:
+    """Return works that do what no input may do, one of each sort."""
+
+    def busy(seconds: float) -> None:
+        start = time.process_time()
+        while time.process_time() - start < seconds:
+            pass
+
+    return [
+        lambda _: {}["crash"], lambda _: busy(2 * LIMIT), lambda _: busy(ASKED + 2 * PROMPT), lambda _: (folder / "new").touch(),
+        lambda _: exec("pass"), lambda verdict: shown(verdict, "\x1b[2J", "an answer"),
+    ]  # fmt: skip
 
 
 def _alarm(_signal: int, _frame: Any) -> None:
@@ -82,9 +98,9 @@ def judged(work: Callable[[Verdict], None], *mine: str) -> Verdict:
     verdict.faults += [("written" if event.startswith("written") else "code", event) for event in seen]
     if verdict.seconds > LIMIT and not any(sort == "hang" for sort, _ in verdict.faults):
         verdict.faults.append(("hang", f"{verdict.seconds:.1f} s in all"))
-    if verdict.building > ASKED and verdict.seconds > ASKED:
+    if verdict.building > ASKED * PATIENCE and verdict.seconds > ASKED * PATIENCE:
         verdict.faults.append(("slow", f"{verdict.building:.1f} s from text to model"))
-    if ASKED + PROMPT < verdict.seconds <= LIMIT:
+    if verdict.seconds > ASKED + PROMPT and not any(sort == "hang" for sort, _ in verdict.faults):
         verdict.faults.append(("late", f"stopped {verdict.seconds - ASKED:.2f} s after it was asked to"))
     return verdict
 

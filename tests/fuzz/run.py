@@ -14,7 +14,8 @@ import tempfile
 import time
 import warnings
 from collections import Counter
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
+from contextlib import contextmanager
 from dataclasses import dataclass, field
 from multiprocessing import get_context
 from pathlib import Path
@@ -25,8 +26,8 @@ for _name in ("OPENBLAS_NUM_THREADS", "OMP_NUM_THREADS", "MKL_NUM_THREADS"):
 ROOT = Path(__file__).resolve().parents[2]
 sys.path[:0] = [str(Path(__file__).parent), str(ROOT)]
 
-from fuzz_inputs import Trial, sheet_trial, table_trial, try_sheet, try_table  # noqa: E402 - found through the path above
-from fuzz_trial import Verdict, bounded, fixtures, prepare  # noqa: E402
+from fuzz_inputs import Trial, kept_trials, sheet_trial, table_trial, try_sheet, try_table  # noqa: E402 - by the path above
+from fuzz_trial import Verdict, bounded, faults, fixtures, judged, prepare  # noqa: E402
 
 SORTS = ("crash", "hang", "slow", "late", "written", "code", "control")
 FOREIGN = ("scipy.linalg", "scipy.optimize", "scipy.special", "scipy.sparse.linalg", "encodings.ascii", "encodings.idna")
@@ -102,11 +103,11 @@ def run(work: list[tuple[str, range]], seed: int, processes: int) -> Tally:
     """Try all inputs in children; one that is stuck or dies is noted, and the rest of its piece goes on."""
     context = get_context("fork")
     whole, live = Tally(), []
-    with tempfile.TemporaryDirectory() as scratch:
+    with tempfile.TemporaryDirectory() as place:
         while work or live:
             while work and len(live) < processes:
                 kind, numbers = work.pop(0)
-                folder = tempfile.mkdtemp(dir=scratch)
+                folder = tempfile.mkdtemp(dir=place)
                 fixtures(Path(folder))
                 now, results = context.Value("q", numbers.start - 1), context.SimpleQueue()
                 process = context.Process(target=child, args=(kind, numbers, seed, folder, now, results))
@@ -166,20 +167,52 @@ def report(tally: Tally, seed: int) -> None:
         print(f"  --{kind} {number}: {sort}: {what}")
 
 
+@contextmanager
+def scratch() -> Iterator[Path]:
+    """Yield a folder with the usual files, this process being ready to try inputs in it."""
+    with tempfile.TemporaryDirectory() as folder:
+        place = Path(folder)
+        fixtures(place)
+        os.chdir(place)
+        prepare()
+        warmed(place)
+        bounded(MEMORY)
+        warnings.simplefilter("error")
+        try:
+            yield place
+        finally:
+            os.chdir("/")
+
+
+def kept() -> Tally:
+    """Try everything in the corpus."""
+    tally = Tally()
+    with scratch() as place:
+        for number, path in enumerate(sorted((Path(__file__).parent / "corpus").iterdir())):
+            for trial in kept_trials(path):
+                before = len(tally.faults)
+                tally.add("kept", number, (try_sheet if path.suffix == ".sheet" else try_table)(trial, place))
+                tally.faults[before:] = [(path.name, number, sort, what) for _, _, sort, what in tally.faults[before:]]
+    return tally
+
+
+def planted() -> Tally:
+    """Do one of everything that is not to happen."""
+    with scratch() as place:
+        tally = Tally()
+        for number, fault in enumerate(faults(place)):
+            tally.add("planted", number, judged(fault))
+    return tally
+
+
 def again(kind: str, number: int, seed: int) -> None:
     """Show one input, and try it here."""
     trial = KINDS[kind][0](seed, number)
     print(repr(trial.words))
     print(trial.text[:3000] + ("..." if len(trial.text) > 3000 else ""))
     print(trial.data[:3000])
-    with tempfile.TemporaryDirectory() as scratch:
-        fixtures(Path(scratch))
-        os.chdir(scratch)
-        prepare()
-        warmed(Path(scratch))
-        bounded(MEMORY)
-        warnings.simplefilter("error")
-        verdict = KINDS[kind][1](trial, Path(scratch))
+    with scratch() as place:
+        verdict = KINDS[kind][1](trial, place)
     print(f"{verdict.seconds:.3f} s, model {verdict.building:.3f} s, {sorted(verdict.ways)}, {verdict.faults}")
 
 
@@ -193,11 +226,17 @@ def main() -> int:
     words.add_argument("--processes", type=int, default=2)
     words.add_argument("--sheet", type=int, help="only this sheet, shown")
     words.add_argument("--table", type=int, help="only this table, shown")
+    words.add_argument("--corpus", action="store_true", help="only the inputs that failed once")
+    words.add_argument("--planted", action="store_true", help="only faults planted to see that they are found")
     given = words.parse_args()
     for kind, number in (("sheet", given.sheet), ("table", given.table)):
         if number is not None:
             again(kind, number, given.seed)
             return 0
+    if given.corpus or given.planted:
+        tally = kept() if given.corpus else planted()
+        report(tally, given.seed)
+        return int(bool(tally.faults))
     work = pieces("sheet", given.sheets, given.start) + pieces("table", given.tables, given.start)
     tally = run(work, given.seed, given.processes)
     report(tally, given.seed)
