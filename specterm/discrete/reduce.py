@@ -75,7 +75,7 @@ def _phase(model: Model, twist: Function | None) -> float:
     if twist is not None:
         turn -= integral(twist, domain.left, domain.right, twist.edges(domain.left, domain.right))
     if not math.isfinite(turn):
-        raise PhysicsError("the phase around the ring is out of the range of numbers", mend="make the ring or the gauge smaller")
+        raise PhysicsError("the phase around the ring is out of the range of numbers", mend="make ring or phase smaller")
     return math.remainder(turn, 2 * math.pi)
 
 

@@ -14,8 +14,9 @@ from specterm.errors import PhysicsError
 from specterm.model import Function, Model
 from specterm.model.regular import regular_slope
 
-
 MOST_WAVES = 1_000_000
+"""Levels on a ring are numbered up to here."""
+
 
 @dataclass(frozen=True)
 class RunningStates:
@@ -85,7 +86,7 @@ def running_levels(model: Model, count: int, near: float | None) -> RunningLevel
         raise PhysicsError("the operator has neither a lowest nor a highest level", mend="say where to look: --near E")
     middle = (near * around - offset) / (2 * math.pi) - turn
     if not abs(middle) + count < MOST_WAVES:
-        raise PhysicsError(f"levels with more than {MOST_WAVES:,} waves around the ring are out of reach", mend="look nearer to 0")
+        raise PhysicsError(f"levels of more than {MOST_WAVES:,} waves on the ring are out of reach", mend="look nearer to 0")
     centre = round(middle)
     numbers = centre + np.arange(-count - 1, count + 2)
     values: Array = np.asarray((2 * math.pi * (numbers + turn) + offset) / around, dtype=np.float64)

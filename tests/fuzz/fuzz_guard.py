@@ -10,10 +10,12 @@ from contextlib import contextmanager
 WRITING = os.O_WRONLY | os.O_RDWR | os.O_CREAT | os.O_TRUNC | os.O_APPEND
 CODE = ("compile", "exec", "pickle.find_class", "marshal.loads", "code.__new__", "ctypes.dlopen")
 PROCESSES = (
-    "subprocess.Popen", "os.system", "os.exec", "os.fork", "os.forkpty", "os.posix_spawn", "os.spawn", "os.startfile", "os.kill",
+    "subprocess.Popen", "os.system", "os.exec", "os.fork", "os.forkpty", "os.posix_spawn", "os.spawn", "os.startfile",
+    "os.kill",
 )  # fmt: skip
 CHANGES = (
-    "os.mkdir", "os.rename", "os.remove", "os.rmdir", "os.link", "os.symlink", "os.truncate", "os.chmod", "os.chown", "os.utime",
+    "os.mkdir", "os.rename", "os.remove", "os.rmdir", "os.link", "os.symlink", "os.truncate", "os.chmod", "os.chown",
+    "os.utime",
     "os.putenv", "os.unsetenv", "os.chdir", "os.setxattr",
 )  # fmt: skip
 FAMILIES = ("socket.", "shutil.", "tempfile.", "urllib.", "http.", "ftplib.", "smtplib.", "webbrowser.")
@@ -43,7 +45,7 @@ class Guard:
             return
         if event == "open":
             path, mode, flags = arguments
-            writes = isinstance(flags, int) and flags & WRITING or isinstance(mode, str) and set(mode) & set("wax+")
+            writes = (isinstance(flags, int) and flags & WRITING) or (isinstance(mode, str) and set(mode) & set("wax+"))
             if writes and not isinstance(path, int) and str(path) not in self.mine:
                 self.seen.append(f"written: open {path!r}")
         elif event in CHANGES:

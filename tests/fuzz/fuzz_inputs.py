@@ -36,7 +36,7 @@ def sheet_trial(seed: int, number: int) -> Trial:
     text = giant(random) if roll < GIANT else mutated_sheet(random) if roll < MUTATED else Sheets(random).sheet()
     if roll > 0.98:
         text = random.choice(known_sheets())
-    return Trial(text, b"", _words(random, text) if random.random() < COMMANDED or roll > 0.98 else _way(random))
+    return Trial(text, b"", _words(random) if random.random() < COMMANDED or roll > 0.98 else _way(random))
 
 
 def _way(random: Random) -> tuple[str, ...]:
@@ -44,21 +44,29 @@ def _way(random: Random) -> tuple[str, ...]:
     return ("solve",) if random.random() < SOLVED else ("build",)
 
 
-def _words(random: Random, text: str) -> tuple[str, ...]:
+def _words(random: Random) -> tuple[str, ...]:
     """Return a command line around a sheet."""
     name = random.choice((random.choice(NAMES), "k", "a", "m", "F", "V"))
-    odd = random.choice((hostile_number(random), "x", "p^2", "x^2 + p", "[", "x^x", random.choice(CHARACTERS), Sheets(random)._expression(2)))
+    odd = random.choice(
+        (hostile_number(random), "x", "p^2", "x^2 + p", "[", "x^x", random.choice(CHARACTERS), Sheets(random).expression(2))
+    )
     whole = f"{hostile_number(random)}:{hostile_number(random)}:{random.choice(('3', '2', '1', '0', '-1', '10^9', '9' * 5000))}"
-    given = whole if random.random() < 0.5 else random.choice(("0:1:3", "1,2", "log:1:2:3", "1:2", "::", "log:-1:1:3", "nan", "1e308:-1e308:3"))
+    ranges = ("0:1:3", "1,2", "log:1:2:3", "1:2", "::", "log:-1:1:3", "nan", "1e308:-1e308:3")
+    given = whole if random.random() < 0.5 else random.choice(ranges)
     state = random.choice(("packet", "level(0)", "level(1)", "level(9" + "9" * 30 + ")", "f", odd, name))
     after = random.choice(
         (
-            ["levels"], ["levels", "--near", random.choice(("0", "1e300", "nan", "-5", odd))], ["levels", "-n", random.choice(("3", "0", "9" * 5000, odd))],
-            ["check"], ["figure", "--width", "60", "--glyphs", random.choice(("ascii", "braille"))], ["figure", "--state", state],
-            ["expectation", odd], ["expectation", "x", "--state", state], ["weights", state], ["transitions", "--dipole", odd], ["transitions"],
-            ["sensitivities"], ["sweep", f"{name}={given}", "--no-gaps"], ["evolve", state, f"--times={given}"], ["measure", state, odd],
-            ["figure", "--view", "momentum"], ["levels", "--tol", odd], ["measure", state, "x", "p", "--seed", "1"], ["nosuch", odd],
-        )  # fmt: skip
+            ["levels"], ["levels", "--near", random.choice(("0", "1e300", "nan", "-5", odd))],
+            ["levels", "-n", random.choice(("3", "0", "9" * 5000, odd))],
+            ["check"], ["figure", "--width", "60", "--glyphs", random.choice(("ascii", "braille"))],
+            ["figure", "--state", state],
+            ["expectation", odd], ["expectation", "x", "--state", state], ["weights", state],
+            ["transitions", "--dipole", odd], ["transitions"],
+            ["sensitivities"], ["sweep", f"{name}={given}", "--no-gaps"], ["evolve", state, f"--times={given}"],
+            ["measure", state, odd],
+            ["figure", "--view", "momentum"], ["levels", "--tol", odd], ["measure", state, "x", "p", "--seed", "1"],
+            ["nosuch", odd],
+        )
     )
     if random.random() < 0.3:
         after += [f"--set={name}={odd}"]

@@ -55,7 +55,8 @@ def _change(pieces: list[str], random: Random) -> None:
             other = random.randrange(len(pieces))
             pieces[at], pieces[other] = pieces[other], pieces[at]
         case 7:
-            pieces[at : at + 1] = [random.choice((random.choice(NAMES), random.choice(FUNCTIONS) + "(x)", "*", "^", "/", "-", "[m]"))]
+            words = (random.choice(NAMES), random.choice(FUNCTIONS) + "(x)", "*", "^", "/", "-", "[m]")
+            pieces[at : at + 1] = [random.choice(words)]
         case 8:
             other_sheet = _PIECE.findall(random.choice(known_sheets()))
             start = random.randrange(len(other_sheet))
@@ -98,7 +99,9 @@ def mutated_data(value: Any, random: Random) -> Any:
         deep = [deep] if random.random() < 0.5 else {"a": deep}
     return random.choice(
         (
-            None, True, False, 0, -1, 1, 10**30, -(10**400), 1.5, 1e308, float("nan"), float("inf"), "", "x", "\x1b[2J", "\u202e",
-            "\ud800", "\0", "a" * 100_000, [], {}, [1, 2], {"a": 1}, deep, "1e999", "9" * 5000, [[0, 0, 0.5, 0.5]], [None] * 1000,
-        )  # fmt: skip
+            None, True, False, 0, -1, 1, 10**30, -(10**400), 1.5, 1e308, float("nan"), float("inf"), "", "x", "\x1b[2J",
+            "\u202e",
+            "\ud800", "\0", "a" * 100_000, [], {}, [1, 2], {"a": 1}, deep, "1e999", "9" * 5000, [[0, 0, 0.5, 0.5]],
+            [None] * 1000,
+        )
     )

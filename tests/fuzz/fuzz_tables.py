@@ -13,7 +13,8 @@ LINES = "from,to,value,uncertainty,unit\n0,1,2.0,0.1,\n1,2,2.1,0.1,\n0,2,4.0,0.2
 LEVELS = "level,value\n0,1.0\n1,3.0\n2,5.1\n"
 SETTINGS = "from,to,value,k,from.k\n0,1,2.0,1,\n,2,2.1,1,2\n"
 POINT = {
-    "index": 1, "levels": [1.0, 3.0], "errors": [1e-9, None], "kinds": ["bound", "unresolved"], "numbers": [0, 1], "complete": True,
+    "index": 1, "levels": [1.0, 3.0], "errors": [1e-9, None], "kinds": ["bound", "unresolved"], "numbers": [0, 1],
+    "complete": True,
     "links": [[0, 1, 0.5, 0.5]], "quantity": [], "quantity_errors": [], "problem": "",
 }  # fmt: skip
 PIN = {"name": "first", "text": "H = p^2 + x^2\nx in (-inf, inf)", "folder": ".", "count": 3, "near": None, "tolerance": 1e-8}
@@ -23,7 +24,8 @@ ENTRY = {
 }  # fmt: skip
 SESSION = {
     "specterm": 1, "text": PIN["text"], "path": None, "saved": None, "title": "untitled", "folder": "/", "past": ["H = p^2"],
-    "pins": [PIN], "notebook": {"seed": 7, "entries": [ENTRY]}, "view": {"a": 1}, "near": None, "tolerance": 1e-8, "closed": False,
+    "pins": [PIN], "notebook": {"seed": 7, "entries": [ENTRY]}, "view": {"a": 1}, "near": None, "tolerance": 1e-8,
+    "closed": False,
 }  # fmt: skip
 NOTEBOOK = {"seed": 7, "entries": [ENTRY, {**ENTRY, "kind": "prepared"}, {**ENTRY, "kind": "waited"}]}
 
@@ -38,10 +40,12 @@ def table(random: Random) -> bytes:
         return _made(random).encode("utf-8", "surrogatepass")
     return random.choice(
         (
-            b"", b"\n" * 100_000, b"\0" * 1000, b"\xff\xfe" + GOOD.encode("utf-16-le"), b"1" * 100_000, b"1," * 100_000, b'"' * 100_000,
+            b"", b"\n" * 100_000, b"\0" * 1000, b"\xff\xfe" + GOOD.encode("utf-16-le"), b"1" * 100_000, b"1," * 100_000,
+            b'"' * 100_000,
             b"\n".join(b"%d,%d" % (k, k % 7) for k in range(20_000)), b"\n".join(b"%d 1" % (k % 50) for k in range(20_000)),
-            b"x,V\n" * 1000, b"0,0\n1e-320,1\n1,1e308\n2,-1e308", b"\xef\xbb\xbf0 0\n1 1", b"0,1\r1,2\r2,3", b"# " + b"x" * 200_000,
-        )  # fmt: skip
+            b"x,V\n" * 1000, b"0,0\n1e-320,1\n1,1e308\n2,-1e308", b"\xef\xbb\xbf0 0\n1 1", b"0,1\r1,2\r2,3",
+            b"# " + b"x" * 200_000,
+        )
     )
 
 
@@ -52,7 +56,8 @@ def _made(random: Random) -> str:
     rows = []
     for k in range(random.choice((0, 1, 2, 3, 8, 60))):
         x = hostile_number(random) if random.random() < 0.05 else f"{k * random.choice((1, 1, 1, 0.1, -1)):g}"
-        y = hostile_number(random) if random.random() < 0.1 else f"{random.choice((0, 1, 1e300, -1e300, 1e-300, k * k, 5e-324)):g}"
+        odd = random.random() < 0.1
+        y = hostile_number(random) if odd else f"{random.choice((0, 1, 1e300, -1e300, 1e-300, k * k, 5e-324)):g}"
         rows.append(separator.join([x, y, "0"][: random.choice((1, 2, 2, 2, 2, 2, 2, 3))]))
     return random.choice(("\n", "\n", "\r\n")).join(([header] if header else []) + rows)
 
@@ -73,7 +78,10 @@ def observed(random: Random) -> bytes:
     if random.random() < 0.5:
         cells = text.split(",")
         cells[random.randrange(len(cells))] = random.choice(
-            (hostile_number(random), random.choice(CHARACTERS), "from.k", "to", "unit", "meV", "[9^9]", "1e5", "-3", '"', "x" * 10_000)
+            (
+                hostile_number(random), random.choice(CHARACTERS), "from.k", "to", "unit", "meV", "[9^9]", "1e5", "-3", '"',
+                "x" * 10_000,
+            )
         )
         return ",".join(cells).encode("utf-8", "surrogatepass")
     return damaged(text.encode(), random)

@@ -53,7 +53,8 @@ def faults(folder: Path) -> list[Callable[[Verdict], None]]:
             pass
 
     return [
-        lambda _: {}["crash"], lambda _: busy(2 * LIMIT), lambda _: busy(ASKED + 2 * PROMPT), lambda _: (folder / "new").touch(),
+        lambda _: {}["crash"], lambda _: busy(2 * LIMIT), lambda _: busy(ASKED + 2 * PROMPT),
+        lambda _: (folder / "new").touch(),
         lambda _: exec("pass"), lambda verdict: shown(verdict, "\x1b[2J", "an answer"),
     ]  # fmt: skip
 
@@ -64,7 +65,7 @@ def _alarm(_signal: int, _frame: Any) -> None:
 
 def prepare() -> None:
     """Bound every solve of this process in levels and tolerance, and let the clock of `LIMIT` ring."""
-    import specterm.spectrum as spectrum  # noqa: PLC0415 - wrapped before anything takes `solve` from it
+    from specterm import spectrum  # noqa: PLC0415 - wrapped before anything takes `solve` from it
     from specterm.spectrum import engine  # noqa: PLC0415
 
     whole = engine.solve

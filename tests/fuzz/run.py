@@ -1,7 +1,7 @@
 """The longer run: `python tests/fuzz/run.py --sheets 100000 --tables 10000 --seed N` tries that many hostile inputs.
 
-It prints how many crashed, hung, wrote a file, ran code or passed a control character through, and each of them with its number;
-`--sheet K` or `--table K` shows one of them again, `--save FOLDER` keeps the failing ones.
+It prints how many crashed, hung, wrote a file, ran code or passed a control character through, and each of them with its
+number; `--sheet K` or `--table K` with the same seed shows one of them again. Seconds are those of the processor.
 """
 
 from __future__ import annotations
@@ -68,7 +68,8 @@ def warmed(folder: Path) -> None:
     sheet = known_sheets()[0]
     for words in (
         ["levels"], ["levels", "--json"], ["check"], ["figure"], ["expectation", "x"], ["weights", "level(0)"], ["transitions"],
-        ["sensitivities"], ["evolve", "level(0)", "--times=0:1:2"], ["measure", "level(0)", "x"], ["figure", "--view", "momentum"],
+        ["sensitivities"], ["evolve", "level(0)", "--times=0:1:2"], ["measure", "level(0)", "x"],
+        ["figure", "--view", "momentum"],
         ["sweep", "F=1:2:2"], ["sweep", "F=1:2:2", "--csv"], ["levels", "--nosuch"],
     ):  # fmt: skip
         try_sheet(Trial(sheet, b"", ("command", words[0], "-e", "{sheet}", *words[1:])), folder)
@@ -154,7 +155,8 @@ def report(tally: Tally, seed: int) -> None:
     print(f"seed {seed}: {tally.ways['sheets']} sheets, {tally.ways['tables']} tables")
     print("ways: " + ", ".join(f"{name} {count}" for name, count in sorted(tally.ways.items())))
     words = {
-        "crash": "crashes", "hang": "hangs over 2 s", "slow": "models over 1 s", "late": "stops later than 0.3 s", "written": "files written",
+        "crash": "crashes", "hang": "hangs over 2 s", "slow": "models over 1 s", "late": "stops later than 0.3 s",
+        "written": "files written",
         "code": "code or processes run", "control": "control characters passed through",
     }  # fmt: skip
     for sort in SORTS:
@@ -162,7 +164,8 @@ def report(tally: Tally, seed: int) -> None:
     for name, times in (("text to model", sorted(tally.building)), ("whole", sorted(tally.seconds))):
         if times:
             far = times[min(len(times) - 1, int(0.999 * len(times)))]
-            print(f"{name}: median {times[len(times) // 2] * 1e3:.2f} ms, 99.9 % {far * 1e3:.0f} ms, longest {times[-1] * 1e3:.0f} ms")
+            middle = times[len(times) // 2]
+            print(f"{name}: median {middle * 1e3:.2f} ms, 99.9 % {far * 1e3:.0f} ms, longest {times[-1] * 1e3:.0f} ms")
     for kind, number, sort, what in tally.faults:
         print(f"  --{kind} {number}: {sort}: {what}")
 

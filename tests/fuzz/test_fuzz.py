@@ -9,11 +9,17 @@ from pathlib import Path
 
 import pytest
 
+from specterm.errors import SheetError
+from specterm.session.notebook import notebook_from
+from specterm.session.pins import pin_from
+
 HERE = Path(__file__).parent
 ROOT = HERE.parents[1]
 CORPUS = sorted(path for path in (HERE / "corpus").iterdir() if path.suffix in {".sheet", ".csv"})
 CHILD = [sys.executable, str(HERE / "run.py")]
-SPECIAL = ("fifo", "zero", "directory", "circle", "missing.csv", "huge.csv", "/dev/zero", "/proc/self/environ", "/proc/self/mem")
+SPECIAL = (
+    "fifo", "zero", "directory", "circle", "missing.csv", "huge.csv", "/dev/zero", "/proc/self/environ", "/proc/self/mem",
+)  # fmt: skip
 
 
 def ran(*words: str, patience: int = 1) -> subprocess.CompletedProcess[str]:
@@ -63,7 +69,8 @@ def test_what_is_no_plain_file_is_refused(strange, name):
     sheet.write_text(f'H = p^2 + x^2\nx in (-1, 1)\nV = table("{path}")\n')
     lines = strange / "lines.sheet"
     lines.write_text(f'H = p^2 + k*x^2\nk = 1\nx in (-inf, inf)\nstate s = level(0) of "{path}"\n')
-    for words in (("levels", path), ("check", str(sheet)), ("weights", str(lines), "s"), ("fit", str(lines), path, "--vary", "k")):
+    fit = ("fit", str(lines), path, "--vary", "k")
+    for words in (("levels", path), ("check", str(sheet)), ("weights", str(lines), "s"), fit):
         result = specterm(*words)
         assert result.returncode == 2, (words, result.stderr)
         assert b"failed here" not in result.stderr
@@ -112,10 +119,6 @@ def test_corpus_is_small_and_says_how_it_is_run(path):
 
 def test_parts_of_sessions_with_odd_numbers_are_refused():
     """Numbers that nothing could be done with are no notebook and no pin."""
-    from specterm.errors import SheetError
-    from specterm.session.notebook import notebook_from
-    from specterm.session.pins import pin_from
-
     for seed in (-1, 10**30, float("inf"), None):
         with pytest.raises(SheetError):
             notebook_from({"seed": seed, "entries": []})
