@@ -177,6 +177,7 @@ class Specterm(Tuned):
             self.shown = replace(self.shown, outcome=outcome, stale=False, look=look)
         if outcome.error or outcome.notes or self.shown.message_style != "good":
             self.say("" if outcome.error else "; ".join(outcome.notes))
+        self.redraw()
         self._share(outcome)
         self.call_later(_settle_memory)
 

@@ -12,7 +12,8 @@ class Choices:
     lines: `every` level as a start, `temperature`, `broadening`, `into` another sheet; time: `times` (from, to, count) and the
     `cursor`; matrix: `logarithmic`; notebook: `bins`, `runs`, `orders`;
     sweep: the ranges, such as `F=0:20:41`, and the `quantity` followed;
-    fit: the file of `observed` lines, and what to `vary` with its bounds; `scroll` is the first row of the page's table.
+    fit: the file of `observed` lines, and what to `vary` with its bounds; `scroll` is the first row of the page's table, `aside` the number
+    of columns passed over.
     """
 
     observable: str | None = None
@@ -31,4 +32,5 @@ class Choices:
     quantity: str = "levels"
     observed: str | None = None
     vary: tuple[tuple[str, tuple[float, float]], ...] = ()
+    aside: int = 0
     scroll: int = 0

@@ -55,12 +55,12 @@ class Question(ModalScreen[str]):
         self.pane.show(tuple(rows))
 
     def on_key(self, event: events.Key) -> None:
-        """Answer with a letter; Enter, left and q take the last answer, which changes nothing."""
+        """Answer with a letter; Enter, left, Tab and q take the last answer, which changes nothing."""
         letter = event.character or event.key
         if letter in self.answers:
             event.stop()
             self.dismiss(letter)
-        elif event.key in ("enter", "left", "escape", "q"):
+        elif event.key in ("enter", "left", "escape", "q", "tab"):
             event.stop()
             self.dismiss(list(self.answers)[-1])
 
@@ -126,9 +126,10 @@ class Chooser(ModalScreen[str | None]):
             self._draw()
 
     def _narrow(self, typed: str) -> bool:
-        """Keep the entries that hold all words typed; return whether the list is another one."""
+        """Keep the entries that hold all words typed, the nearest first; return whether the list is another one."""
         words = typed.lower().split()
-        found = tuple(e for e in self.entries if all(word in f"{e.name} {e.remark}".lower() for word in words))
+        holding = [e for e in self.entries if all(word in f"{e.name} {e.remark}".lower() for word in words)]
+        found = tuple(sorted(holding, key=lambda e: _distance(e.name.lower(), typed.lower().strip())))
         if found == self.matching:
             return False
         self.matching, self.place = found, 0
@@ -159,6 +160,11 @@ class Chooser(ModalScreen[str | None]):
         """Show the part of the list around the marked entry."""
         width, height = self.listed.size
         self.listed.show(listing(self.matching, self.place, width, height))
+
+
+def _distance(name: str, typed: str) -> int:
+    """Return how far a name is from what is typed: 0 the same, 1 it starts like it, 2 anything else."""
+    return 0 if name == typed else 1 if typed and name.startswith(typed) else 2
 
 
 def listing(entries: Sequence[Entry], marked: int, width: int, height: int) -> Rows:

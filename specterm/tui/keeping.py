@@ -23,7 +23,7 @@ _DELAY = 0.25
 _MERGED = 1.0
 """Texts that follow each other faster than this are one step for undo after the session is taken up again."""
 
-_PASSING = ("times", "sweep", "vary", "observed", "into", "cursor", "scroll")
+_PASSING = ("times", "sweep", "vary", "observed", "into", "cursor", "scroll", "aside")
 """Choices that are not saved."""
 
 

@@ -64,7 +64,7 @@ class Look:
 
     def turned(self, page: str) -> Look:
         """Return the look with another page, from its first row on."""
-        return replace(self, page=page, choices=replace(self.choices, scroll=0))
+        return replace(self, page=page, choices=replace(self.choices, scroll=0, aside=0))
 
     def chose(self, **changes: Any) -> Look:  # noqa: ANN401 - any of the choices
         """Return the look with other choices."""

@@ -18,6 +18,7 @@ from specterm.tui.solving import Outcome
 from specterm.tui.work import Counted
 from specterm.views.numbers import scale_of, short
 
+MOST_ASIDE = 200
 FASTEST = 5
 """Rows that one key scrolls."""
 
@@ -45,7 +46,10 @@ class Paged(Keyed):
         self._choose(scroll=max(0, self.shown.look.choices.scroll + FASTEST * direction))
 
     def action_along(self, steps: int) -> None:
-        """Move the cursor of the page, held at its ends."""
+        """Move the cursor of the page, held at its ends; without a cursor, the columns of its table."""
+        if self.shown.look.page in ("means", "matrix", "lines", "slopes"):
+            self._choose(aside=min(max(0, self.shown.look.choices.aside + steps), MOST_ASIDE))
+            return
         last = page_length(self.shown.answer or self.painter.complete().answer)
         self._choose(cursor=min(max(0, self.shown.look.choices.cursor + steps), max(0, last - 1)))
 

@@ -129,7 +129,7 @@ def page_rows(shown: Shown, width: int, height: int) -> Rows:
     also = shown.also.result if shown.also is not None else None
     room = Room(width, max(0, height - len(head)), shown.look, units or Units(), shown.bench, also)
     if shown.outcome is None or shown.outcome.origin is None:
-        rows: Rows = ()
+        rows: Rows = complaint(*shown.error, max(10, width - 1), max(2, height - 2)) if shown.error else ()
     elif answer is not None and answer.error is None:
         rows = page.rows(answer.result, room)
     else:
@@ -231,6 +231,7 @@ def details(shown: Shown, document: Document, width: int) -> Rows:
         blocks.append(("Level", [*state_parts(spectrum.levels[shown.look.chosen], units), *moments]))
     blocks.append(("State", weighed_parts(shown)))
     edge = [] if spectrum.threshold is None else [f"threshold {with_unit(short(spectrum.threshold, 10), units.energy)}"]
+    blocks.append(("Message", [shown.message] if shown.message else []))
     blocks += [("All levels", [*trust_parts(spectrum, units), *edge]), ("Notes", list(outcome.notes))]
     rows: list[Row] = []
     for heading, parts in blocks:

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from functools import lru_cache
-from math import inf
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -14,7 +13,7 @@ from specterm.tui.pages.slopes import Slopes
 from specterm.tui.pinned import Moved
 from specterm.tui.solving import Outcome
 from specterm.views.level_table import Extra, aligned
-from specterm.views.numbers import short
+from specterm.views.numbers import bracket, short
 
 if TYPE_CHECKING:
     from specterm.language.edits import NumberPlace
@@ -89,16 +88,14 @@ def _slopes(found: Any) -> tuple[str, ...]:  # noqa: ANN401 - SlopesFound
 
 def _shifts(found: Any, outcome: Outcome) -> tuple[str, ...]:  # noqa: ANN401 - shifts
     """Return shifts with their errors, and the number a level had where it is another one now."""
-    from specterm.views.derivative_table import cell_text  # noqa: PLC0415 - it brings the engine
-
     assert outcome.spectrum is not None
     texts = []
     for shift, level in zip(found, outcome.spectrum.levels, strict=True):
         if shift.shift is None:
             texts.append("new")
             continue
-        value = cell_text(shift.shift, inf if shift.error is None else shift.error, 5)
+        value = "0" if shift.error is not None and abs(shift.shift) <= shift.error else bracket(shift.shift, shift.error)
         sign = "+" if value[0] not in "-~0" else ""
-        was = "" if shift.before == level.index else f" was {shift.before}"
-        texts.append(f"{sign}{value}{was}")
+        was = "" if shift.before == level.index else f"was {shift.before} "
+        texts.append(f"{was}{sign}{value}")
     return tuple(texts)

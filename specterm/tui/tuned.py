@@ -39,7 +39,9 @@ class Tuned(Booked):
         """Pick the number that the nudging keys change."""
         known = self._numbers()
         if not known:
-            self.say("the sheet has no plain number such as  F = 20 [kV/cm]  to nudge, or cannot be read", "warn")
+            unread = self.error is not None and self.error.span is not None
+            words = "the sheet cannot be read: mend it first" if unread else "no plain number such as  F = 20 [kV/cm]  to nudge"
+            self.say(words, "warn")
             return
         entries = [Entry(name, name, _written(place)) for name, place in known.items()]
 

@@ -17,11 +17,18 @@ MOST = 8
 
 def element_table(values: Values, errors: NDArray[np.float64], rows: Sequence[int], columns: Sequence[int]) -> str:
     """Return the corner of a matrix (rows, columns) as aligned text; elements below their error show as 0."""
+    return text_columns(*element_columns(values, errors, rows[:MOST], columns[:MOST]))
+
+
+def element_columns(
+    values: Values, errors: NDArray[np.float64], rows: Sequence[int], columns: Sequence[int]
+) -> tuple[list[str], list[list[str]]]:
+    """Return headings and cells of a matrix (rows, columns); elements below their error show as 0."""
     texts = [
-        [str(row), *(element_text(complex(values[a, b]), float(errors[a, b])) for b in range(min(MOST, len(columns))))]
-        for a, row in enumerate(rows[:MOST])
+        [str(row), *(element_text(complex(values[a, b]), float(errors[a, b])) for b in range(len(columns)))]
+        for a, row in enumerate(rows)
     ]
-    return text_columns(["", *(str(column) for column in columns[:MOST])], texts)
+    return ["", *(str(column) for column in columns)], texts
 
 
 def element_text(value: complex, error: float) -> str:

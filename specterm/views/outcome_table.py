@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 
 from specterm.analysis.measurement import Joint, Orders, Step
@@ -14,6 +15,7 @@ MOST_ROWS = 40
 SMALL = 5e-5
 """Outcomes less probable than this are not printed, unless one is the one drawn; JSON and CSV have them all."""
 BAR = 30
+BEYOND = "beyond what was computed"
 
 
 def outcome_text(outcome: Outcome) -> str:
@@ -27,7 +29,10 @@ def outcome_text(outcome: Outcome) -> str:
 
 
 def step_table(step: Step, *, glyphs: str = "braille", most: int = MOST_ROWS) -> str:
-    """Return the outcomes of one measurement with their probabilities, at most `most` lines; `>` marks the one taken."""
+    """Return the outcomes of one measurement with their probabilities, at most `most` lines; `>` marks the one taken.
+
+    One more line is for what lies beyond them, where that is anything to speak of.
+    """
     shown = [place for place, o in enumerate(step.outcomes) if o.probability >= SMALL or place == step.drawn]
     if len(shown) > most:
         kept = sorted(shown, key=lambda place: -step.outcomes[place].probability)[: most - 1]
@@ -42,6 +47,9 @@ def step_table(step: Step, *, glyphs: str = "braille", most: int = MOST_ROWS) ->
         ]
         for place in shown
     ]
+    if step.rest >= SMALL or step.beyond:
+        mark = ">" if step.beyond else ""
+        rows.append([mark, BEYOND, f"{step.rest:.6f}", bar(step.rest, BAR, glyphs).rstrip()])
     heading = f"outcome ({step.unit})" if step.unit else "outcome"
     table = text_columns(["", heading, "probability", ""], rows, left=frozenset({3}))
     return f"{table}\n  {hidden} less probable ones not shown" if hidden > 0 else table
@@ -52,7 +60,7 @@ def joint_table(names: Sequence[str], joints: Sequence[Joint], runs: int) -> str
     ranked = sorted(joints, key=lambda joint: -joint.count)
     rows = [
         [
-            *(short(value, 8) for value in joint.values),
+            *_joint_cells(joint),
             str(joint.count),
             short(joint.probability * runs),
             f"{joint.probability:.6f}",
@@ -61,6 +69,13 @@ def joint_table(names: Sequence[str], joints: Sequence[Joint], runs: int) -> str
     ]
     table = text_columns([*names, "count", "expected", "probability"], rows)
     return f"{table}\n  {len(ranked) - MOST_ROWS} rarer ones not shown" if len(ranked) > MOST_ROWS else table
+
+
+def _joint_cells(joint: Joint) -> list[str]:
+    """Return the values of a joint result: the first that is none lies beyond what was computed, then the run has ended."""
+    known = [short(value, 8) for value in joint.values if not math.isnan(value)]
+    ended = len(joint.values) - len(known)
+    return [*known, *["beyond"][:ended], *["-"] * (ended - 1)]
 
 
 def orders_text(orders: Orders) -> str:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import textwrap
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
@@ -58,6 +59,8 @@ def _rows(found: Transitions, room: Room) -> Rows:
     choices, units = room.look.choices, room.units
     shown = [line for line in found.lines if line.start != line.to or choices.into is not None]
     rows: list[Row] = [fit_row(((" " + _title(found, room), "title"),), room.width)]
+    for note in found.notes[:2]:
+        rows += [fit_row(((" " + line, "warn"),), room.width) for line in textwrap.wrap(note, max(10, room.width - 2))]
     headings, cells = line_columns(shown, units.energy, units.length)
     high = max(0, min(16, room.height - 2 - min(len(cells) + 1, room.height // 2)))
     seen = [line for line in shown if choices.temperature is None or line.energy > 0]
@@ -66,7 +69,9 @@ def _rows(found: Transitions, room: Room) -> Rows:
         sticks, room.width, high if high >= 6 else 0, broadening=choices.broadening, unit=units.energy, glyphs=room.glyphs
     )
     height = room.height - len(rows)
-    rows += table_rows(headings, cells, room.width, height, scroll=choices.scroll, glyphs=room.glyphs)
+    rows += table_rows(
+        headings, cells, room.width, height, scroll=choices.scroll, fixed=2, aside=choices.aside, glyphs=room.glyphs
+    )
     return padded(rows, room.width, room.height)
 
 
@@ -81,7 +86,7 @@ def _title(found: Transitions, room: Room) -> str:
     sums = [(start, total) for start, total in found.sums.items() if total is not None]
     if len(sums) == 1:
         parts.append(f"strengths from level {sums[0][0]} sum to {short(sums[0][1], 8)}")
-    return "   ".join([*parts, *found.notes])
+    return "   ".join(parts)
 
 
 def _record(found: Any, _: Room) -> Record:  # noqa: ANN401 - lines

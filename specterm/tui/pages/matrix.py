@@ -10,10 +10,13 @@ from specterm.tui.look import Look
 from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell
 from specterm.tui.solving import Outcome
 from specterm.views.cells import Row, Rows, fit_row
-from specterm.views.columns import padded, text_rows
+from specterm.views.columns import padded, table_rows
 
 if TYPE_CHECKING:
     from specterm.analysis.matrix_elements import MatrixElements
+
+
+MOST_ROWS = 40
 
 
 @dataclass(frozen=True)
@@ -38,7 +41,7 @@ def _inquiry(look: Look, outcome: Outcome, _: Bench) -> Matrix | None:
 
 def _rows(found: MatrixElements, room: Room) -> Rows:
     """Return the map over as much of the table as fits."""
-    from specterm.views.element_table import element_table  # noqa: PLC0415 - it brings the engine
+    from specterm.views.element_table import element_columns  # noqa: PLC0415 - it brings the engine
     from specterm.views.heat_map import heat_map  # noqa: PLC0415
 
     first = max(0, min(room.look.choices.scroll, len(found.rows) - 1))
@@ -52,9 +55,11 @@ def _rows(found: MatrixElements, room: Room) -> Rows:
     )  # fmt: skip
     rows += [fit_row(((" ", "plain"), *row), room.width) for row in drawn]
     if room.height - len(rows) > 4:
-        corner = (slice(first, None), slice(first, None))
-        table = element_table(found.values[corner], found.errors[corner], found.rows[first:], found.columns[first:])
-        rows += [fit_row((), room.width), *text_rows(table, room.width, glyphs=room.glyphs)]
+        some = slice(first, first + MOST_ROWS)
+        headings, cells = element_columns(found.values[some], found.errors[some], found.rows[some], found.columns)
+        height = room.height - len(rows) - 1
+        table = table_rows(headings, cells, room.width, height, aside=room.look.choices.aside, glyphs=room.glyphs)
+        rows += [fit_row((), room.width), *table]
     return padded(rows, room.width, room.height)
 
 

@@ -77,8 +77,8 @@ def _rows(found: MeansFound, room: Room) -> Rows:
     pair = _pair_rows(found, room)
     height = room.height - len(pair)
     headings, rows = _table(found)
-    scroll = room.look.choices.scroll
-    table = table_rows(headings, rows, room.width, height, scroll=scroll, left=frozenset({0}), glyphs=room.glyphs)
+    scroll, aside = room.look.choices.scroll, room.look.choices.aside
+    table = table_rows(headings, rows, room.width, height, scroll=scroll, aside=aside, left=frozenset({0}), glyphs=room.glyphs)
     return padded([*table, *pair], room.width, room.height)
 
 

@@ -70,7 +70,8 @@ def _rows(found: SlopesFound, room: Room) -> Rows:
     head: Row = fit_row(((f" {title}, per unit of the number as written", "title"),), room.width)
     rows = table_rows(
         ["level" if not room.look.choices.every else "line", *headings], cells, room.width, room.height - 1 - len(notes),
-        marked=len(cells) - 1 - marked if marked >= 0 else None, scroll=room.look.choices.scroll, glyphs=room.glyphs,
+        marked=len(cells) - 1 - marked if marked >= 0 else None, scroll=room.look.choices.scroll,
+        aside=room.look.choices.aside, glyphs=room.glyphs,
     )  # fmt: skip
     return padded([head, *rows, *notes], room.width, room.height)
 

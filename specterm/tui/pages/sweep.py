@@ -165,6 +165,6 @@ def _record(found: Any, _: Room) -> Record:  # noqa: ANN401 - a sweep
 
 
 SWEEP = Page(
-    "sweep", _inquiry, _rows, _record, "no sweep yet: l asks for a range, such as F=0:20:41",
+    "sweep", _inquiry, _rows, _record, "no sweep yet: l asks for a range NAME=first:last:how many",
     keys=("page.along", "page.amount", ("page.observable", "d quantity"), "tune.take"), also=_also,
 )
