@@ -17,7 +17,7 @@ from specterm.units import ENERGY
 MOST_LINES = 10_000
 MOST_LEVEL = 100_000
 _COLUMNS = ("from", "to", "level", "value", "uncertainty", "unit")
-_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eE][+-]?\d+)?", re.ASCII)
+_NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eE][+-]?\d+)?", re.ASCII)
 _NOWHERE = Span(0, 0)
 
 Settings = tuple[tuple[str, float], ...]

@@ -21,8 +21,7 @@ if TYPE_CHECKING:
 LARGEST_FILE = 50_000_000
 MOST_ROWS = 1_000_000
 _COMMENT = ("#", "%", "!")
-_UNIT = re.compile(r"\s*[\[(][^\])]*[\])]\s*$")
-_NUMBER = re.compile(r"[+-]?(\d+\.?\d*|\.\d+)([eEdD][+-]?\d+)?", re.ASCII)
+_NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eEdD][+-]?\d+)?", re.ASCII)
 _QUOTED = re.compile(r'"[^"]*"|\S+')
 
 
@@ -89,7 +88,12 @@ def _cells(row: str, separator: str | None) -> list[str]:
 def _bare(name: str) -> str:
     """Return a header's name without quotation marks and without a unit in brackets behind it."""
     name = name.strip().strip('"').strip("'").strip()
-    return _UNIT.sub("", name) or name
+    if not name.endswith(("]", ")")):
+        return name
+    inner = name[:-1]
+    begin = max(inner.rfind("]"), inner.rfind(")")) + 1
+    opened = [place for mark in "[(" if (place := inner.find(mark, begin)) >= 0]
+    return (inner[: min(opened)].rstrip() if opened else "") or name
 
 
 def column(table: TableText, which: str | int, span: Span) -> NDArray[np.float64]:
