@@ -32,6 +32,11 @@ class Booked(Paged):
         elif found is None:
             self.waiting = then
             self.say("as soon as the outcomes are there", "dim")
+        elif found.step is None:
+            from specterm.tui.pages.notebook import LOST_STATE  # noqa: PLC0415 - it is loaded by now
+
+            self.say(LOST_STATE, "warn")
+            return None
         return found
 
     def on_answer(self) -> None:
@@ -79,18 +84,21 @@ class Booked(Paged):
         self._measured(drawn(found.step, float(draw)), chosen=False)
 
     def _measured(self, step: Any, *, chosen: bool) -> None:  # noqa: ANN401 - a step
-        """Write a measurement down."""
-        outcome = step.outcomes[step.drawn]
-        self._note(
-            Line(
-                "measured", step.observable, outcome.value, outcome.low, outcome.high, outcome.probability, step.unit,
-                outcome.levels, chosen,
-            )
-        )  # fmt: skip
+        """Write a measurement down; one beyond what was computed has no value."""
+        if step.drawn is None:
+            self._note(Line("measured", step.observable, probability=step.rest, unit=step.unit, chosen=chosen))
+        else:
+            outcome = step.outcomes[step.drawn]
+            self._note(
+                Line(
+                    "measured", step.observable, outcome.value, outcome.low, outcome.high, outcome.probability, step.unit,
+                    outcome.levels, chosen,
+                )
+            )  # fmt: skip
         last = self.bench.notebook.entries[-1]
         from specterm.tui.pages.notebook import entry_words  # noqa: PLC0415 - it is loaded by now
 
-        self.say(entry_words(last), "good")
+        self.say(entry_words(last), "good" if step.drawn is not None else "warn")
 
     def action_choose(self) -> None:
         """Measure: choose the outcome."""
@@ -115,6 +123,11 @@ class Booked(Paged):
         """Let time pass."""
         if self.shown.outcome is None or self.shown.outcome.spectrum is None:
             self.say("there is no state yet", "warn")
+            return
+        from specterm.tui.pages.notebook import LOST_STATE, ended  # noqa: PLC0415 - it is loaded by now
+
+        if ended(self.bench.chain(self.shown.outcome)):
+            self.say(LOST_STATE, "warn")
             return
         scale, unit = scale_of(self._unit("time"))
 

@@ -10,10 +10,9 @@ class Choices:
     """`observable` and `other` are names or expressions (None: the usual ones); the rest belongs to single pages.
 
     lines: `every` level as a start, `temperature`, `broadening`, `into` another sheet; time: `times` (from, to, count) and the
-    `cursor`; matrix: `logarithmic`; notebook: `bins`, `runs`, `orders`;
-    sweep: the ranges, such as `F=0:20:41`, and the `quantity` followed;
-    fit: the file of `observed` lines, and what to `vary` with its bounds; `scroll` is the first row of the page's table, `aside` the number
-    of columns passed over.
+    `cursor`; matrix: `logarithmic`; notebook: `bins`, `runs`, `orders`; sweep: the ranges, such as `F=0:20:41`, and the
+    `quantity` followed; fit: the file of `observed` lines, and what to `vary` with its bounds; `scroll` is the first row of the
+    page's table, `aside` the number of columns passed over.
     """
 
     observable: str | None = None

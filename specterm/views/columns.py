@@ -25,8 +25,8 @@ def table_rows(
     """Return a table of exactly `height` rows of `width` columns.
 
     `marked` is the row drawn strong; `scroll` the first row wanted, held so that the table stays full; columns with a place in
-    `left` stand on the left, the others on the right. Behind the first `fixed` columns `aside` ones are passed over, held so that
-    the rest stays full. The last line says which rows and columns are shown where not all are.
+    `left` stand on the left, the others on the right. Behind the first `fixed` columns `aside` ones are passed over, held so
+    that the last column stays in view. The last line says which rows and columns are shown where not all are.
     """
     if height <= 0 or width <= 0:
         return ((),) * max(0, height)

@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
-from specterm.errors import SheetError
 from specterm.session.notebook import Entry, Notebook
 from specterm.session.records import Record
 from specterm.tui.look import Look
@@ -42,12 +42,13 @@ class Next:
         """Return what could come out now."""
         from specterm.analysis.measurement import both_orders, repeat  # noqa: PLC0415 - heavy
 
-        wave, meters = self._replayed(outcome, should_stop)
-        meter, step = self._possible(outcome, self.observable, wave, meters)
-        orders = both_orders(self._course(outcome, (self.observable, self.other))) if self.other else None
         texts = tuple(entry.text for entry in self.chain if entry.kind == "measured")
         joints = repeat(self._course(outcome, texts), self.runs, self.seed) if self.runs and texts else ()
-        return NextFound(step, orders, joints, texts, meter, wave)
+        orders = both_orders(self._course(outcome, (self.observable, self.other))) if self.other else None
+        if ended(self.chain):
+            return NextFound(None, orders, joints, texts)
+        wave, meters = self._replayed(outcome, should_stop)
+        return NextFound(self._possible(outcome, self.observable, wave, meters)[1], orders, joints, texts)
 
     def _possible(self, outcome: Outcome, text: str, wave: Wave, meters: dict[str, Meter]) -> tuple[Meter, Step]:
         """Return meter and outcomes; an observable measured before in this chain keeps its bins."""
@@ -96,23 +97,38 @@ class Next:
 
         assert outcome.spectrum is not None
         state = self.chain[0].text if self.chain else self.state
-        waits = {entry.value for entry in self.chain if entry.kind == "waited"}
-        if waits and len(texts) > 1:
-            words = "runs and both orders are counted without waiting in between"
-            raise SheetError(words, mend="undo the waiting with U first")
-        return course_of(outcome.model, outcome.spectrum, state, texts, outcome.request.folder, bins=self.bins)
+        waits = waits_of(self.chain, len(texts))
+        return course_of(outcome.model, outcome.spectrum, state, texts, outcome.request.folder, after=waits, bins=self.bins)
+
+
+def waits_of(chain: tuple[Entry, ...], count: int) -> tuple[float, ...]:
+    """Return the time waited before each of the first `count` measurements of a chain, 0 where it says nothing."""
+    waits = [0.0] * count
+    place = 0
+    for entry in chain:
+        if entry.kind == "measured":
+            place += 1
+        elif entry.kind == "waited" and place < count:
+            waits[place] += entry.value
+    return tuple(waits)
+
+
+LOST_STATE = "the last result lies beyond what was computed: prepare a state anew with N"
+
+
+def ended(chain: tuple[Entry, ...]) -> bool:
+    """Say whether the last measurement of a chain gave a result beyond what was computed: the state is not known then."""
+    return bool(chain) and chain[-1].kind == "measured" and math.isnan(chain[-1].value)
 
 
 @dataclass(frozen=True, eq=False)
 class NextFound:
-    """What could come out now, both orders of two, joint results of many runs of `texts`."""
+    """What could come out now (None after a result that ends the chain), both orders of two, joint results of runs of `texts`."""
 
-    step: Step
+    step: Step | None
     orders: Orders | None
     joints: tuple[Joint, ...]
     texts: tuple[str, ...]
-    meter: Meter
-    wave: Wave
 
 
 def _inquiry(look: Look, outcome: Outcome, bench: Bench) -> Next | None:
@@ -136,7 +152,9 @@ def entry_words(entry: Entry) -> str:
     if entry.kind == "waited":
         scale, unit = scale_of(entry.unit)
         return f"waited {with_unit(short(scale * entry.value), unit)}"
-    if entry.levels:
+    if math.isnan(entry.value):
+        value = "beyond what was computed"
+    elif entry.levels:
         value = with_unit(short(entry.value, 10), entry.unit) + f" (level {','.join(str(level) for level in entry.levels)})"
     elif entry.low < entry.high:
         value = with_unit(f"{short(entry.low)} to {short(entry.high)}", entry.unit)
@@ -160,18 +178,15 @@ def _rows(found: NextFound | None, room: Room) -> Rows:
         blocks = [f"{total} runs of {', '.join(found.texts)}", joint_table(found.texts, found.joints, total)]
     elif found.orders:
         blocks = [f"{found.orders.observables[0]} and {found.orders.observables[1]} in both orders", orders_text(found.orders)]
+    elif found.step is None:
+        blocks = [LOST_STATE]
     else:
-        most = max(1, rest - 3 if found.step.rest <= ROUNDING else rest - 4)
+        most = max(1, rest - 4)
         blocks = [f"next: {found.step.observable} could give", step_table(found.step, glyphs=room.glyphs, most=most)]
-        if found.step.rest > ROUNDING:
-            blocks.append(f"{short(found.step.rest, 3)} of the probability lies beyond what was computed")
     lines.append(fit_row(((" " + blocks[0], "title"),), room.width))
     for block in blocks[1:]:
         lines += text_rows(block, room.width, glyphs=room.glyphs)
     return padded(lines, room.width, room.height)
-
-
-ROUNDING = 1e-9
 
 
 def _entries(book: Notebook, room: Room, most: int) -> list[Row]:
