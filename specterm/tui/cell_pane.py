@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from typing import ClassVar
 
 from rich.segment import Segment
@@ -11,7 +12,7 @@ from textual.message import Message
 from textual.strip import Strip
 from textual.widget import Widget
 
-from specterm.views.cells import Row, Rows, row_width, width_of
+from specterm.views.cells import Row, Rows, plainly_narrow, row_width, width_of
 
 LOOKS: dict[str, Style] = {
     "plain": Style(),
@@ -40,7 +41,10 @@ def changed_columns(before: Row, after: Row) -> tuple[int, int] | None:
         return None
     if row_width(before) != row_width(after):
         return 0, max(row_width(before), row_width(after))
-    differing = [place for place, pair in enumerate(zip(_cells(before), _cells(after), strict=True)) if pair[0] != pair[1]]
+    same = sum(1 for _ in itertools.takewhile(lambda pair: pair[0] == pair[1], zip(before, after, strict=False)))
+    start = row_width(after[:same])
+    pairs = zip(_cells(before[same:]), _cells(after[same:]), strict=True)
+    differing = [place for place, (old, new) in enumerate(pairs, start) if old != new]
     if not differing:
         return 0, row_width(before)
     return differing[0], differing[-1] - differing[0] + 1
@@ -48,7 +52,11 @@ def changed_columns(before: Row, after: Row) -> tuple[int, int] | None:
 
 def _cells(row: Row) -> list[tuple[str, str]]:
     """Return the row cell by cell, a wide character over two cells."""
-    return [(character, style) for text, style in row for character in text for _ in range(width_of(character))]
+    cells: list[tuple[str, str]] = []
+    for text, style in row:
+        wide = text if plainly_narrow(text) else [character for character in text for _ in range(width_of(character))]
+        cells.extend(zip(wide, itertools.repeat(style)))
+    return cells
 
 
 class CellPane(Widget):

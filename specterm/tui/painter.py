@@ -15,7 +15,7 @@ from specterm.tui.keys import KEYS, TYPING, bottom
 from specterm.tui.look import Look
 from specterm.tui.pace import QUESTION, Pace, behind_multiplexer
 from specterm.tui.pages import page_of
-from specterm.tui.pages.page import Answered, Inquiry
+from specterm.tui.pages.page import Answered, Bench, Inquiry
 from specterm.tui.pinned import Moved
 from specterm.tui.rows import (
     Shown,
@@ -41,6 +41,7 @@ _LINES = (("message", message_row), ("chosen", chosen_row), ("moments", moments_
 _LARGE = (("figure", figure_rows), ("levels", level_rows))
 
 
+_BENCH = Bench()
 _LAST = 1.0
 """Seconds that the last answer of the terminal is waited for at the end."""
 
@@ -120,7 +121,7 @@ class Painter:
         with self.app.batch_update():
             for name, draw in _LARGE:
                 pane = self._pane(name)
-                of = (pane.size, replace(shown, moments=None, message="", message_style="", stale=False))
+                of = (pane.size, _told_by(shown, name))
                 if _visible(pane) and self._drawn.get(name) != of:
                     self._drawn[name] = of
                     changed |= pane.show(drawn_safely(draw, shown, *pane.size))
@@ -228,6 +229,16 @@ def _keys_of(look: Look) -> tuple[str | tuple[str, str], ...]:
     """Return the ids of the keys that the bottom line names first."""
     page = page_of(look)
     return page.keys if page is not None else ()
+
+
+def _told_by(shown: Shown, name: str) -> Shown:
+    """Return what is shown without what the large pane called `name` says nothing of."""
+    told = replace(shown, moments=None, message="", message_style="", stale=False, tuned="")
+    if name == "figure":
+        told = replace(told, extra=None)
+    if name != "figure" or page_of(shown.look) is None:
+        told = replace(told, answer=None, also=None, fresh=False, asking=False, bench=_BENCH)
+    return told
 
 
 def _visible(pane: CellPane) -> bool:

@@ -25,9 +25,14 @@ _NARROW = re.compile("[ -~\u2500-\u25a0\u2800-\u28ff\u2026]*")
 """Characters of one column that figures are made of: ASCII, lines, blocks, braille."""
 
 
+def plainly_narrow(text: str) -> bool:
+    """Return whether each character is known at a glance to take one column."""
+    return text.isascii() or _NARROW.fullmatch(text) is not None
+
+
 def width_of(text: str) -> int:
     """Return how many columns `text` takes: two for wide East Asian characters, none for combining ones."""
-    if text.isascii() or _NARROW.fullmatch(text):
+    if plainly_narrow(text):
         return len(text)
     return sum(_columns(character) for character in text)
 
