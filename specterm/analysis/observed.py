@@ -157,7 +157,7 @@ def _settings(table: TableText, cells: Mapping[str, str], prefix: str, where: st
 
 def _factor(model: Model, unit: str, where: str) -> float:
     """Return what a value in this unit is to be multiplied by."""
-    unit = unit.strip().strip('"').strip("[]").strip()
+    unit = unit.strip().strip("[]").strip()
     if not unit:
         return 1.0
     try:
@@ -175,7 +175,7 @@ def _optional(cells: Mapping[str, str], name: str, where: str) -> float | None:
 
 def _number(cells: Mapping[str, str], name: str, where: str) -> float | None:
     """Return the number in a cell, None where the cell is empty."""
-    text = cells.get(name, "").strip().strip('"').strip()
+    text = cells.get(name, "").strip()
     if not text:
         return None
     value = float(text) if _NUMBER.fullmatch(text) else math.nan

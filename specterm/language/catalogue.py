@@ -382,7 +382,14 @@ _MODEL = {
     "file-unreadable": _model("the file {path} cannot be read: {reason}", "check the path and its permissions"),
     "file-too-large": _model("the file {path} is too large: {found}, the limit is {limit}", "thin the data out"),
     "file-special": _model("{path} is not a regular file", "name a text file"),
-    "table-cell": _model("{path}, line {line}: '{found}' is no finite number", "correct the cell, or delete the line"),
+    "table-cell": _model(
+        "{path}, line {line}, column {column}: '{found}' is no finite number",
+        "correct the cell (decimals as in 29.5), or delete the line",
+    ),
+    "table-cells": _model(
+        "{path}, line {line} has {found} cells, but {wanted}", "write decimals with a point, or take the rest out"
+    ),
+    "table-quotes": _model("{path}, line {line}: a quotation mark does not enclose a cell", "close it, or take it out"),
     "table-column-unknown": _model("{path} has no column {name}", "{near}the columns are {names}"),
     "table-conflict": _model("{path}: lines {first} and {second} give two values at {place}", "keep one of the two"),
     "table-too-short": _model("{path} has {found} points", "a table needs at least two points"),

@@ -13,6 +13,7 @@ from numpy.typing import NDArray
 from specterm.errors import Span, printable
 from specterm.language.catalogue import refuse
 from specterm.language.suggest import nearest
+from specterm.model.cells import QuoteError, cells_of, looks_like_number, separator_of
 from specterm.regular import NotRegularError, TooLargeError, read_regular
 
 if TYPE_CHECKING:
@@ -22,12 +23,14 @@ LARGEST_FILE = 50_000_000
 MOST_ROWS = 1_000_000
 _COMMENT = ("#", "%", "!")
 _NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eEdD][+-]?\d+)?", re.ASCII)
-_QUOTED = re.compile(r'"[^"]*"|\S+')
 
 
 @dataclass(frozen=True)
 class TableText:
-    """The lines of a table cut into cells: header names (or none), rows and the line number of each row."""
+    """The lines of a table cut into cells: header names (or none), rows and the line number of each row.
+
+    No row has more cells than the header, or than the first row where there is none.
+    """
 
     path: str
     names: tuple[str, ...]
@@ -67,22 +70,25 @@ def _cut(path: str, data: bytes, span: Span) -> TableText:
             lines.append(number)
         if len(rows) > MOST_ROWS + 1:
             raise refuse("file-too-large", span, path=path, found=f"over {MOST_ROWS} rows", limit=f"{MOST_ROWS} rows")
-    separator = next((s for s in ("\t", ";", ",") if rows and s in rows[0]), None)
-    cells = [_cells(row, separator) for row in rows]
+    separator = separator_of(rows[0]) if rows else None
+    cells = [_cells(path, row, separator, line, span) for row, line in zip(rows, lines, strict=True)]
     names: tuple[str, ...] = ()
-    if cells and not any(_NUMBER.fullmatch(c) for c in cells[0]):
+    if cells and not any(looks_like_number(c) for c in cells[0]):
         names = tuple(_bare(c) for c in cells[0])
-        cells, lines = cells[1:], lines[1:]
-    return TableText(path, names, cells, lines)
+    width = len(cells[0]) if names or separator is not None else max(map(len, cells), default=0)
+    for row, place in zip(cells, lines, strict=True):
+        if len(row) > width and any(row[width:]):
+            wanted = f"the header has {width}" if names else f"the first row has {width}"
+            raise refuse("table-cells", span, path=path, line=place, found=len(row), wanted=wanted)
+    skipped = 1 if names else 0
+    return TableText(path, names, cells[skipped:], lines[skipped:])
 
 
-def _cells(row: str, separator: str | None) -> list[str]:
-    """Return the cells of a row: by the separator where there is one, else by blanks outside quotation marks."""
-    for mark in (" #", " %", " !", "\t#"):
-        row = row.split(mark, 1)[0]
-    if separator is not None:
-        return [c.strip() for c in row.split(separator)]
-    return _QUOTED.findall(row) if '"' in row else row.split()
+def _cells(path: str, row: str, separator: str | None, line: int, span: Span) -> list[str]:
+    try:
+        return cells_of(row, separator)
+    except QuoteError:
+        raise refuse("table-quotes", span, path=path, line=line) from None
 
 
 def _bare(name: str) -> str:
@@ -101,10 +107,10 @@ def column(table: TableText, which: str | int, span: Span) -> NDArray[np.float64
     place = _place(table, which, span)
     values = np.empty(len(table.rows))
     for k, row in enumerate(table.rows):
-        cell = row[place].strip('"') if place < len(row) else ""
+        cell = row[place] if place < len(row) else ""
         value = float(cell.replace("d", "e").replace("D", "e")) if _NUMBER.fullmatch(cell) else np.nan
         if not np.isfinite(value):
-            raise refuse("table-cell", span, path=table.path, line=table.lines[k], found=printable(cell))
+            raise refuse("table-cell", span, path=table.path, line=table.lines[k], column=place + 1, found=printable(cell))
         values[k] = value
     return values
 

@@ -79,6 +79,9 @@ FORMATS = [
     ("\ufeff1e0 3.0\n0 1\n0 1\n.5e1 4.\n", 'table("t.csv", 1, 2)'),
     ("a b c\n9 1 0\n9 3 1\n9 4 5\n", 'table("t.csv", "C", 2)'),
     ("1d0 3D0\n0 +1\n5 4", 'table("t.csv", 1, 2)'),
+    ('"x, at rest" , "E ""low""", c\n"0","1",a # "\n"1" , 3,"b, c # d"\n5,4,\n', 'table("t.csv", 1, 2)'),
+    ('"x, at rest" "E"\n"0" 1\n1 "3" # "end\n5 4\n', 'table("t.csv", "x, at rest", "E")'),
+    ("x,y\n0,1\n1,3,,\n5,4,\n", 'table("t.csv", "x", "y")'),
 ]
 
 
@@ -101,7 +104,13 @@ REFUSED = [
     ("0 1\n1 nan\n", "line 2"),
     ("0 1\n\n1 inf\n", "line 3"),
     ("0 1\n1\n", "line 2"),
-    ("0 1\n1 2,5\n", "line 2"),
+    ("0 1\n1 2,5\n", "line 2, column 2: '2,5'"),
+    ("x,y\n0,29,5\n1,30,5\n", "line 2 has 3 cells, but the header has 2"),
+    ("0,1\n0,29,5\n", "line 2 has 3 cells, but the first row has 2"),
+    ('x,y\n0,"29,5"\n1,2\n', "line 2, column 2: '29,5'"),
+    ("0,5;29,5\n1;30\n2;31\n", "line 1, column 1: '0,5'"),
+    ('x,y\n0,"1\n1,2\n', "line 2: a quotation mark"),
+    ('x,y\n0,"1"2\n1,2\n', "line 2: a quotation mark"),
     ("0 1\n1 1e999\n", "line 2"),
     ("0 1\n1 \u0663\n", "line 2"),
     ("0 1\n", "1 points"),
