@@ -74,12 +74,23 @@ def _inquiry(look: Look, outcome: Outcome, _: Bench) -> Means | None:
 
 def _rows(found: MeansFound, room: Room) -> Rows:
     """Return the table of means over the pair."""
-    pair = _pair_rows(found, room)
-    height = room.height - len(pair)
+    pair, reasons = _pair_rows(found, room), _reasons(found, room)
+    height = room.height - len(pair) - len(reasons)
     headings, rows = _table(found)
     scroll, aside = room.look.choices.scroll, room.look.choices.aside
     table = table_rows(headings, rows, room.width, height, scroll=scroll, aside=aside, left=frozenset({0}), glyphs=room.glyphs)
-    return padded([*table, *pair], room.width, room.height)
+    return padded([*table, *reasons, *pair], room.width, room.height)
+
+
+def _reasons(found: MeansFound, room: Room) -> list[Row]:
+    """Return why some means have no value or no error, in a few rows."""
+    said: dict[str, None] = {}
+    for column in found.columns:
+        for name, one in zip(found.names, column, strict=True):
+            words = [one.message] if isinstance(one, SpectermError) else one.notes
+            said |= dict.fromkeys(f"{name}: {note}" for note in words)
+    lines = [line for words in said for line in textwrap.wrap(words, max(10, room.width - 2))]
+    return [fit_row(((" " + line, "dim"),), room.width) for line in lines[: max(0, room.height // 5)]]
 
 
 def _table(found: MeansFound) -> tuple[list[str], list[list[str]]]:

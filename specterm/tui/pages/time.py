@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import textwrap
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
@@ -23,6 +24,7 @@ WANTED = 1 - 1e-9
 """The share of the state that levels are computed for."""
 MOST_LEVELS = 300
 PLACES = 241
+MOST_NOTES = 3
 
 
 @dataclass(frozen=True)
@@ -82,7 +84,7 @@ def _rows(found: CourseFound, room: Room) -> Rows:
     evolution = found.evolution
     place = min(room.look.choices.cursor, len(evolution.times) - 1)
     time = float(evolution.times[place])
-    rows: list[Row] = [fit_row(((" " + words, style),), room.width) for words, style in _words(found, place)]
+    rows: list[Row] = [fit_row(((" " + words, style),), room.width) for words, style in _words(found, place, room.width)]
     density = np.abs(found.packet.wave(found.places, np.array([time]))[0]) ** 2
     left = room.height - len(rows)
     parts = 3 if left >= 27 else 2 if left >= 12 else 1
@@ -104,7 +106,7 @@ def _rows(found: CourseFound, room: Room) -> Rows:
     return padded(rows, room.width, room.height)
 
 
-def _words(found: CourseFound, place: int) -> list[tuple[str, str]]:
+def _words(found: CourseFound, place: int, width: int) -> list[tuple[str, str]]:
     """Return what is known at the cursor, of the state as a whole, and notes."""
     e = found.evolution
     scale, unit = scale_of(e.unit)
@@ -117,7 +119,8 @@ def _words(found: CourseFound, place: int) -> list[tuple[str, str]]:
     for name, value in (("period", e.classical), ("revival", e.revival)):
         if value is not None:
             whole.append(f"{name} {with_unit(short(scale * value), unit)}")
-    return [("   ".join(here), "title"), ("   ".join(whole), "plain"), *((note, "warn") for note in e.notes[:1])]
+    notes = [line for note in e.notes for line in textwrap.wrap(note, max(10, width - 2))]
+    return [("   ".join(here), "title"), ("   ".join(whole), "plain"), *((line, "warn") for line in notes[:MOST_NOTES])]
 
 
 def _record(found: Any, _: Room) -> Record:  # noqa: ANN401 - an evolution
