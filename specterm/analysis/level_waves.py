@@ -41,19 +41,23 @@ class KnownLevels:
         return self.known[key]
 
 
-def level_wave(spectrum: Spectrum, kept: Values, known: Callable[[Array], Values] | None = None) -> Wave:
-    """Return the normalised sum of levels with the amplitudes `kept` (levels,); PhysicsError where there are none.
+def level_wave(
+    spectrum: Spectrum, kept: Values, known: Callable[[Array], Values] | None = None, *, size: float = 1.0
+) -> Wave:
+    """Return the sum of levels with amplitudes proportional to `kept` (levels,); PhysicsError where there are none.
 
-    `known` gives the eigenstates at places, where something remembers them.
+    `known` gives the eigenstates at places, where something remembers them; `size` is the norm of the sum, below 1 where a
+    part of a state is missing from it.
     """
     states = spectrum.states
     norm = float(np.linalg.norm(kept)) if len(kept) else 0.0
     if states is None or not norm > 0:
         raise PhysicsError("this outcome has probability 0 in this state", mend="choose another outcome")
     rows = np.flatnonzero(kept)
-    shares, evaluate = kept[rows] / norm, known or states.evaluate
+    share = kept * (size / norm)
+    shares, evaluate = share[rows], known or states.evaluate
     ends = states.places[:-1], states.places[1:]
-    return Wave("x", lambda x: shares @ evaluate(x)[rows], *ends, (states, kept / norm))
+    return Wave("x", lambda x: shares @ evaluate(x)[rows], *ends, (states, share))
 
 
 def amplitudes(spectrum: Spectrum, wave: Wave, sample: Sample | None = None) -> Values:

@@ -22,37 +22,51 @@ from specterm.spectrum import Spectrum
 RARE = 1e-7
 """First outcomes less probable than this are not followed further in the joint probabilities."""
 LOST = 1e-6
-"""Probability that no outcome covers, told from here on."""
+"""Probability that no outcome covers: told, and drawn as a result of its own, from here on; below it is left to rounding."""
 ROUGH_LEVELS = 128
 """Levels taken at least where a state was cut sharply before."""
+BEYOND = -1
+"""The place of a result beyond what was computed, in a branch."""
 Branch = tuple[int, ...]
 """The places of the outcomes taken so far."""
 
 
 @dataclass(frozen=True)
 class Step:
-    """One measurement: what could come out, which outcome was taken (its place, or None), and the probability not covered."""
+    """One measurement: what could come out, which outcome was taken (its place, or None), and the probability not covered.
+
+    `beyond` says that the result drawn is none of the outcomes: it lies in the continuum or past the levels computed, and
+    the state after it is not known.
+    """
 
     observable: str
     unit: str
     outcomes: tuple[Outcome, ...]
     drawn: int | None
     rest: float
+    beyond: bool = False
 
 
 @dataclass(frozen=True)
 class Record:
-    """The steps of one run, the `seed` of its draws and notes on what limits it."""
+    """The steps of one run, the `seed` of its draws and notes on what limits it; a step beyond what was computed is the last.
+
+    `observables` are all that were to be measured.
+    """
 
     state: str
     steps: tuple[Step, ...]
     seed: int
     notes: tuple[str, ...]
+    observables: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True)
 class Joint:
-    """One result of a whole sequence: a value for each step, its probability, and how often it came in the runs."""
+    """One result of a whole sequence: a value for each step, its probability, and how often it came in the runs.
+
+    A value is nan where the result lies beyond what was computed; the run ends there, so that all later ones are nan too.
+    """
 
     values: tuple[float, ...]
     probability: float
@@ -80,13 +94,16 @@ class Orders:
 
 @dataclass
 class Course:
-    """A sequence of measurements as a tree: outcomes and states are computed when a branch is first taken, and kept."""
+    """A sequence of measurements as a tree: outcomes and states are computed when a branch is first taken, and kept.
+
+    `start` is the state before the first measurement, `after` the times of free evolution between one and the next.
+    """
 
     model: Model
     spectrum: Spectrum
     start: Wave
     meters: tuple[Meter, ...]
-    after: float = 0.0
+    after: tuple[float, ...] = ()
     waves: dict[Branch, Wave] = field(default_factory=dict)
     known: dict[Branch, tuple[Outcome, ...]] = field(default_factory=dict)
 
@@ -103,7 +120,8 @@ class Course:
         if path not in self.waves:
             before = path[:-1]
             found = self.meters[len(before)].collapsed(self.wave(before), self.outcomes(before)[path[-1]])
-            self.waves[path] = evolved(self.model, self.spectrum, found, self.after, self._evaluate)
+            time = self.after[len(before)] if self.after else 0.0
+            self.waves[path] = evolved(self.model, self.spectrum, found, time, self._evaluate)
         return self.waves[path]
 
     @cached_property
@@ -112,11 +130,16 @@ class Course:
 
 
 def evolved(model: Model, spectrum: Spectrum, wave: Wave, time: float, known: KnownLevels | None = None) -> Wave:
-    """Return the state a time later, from its amplitudes on the levels; the part they do not hold is left out."""
+    """Return the state a time later, from its amplitudes on the levels.
+
+    The part they do not hold is left out, and the norm is less by it: it is missing from whatever is measured next.
+    """
     if time == 0:
         return wave
     values = np.array([level.value for level in spectrum.levels])
-    return level_wave(spectrum, amplitudes(spectrum, wave) * np.exp(-1j * (values - values[0]) * time / model.hbar), known)
+    held = amplitudes(spectrum, wave)
+    size = min(1.0, float(np.linalg.norm(held)))
+    return level_wave(spectrum, held * np.exp(-1j * (values - values[:1]) * time / model.hbar), known, size=size)
 
 
 def course_of(
@@ -126,21 +149,36 @@ def course_of(
     observables: Sequence[str],
     folder: Path | None = None,
     *,
-    after: float = 0.0,
+    after: float | Sequence[float] = 0.0,
     bins: int = 24,
     width: float | None = None,
 ) -> Course:
     """Return a sequence of measurements of observables (names or expressions) on a state, made ready.
 
-    `after` is a time of free evolution between two measurements, in the sheet's unit; `bins` and `width` rule how finely
-    continuous observables are told apart. Raises SheetError for what is not known, PhysicsError for what cannot be measured.
+    `after` is a time of free evolution between two measurements, or the times before each of them, the first too, in the
+    sheet's unit; `bins` and `width` rule how finely continuous observables are told apart. Raises SheetError for what is not
+    known, PhysicsError for what cannot be measured.
     """
+    waits = _waits(after, len(observables))
     wave = of_prepared(prepare(model, spectrum, state, folder))
     texts = list(dict.fromkeys(observables))
     least = ROUGH_LEVELS if any(cuts_sharply(model, text) for text in texts) else 16
+    if any(waits[:1]):
+        spectrum = holding(model, spectrum, wave, None, least)
+        wave = evolved(model, spectrum, wave, waits[0])
     meters = {text: meter_for(model, spectrum, text, wave, bins=bins, width=width, least=least) for text in texts}
-    carrier = spectrum if after == 0 or len(observables) < 2 else _carrier(model, spectrum, wave, meters, least)
-    return Course(model, carrier, wave, tuple(meters[text] for text in observables), after)
+    carrier = _carrier(model, spectrum, wave, meters, least) if any(waits[1:]) else spectrum
+    return Course(model, carrier, wave, tuple(meters[text] for text in observables), waits[1:])
+
+
+def _waits(after: float | Sequence[float], count: int) -> tuple[float, ...]:
+    """Return the times before each of `count` measurements; SheetError where there are not as many."""
+    if isinstance(after, (int, float)):
+        return (0.0, *(float(after),) * (count - 1))[:count]
+    waits = tuple(float(time) for time in after)
+    if len(waits) != count:
+        raise SheetError(f"{len(waits)} times are given for {count} measurements", mend="give one before each, 0 for none")
+    return waits
 
 
 def _carrier(model: Model, spectrum: Spectrum, wave: Wave, meters: dict[str, Meter], least: int) -> Spectrum:
@@ -154,8 +192,8 @@ def _carrier(model: Model, spectrum: Spectrum, wave: Wave, meters: dict[str, Met
 def measure(course: Course, state: str, seed: int, chosen: Sequence[float | None] = ()) -> Record:
     """Return one run: at each step the outcome nearest to the value chosen, or one drawn by its probability.
 
-    The same seed gives the same record. Raises SheetError where more values are chosen than there are measurements, or none is
-    possible.
+    A draw may fall beyond what was computed, with the probability that no outcome covers: the run ends there. The same seed
+    gives the same record. Raises SheetError where more values are chosen than there are measurements, or none can be chosen.
     """
     if len(chosen) > len(course.meters):
         raise SheetError(f"{len(chosen)} outcomes are chosen for {len(course.meters)} measurements", mend="choose fewer")
@@ -164,13 +202,15 @@ def measure(course: Course, state: str, seed: int, chosen: Sequence[float | None
     steps = []
     for number, meter in enumerate(course.meters):
         outcomes = course.outcomes(branch)
-        if not outcomes:
-            raise SheetError(f"no outcome of `{meter.text}` is among the levels computed", mend="ask for more with -n")
         wanted = chosen[number] if number < len(chosen) else None
+        if not outcomes and wanted is not None:
+            raise SheetError(f"no outcome of `{meter.text}` is among the levels computed", mend="ask for more with -n")
         place = nearest_place(outcomes, wanted) if wanted is not None else drawn_place(outcomes, float(draws.random()))
-        steps.append(Step(meter.text, meter.unit, outcomes, place, uncovered(outcomes)))
+        steps.append(Step(meter.text, meter.unit, outcomes, place, uncovered(outcomes), beyond=place is None))
+        if place is None:
+            break
         branch = (*branch, place)
-    return Record(state, tuple(steps), seed, tuple(_notes(course, steps)))
+    return Record(state, tuple(steps), seed, tuple(_notes(course, steps)), tuple(meter.text for meter in course.meters))
 
 
 def nearest_place(outcomes: Sequence[Outcome], value: float) -> int:
@@ -178,10 +218,18 @@ def nearest_place(outcomes: Sequence[Outcome], value: float) -> int:
     return min(range(len(outcomes)), key=lambda k: abs(outcomes[k].value - value))
 
 
-def drawn_place(outcomes: Sequence[Outcome], number: float) -> int:
-    """Return the place of an outcome for a random number in [0, 1), probabilities taken relative to those covered."""
-    rising = np.cumsum([outcome.probability for outcome in outcomes])
-    return int(min(np.searchsorted(rising, number * rising[-1], side="right"), len(outcomes) - 1))
+def drawn_place(outcomes: Sequence[Outcome], number: float) -> int | None:
+    """Return the place of an outcome for a random number in [0, 1), None where it falls beyond what the outcomes cover."""
+    place = int(np.searchsorted(np.cumsum(shares_of(outcomes))[:-1], number, side="right"))
+    return place if place < len(outcomes) else None
+
+
+def shares_of(outcomes: Sequence[Outcome]) -> Array:
+    """Return the probabilities draws are made with, the last that of a result beyond what was computed; they sum to 1."""
+    rest = uncovered(outcomes)
+    shares = np.array([*(outcome.probability for outcome in outcomes), rest if rest > LOST else 0.0])
+    found: Array = shares / shares.sum()
+    return found
 
 
 def uncovered(outcomes: Sequence[Outcome]) -> float:
@@ -192,33 +240,47 @@ def uncovered(outcomes: Sequence[Outcome]) -> float:
 def _notes(course: Course, steps: Sequence[Step]) -> list[str]:
     """Return what the outcomes do not cover, and which levels are not what they seem."""
     notes = []
-    for step, meter in zip(steps, course.meters, strict=True):
+    for number, (step, meter) in enumerate(zip(steps, course.meters, strict=False), start=1):
         if step.rest > LOST:
             notes.append(f"{step.rest:.3g} of the probability of `{step.observable}` lies beyond what was computed")
         if isinstance(meter, LevelMeter) and any(level.kind == "box" for level in meter.spectrum.levels):
             notes.append(f"outcomes of `{step.observable}` include box levels: only their sum over a range means something")
+        if step.beyond:
+            ends = f"the result of measurement {number} lies beyond what was computed"
+            notes.append(f"{ends}: what follows cannot be told" if number < len(course.meters) else ends)
     return notes
 
 
 def repeat(course: Course, runs: int, seed: int) -> tuple[Joint, ...]:
     """Return the joint results that came in `runs` repetitions of the whole sequence, with probabilities and counts.
 
-    Runs are drawn together, branch by branch (multinomial), which gives the same distribution as one by one.
+    Runs are drawn together, branch by branch (multinomial), which gives the same distribution as one by one. A result beyond
+    what was computed ends its runs.
     """
     draws = np.random.default_rng(seed)
     alive: list[tuple[Branch, float, int]] = [((), 1.0, runs)]
     for _ in course.meters:
         after: list[tuple[Branch, float, int]] = []
         for branch, probability, count in alive:
-            shares = np.array([outcome.probability for outcome in course.outcomes(branch)])
-            counts = draws.multinomial(count, shares / shares.sum())
-            after += [((*branch, place), probability * float(shares[place]), int(n)) for place, n in enumerate(counts) if n > 0]
+            if branch[-1:] == (BEYOND,):
+                after.append((branch, probability, count))
+                continue
+            shares = shares_of(course.outcomes(branch))
+            counts = draws.multinomial(count, shares)
+            places = (*range(len(shares) - 1), BEYOND)
+            after += [
+                ((*branch, place), probability * float(share), int(n))
+                for place, share, n in zip(places, shares, counts, strict=True)
+                if n > 0
+            ]
         alive = after
     return tuple(Joint(_values(course, branch), probability, count) for branch, probability, count in alive)
 
 
 def _values(course: Course, branch: Branch) -> tuple[float, ...]:
-    return tuple(course.outcomes(branch[:k])[place].value for k, place in enumerate(branch))
+    """Return the value at each step, nan from a result beyond what was computed on."""
+    values = [math.nan if place == BEYOND else course.outcomes(branch[:k])[place].value for k, place in enumerate(branch)]
+    return (*values, *[math.nan] * (len(course.meters) - len(values)))
 
 
 def both_orders(course: Course) -> Orders:

@@ -33,14 +33,16 @@ def possible(
     least = ROUGH_LEVELS if rough else SMOOTH_LEVELS
     meter = meter_for(model, spectrum, text, wave, bins=bins, width=width, least=least)
     outcomes = tuple(meter.outcomes(wave))
-    if not outcomes:
-        raise SheetError(f"no outcome of `{text}` is among the levels computed", mend="ask for more with -n")
     return meter, Step(meter.text, meter.unit, outcomes, None, uncovered(outcomes))
 
 
 def drawn(step: Step, number: float) -> Step:
-    """Return the step with the outcome that a random number in [0, 1) falls on."""
-    return replace(step, drawn=drawn_place(step.outcomes, number))
+    """Return the step with the outcome that a random number in [0, 1) falls on.
+
+    Where it falls beyond what was computed, `drawn` is None and `beyond` is said: the state after it is not known.
+    """
+    place = drawn_place(step.outcomes, number)
+    return replace(step, drawn=place, beyond=place is None)
 
 
 def chosen(step: Step, value: float) -> Step:
@@ -49,7 +51,9 @@ def chosen(step: Step, value: float) -> Step:
 
 
 def after(meter: Meter, wave: Wave, step: Step) -> Wave:
-    """Return the state after the outcome taken, projected and normalised."""
+    """Return the state after the outcome taken, projected and normalised; SheetError after one beyond what was computed."""
+    if step.beyond:
+        raise SheetError("the state after a result beyond what was computed is not known", mend="prepare a state anew")
     return wave if step.drawn is None else meter.collapsed(wave, step.outcomes[step.drawn])
 
 

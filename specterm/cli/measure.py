@@ -69,7 +69,7 @@ def _text(arguments: argparse.Namespace, model: Model, record: Record, joints: t
             lines.append(f"free evolution for {with_unit(short(scale * arguments.after), unit)}")
         lines += [f"{number + 1}. measure {step.observable}", step_table(step, glyphs=glyphs)]
     if joints:
-        lines += [f"{arguments.runs} runs", joint_table([step.observable for step in record.steps], joints, arguments.runs)]
+        lines += [f"{arguments.runs} runs", joint_table(record.observables, joints, arguments.runs)]
     if orders:
         lines.append(orders_text(orders))
     return "\n".join(lines)

@@ -105,6 +105,9 @@ class Booked(Paged):
         found = self._next(self.action_choose)
         if found is None:
             return
+        if not found.step.outcomes:
+            self.say(f"no outcome of {found.step.observable} is among what was computed: there is none to choose", "warn")
+            return
         from specterm.analysis.once import chosen as taken  # noqa: PLC0415 - heavy
         from specterm.views.outcome_table import outcome_text  # noqa: PLC0415
 

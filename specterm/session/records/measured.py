@@ -2,9 +2,10 @@
 
 from __future__ import annotations
 
+import math
 from typing import Any
 
-from specterm.analysis.measurement import Joint, Orders, Step
+from specterm.analysis.measurement import LOST, Joint, Orders, Step
 from specterm.analysis.measurement import Record as Run
 from specterm.analysis.meters import Outcome
 from specterm.session.records.record import Record
@@ -34,8 +35,9 @@ def measured_record(run: Run, after: float, joints: tuple[Joint, ...], orders: O
             "missing": list(orders.missing),
         }
     if joints:
-        heading = (*(step.observable for step in run.steps), "probability", "count")
-        return Record(data, heading, [(*j.values, j.probability, j.count) for j in joints])
+        heading = (*run.observables, "probability", "count")
+        rows = [(*(_cell(value) for value in j.values), j.probability, j.count) for j in joints]
+        return Record(data, heading, rows)
     rows = [row for number, step in enumerate(run.steps) for row in step_rows(number, step)]
     return Record(data, _STEP, rows)
 
@@ -48,15 +50,23 @@ def step_data(step: Step) -> dict[str, Any]:
         "outcomes": [_outcome(outcome) for outcome in step.outcomes],
         "drawn": None if step.drawn is None else step.outcomes[step.drawn].value,
         "rest": step.rest,
+        "beyond": step.beyond,
     }
 
 
 def step_rows(number: int, step: Step) -> list[tuple[Any, ...]]:
-    """Return the outcomes of one measurement as rows of a table."""
-    return [
+    """Return the outcomes of one measurement as rows of a table; one without a value is what lies beyond them."""
+    rows: list[tuple[Any, ...]] = [
         (number, step.observable, o.value, o.low, o.high, o.probability, int(place == step.drawn))
         for place, o in enumerate(step.outcomes)
     ]
+    if step.rest > LOST:
+        rows.append((number, step.observable, None, None, None, step.rest, int(step.beyond)))
+    return rows
+
+
+def _cell(value: float) -> float | None:
+    return None if math.isnan(value) else value
 
 
 def _outcome(outcome: Outcome) -> dict[str, Any]:

@@ -60,8 +60,7 @@ class Next:
         known = meters.get(text)
         if known is not None and sharp(known):
             outcomes = tuple(known.outcomes(wave))
-            if outcomes:
-                return known, Made(known.text, known.unit, outcomes, None, uncovered(outcomes))
+            return known, Made(known.text, known.unit, outcomes, None, uncovered(outcomes))
         rough = any(sharp(meter) for meter in meters.values())
         return possible(outcome.model, outcome.spectrum, wave, text, rough=rough, bins=self.bins)
 
@@ -117,13 +116,16 @@ LOST_STATE = "the last result lies beyond what was computed: prepare a state ane
 
 
 def ended(chain: tuple[Entry, ...]) -> bool:
-    """Say whether the last measurement of a chain gave a result beyond what was computed: the state is not known then."""
-    return bool(chain) and chain[-1].kind == "measured" and math.isnan(chain[-1].value)
+    """Say whether a measurement of the chain gave a result beyond what was computed: the state is not known from then on."""
+    return any(entry.kind == "measured" and math.isnan(entry.value) for entry in chain)
 
 
 @dataclass(frozen=True, eq=False)
 class NextFound:
-    """What could come out now (None after a result that ends the chain), both orders of two, joint results of runs of `texts`."""
+    """What could come out now, both orders of two, joint results of many runs of `texts`.
+
+    `step` is None after a result beyond what was computed.
+    """
 
     step: Step | None
     orders: Orders | None
