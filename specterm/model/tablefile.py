@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import os
 import re
 from dataclasses import dataclass
@@ -19,8 +20,9 @@ from specterm.regular import NotRegularError, TooLargeError, read_regular
 if TYPE_CHECKING:
     from pathlib import Path
 
-LARGEST_FILE = 50_000_000
-MOST_ROWS = 1_000_000
+LARGEST_FILE = 20_000_000
+MOST_ROWS = 300_000
+LONGEST_ROW = 1_000_000
 _COMMENT = ("#", "%", "!")
 _NUMBER = re.compile(r"[+-]?(\d+(\.\d*)?|\.\d+)([eEdD][+-]?\d+)?", re.ASCII)
 
@@ -39,7 +41,7 @@ class TableText:
 
 
 def read_table(folder: Path | None, path: str, span: Span) -> TableText:
-    """Return the cells of a file; `path` starts at `folder`. Only regular files up to 50 MB and 1,000,000 rows are read."""
+    """Return the cells of a file; `path` starts at `folder`. Only regular files up to 20 MB and 300,000 rows are read."""
     shown = printable(path)
     full = path if folder is None else os.path.join(folder, path)
     try:
@@ -68,6 +70,9 @@ def _cut(path: str, data: bytes, span: Span) -> TableText:
         if content and not content.startswith(_COMMENT):
             rows.append(content)
             lines.append(number)
+        if len(content) > LONGEST_ROW:
+            found = f"{len(content)} characters in line {number}"
+            raise refuse("file-too-large", span, path=path, found=found, limit=f"{LONGEST_ROW} characters")
         if len(rows) > MOST_ROWS + 1:
             raise refuse("file-too-large", span, path=path, found=f"over {MOST_ROWS} rows", limit=f"{MOST_ROWS} rows")
     separator = separator_of(rows[0]) if rows else None
@@ -108,8 +113,8 @@ def column(table: TableText, which: str | int, span: Span) -> NDArray[np.float64
     values = np.empty(len(table.rows))
     for k, row in enumerate(table.rows):
         cell = row[place] if place < len(row) else ""
-        value = float(cell.replace("d", "e").replace("D", "e")) if _NUMBER.fullmatch(cell) else np.nan
-        if not np.isfinite(value):
+        value = float(cell.replace("d", "e").replace("D", "e")) if _NUMBER.fullmatch(cell) else math.nan
+        if not math.isfinite(value):
             raise refuse("table-cell", span, path=table.path, line=table.lines[k], column=place + 1, found=printable(cell))
         values[k] = value
     return values

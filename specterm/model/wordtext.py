@@ -38,7 +38,7 @@ def _constant(coefficient: Scalar, setting: Setting) -> str:
     ratio = coefficient / setting.hbar
     part = complex(ratio.value)
     fourfold = 4 * (part.imag or part.real)
-    simple = 0 in (part.real, part.imag) and fourfold and abs(fourfold - round(fourfold)) <= 1e-9 and abs(fourfold) <= 64
+    simple = 0 in (part.real, part.imag) and 0 < abs(fourfold) <= 64 and abs(fourfold - round(fourfold)) <= 1e-9
     if not simple or complex(setting.hbar.value) == 1:
         return show_number(coefficient)
     number = round(fourfold) / 4

@@ -95,6 +95,10 @@ def solve(
             "the operator cannot be solved in double precision on this domain",
             mend="shift a singular end to 0, or narrow the domain",
         ) from None
+    except MemoryError:
+        raise PhysicsError(
+            "there is not enough memory for this", mend="ask for fewer levels, narrow the domain, or use a larger machine"
+        ) from None
     return _timed(found, time.perf_counter() - start)
 
 

@@ -10,6 +10,7 @@ import numpy as np
 from specterm.arrays import Array, Counts, Values
 from specterm.discrete.chain import BLOCK, Chain, chain_with_mass, count_below, element_coefficients, twisted_vectors
 from specterm.discrete.elements import Condensed
+from specterm.discrete.memory import refuse_above
 from specterm.spectrum.isolate import Group, Ruler, isolate
 
 SETTLED = 1e-12
@@ -254,7 +255,9 @@ def _block(condensed: Condensed, group: Group, ruler: Ruler) -> tuple[Values, fl
     low, high = group.low, group.high
     energy = (low + high) / 2
     slack = 1e-3 * SETTLED * abs(energy - ruler.bottom)
-    start = np.random.default_rng(20).standard_normal((_vertices(condensed), group.size))
+    vertices = _vertices(condensed)
+    refuse_above(64.0 * vertices * group.size, f"telling {group.size} levels apart")
+    start = np.random.default_rng(20).standard_normal((vertices, group.size))
     z: Values = start
     near, settled_ritz = False, np.zeros(group.size)
     for sweep in range(80):
