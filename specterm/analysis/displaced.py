@@ -143,6 +143,18 @@ def needed(model: Model) -> Sheet:
     Plain numbers stay.
     """
     sheet = model.sheet
+    kept = used_names(model).union(model.plain)
+    return replace(
+        sheet,
+        definitions=tuple(d for d in sheet.definitions if d.name in kept),
+        states=(),
+        diagonalise=Name(Span(0, 0), model.main),
+    )
+
+
+def used_names(model: Model) -> set[str]:
+    """Return the names that the main operator and the domain are made of."""
+    sheet = model.sheet
     known = {d.name: d.expression for d in sheet.definitions}
     ask = [model.main, "hbar"]
     for statement in sheet.domains:
@@ -155,13 +167,7 @@ def needed(model: Model) -> Sheet:
         if name in known and name not in kept:
             kept.add(name)
             ask += _used([known[name]])
-    kept.update(model.plain)
-    return replace(
-        sheet,
-        definitions=tuple(d for d in sheet.definitions if d.name in kept),
-        states=(),
-        diagonalise=Name(Span(0, 0), model.main),
-    )
+    return kept
 
 
 def _used(nodes: Iterable[Node]) -> list[str]:

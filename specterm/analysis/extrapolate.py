@@ -25,6 +25,8 @@ LINEAR = 1e-3
 """Curvature beside slope below which a first step may be made longer."""
 FAINT = 1e-5
 """A first step that changes less than this share of the quotient is made longer."""
+LONGER, LONGEST = 16.0, 256
+"""... by this factor, so often at most: what counts is what the step does, not how small the number is."""
 REFUSED = 6
 """So many steps without a model on either side, each a quarter of the one before, end the search."""
 QUADRATIC = 0.5
@@ -105,19 +107,20 @@ class _Search:
     def start(self, first: float) -> float:
         """Return a first step, made longer as long as the change is small and nearly linear."""
         step = first
-        for _ in range(3):
+        for _ in range(LONGEST):
             pair = self._pair(step)
             if pair is None:
                 break
             odd, even = self._change(pair)
-            if odd == 0 and even == 0:
-                break
             if odd > FAINT * self.whole or even > max(LINEAR * odd, self.floor):
                 break
-            longer = self._pair(step * 16)
-            if longer is None or self._change(longer)[1] > max(LINEAR * self._change(longer)[0], self.floor):
+            longer = self._pair(step * LONGER)
+            if longer is None:
                 break
-            step *= 16
+            odd, even = self._change(longer)
+            if even > max(LINEAR * odd, self.floor):
+                break
+            step *= LONGER
         return step
 
     def run(self, step: float) -> Steps | str:

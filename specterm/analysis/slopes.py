@@ -9,8 +9,8 @@ from pathlib import Path
 import numpy as np
 
 from specterm.analysis.carried_states import Carried, Totals
-from specterm.analysis.displaced import Displaced, Shape, Written, displaced, shape_of
-from specterm.analysis.extrapolate import FIRST, Steps, derivative, find_steps
+from specterm.analysis.displaced import Displaced, Shape, Written, displaced, shape_of, used_names
+from specterm.analysis.extrapolate import FIRST, LONGER, LONGEST, Steps, derivative, find_steps
 from specterm.analysis.level_groups import Doubts, Groups
 from specterm.analysis.samples import Moved, Samples, moved
 from specterm.analysis.state_points import ElementSampler, Sampler, StatePoints, WaveSampler
@@ -93,9 +93,13 @@ def slopes_of(
     assert isinstance(here, Moved)
     noise = here.noise(points)
     plans: list[tuple[Neighbours, Steps] | str | None] = []
+    used = used_names(model)
     for name, place in places.items():
         if stop():
             raise WorkStopped("stopped")
+        if name not in used:
+            plans.append(None)
+            continue
         around = Neighbours(base, displaced(model, name, place, folder), hull, origin, {0.0: here})
         plans.append(_plan(around, points, size, FIRST * place.size, size(noise)))
     live = [plan for plan in plans if isinstance(plan, tuple)]
@@ -121,11 +125,22 @@ def _plan(
     around: Neighbours, points: StatePoints, size: Callable[[Samples], float], first: float, noise: float
 ) -> tuple[Neighbours, Steps] | str | None:
     """Return how to differentiate along one number, None where the number does nothing, or why it cannot be done."""
-    up, here = around.at(first), around.at(0.0)
-    if not isinstance(up, str) and not isinstance(here, str) and up.shape.same(here.shape):
+    step = _felt(around, first)
+    if step is None:
         return None
-    steps = find_steps(around.sampler(points), size, first, noise)
+    steps = find_steps(around.sampler(points), size, step, noise)
     return steps if isinstance(steps, str) else (around, steps)
+
+
+def _felt(around: Neighbours, first: float) -> float | None:
+    """Return the first step, made longer until the operator is not the same to the last bit; None where it always is."""
+    here, step = around.at(0.0), first
+    for _ in range(LONGEST):
+        up = around.at(step)
+        if isinstance(up, str) or isinstance(here, str) or not up.shape.same(here.shape):
+            return step
+        step *= LONGER
+    return None
 
 
 def _slopes(
@@ -147,8 +162,10 @@ def _slopes(
     errors = errors[:, :levels] + missing + 2 * doubts.mixed * np.sqrt(totals.steep[:, :levels])
     shortest = np.array([steps.shortest for _, steps in plans])
     sizes = totals.size[:, :levels]
-    errors = errors + (NOISE + doubts.cut) * sizes + whole / shortest[:, None]
-    return [_settled(_branches(carried, totals, groups, row), errors[row], sizes[row]) for row in range(len(plans))]
+    rounding = whole / shortest[:, None]
+    errors = errors + (NOISE + doubts.cut) * sizes + rounding
+    rows = range(len(plans))
+    return [_settled(_branches(carried, totals, groups, row), errors[row], sizes[row], rounding[row]) for row in rows]
 
 
 def _sure(around: Neighbours, points: StatePoints) -> Callable[[float], Samples]:
@@ -183,10 +200,10 @@ def _branches(carried: Carried, totals: Totals, groups: Groups, row: int) -> Arr
     return value
 
 
-def _settled(value: Array, error: Array, size: Array) -> Slope | str:
-    """Return a slope, or why it has no finite value."""
+def _settled(value: Array, error: Array, size: Array, rounding: Array) -> Slope | str:
+    """Return a slope, or why it has no value to speak of; `rounding` is a part of the error."""
     if not np.isfinite(value).all() or not np.isfinite(error).all():
         return "it is not finite"
     if len(value) and (error > UNSETTLED * np.maximum(size, np.abs(value))).all():
-        return "it cannot be integrated: it may be infinite"
+        return "rounding hides it" if (2 * rounding > error).all() else "it cannot be integrated: it may be infinite"
     return Slope(value, error)

@@ -331,3 +331,20 @@ def test_errors_are_honest(seed):
     ]
     for text, count, exact in problems:
         check(text, count, exact)
+
+
+@pytest.mark.parametrize("k", [1e-300, 1e-30, 1e-14, 1e-12, -1e-10])
+def test_numbers_too_small_to_be_felt(k):
+    """A number whose own share would change nothing is moved until it does: dE/dk = <x^2> = 1/2 at k = 0 (closed form)."""
+    _, slopes = found(f"H = p^2/2 + x^2/2 + k*x^2; k = {k!r}; x in (-inf, inf)", 1)
+    assert slopes.derivatives[0, 0] == pytest.approx(0.5, rel=1e-8)
+    assert slopes.errors[0, 0] <= 1e-8
+
+
+def test_small_numbers_under_a_bend():
+    """Where the operator bends at a small number the step stays below it: 1/(4 sqrt(k)) (closed form), or nothing is told."""
+    _, slopes = found("H = p^2/2 + x^2/2 + sqrt(k)*x^2; k = 1e-14; x in (-inf, inf)", 1)
+    assert abs(slopes.derivatives[0, 0] - 0.25e7) <= slopes.errors[0, 0] <= 0.25e4
+    _, slopes = found("H = p^2/2 + x^2/2 + sqrt(k^2 + 1e-10)*x^2; k = 1e-14; x in (-inf, inf)", 1)
+    assert np.isnan(slopes.derivatives[0, 0])
+    assert "rounding hides it" in slopes.notes[0]
