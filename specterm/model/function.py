@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
 from dataclasses import dataclass
 from functools import cached_property
 from typing import Any
@@ -22,6 +23,16 @@ from specterm.model.text import show
 from specterm.model.wide import evaluate
 
 _SAMPLE = np.concatenate([s * np.geomspace(1e-3, 1e3, 61) * 1.0123456789 for s in (-1, 1)])
+
+
+AT_ONCE = 200_000
+"""Functions are evaluated at so many places at once: memory stays small, and a stop is heard between the pieces."""
+
+
+def _in_pieces(function: Callable[[NDArray[np.float64]], NDArray[Any]], places: NDArray[np.float64]) -> NDArray[Any]:
+    """Return the values of a function at many places."""
+    flat = places.ravel()
+    return np.concatenate([function(flat[k : k + AT_ONCE]) for k in range(0, flat.size, AT_ONCE)]).reshape(places.shape)
 
 
 @dataclass(frozen=True, repr=False)
@@ -47,6 +58,8 @@ class Function:
         Where the function is undefined the value is nan, beyond the range of numbers inf; nothing warns.
         """
         places = np.asarray(x, dtype=float)
+        if places.size > AT_ONCE:
+            return _in_pieces(self, places)
         values = self._raw(places)
         if np.iscomplexobj(values) and self.is_real:
             values = values.real
@@ -109,6 +122,8 @@ class Function:
     def rounding(self, x: ArrayLike) -> NDArray[np.float64]:
         """Return a bound of |computed - true| at x, in the function's own unit (see `specterm.model.rounding`)."""
         places = np.asarray(x, dtype=float)
+        if places.size > AT_ONCE:
+            return _in_pieces(self.rounding, places)
         bounds = rounding(self.term, places)
         lost = np.isnan(bounds) & np.isfinite(places)
         if lost.any() and not self.term.broken:

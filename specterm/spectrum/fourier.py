@@ -213,8 +213,11 @@ def _solve(form: Form, box: Box, last: int, *, vectors: bool = True) -> _Solutio
 
 def _phased(states: Values, box: Box) -> Values:
     """Return the states with phases that make them real where they can be, positive on the first lobe from the left."""
-    x = np.linspace(box.left, box.right, 4 * box.points)
-    psi = np.exp(1j * np.outer(x - box.left, _waves(box))) @ states
+    waves, parts = _waves(box), []
+    for x in np.array_split(np.linspace(box.left, box.right, 4 * box.points), 1 + box.points // 250):
+        check()
+        parts.append(np.exp(1j * np.outer(x - box.left, waves)) @ states)
+    psi = np.concatenate(parts)
     size = np.abs(psi)
     largest = psi[np.argmax(size, axis=0), np.arange(psi.shape[1])]
     psi = psi * np.abs(largest) / largest

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from specterm import stopping
 from specterm.arrays import Array, Counts, Values
 from specterm.discrete.chain import BLOCK, Chain, chain_with_mass, count_below, element_coefficients, twisted_vectors
 from specterm.discrete.elements import Condensed
@@ -21,6 +22,8 @@ STRAY = 1e-9
 """A Rayleigh quotient this share of the level away from where Newton's method ended: a bad vector, solved again."""
 PAIRED = 1e-6
 """On a ring, levels closer than this share of theirs are solved together: they come as pairs."""
+LARGEST_BLOCK = 4_000_000
+"""Elements times pairs of levels integrated at once."""
 GROUP_SWEEPS = 12
 """So many inverse iterations are spent on a group at most."""
 DENSE = 80
@@ -204,6 +207,11 @@ def _integral(weights: Array, integrand: Array) -> Array:
 
 def _matrix_integral(functions: Values, weights: Array) -> Values:
     """Return the integrals of conj(f_i) f_j (elements, points, levels) under weights, summed pairwise over the elements."""
+    block = max(64, LARGEST_BLOCK // functions.shape[2] ** 2)
+    if len(functions) > block:
+        starts = range(0, len(functions), block)
+        return np.sum([_matrix_integral(functions[k : k + block], weights[k : k + block]) for k in starts], axis=0)
+    stopping.check()
     parts = np.swapaxes(functions.conj(), 1, 2) @ (weights[:, :, None] * functions)
     return np.ascontiguousarray(np.moveaxis(parts, 0, -1)).sum(axis=-1)
 
@@ -261,6 +269,7 @@ def _block(condensed: Condensed, group: Group, ruler: Ruler) -> tuple[Values, fl
     z: Values = start
     near, settled_ritz = False, np.zeros(group.size)
     for sweep in range(80):
+        stopping.check()
         if sweep == 0 or group.size == 1:
             matrix, weight = chain_with_mass(condensed, np.array([energy]))
             solve, heavy, form = _solver(matrix), _matrix(weight), _matrix(matrix)
