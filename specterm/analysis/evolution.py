@@ -10,7 +10,9 @@ from pathlib import Path
 import numpy as np
 
 from specterm.analysis.matrix_elements import elements, jets, shared_rule
+from specterm.analysis.moment_errors import moment_errors
 from specterm.analysis.observables import Observable, observable
+from specterm.analysis.prepared import prepare
 from specterm.analysis.weights import Weights, project
 from specterm.arrays import Array, Values
 from specterm.errors import PhysicsError
@@ -62,8 +64,9 @@ class Evolution:
     """What becomes of a state: arrays over `times` (n,), in the sheet's unit of time.
 
     `survival` is |<psi(0)|psi(t)>|^2 with bounds on its error; `mean` and `spread` are those of `observable` in the captured
-    part; `classical` and `revival` are the period 2 pi hbar/|E'| and the revival time 4 pi hbar/|E''| at the mean level number,
-    None where they mean nothing.
+    part, `mean_error` and `spread_error` bound how far those of the whole state are from them, nan where nothing does;
+    `observable_unit` is theirs; `classical` and `revival` are the period 2 pi hbar/|E'| and the revival time 4 pi hbar/|E''|
+    at the mean level number, None where they mean nothing.
     """
 
     state: str
@@ -73,10 +76,13 @@ class Evolution:
     survival_error: Array
     mean: Array
     spread: Array
+    mean_error: Array
+    spread_error: Array
     captured: float
     classical: float | None
     revival: float | None
     unit: str
+    observable_unit: str
     notes: tuple[str, ...]
 
 
@@ -105,6 +111,8 @@ def evolve(
     survival, error = _survival(model, spectrum, weights, at)
     asked = observable(model, observed or model.domain.coordinate)
     mean, spread = _moments(spectrum, packet, asked, at)
+    prepared = prepare(model, spectrum, state, folder)
+    errors = moment_errors(model, spectrum, prepared, asked, (at, packet.amplitudes, mean, spread))
     notes = list(weights.notes)
     if weights.captured < TRUSTED:
         notes.append(f"mean and spread are those of the {weights.captured:.7g} of the state that the levels hold")
@@ -112,11 +120,13 @@ def evolve(
     if len(blurred):
         first = blurred[np.argmin(np.abs(blurred))]
         notes.append(f"from time {first:.6g} on the levels are not sure enough for the phases: trust no means there")
+    if np.isnan(errors[0]).any():
+        notes.append(f"no bound on the error of the mean of `{asked.text}`: what is not captured may hold any value of it")
     if np.isinf(spread).any():
         notes.append(f"the spread of `{asked.text}` is infinite: the wave bends where it cannot be applied twice")
     return Evolution(
-        state, asked.text, at, survival, error, mean, spread, weights.captured, *revivals(model, weights),
-        model.units.time, tuple(notes),
+        state, asked.text, at, survival, error, mean, spread, *errors, weights.captured, *revivals(model, weights),
+        model.units.time, asked.unit, tuple(notes),
     )  # fmt: skip
 
 

@@ -71,15 +71,18 @@ def _text(arguments: argparse.Namespace, model: Model, found: Evolution, density
     """Return a table over the times, what repeats, and the curves."""
     from specterm.views.cells import plain  # noqa: PLC0415 - only text needs the views
     from specterm.views.numbers import scale_of, short, with_unit  # noqa: PLC0415
-    from specterm.views.plain_table import bare, sure, text_columns  # noqa: PLC0415
+    from specterm.views.plain_table import bare, known, sure, text_columns  # noqa: PLC0415
     from specterm.views.time_curve import density_curve, mean_curve, survival_curve  # noqa: PLC0415
 
     scale, time_unit = scale_of(found.unit)
     unit = f" ({time_unit})" if time_unit else ""
     times, survival = (scale * found.times).tolist(), found.survival.tolist()
-    moments = (bare(found.mean.tolist(), 8), bare(found.spread.tolist(), 8))
+    sizes = np.abs(found.mean) + np.where(np.isfinite(found.spread), found.spread, 0.0)
+    pairs = ((found.mean, found.mean_error), (found.spread, found.spread_error))
+    moments = [known(values.tolist(), errors.tolist(), float(sizes.max())) for values, errors in pairs]
     columns = (bare(times, 8), sure(survival, found.survival_error.tolist()), *moments)
-    headings = (f"time{unit}", "survival", f"<{found.observable}>", "spread")
+    own = f" ({found.observable_unit})" if found.observable_unit else ""
+    headings = (f"time{unit}", "survival", f"<{found.observable}>{own}", f"spread{own}")
     repeats = [
         f"{name} {with_unit(short(scale * value), time_unit)}"
         for name, value in (("period", found.classical), ("revival", found.revival))

@@ -51,6 +51,7 @@ def _captured(arguments: argparse.Namespace, source: Source, model: Model, least
 
 def _weights_text(model: Model, spectrum: Spectrum, found: Weights) -> str:
     """Return weights as the level table with a bar in each row."""
+    from specterm.analysis.weights import TOLD  # noqa: PLC0415 - heavy
     from specterm.views.level_table import Weighing, text_table  # noqa: PLC0415 - only text needs the views
     from specterm.views.numbers import short, with_unit  # noqa: PLC0415
 
@@ -59,9 +60,10 @@ def _weights_text(model: Model, spectrum: Spectrum, found: Weights) -> str:
     )
     energy = model.units.energy
     mean, spread = with_unit(short(found.mean), energy), with_unit(short(found.spread), energy)
+    whose = "mean of the captured part" if 1 - found.captured > TOLD else "mean"
     lines = [
         f"{found.state} on {expression_of(model)}",
         text_table(spectrum.levels, energy, weighing, glyphs_of(None)),
-        "   ".join([f"captured {found.captured:.10g}", *([f"mean {mean}", f"spread {spread}"] if found.weights else [])]),
+        "   ".join([f"captured {found.captured:.10g}", *([f"{whose} {mean}", f"spread {spread}"] if found.weights else [])]),
     ]
     return "\n".join(lines)

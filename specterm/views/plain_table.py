@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 
 from specterm.views.cells import width_of
@@ -26,6 +27,17 @@ def text_columns(headings: Sequence[str], rows: Sequence[Sequence[str]], *, left
 def sure(values: Sequence[float], errors: Sequence[float | None]) -> tuple[str, ...]:
     """Return values with the digits that are sure, their decimal points under each other; without an error behind a `~`."""
     return aligned([bracket(value, error) for value, error in zip(values, errors, strict=True)])
+
+
+def known(values: Sequence[float], errors: Sequence[float], scale: float) -> tuple[str, ...]:
+    """Return values with the digits that are sure, `-` where the error is not known (nan) or not below the scale."""
+    return aligned([_known(value, error, scale) for value, error in zip(values, errors, strict=True)])
+
+
+def _known(value: float, error: float, scale: float) -> str:
+    if math.isinf(value):
+        return short(value)
+    return bracket(value, error) if error < scale or error == 0 else "-"
 
 
 def bare(values: Sequence[float | None], digits: int = 6) -> tuple[str, ...]:

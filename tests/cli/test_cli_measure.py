@@ -115,3 +115,29 @@ def test_lines_into_another_sheet(run, tmp_path):
     found = data(run, "transitions", tmp_path / "low.sheet", "--into", "high.sheet", "-n", "20")
     assert sum(line["weight"] for line in found["transitions"]) == pytest.approx(1, abs=1e-10)
     assert run("transitions", tmp_path / "low.sheet", "--into", "absent.sheet").status == 2
+
+
+FEW = "d = 3; H = p^2/2 - d*exp(-x^2/2); x in (-inf, inf); state s = exp(-x^2 + 2*i*x)"
+
+
+def test_results_beyond_are_counted(run):
+    """What lies in the continuum is a result without value: in the counts, in the record, and as a line of the text."""
+    found = data(run, "measure", "-e", FEW, "s", "H", "H", "--runs", "1000", "--seed", "5")
+    lost = next(joint for joint in found["joint"] if joint["values"] == [None, None])
+    assert lost["probability"] == pytest.approx(found["steps"][0]["rest"])
+    assert abs(lost["count"] - 1000 * lost["probability"]) < 4 * 16
+    assert found["steps"][0]["beyond"] == (found["steps"][0]["drawn"] is None)
+    text = run("measure", "-e", FEW, "s", "H", "H", "--runs", "1000", "--seed", "5").out
+    assert "beyond what was computed" in text
+    assert any(line.split()[:2] == ["beyond", "-"] for line in text.splitlines())
+    rows = list(csv.DictReader(io.StringIO(run("measure", "-e", FEW, "s", "H", "--seed", "5", "--csv").out)))
+    assert rows[-1]["value"] == ""
+
+
+def test_means_that_are_not_known(run):
+    """Means of a state held in part carry their errors, and text shows no digit that is not sure."""
+    found = data(run, "evolve", "-e", FEW, "s", "--times", "0,5", "-n", "3")
+    assert found["mean_error"][0] > 1
+    text = run("evolve", "-e", FEW, "s", "--times", "0,5", "-n", "3").out
+    assert [line.split()[-2:] for line in text.splitlines()[2:4]] == [["-", "-"], ["-", "-"]]
+    assert "mean of the captured part" in run("weights", "-e", FEW, "s").out

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from typing import Any
 
 from specterm.analysis.evolution import Evolution
@@ -20,18 +21,27 @@ def evolution_record(found: Evolution, density: tuple[Array, Array] | None = Non
         "errors": found.survival_error.tolist(),
         "mean": found.mean.tolist(),
         "spread": found.spread.tolist(),
+        "mean_error": found.mean_error.tolist(),
+        "spread_error": found.spread_error.tolist(),
+        "observable_unit": found.observable_unit,
         "captured": found.captured,
         "classical_period": found.classical,
         "revival_time": found.revival,
         "notes": list(found.notes),
     }
     if density is None:
-        columns = zip(found.times, found.survival, found.survival_error, found.mean, found.spread, strict=True)
-        return Record(data, ("time", "survival", "error", "mean", "spread"), [[float(c) for c in row] for row in columns])
+        errors = (found.mean_error, found.spread_error)
+        columns = zip(found.times, found.survival, found.survival_error, found.mean, found.spread, *errors, strict=True)
+        rows = [[_cell(float(c)) for c in row] for row in columns]
+        return Record(data, ("time", "survival", "error", "mean", "spread", "mean_error", "spread_error"), rows)
     data["density"] = {"places": density[0].tolist(), "values": density[1].tolist()}
-    rows = [
+    cells = [
         (time, place, value)
         for time, values in zip(found.times.tolist(), density[1].tolist(), strict=True)
         for place, value in zip(density[0].tolist(), values, strict=True)
     ]
-    return Record(data, ("time", "place", "density"), rows)
+    return Record(data, ("time", "place", "density"), cells)
+
+
+def _cell(value: float) -> float | None:
+    return None if math.isnan(value) else value

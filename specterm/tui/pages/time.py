@@ -15,6 +15,7 @@ from specterm.tui.solving import Outcome
 from specterm.views.cells import Row, Rows, fit_row
 from specterm.views.columns import padded
 from specterm.views.numbers import bracket, scale_of, short, with_unit
+from specterm.views.plain_table import known
 
 if TYPE_CHECKING:
     from specterm.analysis.evolution import Evolution, Packet
@@ -106,6 +107,12 @@ def _rows(found: CourseFound, room: Room) -> Rows:
     return padded(rows, room.width, room.height)
 
 
+def _sure(e: Evolution, values: Array, errors: Array, place: int) -> str:
+    """Return a value with its unit and the digits that are sure, `-` where none is."""
+    scale = float(np.max(np.abs(e.mean) + np.where(np.isfinite(e.spread), e.spread, 0.0)))
+    return with_unit(known([float(values[place])], [float(errors[place])], scale)[0], e.observable_unit)
+
+
 def _words(found: CourseFound, place: int, width: int) -> list[tuple[str, str]]:
     """Return what is known at the cursor, of the state as a whole, and notes."""
     e = found.evolution
@@ -113,7 +120,7 @@ def _words(found: CourseFound, place: int, width: int) -> list[tuple[str, str]]:
     survival = bracket(float(e.survival[place]), float(e.survival_error[place]))
     here = [
         f"{e.state} at {with_unit(short(scale * float(e.times[place]), 6), unit)}", f"survival {survival}",
-        f"<{e.observable}> {short(float(e.mean[place]), 7)}", f"spread {short(float(e.spread[place]), 5)}",
+        f"<{e.observable}> {_sure(e, e.mean, e.mean_error, place)}", f"spread {_sure(e, e.spread, e.spread_error, place)}",
     ]  # fmt: skip
     whole = [f"captured {short(e.captured, 10)}"]
     for name, value in (("period", e.classical), ("revival", e.revival)):
