@@ -80,7 +80,7 @@ def kept_past(past: Sequence[str]) -> tuple[str, ...]:
 def saved_from(text: str) -> Saved:
     """Return the session a text describes; raises SheetError where it describes none."""
     try:
-        data = json.loads(text, parse_constant=_refused)
+        data = json.loads(text, parse_constant=_refused, parse_float=_finite)
         document = Document(
             _sheet(data["text"]), None if data["path"] is None else Path(str(data["path"])),
             None if data["saved"] is None else _sheet(data["saved"]), str(data["title"])[:200],
@@ -110,3 +110,9 @@ def _sheet(text: Any) -> str:  # noqa: ANN401 - from a file of whatever content
 
 def _refused(name: str) -> float:
     raise ValueError(name)
+
+
+def _finite(text: str) -> float:
+    """Return a number; ValueError where it is too large to be one."""
+    value = float(text)
+    return value if math.isfinite(value) else _refused(text)
