@@ -24,7 +24,7 @@ from specterm.tui.cell_pane import CellPane
 from specterm.tui.choices import Choices
 from specterm.tui.files import Files
 from specterm.tui.keeping import Keeping
-from specterm.tui.layout import BESIDE, CSS, LOW, WIDE
+from specterm.tui.layout import BESIDE, CSS, LOW, SMALLEST, WIDE
 from specterm.tui.look import Look, usual_glyphs
 from specterm.tui.options import Options
 from specterm.tui.pages import NAMES
@@ -82,6 +82,7 @@ class Specterm(Tuned):
         yield CellPane("moments")
         yield CellPane("trust")
         yield CellPane("bottom")
+        yield CellPane("needs")
 
     @property
     def typing(self) -> bool:
@@ -100,7 +101,11 @@ class Specterm(Tuned):
             self.files.preset("Start from a preset, or Tab for an empty sheet")
 
     def on_resize(self, _: events.Resize) -> None:
-        """Arrange for the new size."""
+        """Arrange for the new size, which the app has once this event has been dealt with."""
+        self.call_later(self._resized)
+
+    def _resized(self) -> None:
+        """Arrange and draw for the new size."""
         self._arrange()
         self.redraw()
 
@@ -115,6 +120,7 @@ class Specterm(Tuned):
             self._share(self.shown.outcome)
         base.set_class(self.size.width >= WIDE, "wide")
         base.set_class(self.size.width < WIDE, "narrow")
+        base.set_class(self.size.width < SMALLEST[0] or self.size.height < SMALLEST[1], "tiny")
         base.set_class(self.size.width < BESIDE and self.size.height >= LOW, "apart")
         self.place(typing=self.typing)
 

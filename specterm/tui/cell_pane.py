@@ -19,20 +19,23 @@ LOOKS: dict[str, Style] = {
     "title": Style(bold=True),
     "axis": Style(dim=True),
     "potential": Style(),
-    "chosen": Style(bold=True, color="cyan"),
-    "forbidden": Style(color="cyan"),
-    "other": Style(color="blue"),
-    "threshold": Style(color="yellow"),
+    "chosen": Style(bold=True, color="magenta"),
+    "forbidden": Style(color="magenta"),
+    "other": Style(dim=True),
+    "threshold": Style(),
     "wall": Style(),
-    "weight": Style(color="magenta"),
+    "weight": Style(color="red"),
     "dim": Style(dim=True),
-    "pinned": Style(color="yellow", dim=True),
+    "pinned": Style(color="red", dim=True),
     "good": Style(),
     "warn": Style(bold=True, color="red"),
     "key": Style(bold=True),
     "bar": Style(reverse=True),
 }
-"""What each style of cell looks like, in the terminal's own sixteen colours."""
+"""What each style of cell looks like, in the terminal's own sixteen colours.
+
+Magenta and red are the two that stand out from black and from white; no meaning rests on them alone.
+"""
 
 
 def changed_columns(before: Row, after: Row) -> tuple[int, int] | None:

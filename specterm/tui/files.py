@@ -161,9 +161,11 @@ class Files:
         except (SheetError, OSError) as error:
             self.app.say(f"not written: {error}", "warn")
             return
-        if len(text) < _CLIPBOARD:
-            self.app.copy_to_clipboard(text)
-        self.app.say(f"sent to the terminal's clipboard, and written to {shown(path)}", "good")
+        if len(text.encode()) > _CLIPBOARD:
+            self.app.say(f"written to {shown(path)}; too long for a terminal's clipboard", "good")
+            return
+        self.app.copy_to_clipboard(text)
+        self.app.say(f"written to {shown(path)}, and sent to the terminal's clipboard", "good")
 
     def export(self, what: str, make: Callable[[], Any]) -> None:
         """Ask for a file and write data to it, in the form that its name ends with; an existing file is asked about."""

@@ -11,8 +11,13 @@ BESIDE = 130
 LOW = 16
 """Below this height there is no room for that line."""
 
+SMALLEST = (40, 10)
+"""Columns and rows below which the screen only says what it needs."""
+
 CSS = """
-Screen { layers: base; background: ansi_default; }
+Screen { layers: base top; background: ansi_default; overflow: hidden; }
+#needs { display: none; layer: top; dock: top; width: 100%; height: 100%; background: ansi_default; }
+.tiny #needs { display: block; }
 #main { height: 1fr; width: 100%; }
 .wide #main { layout: grid; grid-size: 2 2; grid-columns: 2fr 3fr; grid-rows: 1fr 1fr; grid-gutter: 0 1; }
 .wide #figure { row-span: 2; }

@@ -27,6 +27,7 @@ from specterm.tui.rows import (
     level_rows,
     message_row,
     moments_row,
+    needs_rows,
     trusted_row,
 )
 from specterm.tui.solving import Outcome, Weighed
@@ -131,6 +132,7 @@ class Painter:
             typing = self.app.typing
             keys = bottom(TYPING) if typing else bottom(KEYS, _keys_of(shown.look))
             changed |= self._pane("bottom").show((bottom_row(keys, width),))
+            changed |= self._pane("needs").show(needs_rows(*self.app.size))
             heading = self.app.sheet.heading
             row = heading_row(self.app.document, heading.size.width, typing=typing, glyphs=shown.look.glyphs)
             changed |= heading.show((row,))

@@ -10,7 +10,7 @@ from typing import Any
 from specterm.errors import SpectermError, printable
 from specterm.session.document import Document
 from specterm.tui.complaint import complaint
-from specterm.tui.layout import BESIDE
+from specterm.tui.layout import BESIDE, SMALLEST
 from specterm.tui.look import Look
 from specterm.tui.pages import LETTERS, NAMES, page_of
 from specterm.tui.pages.page import Answered, Bench, Room
@@ -250,6 +250,13 @@ def as_text(shown: Shown, width: int, height: int) -> str:
     levels = text_table(outcome.spectrum.levels, outcome.units.energy, weighing, shown.look.glyphs, shown.extra)
     figure = plain(figure_rows(shown, max(width, 60), max(height, 20)))
     return f"{lines}\n\n{levels}\n\n{figure}\n"
+
+
+def needs_rows(width: int, height: int) -> Rows:
+    """Return what the screen says where it is too small, as much of it as fits."""
+    words = f"too small: specterm needs {SMALLEST[0]} x {SMALLEST[1]}, this is {width} x {height}. q quits"
+    lines = textwrap.wrap(words, max(1, width))[: max(0, height)]
+    return tuple(fit_row(((line, "title"),), width) for line in lines)
 
 
 def bottom_row(texts: Sequence[str], width: int) -> Row:

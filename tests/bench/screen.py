@@ -161,8 +161,8 @@ def gaps(bench: Bench) -> None:
             session.drain(quiet=1.5, limit=30.0)
             ended = time.perf_counter()
             session.close()
-            logged = [(what, first, last) for what, first, last in spans(bench.log) if again <= first < ended]
-            lasted = [last - first for what, first, last in logged if what == "solve"] or [ended - again]
+            logged = [(what, first, last) for what, first, last in spans(bench.log) if again <= first and last <= ended]
+            lasted = [last - again for what, _, last in logged if what == "solve"] or [ended - again]
             stalls = [last - first for what, first, last in logged if what == "gap"]
             found.append(f"{count:>3s} levels: {1e3 * max(lasted):6.0f} ms, gap {1e3 * max(stalls, default=0.0):4.0f} ms")
         print(f"{path.stem:18s} {';  '.join(found)}", flush=True)

@@ -1,12 +1,7 @@
 """A user's session from end to end in a real pseudo-terminal, with the real engine: what the screen says at every step."""
 
-import os
-import sys
-
-import pexpect
-import pyte
 import pytest
-from test_terminal import REPO, Session
+from test_terminal import Session
 
 SHEET = """# A well with a bump (invented)
 L = 3.0     # width of the well
@@ -21,19 +16,11 @@ CODE = "import sys; from specterm.__main__ import main; sys.exit(main())"
 class User(Session):
     """A session of the program itself."""
 
+    name, text, beside = "bump.sheet", SHEET, True
+
     def __init__(self, folder, size):
-        """Start the program without a sheet; it looks for sheets in `folder`."""
-        self.path = folder / "bump.sheet"
-        self.path.write_text(SHEET)
-        env = {**os.environ, "TERM": "xterm-256color", "LANG": "C.UTF-8", "PYTHONPATH": str(REPO)}
-        env["XDG_STATE_HOME"] = str(folder / "state")
-        columns, rows = size
-        self.child = pexpect.spawn(
-            sys.executable, ["-c", CODE, "bump.sheet"], dimensions=(rows, columns), env=env, timeout=60, cwd=str(folder)
-        )
-        self.screen = pyte.Screen(columns, rows)
-        self.stream = pyte.ByteStream(self.screen)
-        self.raw = b""
+        """Start the program; it looks for sheets in `folder`."""
+        super().__init__(folder, size, command=["-c", CODE])
 
     def does(self, keys, words):
         """Send keys and wait until words stand on the screen."""

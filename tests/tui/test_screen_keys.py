@@ -314,3 +314,15 @@ def test_keys_are_sound():
     assert not any(name.startswith(("alt", "escape", "f1")) for name in names)
     assert all(any(not name.startswith("ctrl") for name in key.keys.split(",")) for key in KEYS if key.action != "suspend")
     assert all(action in ("done",) or key.area for key in TYPING for action in (key.action,))
+
+
+async def test_panes_follow_the_size():
+    """After one change of size the panes stand as that size wants, down to where there is only a word about it, and back."""
+    async with app().run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        for size, kinds in (((20, 5), {"tiny"}), ((1, 1), {"tiny"}), ((200, 60), {"wide"}), ((80, 24), {"narrow", "apart"})):
+            await pilot.resize_terminal(*size)
+            await settled(pilot)
+            assert pilot.app.screen.classes >= kinds
+            assert ("too small" in "\n".join(lines(pilot))) == (size == (20, 5))
+            assert ("psi, level 0" in "\n".join(lines(pilot))) == ("tiny" not in kinds)

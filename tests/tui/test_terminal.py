@@ -21,38 +21,66 @@ SHEET = "H = p^2/2 + x^2/2\nx in (-inf, inf)\n"
 
 
 class Session:
-    """A child in a pseudo-terminal, with its screen read through pyte."""
+    """A child in a pseudo-terminal, with its screen read through pyte; questions of the child are answered."""
 
-    def __init__(self, folder, size=(80, 24), **environ):
-        """Start the child on a sheet in `folder`."""
-        self.path = folder / "well.sheet"
-        self.path.write_text(SHEET)
+    name, text, beside = "well.sheet", SHEET, False
+
+    def __init__(self, folder, size=(80, 24), command=None, program=None, answers=True, **environ):
+        """Start the child on a sheet in `folder`: the tests' own, `command` of Python, or `program` with SHEET in its words."""
+        self.path = folder / self.name
+        self.path.write_text(self.text)
         self.state = folder / "state"
-        env = {**os.environ, "TERM": "xterm-256color", "LANG": "C.UTF-8", "PYTHONPATH": str(REPO), **environ}
+        inherited = {name: value for name, value in os.environ.items() if name not in ("TMUX", "STY", "COLORTERM", "NO_COLOR")}
+        env = {**inherited, "TERM": "xterm-256color", "LANG": "C.UTF-8", "PYTHONPATH": str(REPO), **environ}
         env["XDG_STATE_HOME"] = str(self.state)
         columns, rows = size
-        arguments = [str(CHILD), str(self.path)]
-        self.child = pexpect.spawn(sys.executable, arguments, dimensions=(rows, columns), env=env, timeout=30)
+        words = program or [sys.executable, *(command or [str(CHILD)]), "SHEET"]
+        words = [(self.name if self.beside else str(self.path)) if word == "SHEET" else word for word in words]
+        self.child = pexpect.spawn(words[0], words[1:], dimensions=(rows, columns), env=env, timeout=30, cwd=folder)
         self.screen = pyte.Screen(columns, rows)
         self.stream = pyte.ByteStream(self.screen)
         self.raw = b""
+        self.answers, self.answered = answers, 0
+
+    def listen(self, seconds):
+        """Take what the child sends within some seconds, at least one look; return False once it has ended."""
+        end = time.monotonic() + seconds
+        while True:
+            try:
+                data = self.child.read_nonblocking(65536, timeout=0.05)
+            except pexpect.TIMEOUT:
+                data = b""
+            except pexpect.EOF:
+                return False
+            self.raw += data
+            if b"\x1b[?2026$p" in data:
+                self.child.send(b"\x1b[?2026;2$y")
+            if self.answers:
+                self.answer()
+            self.stream.feed(re.sub(rb"\x1b\[[<>][0-9;]*u|\x1b\[\?[0-9;]*\$p", b"", data))
+            if time.monotonic() >= end:
+                return True
+
+    def answer(self):
+        """Answer the questions about the cursor that have no answer yet."""
+        while self.raw.count(b"\x1b[6n") > self.answered:
+            self.answered += 1
+            self.child.send(b"\x1b[1;1R")
+
+    def resize(self, columns, rows):
+        """Change the size of the window."""
+        self.child.setwinsize(rows, columns)
+        self.screen.resize(rows, columns)
 
     def until(self, words, seconds=30.0):
         """Read until `words` stand on the screen; fail with the screen when they do not come."""
         end = time.monotonic() + seconds
         while time.monotonic() < end:
-            try:
-                data = self.child.read_nonblocking(65536, timeout=0.1)
-            except pexpect.TIMEOUT:
-                data = b""
-            except pexpect.EOF:
-                break
-            self.raw += data
-            if b"\x1b[?2026$p" in data:
-                self.child.send(b"\x1b[?2026;2$y")
-            self.stream.feed(re.sub(rb"\x1b\[[<>][0-9;]*u|\x1b\[\?[0-9;]*\$p", b"", data))
+            lives = self.listen(0.0)
             if words in "\n".join(self.screen.display):
                 return
+            if not lives:
+                break
         pytest.fail(f"{words!r} did not come:\n" + "\n".join(self.screen.display))
 
     def end(self):
