@@ -46,6 +46,8 @@ def build_layers(block: LayersBlock, units: UnitSystem, evaluate: Evaluate, carr
         if not thickness.value.real > 0:
             raise refuse("layer-thickness", row[0].span, found=f"{thickness.value:g}")
         place = place + thickness
+        if not place.is_finite:
+            raise refuse("not-finite", row[0].span, what="the end of this layer", value="infinite")
         places.append(place)
     boundaries = np.array([float(p.value.real) for p in places])
     _check_rising(boundaries, [row[0].span for row in block.rows])
