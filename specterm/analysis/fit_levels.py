@@ -24,7 +24,10 @@ FEWEST = 3
 
 @dataclass(frozen=True)
 class Solver:
-    """How levels are computed: relative paths start at `folder`, `near` and `tolerance` as for `solve`."""
+    """How levels are computed: relative paths start at `folder`, `near` and `tolerance` as for `solve`.
+
+    `progress` is told how far a fit is.
+    """
 
     folder: Path | None = None
     overrides: Mapping[str, str] = field(default_factory=dict)
@@ -32,6 +35,7 @@ class Solver:
     near: float | None = None
     tolerance: float = 1e-8
     should_stop: Callable[[], bool] | None = None
+    progress: Callable[[str], None] | None = None
 
 
 @dataclass

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
 from decimal import Decimal
 
@@ -12,24 +12,19 @@ import numpy as np
 from specterm.analysis.fit_assign import Match, assign
 from specterm.analysis.fit_levels import Levels, Solver, levels_for
 from specterm.analysis.fit_statistics import Statistics, statistics
+from specterm.analysis.fit_steps import Bounds, Minimum, minimum
 from specterm.analysis.observed import Observation, Observed
-from specterm.arrays import Array, Flags
-from specterm.errors import PhysicsError, SheetError
+from specterm.arrays import Array
+from specterm.errors import SheetError
 from specterm.language import parse
 from specterm.language.edits import with_number
 
-TOLERANCE = 1e-11
-"""Relative change of chi-square, and of the numbers, at which a fit ends."""
-MOST_STEPS = 100
 FELT = 0.1
 """Errors of computed lines above this share of their uncertainty are told."""
 LOOSE = 3.0
 """A reduced chi-square above this is told."""
 DIGITS = 1e-3
 """Fitted numbers are written to this share of what each alone, the others held, is known to."""
-
-Bounds = Mapping[str, tuple[float, float]]
-"""The numbers to vary, with their least and largest values, which may be infinite."""
 
 
 @dataclass(frozen=True)
@@ -96,7 +91,7 @@ def fit(text: str, observed: Observed, vary: Bounds, solver: Solver) -> Fit:
         )
     lines, matches = assign(levels, observed.lines)
     weights = np.array([1.0 / line.uncertainty if line.uncertainty else 1.0 for line in lines])
-    found = _minimum(levels, lines, weights, vary, starts)
+    found = minimum(levels, lines, weights, vary, starts)
     levels.move(found.values.tolist())
     computed, doubts = levels.computed(lines)
     jacobian = levels.jacobian(lines) * weights[:, None]
@@ -129,43 +124,6 @@ def _ready(text: str, observed: Observed, vary: Bounds, solver: Solver) -> tuple
     return levels, starts
 
 
-@dataclass(frozen=True)
-class _Minimum:
-    values: Array
-    held: Flags
-    converged: bool
-    steps: int
-
-
-def _minimum(levels: Levels, lines: Sequence[Observation], weights: Array, vary: Bounds, starts: Array) -> _Minimum:
-    """Return where the sum of squares is least, from `starts` on; a step to where a level is lost counts as too long."""
-    from scipy.optimize import least_squares  # noqa: PLC0415 - heavy
-
-    observed = np.array([line.value for line in lines])
-    levels.computed(lines)
-
-    def misfit(values: Array) -> Array:
-        levels.move(values.tolist())
-        try:
-            found: Array = (levels.computed(lines)[0] - observed) * weights
-        except (PhysicsError, SheetError):
-            found = np.full(len(lines), np.nan)
-        return found
-
-    def slopes(values: Array) -> Array:
-        levels.move(values.tolist())
-        found: Array = levels.jacobian(lines) * weights[:, None]
-        return found
-
-    low, high = np.array(list(vary.values())).T
-    inside = np.clip(starts, np.nextafter(low, np.inf), np.nextafter(high, -np.inf))
-    done = least_squares(
-        misfit, inside, jac=slopes, bounds=(low, high), x_scale="jac", ftol=TOLERANCE, xtol=TOLERANCE, gtol=1e-15,
-        max_nfev=MOST_STEPS,
-    )  # fmt: skip
-    return _Minimum(np.asarray(done.x), np.asarray(done.active_mask) != 0, bool(done.status > 0), int(done.nfev))
-
-
 def _fitted(
     levels: Levels, names: Sequence[str], values: tuple[Array, Array], known: Statistics, jacobian: tuple[Array, float]
 ) -> tuple[Fitted, ...]:
@@ -182,13 +140,13 @@ def _fitted(
     return tuple(found)
 
 
-def _remarks(found: _Minimum, observed: Observed, sums: tuple[float, int], doubts: Array) -> list[str]:
+def _remarks(found: Minimum, observed: Observed, sums: tuple[float, int], doubts: Array) -> list[str]:
     """Return what else is to be said about a fit."""
-    notes = []
+    notes = list(found.notes) if not found.converged else []
     if not observed.weighted:
         notes.append("no uncertainties are given: all lines count alike, errors are those of the scatter")
     if not found.converged:
-        notes.append(f"the fit has not settled after {found.steps} steps")
+        notes.append(f"not converged: the fit has not settled after {found.steps} steps")
     chi2, dof = sums
     if observed.weighted and dof > 0 and chi2 / dof > LOOSE:
         notes.append(f"the lines scatter {math.sqrt(chi2 / dof):.3g} times more than their uncertainties allow")

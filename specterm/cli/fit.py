@@ -36,7 +36,7 @@ def fit(arguments: argparse.Namespace, source: Source) -> Answer:
     vary = dict(pair for part in arguments.vary for pair in part)
     with Progress() as progress:
         solver = Solver(
-            source.folder, overrides(arguments.overrides), arguments.count, arguments.near, arguments.tol, None
+            source.folder, overrides(arguments.overrides), arguments.count, arguments.near, arguments.tol, None, progress.tell
         )
         progress.tell("fitting")
         if not arguments.assign and not all(line.assigned for line in observed.lines):

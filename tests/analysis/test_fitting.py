@@ -9,7 +9,7 @@ import pytest
 from specterm.analysis.fit_levels import Solver
 from specterm.analysis.fitting import fit, fitted_text, propose
 from specterm.analysis.observed import End, Observation, Observed, read_observed
-from specterm.errors import PhysicsError, SheetError
+from specterm.errors import PhysicsError, SheetError, WorkStopped
 from specterm.language import parse
 from specterm.language.edits import plain_numbers
 from specterm.model import build
@@ -126,6 +126,36 @@ def test_open_lines_are_matched_to_the_nearest():
     found = fit(near, lines(pairs, assigned=False), {"D0": ANY, "a": ANY}, Solver(count=5))
     assert [one.value for one in found.parameters] == pytest.approx([40, 0.9], rel=1e-8)
     assert len(found.matches) == 4
+
+
+def test_what_the_lines_do_not_tell_ends_early():
+    """A number that changes on and on for nothing ends the fit: told at the first step, not converged, each step bounded."""
+    text = "H = p^2/2 + w^2*x^2/2 + 1/c; w = 1; c = 1.5; x in (-inf, inf)"
+    some = Observed(tuple(Observation(v + 2, None, End(v), v - 2.5, 0.01) for v in range(4)), weighted=True)
+    told = []
+    found = fit(text, some, {"c": ANY}, Solver(progress=told.append))
+    assert not found.converged
+    assert found.steps < 30
+    assert any("`c` changes on and on" in note for note in found.notes)
+    assert any(note.startswith("not converged") for note in found.notes)
+    assert any(words.startswith("step 3: chi-square") for words in told)
+
+
+def test_numbers_that_start_at_nothing_or_far_off():
+    """Bounded steps still reach numbers that start at 0, whatever its digits, and at a tenth of what they are."""
+    text = "H = p^2/2 + w^2*x^2/2 + c; w = 0.1; c = 0.000; x in (-inf, inf)"
+    some = Observed(tuple(Observation(v + 2, None, End(v), v + 5.5, 0.01) for v in range(3)), weighted=True)
+    found = fit(text, some, {"w": ANY, "c": ANY}, Solver())
+    assert found.converged
+    assert [one.value for one in found.parameters] == pytest.approx([1, 5], rel=1e-8)
+
+
+def test_a_fit_is_stopped():
+    """`should_stop` ends a fit in the middle of its steps."""
+    told = []
+    with pytest.raises(WorkStopped):
+        fit(START, levels(), FREE, Solver(should_stop=lambda: len(told) >= 2, progress=told.append))
+    assert len(told) == 2
 
 
 def test_no_transition_left():
