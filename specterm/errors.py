@@ -20,7 +20,10 @@ class Span:
 
 
 class SpectermError(Exception):
-    """Something specterm refuses: `message` says what, `mend` how to go on, `span` where in the sheet (or None)."""
+    """Something specterm refuses: `message` says what, `mend` how to go on, `span` where in the sheet (or None).
+
+    `names_file` says that the message itself names the file that is wrong, which is not the sheet.
+    """
 
     exit_status = 2
 
@@ -30,6 +33,7 @@ class SpectermError(Exception):
         self.message = message
         self.mend = mend
         self.span = span
+        self.names_file = False
 
 
 class SheetError(SpectermError, ValueError):
@@ -63,7 +67,7 @@ def describe(error: SpectermError, text: str = "", source: str = "sheet") -> str
     """Return the message with file, line, column, the line itself, a caret under the place, and the mend."""
     lines, message, mend = [], _cut(error.message), _cut(error.mend)
     if error.span is None or not text:
-        lines.append(f"{source}: {message}" if source else message)
+        lines.append(f"{source}: {message}" if source and not error.names_file else message)
     else:
         row, column = position(text, error.span.start)
         lines.append(f"{source}:{row}:{column}: {message}")

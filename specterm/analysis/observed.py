@@ -69,15 +69,21 @@ class Observed:
 def read_observed(model: Model, path: Path) -> Observed:
     """Return the lines in a file: columns `from, to, value` or `level, value`, and perhaps `uncertainty` and `unit`.
 
-    Further columns are plain numbers of the sheet: `J` sets J for both levels of a line, `from.J` and `to.J` for one of them;
-    an empty cell leaves the sheet's own. Empty level numbers are to be assigned. Values are in the sheet's unit of energy
-    unless the column `unit` says otherwise. Raises SheetError for a file or cell that cannot be used.
+    With neither `from, to` nor `level` the values are those of transitions to be assigned. Further columns are plain numbers of
+    the sheet: `J` sets J for both levels of a line, `from.J` and `to.J` for one of them; an empty cell leaves the sheet's own.
+    Empty level numbers are to be assigned. Values are in the sheet's unit of energy unless the column `unit` says otherwise.
+    Raises SheetError for a file or cell that cannot be used.
     """
-    shown = printable(path.name)
     try:
-        table = read_table(path.parent, path.name, _NOWHERE)
+        return _read(model, path)
     except SheetError as error:
-        raise SheetError(error.message, mend=error.mend) from None
+        error.names_file, error.span = True, None
+        raise
+
+
+def _read(model: Model, path: Path) -> Observed:
+    shown = printable(path.name)
+    table = read_table(path.parent, path.name, _NOWHERE)
     _check_columns(model, table, shown)
     if not table.rows:
         raise SheetError(f"{shown} holds no lines", mend="give at least as many as there are parameters to vary")
@@ -96,9 +102,10 @@ def read_observed(model: Model, path: Path) -> Observed:
 
 def _check_columns(model: Model, table: TableText, shown: str) -> None:
     names = table.names
-    if "value" not in names or ("level" in names) == ("to" in names):
+    both = "level" in names and ("to" in names or "from" in names)
+    if "value" not in names or both or ("from" in names and "to" not in names):
         raise SheetError(
-            f"{shown} must have the columns `from, to, value` or `level, value`; it has: {_list(names)}",
+            f"{shown} must have the columns `from, to, value`, `level, value` or `value`; it has: {_list(names)}",
             mend="write the names of the columns into the first line, separated by commas",
         )
     if "to" in names and "from" not in names:
@@ -107,7 +114,7 @@ def _check_columns(model: Model, table: TableText, shown: str) -> None:
         raise SheetError(f"{shown} has two columns of one name: {_list(names)}", mend="rename one of them")
     for name in names:
         bare = name.removeprefix("from.").removeprefix("to.")
-        if name not in _COLUMNS and (bare not in model.plain or (bare != name and "to" not in names)):
+        if name not in _COLUMNS and (bare not in model.plain or (bare != name and "level" in names)):
             near = nearest(bare, (*_COLUMNS, *model.plain))
             raise SheetError(
                 f"{shown}: the column `{printable(name)[:40]}` is neither known nor a plain number of the sheet",
@@ -131,7 +138,7 @@ def _line(model: Model, table: TableText, cells: Mapping[str, str], row: int) ->
     common = _settings(table, cells, "", where)
     line = table.lines[row]
     scaled = None if uncertainty is None else uncertainty * factor
-    if "level" in cells:
+    if "level" in table.names:
         return Observation(line, None, End(_level(cells, "level", where), _sorted(common)), value * factor, scaled)
     ends = [
         End(_level(cells, side, where), _sorted(common | _settings(table, cells, f"{side}.", where))) for side in ("from", "to")
@@ -189,6 +196,6 @@ def _level(cells: Mapping[str, str], name: str, where: str) -> int | None:
     value = _number(cells, name, where)
     if value is None:
         return None
-    if value != int(value) or abs(value) > MOST_LEVEL:
+    if value != int(value) or not 0 <= value <= MOST_LEVEL:
         raise SheetError(f"{where}: `{value:g}` is no number of a level", mend="levels are counted 0, 1, 2, ...")
     return int(value)

@@ -223,6 +223,8 @@ def test_lines_are_read_by_header(tmp_path):
     levels_only = read(tmp_path, "level,value\n0,1.5\n,2.5\n")
     assert levels_only.lines[0] == Observation(2, None, End(0), 1.5, None)
     assert not levels_only.weighted
+    open_lines = read(tmp_path, "value,uncertainty,J\n1.5,0.1,2\n")
+    assert open_lines.lines == (Observation(2, End(None, (("J", 2.0),)), End(None, (("J", 2.0),)), 1.5, 0.1),)
 
 
 @pytest.mark.parametrize(
@@ -242,6 +244,7 @@ def test_lines_are_read_by_header(tmp_path):
         ("from,to,value,uncertainty\n0,1,29,5,0.1\n", "lines.csv, line 2 has 5 cells, but the header has 4"),
         ('from,to,value\n0,1,"29.5\n', "lines.csv, line 2: a quotation mark"),
         ("level,value\n0.5,1\n", "is no number of a level"),
+        ("level,value\n-1,1\n", "line 2: `-1` is no number of a level"),
         ("level,value,uncertainty\n0,1,0\n", "must be above 0"),
         ("level,value,uncertainty\n0,1,0.1\n1,2,\n", "no uncertainty, but other lines"),
         ("level,value,unit\n0,1,nm\n", "no unit of energy"),

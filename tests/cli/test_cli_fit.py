@@ -75,6 +75,23 @@ def test_bad_requests(run, files, words, told):
     assert told in ran.err
 
 
+def test_mistakes_in_the_lines_name_their_file(run, files):
+    """A bad cell is told with the name and the line of the file of lines, not those of the sheet."""
+    (files / "bad.csv").write_text('level,value\n0,"29,5"\n')
+    ran = run("fit", files / "trap.sheet", files / "bad.csv", "--vary", "w")
+    assert ran.status == 2
+    assert ran.err.startswith("bad.csv, line 2: `29,5` in the column `value` is no number")
+
+
+def test_values_alone_are_open_lines(run, files):
+    """A file of values alone is matched to transitions."""
+    (files / "values.csv").write_text("value\n4\n2\n")
+    ran = run("fit", files / "trap.sheet", files / "values.csv", "--vary", "w", "--json")
+    assert ran.status == 1
+    proposed = json.loads(ran.out)["proposed"]
+    assert sorted(one["to"] - one["from"] for one in proposed) == [1, 2]
+
+
 def test_missing_file(run, files):
     """A file of lines that is not there is exit 2."""
     ran = run("fit", files / "trap.sheet", files / "none.csv", "--vary", "w")
