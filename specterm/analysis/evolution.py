@@ -13,6 +13,7 @@ from specterm.analysis.matrix_elements import elements, jets, shared_rule
 from specterm.analysis.moment_errors import moment_errors
 from specterm.analysis.observables import Observable, observable
 from specterm.analysis.prepared import prepare
+from specterm.analysis.unit_names import Scaled
 from specterm.analysis.weights import Weights, project
 from specterm.arrays import Array, Values
 from specterm.errors import PhysicsError
@@ -65,8 +66,8 @@ class Evolution:
 
     `survival` is |<psi(0)|psi(t)>|^2 with bounds on its error; `mean` and `spread` are those of `observable` in the captured
     part, `mean_error` and `spread_error` bound how far those of the whole state are from them, nan where nothing does;
-    `observable_unit` is theirs; `classical` and `revival` are the period 2 pi hbar/|E'| and the revival time 4 pi hbar/|E''|
-    at the mean level number, None where they mean nothing.
+    `observable_unit` is theirs, or that in `shown` after division by the number there; `classical` and `revival` are the
+    period 2 pi hbar/|E'| and the revival time 4 pi hbar/|E''| at the mean level number, None where they mean nothing.
     """
 
     state: str
@@ -83,6 +84,7 @@ class Evolution:
     revival: float | None
     unit: str
     observable_unit: str
+    shown: Scaled
     notes: tuple[str, ...]
 
 
@@ -126,7 +128,7 @@ def evolve(
         notes.append(f"the spread of `{asked.text}` is infinite: the wave bends where it cannot be applied twice")
     return Evolution(
         state, asked.text, at, survival, error, mean, spread, *errors, weights.captured, *revivals(model, weights),
-        model.units.time, asked.unit, tuple(notes),
+        model.units.time, asked.unit, asked.shown, tuple(notes),
     )  # fmt: skip
 
 

@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 
-from specterm.analysis.observables import dimension_of
+from specterm.analysis.unit_names import dimension_of
 from specterm.model import Model
 from specterm.spectrum import Level
 from specterm.units import CHARGE, LENGTH

@@ -9,6 +9,7 @@ import numpy as np
 from specterm.analysis.observables import Jet, Observable, observable, weak
 from specterm.analysis.prepared import slips
 from specterm.analysis.quadrature import POINTS, Rule, resolve
+from specterm.analysis.unit_names import Scaled
 from specterm.arrays import Array, Values
 from specterm.model import Model
 from specterm.spectrum import Spectrum
@@ -29,7 +30,10 @@ UNRESOLVED = 1e-18
 
 @dataclass(frozen=True)
 class MatrixElements:
-    """<a|A|b> for the levels `rows` (a) and `columns` (b): `values` and bounds on their `errors` (a, b), inf where unknown."""
+    """<a|A|b> for the levels `rows` (a) and `columns` (b): `values` and bounds on their `errors` (a, b), inf where unknown.
+
+    They are in `unit`; divided by the number in `shown` they are in the unit there.
+    """
 
     observable: str
     rows: tuple[int, ...]
@@ -37,6 +41,7 @@ class MatrixElements:
     values: Values
     errors: Array
     unit: str
+    shown: Scaled = (1.0, "")
 
 
 def matrix_elements(model: Model, spectrum: Spectrum, text: str) -> MatrixElements:
@@ -52,7 +57,7 @@ def elements(asked: Observable, left: Spectrum, right: Spectrum) -> MatrixElemen
     rows, columns = (tuple(level.index for level in found.levels) for found in (left, right))
     if left.states is None or right.states is None:
         empty = np.zeros((len(rows), len(columns)))
-        return MatrixElements(asked.text, rows, columns, empty.astype(complex), empty, asked.unit)
+        return MatrixElements(asked.text, rows, columns, empty.astype(complex), empty, asked.unit, asked.shown)
     rule = shared_rule(asked, left.states, right.states)
     values = np.zeros((len(rows), len(columns)), dtype=complex)
     sizes, reach = np.zeros(values.shape), [np.zeros(len(rows)), np.zeros(len(columns))]
@@ -71,7 +76,7 @@ def elements(asked: Observable, left: Spectrum, right: Spectrum) -> MatrixElemen
     if unseen > UNRESOLVED:
         errors = errors + np.sqrt(unseen) * (norms[0][:, None] + norms[1] + sizes)
     lost = (off[0][:, None] > LOST) | (off[1] > LOST)
-    return MatrixElements(asked.text, rows, columns, values, np.where(lost, np.inf, errors), asked.unit)
+    return MatrixElements(asked.text, rows, columns, values, np.where(lost, np.inf, errors), asked.unit, asked.shown)
 
 
 def jets(states: States, x: Array, order: int) -> Jet:

@@ -14,7 +14,7 @@ from specterm.analysis.capture import ENOUGH, out_of_reach
 from specterm.analysis.commutator import vanishing
 from specterm.analysis.level_waves import KnownLevels, Sample, amplitudes, fineness, level_wave, sampled
 from specterm.analysis.measured_wave import Wave, turned
-from specterm.analysis.observables import unit_of
+from specterm.analysis.unit_names import unit_of
 from specterm.arrays import Array, Values
 from specterm.errors import PhysicsError
 from specterm.model import Function, Model, Operator

@@ -3,18 +3,16 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
+from specterm.analysis.unit_names import Scaled, shown_unit, unit_of
 from specterm.arrays import Array, Values
-from specterm.errors import PhysicsError, SheetError
-from specterm.language import parse_expression
-from specterm.language.dimensions import check_dimensions, lengthy
+from specterm.errors import PhysicsError
 from specterm.model import Function, Model, Operator
 from specterm.model.regular import regular_part
 from specterm.model.term import linear
-from specterm.units import ENERGY, LENGTH, TIME, Dimension
 
 Jet = Callable[[Array, int], Values]
 """Derivatives of waves: jet(x, k) has shape (n,) for one wave or (waves, n) for many."""
@@ -26,7 +24,8 @@ class Observable:
     """An operator of order 0 to 2 as `text` says it.
 
     `terms`: the weak form, ((j, k), c) for integrals of conj(D^j f) c D^k g; `parts`: c_0 ... c_order with A = sum of c_k D^k
-    between the places where something jumps; `unit`: the name of its unit, empty where that is not known.
+    between the places where something jumps; `unit`: the name of its unit, empty where that is not known;
+    `shown` is what numbers of it are divided by to be shown, and the unit they then have.
     """
 
     text: str
@@ -34,6 +33,7 @@ class Observable:
     terms: tuple[tuple[tuple[int, int], Function], ...]
     parts: tuple[Function, ...]
     unit: str
+    shown: Scaled = (1.0, "")
 
     @property
     def order(self) -> int:
@@ -71,7 +71,7 @@ def observable(model: Model, text: str, *, hermitian: bool = True) -> Observable
     fault = operator.hermitian() if hermitian else None
     if fault is not None:
         raise PhysicsError(f"`{text}` is not an observable: {fault.reason}", mend=fault.mend)
-    return of_operator(operator, text, unit_of(model, text))
+    return replace(of_operator(operator, text, unit_of(model, text)), shown=shown_unit(model, text))
 
 
 def of_operator(operator: Operator, text: str, unit: str = "") -> Observable:
@@ -91,31 +91,6 @@ def of_operator(operator: Operator, text: str, unit: str = "") -> Observable:
     normal = operator.normal
     parts = tuple(regular_part(Function(linear(normal.get(k, ())))) for k in range(order + 1))
     return Observable(text, operator, terms, parts, unit)
-
-
-def unit_of(model: Model, text: str) -> str:
-    """Return the name of an observable's unit where it is an energy, a length, its inverse or a time; "" where not known."""
-    units, plain = model.units, text.strip()
-    if plain == model.main:
-        return units.energy
-    if plain == model.domain.coordinate:
-        return model.coordinate_unit
-    named = {ENERGY: units.energy, LENGTH: units.length, TIME: units.time, LENGTH**-1: f"1/{units.length}"}
-    dimension = dimension_of(model, text)
-    return "" if dimension is None else named.get(dimension, "")
-
-
-def dimension_of(model: Model, text: str) -> Dimension | None:
-    """Return the dimension of an expression over the sheet's names, None where it is not known or there are no units."""
-    if not model.units.energy:
-        return None
-    if text.strip() == model.domain.coordinate and model.coordinate_unit:
-        return LENGTH
-    try:
-        known = lengthy(model.sheet, model.units) if model.coordinate_unit else check_dimensions(model.sheet, model.units)
-        return known.of(parse_expression(text))
-    except SheetError:
-        return None
 
 
 def weak(terms: Sequence[tuple[tuple[int, int], Function]], left: Jet, right: Jet, x: Array, w: Array) -> tuple[Values, Array]:

@@ -11,7 +11,8 @@ from dataclasses import asdict, dataclass
 from functools import lru_cache
 from pathlib import Path
 
-from specterm.analysis.observables import observable, unit_of
+from specterm.analysis.observables import observable
+from specterm.analysis.unit_names import unit_of
 from specterm.errors import SheetError
 from specterm.language import parse
 from specterm.language.edits import plain_numbers

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -13,6 +14,7 @@ from specterm.analysis.lines import Line, made_line
 from specterm.analysis.matrix_elements import MatrixElements, elements
 from specterm.analysis.observables import Observable, observable, of_operator
 from specterm.analysis.prepared import prepare
+from specterm.analysis.unit_names import Scaled
 from specterm.arrays import Array
 from specterm.errors import PhysicsError, SheetError
 from specterm.model import Model
@@ -24,12 +26,21 @@ UNFILLED = 1e-4
 
 @dataclass(frozen=True)
 class Transitions:
-    """Lines by starting level and end; `sums` has the sum of the strengths found for each starting level, None without them."""
+    """Lines by starting level and end; `sums` has the sum of the strengths found for each starting level, None without them.
+
+    Dipoles divided by the number in `shown` are in the unit there; `into` says that the lines end on levels of another sheet.
+    """
 
     dipole: str
     lines: tuple[Line, ...]
     sums: dict[int, float | None]
     notes: tuple[str, ...]
+    shown: Scaled = (1.0, "")
+    into: bool = False
+
+    def between(self, lines: Sequence[Line]) -> list[Line]:
+        """Return those of the lines that lead from one level to another."""
+        return [line for line in lines if self.into or line.start != line.to]
 
 
 def transitions(
@@ -55,7 +66,7 @@ def transitions(
     lines, sums, notes = _lines(model, (spectrum, spectrum), asked, matrix, starts, shares)
     if temperature is not None and shares[-1] > UNFILLED:
         notes = (*notes, f"{shares[-1]:.2g} of the population would sit in the highest level computed: ask for more with -n")
-    return Transitions(text, lines, sums, notes)
+    return Transitions(text, lines, sums, notes, asked.shown)
 
 
 def _lines(
@@ -114,7 +125,7 @@ def sum_rule_scale(model: Model, spectrum: Spectrum, asked: Observable, start: i
     d, H = asked.operator, model.operator
     double = simplified(d.commutator(H.commutator(d)))
     if not double.words:
-        return None, 0.0, [f"no strengths: `{asked.text}` commutes with what it does to `{model.main}`"]
+        return None, 0.0, [f"no strengths: [d,[{model.main},d]], which scales them, is 0 for the dipole d = `{asked.text}`"]
     try:
         found = expect(
             model,
@@ -154,4 +165,5 @@ def into_other(
     asked = observable(model, text)
     _refuse_missing(spectrum, starts)
     matrix = elements(asked, found, spectrum)
-    return Transitions(text, *_lines(model, (spectrum, found), asked, matrix, starts, np.ones(len(spectrum.levels))))
+    made = _lines(model, (spectrum, found), asked, matrix, starts, np.ones(len(spectrum.levels)))
+    return Transitions(text, *made, asked.shown, into=True)

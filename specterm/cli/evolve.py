@@ -77,11 +77,12 @@ def _text(arguments: argparse.Namespace, model: Model, found: Evolution, density
     scale, time_unit = scale_of(found.unit)
     unit = f" ({time_unit})" if time_unit else ""
     times, survival = (scale * found.times).tolist(), found.survival.tolist()
+    own = f" ({found.shown[1]})" if found.shown[1] else ""
     sizes = np.abs(found.mean) + np.where(np.isfinite(found.spread), found.spread, 0.0)
     pairs = ((found.mean, found.mean_error), (found.spread, found.spread_error))
-    moments = [known(values.tolist(), errors.tolist(), float(sizes.max())) for values, errors in pairs]
+    by = found.shown[0]
+    moments = [known((values / by).tolist(), (errors / by).tolist(), float(sizes.max()) / by) for values, errors in pairs]
     columns = (bare(times, 8), sure(survival, found.survival_error.tolist()), *moments)
-    own = f" ({found.observable_unit})" if found.observable_unit else ""
     headings = (f"time{unit}", "survival", f"<{found.observable}>{own}", f"spread{own}")
     repeats = [
         f"{name} {with_unit(short(scale * value), time_unit)}"

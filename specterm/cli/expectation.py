@@ -57,12 +57,12 @@ def _matrix_text(arguments: argparse.Namespace, found: MatrixElements) -> str:
     from specterm.views.element_table import element_table  # noqa: PLC0415
     from specterm.views.heat_map import heat_map  # noqa: PLC0415
 
-    unit = f" ({found.unit})" if found.unit else ""
+    scale, unit = found.shown
     glyphs = glyphs_of(arguments.glyphs)
     return "\n".join(
         [
-            f"<a|{found.observable}|b>{unit}",
-            element_table(found.values, found.errors, found.rows, found.columns),
+            f"<a|{found.observable}|b>" + (f" ({unit})" if unit else ""),
+            element_table(found.values / scale, found.errors / scale, found.rows, found.columns),
             "",
             plain(heat_map(abs(found.values), found.rows, found.columns, arguments.width, glyphs=glyphs)),
         ]

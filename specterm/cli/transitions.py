@@ -63,9 +63,9 @@ def _text(arguments: argparse.Namespace, model: Model, found: Transitions, lines
     from specterm.views.line_table import line_table  # noqa: PLC0415
     from specterm.views.numbers import short  # noqa: PLC0415
 
-    shown = [line for line in lines if line.start != line.to or arguments.into is not None]
+    shown = found.between(lines)
     units = model.units
-    parts = [f"dipole {found.dipole} on {expression_of(model)}", line_table(shown, units.energy, units.length)]
+    parts = [f"dipole {found.dipole} on {expression_of(model)}", line_table(shown, units.energy, units.length, found.shown)]
     for start, total in found.sums.items():
         if total is not None:
             parts.append(f"sum of the strengths from level {start}, over the levels found: {short(total, 10)}")

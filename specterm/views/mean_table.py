@@ -3,18 +3,15 @@
 from __future__ import annotations
 
 from specterm.analysis.expectation import Expectation
-from specterm.analysis.observables import dimension_of
 from specterm.analysis.uncertainty import Pair
+from specterm.analysis.unit_names import dimension_of, named, shown_unit
 from specterm.model import Model
-from specterm.units import ACTION, LENGTH
 from specterm.views.numbers import bracket, short, with_unit
 
 
 def shown_in(model: Model, found: Expectation) -> tuple[float, str]:
     """Return what a number is divided by to be shown, and the unit: a momentum is shown in hbar over the unit of length."""
-    if dimension_of(model, found.observable) == ACTION / LENGTH and model.coordinate_unit:
-        return model.hbar, f"hbar/{model.coordinate_unit}"
-    return 1.0, found.unit
+    return shown_unit(model, found.observable)
 
 
 def mean_texts(model: Model, found: Expectation) -> tuple[str, str, str]:
@@ -34,20 +31,13 @@ def mean_line(model: Model, found: Expectation) -> str:
 def pair_lines(model: Model, pair: Pair) -> list[str]:
     """Return the product of two spreads beside its lower bound, in the units the spreads are shown in, and the commutator."""
     (first, left), (second, right) = shown_in(model, pair.first), shown_in(model, pair.second)
-    scale, unit = first * second, _product(left, right)
+    kinds = [dimension_of(model, one.observable) for one in (pair.first, pair.second)]
+    scale, unit = first * second, " ".join(name for name in (left, right) if name)
+    if kinds[0] is not None and kinds[1] is not None:
+        scale, unit = named(model, kinds[0] * kinds[1])
     bound = bracket(pair.bound / scale, None if pair.bound_error is None else pair.bound_error / scale)
     verdict = "vanishes: they commute" if pair.commutes else f"= {pair.commutator}"
     return [
         f"product of the spreads {with_unit(short(pair.product / scale, 10), unit)}   not below |<[A,B]>|/2 = {bound}",
         f"[{pair.first.observable},{pair.second.observable}] {verdict}",
     ]
-
-
-def _product(left: str, right: str) -> str:
-    """Return the unit of a product; a momentum times a length is shown in hbar."""
-    for one, other in ((left, right), (right, left)):
-        if one and other == f"hbar/{one}":
-            return "hbar"
-        if one and other == f"1/{one}":
-            return ""
-    return " ".join(unit for unit in (left, right) if unit)

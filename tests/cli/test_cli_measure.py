@@ -141,3 +141,23 @@ def test_means_that_are_not_known(run):
     text = run("evolve", "-e", FEW, "s", "--times", "0,5", "-n", "3").out
     assert [line.split()[-2:] for line in text.splitlines()[2:4]] == [["-", "-"], ["-", "-"]]
     assert "mean of the captured part" in run("weights", "-e", FEW, "s").out
+
+
+def test_no_line_from_a_level_to_itself(run):
+    """JSON and CSV hold the lines between different levels; why there are no strengths is said by the commutator."""
+    found = data(run, "transitions", "-e", TRAP, "-n", "4")
+    assert [(line["from"], line["to"]) for line in found["transitions"]] == [(0, 1), (0, 2), (0, 3)]
+    ran = run("transitions", "-e", TRAP, "-n", "4", "--dipole", "1", "--csv")
+    assert all(line.split(",")[:2] == ["0", str(to)] for to, line in enumerate(ran.out.splitlines()[1:], 1))
+    assert "[d,[H,d]], which scales them, is 0" in ran.err
+
+
+def test_units_of_elements_and_means(run):
+    """Means, matrix elements, dipoles and evolutions name their unit; momenta are in hbar over the length."""
+    sheet = "units: energy meV, length nm, mass m_e; H = p^2/(2*m); x in (0, 10); m = 0.1; T = p^2/(2*m); F = 2 [kV/cm]"
+    assert "meV" in run("expectation", "-e", sheet, "T").out
+    assert "meV/(nm e)" in run("expectation", "-e", sheet, "F").out
+    assert "hbar" in run("expectation", "-e", sheet, "(x*p + p*x)/2").out
+    assert "<a|p|b> (hbar/nm)" in run("expectation", "-e", sheet, "p", "--matrix", "-n", "3").out
+    assert "dipole (nm)" in run("transitions", "-e", sheet, "-n", "3").out
+    assert "<x> (nm)" in run("evolve", "-e", sheet + "; state s = level(0) + level(1)", "s", "--times", "0,1").out

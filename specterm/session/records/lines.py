@@ -15,10 +15,15 @@ _KEYS = (
 
 
 def lines_record(found: Transitions, lines: Sequence[Line]) -> Record:
-    """Return the `lines` chosen as data; `sum_rule` is that of the only starting level, null where there are several."""
+    """Return the `lines` chosen as data, those from a level to itself left out.
+
+    `sum_rule` is that of the only starting level, null where there are several.
+    """
+    lines = found.between(lines)
     sums = list(found.sums.values())
     data = {
         "dipole": found.dipole,
+        "dipole_unit": found.shown[1] if found.shown[0] == 1 else "",
         "transitions": [
             {"from": line.start, "to": line.to, **{key: getattr(line, key) for key in _KEYS}, "weight": abs(line.dipole) ** 2}
             for line in lines

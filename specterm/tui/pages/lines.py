@@ -61,7 +61,7 @@ def _rows(found: Transitions, room: Room) -> Rows:
     rows: list[Row] = [fit_row(((" " + _title(found, room), "title"),), room.width)]
     for note in found.notes[:2]:
         rows += [fit_row(((" " + line, "warn"),), room.width) for line in textwrap.wrap(note, max(10, room.width - 2))]
-    headings, cells = line_columns(shown, units.energy, units.length)
+    headings, cells = line_columns(shown, units.energy, units.length, found.shown)
     high = max(0, min(16, room.height - 2 - min(len(cells) + 1, room.height // 2)))
     seen = [line for line in shown if choices.temperature is None or line.energy > 0]
     sticks = [Stick(line.energy, line.intensity, f"{line.start}-{line.to}") for line in seen]

@@ -108,9 +108,9 @@ def _rows(found: CourseFound, room: Room) -> Rows:
 
 
 def _sure(e: Evolution, values: Array, errors: Array, place: int) -> str:
-    """Return a value with its unit and the digits that are sure, `-` where none is."""
+    """Return a value with the digits that are sure, `-` where none is."""
     scale = float(np.max(np.abs(e.mean) + np.where(np.isfinite(e.spread), e.spread, 0.0)))
-    return with_unit(known([float(values[place])], [float(errors[place])], scale)[0], e.observable_unit)
+    return known([float(values[place])], [float(errors[place])], scale)[0]
 
 
 def _words(found: CourseFound, place: int, width: int) -> list[tuple[str, str]]:
