@@ -25,6 +25,8 @@ LOST = 1e-6
 """Probability that no outcome covers: told, and drawn as a result of its own, from here on; below it is left to rounding."""
 ROUGH_LEVELS = 128
 """Levels taken at least where a state was cut sharply before."""
+ROUGHLY = 1e-5
+"""A value chosen is that of an outcome if it agrees with it to this share: nobody types all the digits."""
 BEYOND = -1
 """The place of a result beyond what was computed, in a branch."""
 Branch = tuple[int, ...]
@@ -210,7 +212,7 @@ def measure(course: Course, state: str, seed: int, chosen: Sequence[float | None
         if place is None:
             break
         branch = (*branch, place)
-    return Record(state, tuple(steps), seed, tuple(_notes(course, steps)), tuple(meter.text for meter in course.meters))
+    return Record(state, tuple(steps), seed, tuple(_notes(course, steps, chosen)), tuple(meter.text for meter in course.meters))
 
 
 def nearest_place(outcomes: Sequence[Outcome], value: float) -> int:
@@ -237,14 +239,27 @@ def uncovered(outcomes: Sequence[Outcome]) -> float:
     return max(0.0, 1.0 - math.fsum(outcome.probability for outcome in outcomes))
 
 
-def _notes(course: Course, steps: Sequence[Step]) -> list[str]:
-    """Return what the outcomes do not cover, and which levels are not what they seem."""
+def _held(outcome: Outcome, meter: Meter, value: float) -> bool:
+    """Say whether an outcome is the one meant by a value: in its bin, or at its levels but for digits left out or errors."""
+    slack = ROUGHLY * max(abs(outcome.low), abs(outcome.high)) if math.isfinite(outcome.low + outcome.high) else 0.0
+    if isinstance(meter, LevelMeter):
+        errors = [level.error or 0.0 for level in meter.spectrum.levels if level.index in outcome.levels]
+        slack = max([slack, *errors])
+    return outcome.low - slack <= value <= outcome.high + slack
+
+
+def _notes(course: Course, steps: Sequence[Step], chosen: Sequence[float | None]) -> list[str]:
+    """Return what the outcomes do not cover, which levels are not what they seem, and which choices were not to be had."""
     notes = []
     for number, (step, meter) in enumerate(zip(steps, course.meters, strict=False), start=1):
         if step.rest > LOST:
             notes.append(f"{step.rest:.3g} of the probability of `{step.observable}` lies beyond what was computed")
         if isinstance(meter, LevelMeter) and any(level.kind == "box" for level in meter.spectrum.levels):
             notes.append(f"outcomes of `{step.observable}` include box levels: only their sum over a range means something")
+        wanted = chosen[number - 1] if number <= len(chosen) else None
+        if wanted is not None and step.drawn is not None and not _held(step.outcomes[step.drawn], meter, wanted):
+            nearest = f"{step.outcomes[step.drawn].value:.10g}"
+            notes.append(f"no outcome of `{step.observable}` is {wanted:.10g}: the nearest one, {nearest}, was taken")
         if step.beyond:
             ends = f"the result of measurement {number} lies beyond what was computed"
             notes.append(f"{ends}: what follows cannot be told" if number < len(course.meters) else ends)

@@ -94,7 +94,8 @@ class LevelMeter:
             values = [level.value for level in levels]
             share = float(shares[list(group)].sum())
             if share > SMALLEST:
-                middle = float(np.mean(values))
+                error = max(level.error or 0.0 for level in levels)
+                middle = float(np.mean(values)) if max(map(abs, values)) > error else 0.0
                 found.append(Outcome(middle, share, min(values), max(values), tuple(level.index for level in levels)))
         return found
 

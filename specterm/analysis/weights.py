@@ -8,6 +8,7 @@ from pathlib import Path
 
 import numpy as np
 
+from specterm.analysis.near_levels import LOST, mixing_with_others, near_rows
 from specterm.analysis.prepared import Prepared, prepare, slips
 from specterm.arrays import Array, Values
 from specterm.model import Model
@@ -63,6 +64,8 @@ def project(model: Model, spectrum: Spectrum, name: str, folder: Path | None = N
     errors = _errors(spectrum, prepared, amplitudes)
     values = np.array([level.value for level in spectrum.levels])
     shares = np.abs(amplitudes) ** 2
+    groups = _groups(spectrum)
+    errors = _covered(spectrum, groups, shares, errors)
     weights = tuple(
         Weight(level.index, level.value, float(share), float(error), complex(amplitude))
         for level, share, error, amplitude in zip(spectrum.levels, shares, errors, amplitudes, strict=True)
@@ -70,7 +73,8 @@ def project(model: Model, spectrum: Spectrum, name: str, folder: Path | None = N
     captured = float(shares.sum())
     mean = float((shares * values).sum() / captured) if captured > 0 else float("nan")
     spread = float(np.sqrt(max(0.0, (shares * (values - mean) ** 2).sum() / captured))) if captured > 0 else float("nan")
-    return Weights(name, weights, captured, mean, spread, _notes(spectrum, prepared, shares), prepared.wave)
+    told = (*_notes(spectrum, prepared, shares), *_together(groups, spectrum, shares))
+    return Weights(name, weights, captured, mean, spread, told, prepared.wave)
 
 
 def _amplitudes(states: States, count: int, prepared: Prepared) -> Values:
@@ -89,6 +93,39 @@ def _errors(spectrum: Spectrum, prepared: Prepared, amplitudes: Values) -> Array
     slip = slips(spectrum) + prepared.slip + np.sqrt(max(prepared.missed, 0.0)) + ROUNDING
     errors: Array = 2 * size * slip + slip**2
     return errors
+
+
+def _groups(spectrum: Spectrum) -> list[list[int]]:
+    """Return the rows of levels too near to be told apart, groups of two and more of which some state may be a mixture."""
+    mixed = [level.index for level, off in zip(spectrum.levels, slips(spectrum), strict=True) if off > LOST]
+    groups = {tuple(near_rows(spectrum, index)) for index in mixed}
+    return sorted(list(group) for group in groups if len(group) > 1)
+
+
+def _covered(spectrum: Spectrum, groups: list[list[int]], shares: Array, errors: Array) -> Array:
+    """Return the errors with those of levels that may be mixed covering every mixture: each may hold nothing, or all of them.
+
+    What the group holds together is sure but for what it may share with levels outside it.
+    """
+    found = errors.copy()
+    for group in groups:
+        off = mixing_with_others(spectrum, group) + ROUNDING
+        whole = float(shares[group].sum())
+        room = 2 * np.sqrt(whole) * off + off**2 + float(np.sqrt(len(group))) * ROUNDING
+        found[group] = np.minimum(np.maximum(shares[group], whole - shares[group]) + room, 1.0)
+    return found
+
+
+def _together(groups: list[list[int]], spectrum: Spectrum, shares: Array) -> list[str]:
+    """Return what to say of levels whose weights mean something only together."""
+    notes = []
+    for group in groups:
+        if shares[group].sum() > TOLD:
+            first, last = spectrum.levels[group[0]].index, spectrum.levels[group[-1]].index
+            named = f"{first} and {last}" if len(group) == 2 else f"{first} to {last}"
+            total = f"the sum of their weights, {shares[group].sum():.6g}"
+            notes.append(f"levels {named} are too near to be told apart: only {total}, means something")
+    return notes
 
 
 def _notes(spectrum: Spectrum, prepared: Prepared, shares: Array) -> tuple[str, ...]:

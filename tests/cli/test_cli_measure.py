@@ -161,3 +161,31 @@ def test_units_of_elements_and_means(run):
     assert "<a|p|b> (hbar/nm)" in run("expectation", "-e", sheet, "p", "--matrix", "-n", "3").out
     assert "dipole (nm)" in run("transitions", "-e", sheet, "-n", "3").out
     assert "<x> (nm)" in run("evolve", "-e", sheet + "; state s = level(0) + level(1)", "s", "--times", "0,1").out
+
+
+RING = "H = p^2/2; x in ring(0, 2*pi); state s = exp(i*x) + 0.2*exp(-i*x)"
+
+
+def test_a_choice_that_is_not_to_be_had_is_told(run):
+    """A value that is no outcome is replaced by the nearest one, and the note says so; one typed to six digits is not."""
+    words = ("measure", "-e", TRAP, "s", "H")
+    assert "no outcome of `H` is 7.7: the nearest one, 7.5" in run(*words, "--choose", "7.7").err
+    assert "the nearest one" not in run(*words, "--choose", "7.500001").err
+    assert "the nearest one" not in run("measure", "-e", WALLS, "s", "x", "--choose", "0.512").err
+
+
+def test_a_level_within_its_error_of_nothing_is_0(run):
+    """The lowest level of a free ring is 0 (closed form), and the outcome does not print the rounding."""
+    found = data(run, "measure", "-e", RING + "; state flat = exp(cos(x))", "flat", "H", "--choose", "0")
+    assert found["steps"][0]["outcomes"][0]["value"] == 0
+
+
+def test_weights_of_levels_that_cannot_be_told_apart(run):
+    """A pair of equal levels on a ring holds the whole state: errors let each of the two hold all of it, and a note says so."""
+    ran = run("weights", "-e", RING, "s", "-n", "7", "--json")
+    found = {weight["index"]: weight for weight in json.loads(ran.out)["weights"]}
+    for one, other in ((1, 2), (2, 1)):
+        assert found[one]["weight"] + found[one]["error"] >= 1 - 1e-9
+        assert found[one]["weight"] - found[one]["error"] <= 1e-9
+        assert found[one]["weight"] + found[other]["weight"] == pytest.approx(1, abs=1e-12)
+    assert "levels 1 and 2 are too near to be told apart" in ran.err
