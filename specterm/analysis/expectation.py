@@ -8,11 +8,13 @@ from pathlib import Path
 
 import numpy as np
 
+from specterm.analysis.commutator import vanishing
 from specterm.analysis.near_levels import LOST, mixing_with_others, near_rows, ranges
-from specterm.analysis.observables import Observable, observable, weak
+from specterm.analysis.observables import HIGHEST, Observable, observable, weak
 from specterm.analysis.prepared import Prepared, prepare
 from specterm.analysis.quadrature import POINTS, Rule
 from specterm.analysis.regularity import natural_size, rule_for, tiny_share, why_infinite
+from specterm.analysis.unit_names import unit_of
 from specterm.arrays import Values
 from specterm.errors import PhysicsError
 from specterm.model import Model
@@ -56,12 +58,31 @@ def expectation(
 ) -> Expectation:
     """Return mean and spread of the observable `text`, a name or an expression, in a state or in `level(n)`.
 
+    Of an operator above order two its own levels are known all the same.
+
     Raises SheetError for what is not known; PhysicsError where the observable is not Hermitian, of an order above two, or has
     no finite mean in the state. The mean is the weak form (momenta act on either side); the spread is ||(A - mean) psi||, so
     nothing cancels. Checked against closed forms for wells, oscillators and hydrogen.
     """
+    own = _own_level(model, spectrum, text, state)
+    if own is not None:
+        return own
     asked = observable(model, text)
     return expected(model, spectrum, asked, prepare(model, spectrum, state, folder))
+
+
+def _own_level(model: Model, spectrum: Spectrum, text: str, state: str) -> Expectation | None:
+    """Return the level itself where an operator of an order above two, the one diagonalised, is asked for in its level.
+
+    None elsewhere, and for box levels, which are no eigenstates of the operator as written.
+    """
+    index = re.fullmatch(r"\s*level\(\s*(-?\d+)\s*\)\s*", state)
+    if index is None or model.operator.order <= HIGHEST or state in model.states:
+        return None
+    level = next((one for one in spectrum.levels if one.index == int(index[1])), None)
+    if level is None or level.kind == "box" or not vanishing(model.observable(text) - model.operator):
+        return None
+    return Expectation(text, state.strip(), level.value, 0.0, level.error, 0.0, unit_of(model, text), ())
 
 
 def expected(model: Model, spectrum: Spectrum, asked: Observable, wave: Prepared) -> Expectation:

@@ -238,3 +238,11 @@ def test_values_too_large_to_be_squared_are_refused(observable):
     """What cannot be squared in double precision is told, not returned as infinity."""
     with pytest.raises(PhysicsError, match="too large"):
         in_state(WALLS, observable, "level(0)")
+
+
+def test_operator_of_order_four_in_its_own_level():
+    """An operator above order two has its own level for a mean, with the level's error, and no spread."""
+    text = "H = p^4 + x^4; x in (-inf, inf)"
+    levels = spectrum(text, 3)
+    found = expectation(model(text), levels, "H", "level(2)")
+    assert (found.mean, found.error, found.spread) == (levels.levels[2].value, levels.levels[2].error, 0.0)
