@@ -12,6 +12,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
+from specterm.analysis.mirror import parities
 from specterm.analysis.overlap import overlaps
 from specterm.analysis.sweep_dips import Dip
 from specterm.analysis.sweep_request import model_at
@@ -34,7 +35,8 @@ WIDTHS = 30.0
 class Gap:
     """A smallest gap of the levels of two numbers, `at` a value of the parameter, with the errors of both.
 
-    `crossing`: the gap is zero as far as can be told, and the states change places there.
+    `crossing`: the gap is zero as far as can be told, the states change places there, and a symmetry tells them apart. None
+    where only the symmetry is missing: it may as well be avoided, by less than can be resolved.
     """
 
     pair: tuple[int, int]
@@ -42,7 +44,7 @@ class Gap:
     gap: float
     at_error: float
     gap_error: float
-    crossing: bool
+    crossing: bool | None
     note: str = ""
 
 
@@ -172,18 +174,41 @@ def _judged(dip: Dip, search: _Search, place: _Place) -> Gap:
     if model.operator.order == 2 and not model.domain.is_ring:
         note = f"levels {pair[0]} and {pair[1]} come closer than can be told, but levels of this operator never cross"
         return Gap(pair, place.at, gap, place.error, error, crossing=False, note=note)
-    if any(dip.touching) or _swapped(dip, search, place):
+    if _told_apart(dip, search, place, model):
         return Gap(pair, place.at, gap, place.error, error, crossing=True)
+    if any(dip.touching) or _swapped(dip, search, place):
+        note = f"levels {pair[0]} and {pair[1]} come closer than can be told: they cross, or nearly so"
+        return Gap(pair, place.at, gap, place.error, error, crossing=None, note=note)
     note = f"levels {pair[0]} and {pair[1]} touch, and their states do not change places"
     return Gap(pair, place.at, gap, place.error, error, crossing=False, note=note)
 
 
-def _swapped(dip: Dip, search: _Search, place: _Place) -> bool:
-    """Say whether the states of the pair have changed places from one side of the gap to the other."""
+def _told_apart(dip: Dip, search: _Search, place: _Place, model: Model) -> bool:
+    """Say whether symmetry keeps the pair apart: coefficients constant around a ring, or parities that change places."""
+    if model.domain.is_ring and all(function.constant is not None for _, function in model.operator.form().terms):
+        return True
+    if any(dip.touching):
+        return False
+    found = []
+    for value in _sides(dip, search, place):
+        levels = search.spectrum(value)
+        rows = [k for k, level in enumerate(levels.levels) if level.index in (dip.lower, dip.lower + 1)]
+        found.append(parities(search.model(value), levels, rows))
+    left, right = found
+    return left is not None and right is not None and left[0] != left[1] and left == right[::-1]
+
+
+def _sides(dip: Dip, search: _Search, place: _Place) -> tuple[float, float]:
+    """Return values on both sides of a gap where the states are no longer mixed."""
     room = REACH * min(place.at - dip.left, dip.right - place.at)
     width = search.blur / place.slope if place.slope > 0 else 0.0
     step = min(room, max(place.half, WIDTHS * (width + place.error)))
-    sides = [search.spectrum(place.at - step), search.spectrum(place.at + step)]
+    return place.at - step, place.at + step
+
+
+def _swapped(dip: Dip, search: _Search, place: _Place) -> bool:
+    """Say whether the states of the pair have changed places from one side of the gap to the other."""
+    sides = [search.spectrum(value) for value in _sides(dip, search, place)]
     rows = [[k for k, level in enumerate(one.levels) if level.index in (dip.lower, dip.lower + 1)] for one in sides]
     shares = overlaps(*sides)[np.ix_(*rows)]
     return bool(shares.shape == (2, 2) and shares[0, 1] + shares[1, 0] > shares[0, 0] + shares[1, 1])

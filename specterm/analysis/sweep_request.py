@@ -8,6 +8,7 @@ import math
 import re
 from collections.abc import Sequence
 from dataclasses import asdict, dataclass
+from decimal import Decimal, localcontext
 from functools import lru_cache
 from pathlib import Path
 
@@ -21,6 +22,8 @@ from specterm.model import Model, build
 from specterm.regular import read_regular
 
 MOST_POINTS = 1_000_000
+PLACES = 40
+"""Decimal places that values of a range are worked out with."""
 QUANTITIES = ("levels", "transitions", "expectation", "weights", "strengths")
 LARGEST_FILE = 200_000_000
 
@@ -88,23 +91,33 @@ def axis_of(text: str) -> Axis:
     parts = (span[4:] if logarithmic else span).split(":")
     if len(parts) == 1 and not logarithmic:
         return Axis(name, tuple(_number(part, text) for part in parts[0].split(",")))
-    if len(parts) != 3 or not re.fullmatch(r"\s*\d{1,7}\s*", parts[2]):
+    if len(parts) != 3 or not re.fullmatch(r"\s*\d+\s*", parts[2], re.ASCII):
         raise _unreadable(text)
-    first, last, count = _number(parts[0], text), _number(parts[1], text), int(parts[2])
-    if not 1 <= count <= MOST_POINTS:
-        raise SheetError(f"{text}: a sweep has 1 to {MOST_POINTS} points", mend="choose a smaller count")
+    first, last, wanted = _number(parts[0], text), _number(parts[1], text), parts[2].strip().lstrip("0") or "0"
+    if len(wanted) > len(str(MOST_POINTS)) or int(wanted) > MOST_POINTS:
+        raise SheetError(f"{text}: too many points (at most {MOST_POINTS})", mend="choose a smaller count")
+    count = int(wanted)
+    if count < 1:
+        raise SheetError(f"{text}: a sweep has at least one point", mend="choose a larger count")
     return Axis(name, _logarithmic(first, last, count, text) if logarithmic else _linear(first, last, count))
 
 
 def _linear(first: float, last: float, count: int) -> tuple[float, ...]:
-    inner = tuple(first + (last - first) * (k / (count - 1)) for k in range(1, count - 1))
+    """Return evenly spaced values, worked out in decimal: those that a person would write."""
+    with localcontext(prec=PLACES):
+        low, width = Decimal(repr(first)), Decimal(repr(last)) - Decimal(repr(first))
+        inner = tuple(float(low + width * k / (count - 1)) for k in range(1, count - 1))
     return (first, *inner, last) if count > 1 else (first,)
 
 
 def _logarithmic(first: float, last: float, count: int, text: str) -> tuple[float, ...]:
+    """Return values spaced by equal factors, worked out in decimal."""
     if not first * last > 0:
         raise SheetError(f"{text}: a logarithmic range needs ends of one sign, neither of them 0", mend="move the end off 0")
-    inner = tuple(first * (last / first) ** (k / (count - 1)) for k in range(1, count - 1))
+    with localcontext(prec=PLACES):
+        low = Decimal(repr(first))
+        ratio = (Decimal(repr(last)) / low).ln()
+        inner = tuple(float(low * (ratio * k / (count - 1)).exp()) for k in range(1, count - 1))
     return (first, *inner, last) if count > 1 else (first,)
 
 
@@ -161,7 +174,7 @@ def model_at(request: SweepRequest, place: Sequence[float]) -> Model:
 
 
 def refuse_bad(request: SweepRequest) -> Model:
-    """Return the model at the first point; SheetError where the request does not fit the sheet."""
+    """Return the model at the first point that has one; SheetError where the request does not fit the sheet."""
     if not 1 <= len(request.axes) <= 2 or not all(axis.values for axis in request.axes):
         raise SheetError("a sweep runs over one parameter, or over two for a map", mend="give one or two ranges")
     names = [axis.name for axis in request.axes]
@@ -176,7 +189,7 @@ def refuse_bad(request: SweepRequest) -> Model:
     strange = [name for name in names if name in written.operators or name in written.functions]
     if strange:
         raise SheetError(f"`{strange[0]}` is no parameter", mend=f"parameters: {', '.join(written.parameters) or 'none'}")
-    model = model_at(request, request.place(0))
+    model = _first_model(request, written)
     quantity = request.quantity
     if quantity.kind == "expectation" or (quantity.kind == "strengths" and quantity.detail):
         observable(model, quantity.detail)
@@ -185,6 +198,20 @@ def refuse_bad(request: SweepRequest) -> Model:
             f"the sheet has no state `{quantity.detail}`", mend=f"states of the sheet: {', '.join(model.states) or 'none'}"
         )
     return model
+
+
+def _first_model(request: SweepRequest, written: Model) -> Model:
+    """Return the model at the first point where the sheet is one; the error of the first point where none is."""
+    refused: SheetError | None = None
+    for index in range(request.size):
+        try:
+            return model_at(request, request.place(index))
+        except SheetError as error:
+            refused = refused or error
+            if not all(axis.name in written.parameters for axis in request.axes):
+                break
+    assert refused is not None
+    raise refused
 
 
 def quantity_unit(model: Model, quantity: Quantity) -> str:

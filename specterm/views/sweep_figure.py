@@ -13,6 +13,7 @@ from specterm.views.plain_table import sure, text_columns
 from specterm.views.plot import Curve, Label
 
 WORDS = {"levels": "levels", "transitions": "transition energies", "strengths": "strengths"}
+WHAT = {True: "crossing", False: "avoided", None: "not resolved"}
 LABELS = {"expectation": "<{}>", "weights": "weights of {}"}
 
 
@@ -50,8 +51,14 @@ def sweep_rows(
             labels.append(Label(place, float(found.along(chosen, found.quantity)[cursor]), "o", "chosen"))
     return chart(
         curves, width, height, glyphs=glyphs, title=title_of(found), xlabel=_axis_name(found, 0, logarithmic=logarithmic),
-        labels=[label for label in labels if np.isfinite(label.y)],
+        xlim=_around(float(x[0])) if x[0] == x[-1] else None, labels=[label for label in labels if np.isfinite(label.y)],
     )  # fmt: skip
+
+
+def _around(value: float) -> tuple[float, float]:
+    """Return limits of an axis with one value on it."""
+    half = abs(value) / 2 or 1.0
+    return value - half, value + half
 
 
 def branch_of(found: Sweep, level: int | None) -> int | None:
@@ -119,7 +126,7 @@ def gap_table(found: Sweep) -> str:
             [f"{gap.pair[0]}-{gap.pair[1]}" for gap in found.gaps],
             sure([gap.at for gap in found.gaps], [gap.at_error for gap in found.gaps]),
             [bracket(gap.gap, gap.gap_error) for gap in found.gaps],
-            ["crossing" if gap.crossing else "avoided" for gap in found.gaps],
+            [WHAT[gap.crossing] for gap in found.gaps],
             strict=True,
         )
     )
@@ -128,8 +135,8 @@ def gap_table(found: Sweep) -> str:
 
 
 def ends_table(found: Sweep) -> str:
-    """Return the quantity of each level at the first and at the last point as a table."""
-    ends = [0, len(found.places) - 1]
+    """Return the quantity of each level at the first and at the last point (once where they are one) as a table."""
+    ends = list(dict.fromkeys((0, len(found.places) - 1)))
     headings = ["level"] + [
         ", ".join(f"{axis.name} = {short(value)}" for axis, value in zip(found.request.axes, found.places[end], strict=True))
         for end in ends

@@ -78,6 +78,21 @@ def test_ranges(text, values):
     assert (axis.values[0], axis.values[-1]) == (values[0], values[-1])
 
 
+def test_ranges_have_the_values_a_person_would_write():
+    """No rounding shows in the values of a range: each is the double nearest to the decimal."""
+    assert axis_of("a=-200:200:41").values == tuple(float(v) for v in range(-200, 201, 10))
+    assert axis_of("a=0:1:11").values == (0.0, 0.1, 0.2, 0.3, 0.4, 0.5, 0.6, 0.7, 0.8, 0.9, 1.0)
+    assert axis_of("a=log:1e-3:1e3:7").values == (1e-3, 1e-2, 1e-1, 1.0, 10.0, 100.0, 1000.0)
+    assert len(axis_of("a=-1e300:1e300:100000").values) == 100000
+
+
+@pytest.mark.parametrize("count", ["1000001", "9999999999", "9" * 5000])
+def test_too_many_points(count):
+    """A count above the limit is told as such, however long it is."""
+    with pytest.raises(SheetError, match="too many points"):
+        axis_of(f"a=1:2:{count}")
+
+
 @pytest.mark.parametrize("text", ["a", "a=", "=1:2:3", "a=1:2", "a=1:2:3:4", "a=1:2:0", "a=1:2:9999999", "a=log:0:1:5",
                                   "a=log:-1:1:5", "a=nan", "a=1:inf:3", "a=1,x", "a=1:2:3.5", "a=log:1,2"])  # fmt: skip
 def test_ranges_that_cannot_be_read(text):
@@ -111,6 +126,19 @@ def test_points_without_levels():
     assert any("bounded below" in note for note in found.notes)
     with pytest.raises(PhysicsError, match="bounded below"):
         sweep(request(sheet, "a=-3:-1:3", count=2))
+
+
+def test_points_that_are_no_sheets():
+    """A value that makes no sheet is a gap, at the first point and later; where none does, the first refusal is the answer."""
+    sheet = "H = p^2 + x; gap = 1; x in (0, gap)"
+    found = sweep(request(sheet, "gap=-2:2:5", count=2))
+    assert np.isnan(found.levels[:3]).all()
+    assert np.isfinite(found.levels[3:]).all()
+    assert any(note.startswith("3 points have no levels") for note in found.notes)
+    found = sweep(request(sheet, "gap=2:-2:5", count=2))
+    assert np.isnan(found.levels[2:]).all()
+    with pytest.raises(SheetError):
+        sweep(request(sheet, "gap=-2:-1:3", count=2))
 
 
 def test_branches_go_through_crossings_between_points_and_on_them():

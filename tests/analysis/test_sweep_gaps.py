@@ -94,6 +94,27 @@ def test_gaps_beyond_double_precision_are_no_crossings():
     assert any("never cross" in note for note in found.notes)
 
 
+def test_narrow_gaps_on_a_ring_are_not_resolved():
+    """A cosine opens every crossing at phase 1/2; the gap of levels 6 and 7 is lost in rounding, and is called neither."""
+    found = sweep(request("H = p^2 + 0.1*cos(x); phi = 0; x in ring(0, 2*pi), phase phi", "phi=0.4:0.63:4", count=8))
+    told = {gap.pair: gap.crossing for gap in found.gaps}
+    assert told == {(0, 1): False, (2, 3): False, (4, 5): False, (6, 7): None}
+    assert any("cross, or nearly so" in note for note in found.notes)
+
+
+def test_parity_tells_true_crossings():
+    """Even and odd levels of cos(x) and cos(2x) on a ring cross at b = -1/2 (Whittaker and Hill's equation, from memory)."""
+    text = "H = p^2 + cos(x) + b*cos(2*x){}; b = 0; x in ring(-pi, pi)"
+    found = sweep(request(text.format(""), "b=-0.9:0:4", count=3))
+    (gap,) = found.gaps
+    assert gap.pair == (1, 2)
+    assert gap.at == pytest.approx(-0.5, abs=1e-10)
+    assert gap.crossing is True
+    (broken,) = sweep(request(text.format(" + 1e-3*sin(x)"), "b=-0.9:0:4", count=3)).gaps
+    assert broken.gap > 1e-5
+    assert broken.crossing is False
+
+
 def test_pairs_that_are_degenerate_all_along_have_no_smallest_gap():
     """With threefold symmetry on a ring levels come in pairs at any height: rounding between them is no gap (symmetry)."""
     found = sweep(request("H = p^2 + V3*cos(3*x); V3 = 4; x in ring(0, 2*pi)", "V3=3.6:4.4:9", count=6))

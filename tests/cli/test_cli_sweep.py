@@ -51,12 +51,21 @@ def test_units_are_those_written(run):
 
 
 def test_csv_is_wide(run):
-    """CSV has a row for each point and numbers only, as plotting programs read it; a point without levels has empty cells."""
+    """CSV has a row for each point, numbers first, then the kinds; a point without levels has empty cells."""
     sheet = "H = p^2 + a*x^4; a = 1; x in (-inf, inf)"
     rows = list(csv.DictReader(io.StringIO(run("sweep", "-e", sheet, "a=-1,1,2", "-n", "2", "--csv").out)))
-    assert list(rows[0]) == ["a", "level_0", "error_0", "level_1", "error_1"]
-    assert rows[0] == {"a": "-1.0", "level_0": "", "error_0": "", "level_1": "", "error_1": ""}
+    assert list(rows[0]) == ["a", "level_0", "error_0", "level_1", "error_1", "kind_0", "kind_1"]
+    assert rows[0] == dict.fromkeys(rows[0], "") | {"a": "-1.0"}
+    assert (rows[1]["kind_0"], rows[2]["kind_1"]) == ("bound", "bound")
     assert float(rows[1]["level_0"]) == pytest.approx(1.0603620904841829, rel=1e-10)
+
+
+def test_box_levels_are_told_in_csv(run):
+    """Levels of the continuum have their kind beside them, as in JSON."""
+    words = ("-e", "H = p^2/2 - V*sech(x)^2; V = 1; x in (-inf, inf)", "V=1,2", "-n", "3")
+    rows = list(csv.DictReader(io.StringIO(run("sweep", *words, "--csv").out)))
+    assert [[row[f"kind_{k}"] for k in range(3)] for row in rows] == data(run, *words)["kinds"]
+    assert rows[0]["kind_2"] == "box"
 
 
 @pytest.mark.parametrize(("quantity", "column"), [

@@ -67,6 +67,10 @@ def test_points_not_done_are_gaps_and_one_point_is_a_figure():
     hole = made([0, 1, 2], [[0, 1], [np.nan, np.nan], [0, 1]], [[0, 1], [-1, -1], [0, 1]])
     for found in (hole, made([1], [[1.0, 2.0]]), made([0, 1], np.full((2, 1), np.nan), [[-1], [-1]])):
         assert len(sweep_rows(found, 40, 10, 0)) == 10
+    lone = plain(sweep_rows(made([5], [[1.0]]), 60, 10, 0))
+    assert "10^" not in lone
+    assert "F (kV/cm)" in lone
+    assert ends_table(made([5], [[1.0]])).splitlines()[0].count("=") == 1
 
 
 def test_levels_that_are_not_there():
@@ -93,10 +97,12 @@ def test_map():
 
 def test_tables():
     """Gaps show the digits that are sure; ends show both ends."""
-    gaps = (Gap((0, 1), 1.5, 0.25, 1e-4, 1e-3, False), Gap((1, 2), 2.5, 1e-9, 1e-4, 1e-8, True))
+    lost = Gap((2, 3), 3, 0.0, 1e-9, 4e-14, None)
+    gaps = (Gap((0, 1), 1.5, 0.25, 1e-4, 1e-3, False), Gap((1, 2), 2.5, 1e-9, 1e-4, 1e-8, True), lost)
     table = gap_table(made([0, 1], [[1.0, 2.0]] * 2, gaps=gaps))
     assert "0-1" in table
     assert "avoided" in table
     assert "crossing" in table
+    assert "not resolved" in table
     assert gap_table(CROSSING) == ""
     assert ends_table(CROSSING).splitlines()[0].split("  ")[0] == "level"

@@ -10,8 +10,9 @@ from specterm.session.records.record import Record
 
 
 def sweep_record(found: Sweep) -> Record:
-    """Return a sweep as data; CSV has a row for each point and, for each level, columns for its value and its error.
+    """Return a sweep as data.
 
+    CSV has a row for each point: for each level, columns for its value and its error, and behind all these one for its kind.
     With two parameters `parameter`, `unit` and each of `values` are pairs, the second one running fastest.
     """
     axes, quantity = found.request.axes, found.request.quantity
@@ -56,20 +57,20 @@ def _heading(found: Sweep) -> list[str]:
     if found.request.quantity.kind != "levels":
         for number in found.numbers:
             names += [f"{found.request.quantity.kind}_{number}", f"{found.request.quantity.kind}_error_{number}"]
-    return names
+    return names + [f"kind_{number}" for number in found.numbers]
 
 
-def _rows(found: Sweep) -> Iterator[list[float | None]]:
+def _rows(found: Sweep) -> Iterator[list[float | str | None]]:
     """Yield the cells of each point."""
     tables = [(found.levels, found.errors)]
     if found.request.quantity.kind != "levels":
         tables.append((found.quantity, found.quantity_errors))
     for index, place in enumerate(found.places.tolist()):
-        row: list[float | None] = list(place)
+        row: list[float | str | None] = list(place)
         for values, errors in tables:
             for value, error in zip(values[index].tolist(), errors[index].tolist(), strict=True):
                 row += [_cell(value), _cell(error)]
-        yield row
+        yield row + list(found.kinds[index])
 
 
 def _cell(value: float) -> float | None:
