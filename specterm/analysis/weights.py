@@ -120,7 +120,7 @@ def _together(groups: list[list[int]], spectrum: Spectrum, shares: Array) -> lis
     """Return what to say of levels whose weights mean something only together."""
     notes = []
     for group in groups:
-        if shares[group].sum() > TOLD:
+        if shares[group].sum() > TOLD and spectrum.levels[group[0]].kind != "box":
             first, last = spectrum.levels[group[0]].index, spectrum.levels[group[-1]].index
             named = f"{first} and {last}" if len(group) == 2 else f"{first} to {last}"
             total = f"the sum of their weights, {shares[group].sum():.6g}"
