@@ -14,11 +14,11 @@ from specterm.tui.terminal import give_back, own_stream, settle, take_keyboard, 
 __all__ = ["Options", "run", "usable"]
 
 
-def run(text: str, path: Path | None = None, options: Options | None = None) -> int:
-    """Show a sheet full screen until the user leaves; return the exit status.
+def run(text: str, path: Path | None = None, options: Options | None = None) -> NoReturn:
+    """Show a sheet full screen until the user leaves, and end the process.
 
-    `path` is the sheet's file, or None. Call `usable` first: without a terminal there is nothing to show it on. Where a
-    computation still runs the process ends here and now: an interpreter in order would wait for it, and all is saved.
+    `path` is the sheet's file, or None. Call `usable` first: without a terminal there is nothing to show it on. The process
+    ends here and now, as all is saved by then: an interpreter that tidies up keeps the prompt back for up to half a second.
     """
     settle(os.environ)
     from dataclasses import replace  # noqa: PLC0415 - the environment is settled first
@@ -36,10 +36,7 @@ def run(text: str, path: Path | None = None, options: Options | None = None) -> 
         give_back(stream)
     if app.last_words:
         print(app.last_words, file=sys.stderr)
-    found = app.return_code or status or 0
-    if not app.work.resting:
-        _end(found)
-    return found
+    _end(app.return_code or status or 0)
 
 
 def _end(status: int) -> NoReturn:
