@@ -6,7 +6,10 @@ from pathlib import Path
 import pytest
 
 ROOT = Path(__file__).parent.parent / "specterm"
-ORDER = ["errors", "stopping", "regular", "arrays", "units", "language", "model", "discrete", "spectrum", "analysis", "session", "views"]
+ORDER = [
+    "errors", "stopping", "regular", "arrays", "units", "language", "model", "discrete", "spectrum", "analysis", "session",
+    "views",
+]  # fmt: skip
 """From the bottom up; each may import what stands before it. `arrays` holds names for types of arrays."""
 SHELLS = {"tui", "cli", "__main__"}
 FILES = sorted(ROOT.rglob("*.py"))
