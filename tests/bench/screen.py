@@ -158,7 +158,7 @@ def gaps(bench: Bench) -> None:
             time.sleep(1.0)
             again = time.perf_counter()
             session.key(b"r")
-            session.drain(quiet=1.5, limit=30.0)
+            session.drain(quiet=1.5 if count == "10" else 10.0, limit=30.0)
             ended = time.perf_counter()
             session.close()
             logged = [(what, first, last) for what, first, last in spans(bench.log) if again <= first and last <= ended]
