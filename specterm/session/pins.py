@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
@@ -39,10 +40,13 @@ def pin_from(data: Any) -> Pin:  # noqa: ANN401 - from a file of whatever conten
         text, count = str(data["text"]), data["count"]
         if len(text) > LARGEST:
             raise ValueError("text")
+        near, tolerance = None if data["near"] is None else float(data["near"]), float(data["tolerance"])
+        if not 0 < tolerance < 1 or (near is not None and not math.isfinite(near)):
+            raise ValueError("numbers")
         return Pin(
             printable(str(data["name"]))[:80].replace("\n", " "), text, Path(str(data["folder"])),
             None if count is None else min(max(1, int(count)), 100_000),
-            None if data["near"] is None else float(data["near"]), float(data["tolerance"]),
+            near, tolerance,
         )  # fmt: skip
     except (TypeError, ValueError, KeyError, OverflowError, RecursionError) as error:
         raise SheetError("this is no pin", mend="pin the spectrum again") from error
