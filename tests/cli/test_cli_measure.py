@@ -143,10 +143,10 @@ def test_means_that_are_not_known(run):
     assert "mean of the captured part" in run("weights", "-e", FEW, "s").out
 
 
-def test_no_line_from_a_level_to_itself(run):
-    """JSON and CSV hold the lines between different levels; why there are no strengths is said by the commutator."""
+def test_lines_from_a_level_to_itself(run):
+    """CSV holds the lines between different levels, JSON all; why there are no strengths is said by the commutator."""
     found = data(run, "transitions", "-e", TRAP, "-n", "4")
-    assert [(line["from"], line["to"]) for line in found["transitions"]] == [(0, 1), (0, 2), (0, 3)]
+    assert [(line["from"], line["to"]) for line in found["transitions"]] == [(0, 0), (0, 1), (0, 2), (0, 3)]
     ran = run("transitions", "-e", TRAP, "-n", "4", "--dipole", "1", "--csv")
     assert all(line.split(",")[:2] == ["0", str(to)] for to, line in enumerate(ran.out.splitlines()[1:], 1))
     assert "[d,[H,d]], which scales them, is 0" in ran.err

@@ -15,11 +15,10 @@ _KEYS = (
 
 
 def lines_record(found: Transitions, lines: Sequence[Line]) -> Record:
-    """Return the `lines` chosen as data, those from a level to itself left out.
+    """Return the `lines` chosen as data; the table for CSV leaves out those from a level to itself.
 
     `sum_rule` is that of the only starting level, null where there are several.
     """
-    lines = found.between(lines)
     sums = list(found.sums.values())
     data = {
         "dipole": found.dipole,
@@ -32,7 +31,7 @@ def lines_record(found: Transitions, lines: Sequence[Line]) -> Record:
         "sum_rules": [{"from": start, "sum": total} for start, total in found.sums.items()],
         "notes": list(found.notes),
     }
-    return Record(data, ("from", "to", *_flat_keys()), [(line.start, line.to, *_flat(line)) for line in lines])
+    return Record(data, ("from", "to", *_flat_keys()), [(line.start, line.to, *_flat(line)) for line in found.between(lines)])
 
 
 def _flat_keys() -> tuple[str, ...]:
