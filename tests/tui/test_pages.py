@@ -202,6 +202,28 @@ async def test_levels_that_hold_a_share(size):
         assert weighed.weighing.captured >= 0.99999
 
 
+async def test_x_stops_a_page_and_r_goes_on():
+    """A sweep that runs is stopped with x, says so, and r goes on to its end."""
+    async with well().run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        sheet = "L = 3.0\nH = p^2/2\nx in (0, L)\n"
+        pilot.app.take_text(sheet)
+        pilot.app.take_typed()
+        await settled(pilot)
+        await pressed(pilot, "8", "l", "ctrl+u")
+        await pilot.press(*"L=1:3:400", "enter")
+        await pilot.pause(0.3)
+        await pilot.press("x")
+        await settled(pilot)
+        assert "stopped" in words(pilot)
+        await pilot.press("r")
+        for _ in range(100):
+            await settled(pilot)
+            if pilot.app.painter.complete().fresh:
+                break
+        assert pilot.app.painter.complete().answer.result.done.all()
+
+
 async def test_tables_scroll(size):
     """The keys . and , move the table of the page, and stop at its ends."""
     async with well().run_test(size=size) as pilot:

@@ -9,6 +9,7 @@ from typing import Any, Protocol
 from specterm.errors import SpectermError, WorkStopped
 from specterm.session.notebook import Entry, Notebook
 from specterm.session.records import Record
+from specterm.stopping import stopping
 from specterm.tui.look import Look
 from specterm.tui.solving import Outcome, defect, digest_of
 from specterm.views.cells import Rows
@@ -38,7 +39,8 @@ class Answered:
 def answered(inquiry: Inquiry, outcome: Outcome, should_stop: Stop, tell: Tell) -> Answered | None:
     """Return what came of an inquiry, None when it was stopped; nothing is raised."""
     try:
-        return Answered(inquiry, inquiry.answer(outcome, should_stop, tell))
+        with stopping(should_stop):
+            return Answered(inquiry, inquiry.answer(outcome, should_stop, tell))
     except WorkStopped:
         return None
     except SpectermError as error:
