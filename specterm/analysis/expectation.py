@@ -64,14 +64,14 @@ def expectation(
     no finite mean in the state. The mean is the weak form (momenta act on either side); the spread is ||(A - mean) psi||, so
     nothing cancels. Checked against closed forms for wells, oscillators and hydrogen.
     """
-    own = _own_level(model, spectrum, text, state)
+    own = own_level(model, spectrum, text, state)
     if own is not None:
         return own
     asked = observable(model, text)
     return expected(model, spectrum, asked, prepare(model, spectrum, state, folder))
 
 
-def _own_level(model: Model, spectrum: Spectrum, text: str, state: str) -> Expectation | None:
+def own_level(model: Model, spectrum: Spectrum, text: str, state: str) -> Expectation | None:
     """Return the level itself where an operator of an order above two, the one diagonalised, is asked for in its level.
 
     None elsewhere, and for box levels, which are no eigenstates of the operator as written.

@@ -4,8 +4,9 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from specterm.analysis.expectation import Expectation, expected
-from specterm.analysis.observables import observable
+from specterm.analysis.expectation import Expectation, expected, own_level
+from specterm.analysis.high_order import MOST, high_mean
+from specterm.analysis.observables import HIGHEST, observable
 from specterm.analysis.prepared import prepare
 from specterm.errors import SpectermError
 from specterm.model import Model
@@ -13,7 +14,7 @@ from specterm.spectrum import Spectrum
 
 
 def named_observables(model: Model) -> tuple[str, ...]:
-    """Return the coordinate, the momentum and the names of the sheet that are Hermitian and of order two at most."""
+    """Return the coordinate, the momentum and the names of the sheet that are Hermitian and of an order within reach."""
     own = [name for name in (*model.operators, *model.functions) if name not in (model.domain.coordinate, "p")]
     return tuple(name for name in (model.domain.coordinate, "p", *own) if _usable(model, name))
 
@@ -21,6 +22,9 @@ def named_observables(model: Model) -> tuple[str, ...]:
 def _usable(model: Model, name: str) -> bool:
     """Say whether a name can be measured; a function that is the same everywhere cannot tell anything."""
     try:
+        operator = model.observable(name)
+        if HIGHEST < operator.order <= MOST:
+            return operator.hermitian() is None
         asked = observable(model, name)
     except SpectermError:
         return False
@@ -38,7 +42,12 @@ def expectations(
     found: list[Expectation | SpectermError] = []
     for name in names:
         try:
-            found.append(expected(model, spectrum, observable(model, name), wave))
+            high = model.observable(name).order > HIGHEST
+            found.append(
+                own_level(model, spectrum, name, state) or high_mean(model, name, wave)
+                if high
+                else expected(model, spectrum, observable(model, name), wave)
+            )
         except SpectermError as error:
             found.append(error)
     return tuple(found)

@@ -18,7 +18,7 @@ if TYPE_CHECKING:
 
 def expectation(arguments: argparse.Namespace, source: Source) -> Answer:
     """Answer `expectation`."""
-    from specterm.analysis.expectation import expectation as expected  # noqa: PLC0415 - heavy
+    from specterm.analysis.high_order import mean_of  # noqa: PLC0415 - heavy
     from specterm.analysis.matrix_elements import matrix_elements  # noqa: PLC0415
     from specterm.analysis.uncertainty import pair_of  # noqa: PLC0415
     from specterm.session.records.means import expectation_record, matrix_record  # noqa: PLC0415
@@ -34,7 +34,7 @@ def expectation(arguments: argparse.Namespace, source: Source) -> Answer:
         return answered(
             arguments, matrix_record(matrix), lambda: _matrix_text(arguments, matrix), status_of(spectrum), spectrum.notes
         )
-    found = expected(model, spectrum, text, state, source.folder)
+    found = mean_of(model, spectrum, text, state, source.folder)
     pair = pair_of(model, spectrum, (text, arguments.other), state, source.folder) if arguments.other else None
     notes = (*spectrum.notes, *found.notes, *(pair.notes if pair else ()))
     record = expectation_record(found, pair)

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from math import isnan
+
 from specterm.analysis.expectation import Expectation
 from specterm.analysis.uncertainty import Pair
 from specterm.analysis.unit_names import dimension_of, named, shown_unit
@@ -18,14 +20,16 @@ def mean_texts(model: Model, found: Expectation) -> tuple[str, str, str]:
     """Return mean and spread with the digits that are sure, and their unit."""
     scale, unit = shown_in(model, found)
     mean = bracket(found.mean / scale, None if found.error is None else found.error / scale)
-    spread = bracket(found.spread / scale, None if found.spread_error is None else found.spread_error / scale)
+    known = None if found.spread_error is None else found.spread_error / scale
+    spread = "-" if isnan(found.spread) else bracket(found.spread / scale, known)
     return mean, spread, unit
 
 
 def mean_line(model: Model, found: Expectation) -> str:
     """Return mean and spread of one observable in one line."""
     mean, spread, unit = mean_texts(model, found)
-    return f"<{found.observable}> = {with_unit(mean, unit)}   spread {with_unit(spread, unit)}"
+    wide = spread if spread == "-" else with_unit(spread, unit)
+    return f"<{found.observable}> = {with_unit(mean, unit)}   spread {wide}"
 
 
 def pair_lines(model: Model, pair: Pair) -> list[str]:
