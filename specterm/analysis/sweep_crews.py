@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import importlib
 import multiprocessing
 import os
 import signal
@@ -57,14 +58,14 @@ def cluster(address: str) -> Crew:
 
 def _client(address: str) -> Any:  # noqa: ANN401 - the package is optional and carries no types
     try:
-        from distributed import Client  # noqa: PLC0415 - optional
+        start: Any = importlib.import_module("distributed").Client
     except ImportError:
         raise SheetError(
             "--cluster needs the package distributed", mend="install specterm with its extra: pip install 'specterm[cluster]'"
         ) from None
     where = {"scheduler_file": address} if os.path.isfile(address) else {"address": address}
     try:
-        return Client(timeout=REACHED, set_as_default=False, **where)  # type: ignore[no-untyped-call]
+        return start(timeout=REACHED, set_as_default=False, **where)
     except (OSError, ValueError, TimeoutError) as error:
         raise SheetError(
             f"no scheduler answers at {printable(address)}: {printable(str(error))[:120]}",
