@@ -147,11 +147,21 @@ def _as_text(arguments: argparse.Namespace, source: Source) -> int:
 
     model = answer.model_of(arguments, source)
     spectrum = answer.solved(arguments, model)
-    options = argparse.Namespace(levels=None, state=None, width=100, height=32, view="psi", glyphs=arguments.glyphs)
+    options = argparse.Namespace(levels=None, state=None, width=_columns(), height=32, view="psi", glyphs=arguments.glyphs)
     parts = [verbs.levels_text(model, spectrum), "", verbs.figure_text(options, source, model, spectrum)]
     deliver("\n".join(parts), arguments.output)
     for warning in dict.fromkeys(spectrum.notes):
         _tell(f"note: {warning}")
     if arguments.output is None:
-        _tell("note: no terminal to draw on (or TERM says dumb): levels and figure as text")
+        term = os.environ.get("TERM", "")
+        why = f"TERM={printable(term)[:40]} draws no screen" if sys.stdout.isatty() else "no terminal to draw on"
+        _tell(f"note: {why}: levels and figure as text")
     return 0
+
+
+def _columns() -> int:
+    """Return how wide a figure may be: as the terminal, at most 100 columns."""
+    try:
+        return max(40, min(100, os.get_terminal_size(1).columns - 1))
+    except (OSError, ValueError):
+        return 100

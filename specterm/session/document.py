@@ -85,6 +85,16 @@ def checked(text: str, source: str) -> str:
     return text
 
 
+def overwritten(document: Document) -> bool:
+    """Say whether the document's file holds a text that is neither the one last read or written here nor the present one."""
+    if document.path is None or not document.path.exists():
+        return False
+    try:
+        return read_text(document.path) not in (document.saved, document.text)
+    except SheetError:
+        return True
+
+
 def save(document: Document, path: Path | None = None) -> Document:
     """Write the text to `path` (or to its own file) and return the document as saved.
 

@@ -10,7 +10,7 @@ from typing import TYPE_CHECKING, Any
 
 from specterm.errors import SheetError, SpectermError, printable
 from specterm.session import presets
-from specterm.session.document import Document, load, save, shown, write_bytes, write_text
+from specterm.session.document import Document, load, overwritten, save, shown, write_bytes, write_text
 from specterm.session.place import folder as state_folder
 from specterm.session.records.files import exported
 from specterm.tui.dialogs import Chooser, Entry, Question
@@ -46,7 +46,20 @@ class Files:
         if self.app.document.path is None:
             self.save_as(then)
             return
-        self._write(self.app.document.path, then)
+        path = self.app.document.path
+        if not overwritten(self.app.document):
+            self._write(path, then)
+            return
+        answers = {"w": "write over it", "a": "save under another name", "n": "go back"}
+
+        def answered(letter: str | None) -> None:
+            if letter == "w":
+                self._write(path, then)
+            elif letter == "a":
+                self.save_as(then)
+
+        words = f"{shown(path)} has been changed by somebody else since it was opened or saved here."
+        self.app.ask(Question(words, answers), answered)
 
     def save_as(self, then: Callable[[], None] | None = None) -> None:
         """Ask for a name and write the document under it; an existing file of another name is asked about."""

@@ -102,6 +102,11 @@ class Keeping:
         )
 
     @property
+    def failing(self) -> bool:
+        """Whether the session cannot be written at the moment."""
+        return self._failed
+
+    @property
     def settled(self) -> bool:
         """Whether all that has changed is on the disk."""
         return not self._due and self._last == self.session() and not self._writing.locked()

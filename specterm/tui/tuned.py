@@ -60,15 +60,15 @@ class Tuned(Booked):
         self.say("")
 
     def tuned_words(self) -> str:
-        """Return what number is picked, its value and its step, "" where none is."""
-        name = self.shown.look.parameter
+        """Return what number is picked, its value and its step, "" where none is; first of all, that nothing can be kept."""
+        name, warning = self.shown.look.parameter, "NOT KEPT for a crash  " if self.keeping.failing else ""
         place = self._numbers().get(name) if name is not None else None
         if place is None:
-            return ""
+            return warning.rstrip()
         from specterm.language.edits import step_of  # noqa: PLC0415 - it is loaded by now
 
         step = step_of(place.text).scaleb(self.shown.look.fineness).normalize()
-        return f"{name} = {_written(place)}, step {step:f}"
+        return f"{warning}{name} = {_written(place)}, step {step:f}"
 
     def action_nudge(self, direction: int) -> None:
         """Change the number picked by one step, in its place in the sheet."""

@@ -51,7 +51,7 @@ def line_spectrum(
 ) -> Rows:  # fmt: skip
     """Return the spectrum in `height` rows of `width` columns; no rows where there is nothing to draw."""
     seen = [stick for stick in sticks if stick.intensity > 0]
-    if not seen:
+    if not seen or width <= 0 or height <= 0:
         return ()
     wide = broadening or default_width(seen)
     places = np.array([stick.energy for stick in seen])

@@ -224,6 +224,16 @@ async def test_x_stops_a_page_and_r_goes_on():
         assert pilot.app.painter.complete().answer.result.done.all()
 
 
+@pytest.mark.parametrize("shape", [(80, 20), (60, 12), (41, 10)])
+async def test_every_page_on_a_small_screen(shape):
+    """No page fails for want of room."""
+    async with well().run_test(size=shape) as pilot:
+        await settled(pilot)
+        for key in "12345678K":
+            await pressed(pilot, key)
+            assert "cannot be drawn" not in words(pilot), (key, words(pilot))
+
+
 async def test_tables_scroll(size):
     """The keys . and , move the table of the page, and stop at its ends."""
     async with well().run_test(size=size) as pilot:

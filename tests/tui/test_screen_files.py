@@ -141,6 +141,34 @@ async def test_leaving_at_once_when_saved(key):
     assert pilot.app.return_value == 0
 
 
+async def test_a_file_changed_by_somebody_else_is_asked_about(sheet):
+    """Where the file holds a text that this session has not seen, saving asks first; n leaves it, w writes over it."""
+    async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        sheet.write_text("# theirs\n" + SHEET)
+        await pressed(pilot, "e", "#", "tab", "w")
+        assert "by somebody else" in "\n".join(lines(pilot))
+        await pressed(pilot, "n")
+        assert sheet.read_text() == "# theirs\n" + SHEET
+        await pressed(pilot, "w", "w")
+        assert sheet.read_text() == "#" + SHEET
+
+
+async def test_a_session_that_cannot_be_kept_says_so_all_the_time(sheet, tmp_path, monkeypatch):
+    """Where the state folder cannot be written the screen says so for as long as it is so."""
+    (tmp_path / "file").write_text("")
+    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "file"))
+    async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
+        await settled(pilot)
+        await pressed(pilot, "e", "#", "tab")
+        for _ in range(100):
+            if pilot.app.keeping.failing:
+                break
+            await pilot.pause(0.02)
+        await pressed(pilot, "up", "down")
+        assert "NOT KEPT for a crash" in "\n".join(lines(pilot))
+
+
 async def test_leaving_asks_when_unsaved(sheet):
     """With unsaved text q asks: n goes back, w saves and leaves."""
     async with app(SHEET, sheet).run_test(size=(80, 24)) as pilot:
