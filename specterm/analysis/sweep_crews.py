@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import importlib
 import multiprocessing
 import os
 import signal
@@ -58,11 +57,12 @@ def cluster(address: str) -> Crew:
 
 def _client(address: str) -> Any:  # noqa: ANN401 - the package is optional and carries no types
     try:
-        start: Any = importlib.import_module("distributed").Client
+        from distributed import Client  # noqa: PLC0415 - optional
     except ImportError:
         raise SheetError(
             "--cluster needs the package distributed", mend="install specterm with its extra: pip install 'specterm[cluster]'"
         ) from None
+    start: Any = Client
     where = {"scheduler_file": address} if os.path.isfile(address) else {"address": address}
     try:
         return start(timeout=REACHED, set_as_default=False, **where)
