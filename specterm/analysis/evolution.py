@@ -24,6 +24,9 @@ from specterm.spectrum.result import States
 TRUSTED = 1 - 1e-6
 """A captured share below this is told, and below `NEEDED` refused."""
 NEEDED = 0.5
+NEARLY_ALL = 1 - 1e-9
+"""The share of a state that levels are computed for where nobody says how many, and how many there are at most."""
+MOST_LEVELS = 300
 MISMATCH = 1e-6
 """Where the mean taken on the wave differs from that of the matrix by this share, the wave bends and the spread is infinite."""
 BLURRED = 1e-3
@@ -207,6 +210,14 @@ def revivals(model: Model, weights: Weights) -> tuple[float | None, float | None
         2 * math.pi * model.hbar / abs(slope) if slope else None,
         4 * math.pi * model.hbar / abs(bend) if abs(bend) > flat else None,
     )
+
+
+def places_of(packet: Packet, times: Array, ends: tuple[float, float], count: int, *, finer: int, least: float) -> Array:
+    """Return `count` places where |psi|^2 rises above `least` of its largest, looked for on `finer` times as many."""
+    wide = np.linspace(*ends, finer * count)
+    size = (np.abs(packet.wave(wide, times)) ** 2).max(axis=0)
+    alive = wide[size > least * size.max()]
+    return np.linspace(alive[0], alive[-1], count)
 
 
 def usual_times(model: Model, weights: Weights) -> tuple[float, float, int]:

@@ -7,8 +7,8 @@ from pathlib import Path
 
 import numpy as np
 
-from specterm.analysis.expectation import Expectation, expectation, own_level
-from specterm.analysis.observables import HIGHEST, weak
+from specterm.analysis.expectation import Expectation, expected, own_level
+from specterm.analysis.observables import HIGHEST, observable, weak
 from specterm.analysis.prepared import Prepared, prepare
 from specterm.analysis.quadrature import resolve
 from specterm.analysis.unit_names import unit_of
@@ -26,13 +26,18 @@ UNTOLD = "above order two no error is known, and no spread: it needs derivatives
 def mean_of(
     model: Model, spectrum: Spectrum, text: str, state: str = "level(0)", folder: Path | None = None
 ) -> Expectation:
-    """Return mean and spread of an observable of any order that is within reach: `expectation` up to two, `high_mean` above.
+    """Return what `expectation` does for an observable up to order two, and `high_mean` above.
 
     Raises SheetError and PhysicsError as they do.
     """
+    return mean_in(model, spectrum, text, prepare(model, spectrum, state, folder))
+
+
+def mean_in(model: Model, spectrum: Spectrum, text: str, wave: Prepared) -> Expectation:
+    """Return what `mean_of` does, in a state made ready."""
     if model.observable(text).order <= HIGHEST:
-        return expectation(model, spectrum, text, state, folder)
-    return own_level(model, spectrum, text, state) or high_mean(model, text, prepare(model, spectrum, state, folder))
+        return expected(model, spectrum, observable(model, text), wave)
+    return own_level(model, spectrum, text, wave.name) or high_mean(model, text, wave)
 
 
 def high_mean(model: Model, text: str, wave: Prepared) -> Expectation:

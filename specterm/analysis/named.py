@@ -4,8 +4,8 @@ from __future__ import annotations
 
 from pathlib import Path
 
-from specterm.analysis.expectation import Expectation, expected, own_level
-from specterm.analysis.high_order import MOST, high_mean
+from specterm.analysis.expectation import Expectation
+from specterm.analysis.high_order import MOST, mean_in
 from specterm.analysis.observables import HIGHEST, observable
 from specterm.analysis.prepared import prepare
 from specterm.errors import SpectermError
@@ -42,12 +42,7 @@ def expectations(
     found: list[Expectation | SpectermError] = []
     for name in names:
         try:
-            high = model.observable(name).order > HIGHEST
-            found.append(
-                own_level(model, spectrum, name, state) or high_mean(model, name, wave)
-                if high
-                else expected(model, spectrum, observable(model, name), wave)
-            )
+            found.append(mean_in(model, spectrum, name, wave))
         except SpectermError as error:
             found.append(error)
     return tuple(found)

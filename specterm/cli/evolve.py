@@ -17,9 +17,6 @@ if TYPE_CHECKING:
     from specterm.arrays import Array
     from specterm.spectrum import Spectrum
 
-WANTED = 1 - 1e-9
-"""The share of the state that is held when nobody says how many levels to take."""
-MOST_LEVELS = 300
 PLACES = 201
 
 
@@ -41,13 +38,14 @@ def evolve(arguments: argparse.Namespace, source: Source) -> Answer:
 def _levels(arguments: argparse.Namespace, source: Source, model: Model) -> Spectrum:
     """Return the levels asked for, or as many as hold nearly all of the state."""
     from specterm.analysis.capture import captured_by  # noqa: PLC0415 - heavy
+    from specterm.analysis.evolution import MOST_LEVELS, NEARLY_ALL  # noqa: PLC0415
 
     least = least_for(model, arguments.state)
     if arguments.count is not None or arguments.near is not None:
         return enough(arguments, model, least)
     with Progress() as progress:
         spectrum, _ = captured_by(
-            model, arguments.state, WANTED, source.folder, tolerance=arguments.tol, least=least or 1, most=MOST_LEVELS,
+            model, arguments.state, NEARLY_ALL, source.folder, tolerance=arguments.tol, least=least or 1, most=MOST_LEVELS,
             progress=progress.tell,
         )  # fmt: skip
     return spectrum
@@ -56,39 +54,29 @@ def _levels(arguments: argparse.Namespace, source: Source, model: Model) -> Spec
 def _density(arguments: argparse.Namespace, source: Source, model: Model, spectrum: Spectrum) -> tuple[Array, Array]:
     """Return places (n,) that hold the packet, and |psi|^2 at the times (times, n)."""
     from specterm.analysis import project  # noqa: PLC0415 - heavy
-    from specterm.analysis.evolution import packet_of  # noqa: PLC0415
+    from specterm.analysis.evolution import packet_of, places_of  # noqa: PLC0415
 
     packet = packet_of(model, spectrum, project(model, spectrum, arguments.state, source.folder))
-    wide = np.linspace(spectrum.left, spectrum.right, 20 * PLACES)
     times = np.asarray(arguments.times, dtype=float)
-    size = (np.abs(packet.wave(wide, times)) ** 2).max(axis=0)
-    alive = wide[size > 1e-6 * size.max()]
-    x = np.linspace(alive[0], alive[-1], PLACES)
+    x = places_of(packet, times, (spectrum.left, spectrum.right), PLACES, finer=20, least=1e-6)
     return x, np.abs(packet.wave(x, times)) ** 2
 
 
 def _text(arguments: argparse.Namespace, model: Model, found: Evolution, density: tuple[Array, Array] | None) -> str:
     """Return a table over the times, what repeats, and the curves."""
     from specterm.views.cells import plain  # noqa: PLC0415 - only text needs the views
-    from specterm.views.numbers import scale_of, short, with_unit  # noqa: PLC0415
-    from specterm.views.plain_table import bare, known, sure, text_columns  # noqa: PLC0415
+    from specterm.views.numbers import scale_of, short  # noqa: PLC0415
+    from specterm.views.plain_table import bare, sure, text_columns  # noqa: PLC0415
     from specterm.views.time_curve import density_curve, mean_curve, survival_curve  # noqa: PLC0415
+    from specterm.views.time_table import moment_texts, repeat_texts  # noqa: PLC0415
 
     scale, time_unit = scale_of(found.unit)
     unit = f" ({time_unit})" if time_unit else ""
     times, survival = (scale * found.times).tolist(), found.survival.tolist()
-    own = f" ({found.shown[1]})" if found.shown[1] else ""
-    sizes = np.abs(found.mean) + np.where(np.isfinite(found.spread), found.spread, 0.0)
-    pairs = ((found.mean, found.mean_error), (found.spread, found.spread_error))
-    by = found.shown[0]
-    moments = [known((values / by).tolist(), (errors / by).tolist(), float(sizes.max()) / by) for values, errors in pairs]
-    columns = (bare(times, 8), sure(survival, found.survival_error.tolist()), *moments)
+    mean, spread, name = moment_texts(found)
+    own = f" ({name})" if name else ""
+    columns = (bare(times, 8), sure(survival, found.survival_error.tolist()), mean, spread)
     headings = (f"time{unit}", "survival", f"<{found.observable}>{own}", f"spread{own}")
-    repeats = [
-        f"{name} {with_unit(short(scale * value), time_unit)}"
-        for name, value in (("period", found.classical), ("revival", found.revival))
-        if value is not None
-    ]
     size = (arguments.width, arguments.height)
     glyphs = glyphs_of(arguments.glyphs)
     figures = [
@@ -101,7 +89,7 @@ def _text(arguments: argparse.Namespace, model: Model, found: Evolution, density
         [
             f"{found.state} on {expression_of(model)}",
             text_columns(headings, list(zip(*columns, strict=True))),
-            "   ".join([f"captured {short(found.captured, 10)}", *repeats]),
+            "   ".join([f"captured {short(found.captured, 10)}", *repeat_texts(found)]),
             *(plain(rows) for rows in figures if rows),
         ]
     )

@@ -25,7 +25,7 @@ LARGEST_PAST = 1_000_000
 class Saved:
     """A session: the document, earlier texts from the oldest on, pins, notebook, what the screen showed as plain data.
 
-    `closed` says that it was left in order; `folder` is where relative paths in the sheet start.
+    `folder` is where relative paths in the sheet start.
     """
 
     document: Document
@@ -36,7 +36,6 @@ class Saved:
     view: dict[str, Any] = field(default_factory=dict)
     near: float | None = None
     tolerance: float = 1e-8
-    closed: bool = False
 
     @property
     def worth_keeping(self) -> bool:
@@ -60,7 +59,6 @@ def text_of(saved: Saved) -> str:
         "view": saved.view,
         "near": saved.near,
         "tolerance": saved.tolerance,
-        "closed": saved.closed,
     }
     return json.dumps(data, ensure_ascii=True, allow_nan=False)
 
@@ -94,9 +92,7 @@ def saved_from(text: str) -> Saved:
             raise ValueError("tolerance")
         view = data["view"] if isinstance(data["view"], dict) else {}
         notebook = notebook_from(data["notebook"])
-        return Saved(
-            document, Path(str(data["folder"])), past, pins, notebook, view, near, tolerance, data["closed"] is True
-        )
+        return Saved(document, Path(str(data["folder"])), past, pins, notebook, view, near, tolerance)
     except (TypeError, ValueError, KeyError, OverflowError, RecursionError, AttributeError) as error:
         raise SheetError("this is no session of specterm", mend="it cannot be taken up again") from error
 

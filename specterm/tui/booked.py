@@ -11,6 +11,7 @@ from specterm.session.notebook import Entry as Line
 from specterm.session.notebook import Notebook
 from specterm.tui.dialogs import Chooser, Entry
 from specterm.tui.paged import Paged, number
+from specterm.tui.pages.page import prepared_in
 from specterm.tui.solving import digest_of
 from specterm.views.numbers import scale_of
 
@@ -47,16 +48,22 @@ class Booked(Paged):
 
     def _note(self, *lines: Line) -> None:
         """Write lines into the notebook; a preparation comes first where there is none for this sheet."""
-        book, outcome = self.bench.notebook, self.shown.outcome
+        book, outcome = self._seeded(), self.shown.outcome
         assert outcome is not None
-        if not book.entries and book.seed == 0:
-            book = replace(book, seed=secrets.randbelow(10**6))
         if not self.bench.chain(outcome) and lines[0].kind != "prepared":
-            state = self.shown.look.state or next(iter(outcome.states), None) or "level(0)"
+            state = prepared_in(self.shown.look, outcome) or "level(0)"
             book = book.noted(self._prepared(state))
         for line in lines:
             book = book.noted(line)
         self._keep(book)
+
+    def _seeded(self) -> Notebook:
+        """Return the notebook, with a seed of its own from the first entry on unless one was set."""
+        book = self.bench.notebook
+        if not book.entries and book.seed == 0:
+            book = replace(book, seed=secrets.randbelow(10**6))
+            self.bench = replace(self.bench, notebook=book)
+        return book
 
     def _prepared(self, state: str) -> Line:
         outcome = self.shown.outcome
@@ -77,10 +84,8 @@ class Booked(Paged):
             return
         from specterm.analysis.once import drawn  # noqa: PLC0415 - heavy
 
-        book = self.bench.notebook
-        if not book.entries and book.seed == 0:
-            self.bench = replace(self.bench, notebook=replace(book, seed=secrets.randbelow(10**6)))
-        draw = np.random.default_rng([self.bench.notebook.seed, len(self.bench.notebook.entries)]).random()
+        book = self._seeded()
+        draw = np.random.default_rng([book.seed, len(book.entries)]).random()
         self._measured(drawn(found.step, float(draw)), chosen=False)
 
     def _measured(self, step: Any, *, chosen: bool) -> None:  # noqa: ANN401 - a step

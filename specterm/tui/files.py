@@ -72,13 +72,17 @@ class Files:
                 self.app.say("not saved", "warn")
                 return
             target = Path(os.path.expanduser(answer))
-            if target != path and target.exists():
-                question = Question(f"{shown(target)} exists. Replace it?", {"y": "replace it", "n": "keep it"})
-                self.app.ask(question, lambda letter: self._write(target, then) if letter == "y" else None)
-            else:
-                self._write(target, then)
+            self._confirmed(target, lambda: self._write(target, then), known=target == path)
 
         self.app.ask(Chooser("Save the sheet as", (), free=True, text=start), named)
+
+    def _confirmed(self, target: Path, go_on: Callable[[], None], *, known: bool = False) -> None:
+        """Go on at once where nothing is at `target`, or what is there is `known`; else ask first."""
+        if known or not target.exists():
+            go_on()
+            return
+        question = Question(f"{shown(target)} exists. Replace it?", {"y": "replace it", "n": "keep it"})
+        self.app.ask(question, lambda letter: go_on() if letter == "y" else None)
 
     def _write(self, path: Path, then: Callable[[], None] | None) -> None:
         """Write the document and say so."""
@@ -188,11 +192,7 @@ class Files:
             if not answer:
                 return
             target = Path(os.path.expanduser(answer))
-            if target.exists():
-                question = Question(f"{shown(target)} exists. Replace it?", {"y": "replace it", "n": "keep it"})
-                self.app.ask(question, lambda letter: self._export(target, make) if letter == "y" else None)
-            else:
-                self._export(target, make)
+            self._confirmed(target, lambda: self._export(target, make))
 
         self.app.ask(Chooser("Export to the file (.csv, .json or, for states, .npz)", (), free=True, text=start), named)
 
@@ -210,7 +210,7 @@ class Files:
 
         def go() -> None:
             self.app.work.stop()
-            self.app.keeping.close(keep_text=False)
+            self.app.keeping.close()
             self.app.exit(0)
 
         self._guarded(go)

@@ -78,18 +78,14 @@ class Keeping:
         with self._writing:
             return self.store.keep(self.session())
 
-    def close(self, *, keep_text: bool) -> None:
-        """End in order: pins, notebook and view lie ready for the next session, unsaved text only where it is wanted."""
+    def close(self) -> None:
+        """End in order: pins, notebook and view lie ready for the next session; unsaved text was saved or is not wanted."""
         saved = self.session()
-        document = saved.document
-        if not keep_text and document.changed:
-            saved = replace(saved, document=replace(document, text=document.saved or ""), past=())
+        if saved.document.changed:
+            saved = replace(saved, document=replace(saved.document, text=saved.document.saved or ""), past=())
         with self._writing:
-            if saved.pins or saved.notebook.entries or saved.document.changed:
-                self.store.keep(replace(saved, closed=not saved.document.changed))
-                self.store.leave()
-            else:
-                self.store.drop()
+            self.store.keep(saved)
+            self.store.leave()
         tidy()
 
     def session(self) -> Saved:

@@ -2,12 +2,11 @@
 
 from __future__ import annotations
 
-from functools import lru_cache
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from specterm.errors import SpectermError
+from specterm.tui.numbers_of import numbers_of
 from specterm.tui.pages.page import Answered, Inquiry
 from specterm.tui.pages.slopes import Slopes
 from specterm.tui.pinned import Moved
@@ -16,7 +15,6 @@ from specterm.views.level_table import Extra, aligned
 from specterm.views.numbers import bracket, short
 
 if TYPE_CHECKING:
-    from specterm.language.edits import NumberPlace
     from specterm.tui.rows import Shown
 
 
@@ -55,17 +53,6 @@ def estimate_of(shown: Shown, outcome: Outcome, text: str, answer: Answered | No
     values = first_order(levels, answer.result.slopes, name, now.value - then.value)
     texts = ["-" if np.isnan(value) else f"~{short(float(value), 7)}" for value in values]
     return Extra("to 1st order", aligned(texts))
-
-
-@lru_cache(maxsize=8)
-def numbers_of(text: str) -> dict[str, NumberPlace]:
-    """Return the plain numbers of a text, none where it cannot be read; kept, as every redraw asks."""
-    from specterm.language.edits import plain_numbers  # noqa: PLC0415 - heavy
-
-    try:
-        return plain_numbers(text)
-    except SpectermError:
-        return {}
 
 
 def column_of(shown: Shown, outcome: Outcome, answer: Answered | None) -> Extra | None:

@@ -9,11 +9,11 @@ from typing import TYPE_CHECKING
 from specterm.session.pins import MOST, Pin, renamed, unused_name
 from specterm.tui.booked import Booked
 from specterm.tui.dialogs import Chooser, Entry, Question
+from specterm.tui.numbers_of import numbers_of
 from specterm.tui.pages.sweep import There
 from specterm.tui.pinned import Pinned
 from specterm.tui.rows import Shown
 from specterm.tui.solving import Outcome, Request
-from specterm.tui.table_columns import numbers_of
 from specterm.tui.work import PinSolved
 from specterm.views.numbers import short, with_unit
 

@@ -262,5 +262,4 @@ class Work:
             self._wanted.discard(key)
             if found is None:
                 self._asked.discard((outcome.request.number, key))
-                self._tell(Looked(outcome.request.number, key, None))
         self._tell(Looked(outcome.request.number, key, found))

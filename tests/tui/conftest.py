@@ -27,3 +27,9 @@ def pytest_pyfunc_call(pyfuncitem):
     names = pyfuncitem._fixtureinfo.argnames
     asyncio.run(pyfuncitem.obj(**{name: pyfuncitem.funcargs[name] for name in names}))
     return True
+
+
+@pytest.fixture(params=[(80, 24), (120, 40)], ids=["80x24", "120x40"])
+def size(request):
+    """Return the size of the screen."""
+    return request.param

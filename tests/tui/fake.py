@@ -103,3 +103,20 @@ def lines(pilot):
     height = pilot.app.size.height
     strips = pilot.app.screen._compositor.render_strips()
     return ["".join(segment.text for segment in strip).rstrip() for strip in strips][:height]
+
+
+async def pressed(pilot, *keys):
+    """Press keys and wait until all they started is done."""
+    await pilot.press(*keys)
+    await settled(pilot)
+
+
+async def typed(pilot, text):
+    """Type text into a dialog and take it."""
+    await pilot.press(*text, "enter")
+    await settled(pilot)
+
+
+def words(pilot):
+    """Return the screen as one text."""
+    return "\n".join(lines(pilot))

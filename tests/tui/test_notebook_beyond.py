@@ -3,30 +3,13 @@
 import math
 
 import pytest
-from fake import lines, settled
+from fake import pressed, settled, typed, words
 
 from specterm.tui.app import make_app
 from specterm.tui.options import Options
 
 FEW = "d = 3\nH = p^2/2 - d*exp(-x^2/2)\nx in (-inf, inf)\nstate s = exp(-(x - 30)^2)\n"
 WELL = "H = p^2/2\nx in (0, pi)\nhalf = x < pi/2\nstate left = sin(x) + sin(2*x)\n"
-
-
-async def pressed(pilot, *keys):
-    """Press keys and wait until all they started is done."""
-    await pilot.press(*keys)
-    await settled(pilot)
-
-
-async def typed(pilot, text):
-    """Type text into a dialog and take it."""
-    await pilot.press(*text, "enter")
-    await settled(pilot)
-
-
-def words(pilot):
-    """Return the screen as one text."""
-    return "\n".join(lines(pilot))
 
 
 async def test_a_result_beyond_ends_the_chain():

@@ -4,7 +4,7 @@ import json
 
 import numpy as np
 import pytest
-from fake import lines, settled
+from fake import pressed, settled, typed, words
 
 from specterm.session import presets
 from specterm.tui.app import make_app
@@ -12,35 +12,11 @@ from specterm.tui.options import Options
 from specterm.tui.pages import LETTERS, NAMES
 
 WELL = "H = p^2/2\nx in (0, pi)\nhalf = x < pi/2\nstate left = sin(x) + sin(2*x)\n"
-SIZES = [(80, 24), (120, 40)]
 
 
 def well(text=WELL, folder=None):
     """Return an app on the infinite well of width pi: levels n^2/2."""
     return make_app(text, None, Options(glyphs="braille", folder=folder))
-
-
-@pytest.fixture(params=SIZES, ids=["80x24", "120x40"])
-def size(request):
-    """Return the size of the screen."""
-    return request.param
-
-
-async def pressed(pilot, *keys):
-    """Press keys and wait until all they started is done."""
-    await pilot.press(*keys)
-    await settled(pilot)
-
-
-async def typed(pilot, text):
-    """Type text into a dialog and take it."""
-    await pilot.press(*text, "enter")
-    await settled(pilot)
-
-
-def words(pilot):
-    """Return the screen as one text."""
-    return "\n".join(lines(pilot))
 
 
 async def test_every_page_has_a_key(size):

@@ -1,19 +1,13 @@
 """Saving, opening, presets and leaving, by key."""
 
 import pytest
-from fake import SHEET, app, lines, settled
+from fake import SHEET, app, lines, pressed, settled
 
 from specterm.session import presets
 from specterm.session.document import Document
 from specterm.session.place import folder
 from specterm.session.saved import Saved
 from specterm.session.store import Store, left_behind
-
-
-async def pressed(pilot, *keys):
-    """Press keys and wait until all they started is done."""
-    await pilot.press(*keys)
-    await settled(pilot)
 
 
 async def named(pilot, key, path):

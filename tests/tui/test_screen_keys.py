@@ -1,23 +1,9 @@
 """Every key of the screen does what its line in the help says, at both sizes."""
 
 import pytest
-from fake import SHEET, app, lines, settled
+from fake import SHEET, app, lines, pressed, settled
 
 from specterm.tui.keys import KEYS, TYPING, bottom
-
-SIZES = [(80, 24), (120, 40)]
-
-
-@pytest.fixture(params=SIZES, ids=["80x24", "120x40"])
-def size(request):
-    """Return the size of the screen."""
-    return request.param
-
-
-async def pressed(pilot, *keys):
-    """Press keys and wait until all they started is done."""
-    await pilot.press(*keys)
-    await settled(pilot)
 
 
 async def test_first_screen_shows_everything(size):

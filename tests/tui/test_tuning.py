@@ -1,8 +1,7 @@
 """Numbers nudged in their place, pins with shifts, slopes and sweeps on the screen, with the real engine."""
 
 import pytest
-from fake import lines, settled
-from test_pages import pressed, size, typed, words  # noqa: F401 - `size` is a fixture
+from fake import lines, pressed, settled, typed, words
 
 from specterm.session.pins import pin_from, unused_name
 from specterm.tui.app import make_app
@@ -21,7 +20,7 @@ def wells(text=SHEET):
     return make_app(text, None, Options(glyphs="braille"))
 
 
-async def test_a_number_is_picked_by_name_and_nudged_in_place(size):  # noqa: F811
+async def test_a_number_is_picked_by_name_and_nudged_in_place(size):
     """Key p picks by name; ] and [ step by the last digit written; } and { scale the step; comments stay; u undoes."""
     async with wells().run_test(size=size) as pilot:
         await settled(pilot)
@@ -61,7 +60,7 @@ async def test_nothing_to_nudge_is_said():
         assert "no plain number such as" in words(pilot)
 
 
-async def test_a_pin_stands_beside_with_shifts(size):  # noqa: F811
+async def test_a_pin_stands_beside_with_shifts(size):
     """P keeps the spectrum; after a nudge the table has the shifts, those of the closed form; V changes the column."""
     async with wells().run_test(size=size) as pilot:
         await settled(pilot)
@@ -109,7 +108,7 @@ async def test_a_crossing_is_seen_as_one():
         assert "was 0" in words(pilot)
 
 
-async def test_slopes_page(size):  # noqa: F811
+async def test_slopes_page(size):
     """The page of slopes has -2 E/L for the width of a well, and lines with z."""
     async with wells().run_test(size=size) as pilot:
         await settled(pilot)
@@ -119,7 +118,7 @@ async def test_slopes_page(size):  # noqa: F811
         assert "0-1" in words(pilot)
 
 
-async def test_sweep_page(size):  # noqa: F811
+async def test_sweep_page(size):
     """Key l asks for a range; the cursor moves along it; T writes its value into the sheet; x and r stop and go on."""
     async with wells().run_test(size=size) as pilot:
         await settled(pilot)
@@ -139,7 +138,7 @@ async def test_sweep_page(size):  # noqa: F811
         assert "range" in "\n".join(lines(pilot))
 
 
-async def test_fit_page(size, tmp_path):  # noqa: F811
+async def test_fit_page(size, tmp_path):
     """Lines of a well fit its width: matches are shown for approval, the result is written into the sheet on request."""
     (tmp_path / "seen.csv").write_text(
         "from,to,value,uncertainty\n" + "".join(f",,{level(n, 2.52) - level(0, 2.52):.8f},1e-6\n" for n in (1, 2))

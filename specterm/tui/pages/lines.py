@@ -57,7 +57,7 @@ def _rows(found: Transitions, room: Room) -> Rows:
     from specterm.views.line_table import line_columns  # noqa: PLC0415
 
     choices, units = room.look.choices, room.units
-    shown = [line for line in found.lines if line.start != line.to or choices.into is not None]
+    shown = found.between(found.lines)
     rows: list[Row] = [fit_row(((" " + _title(found, room), "title"),), room.width)]
     for note in found.notes[:2]:
         rows += [fit_row(((" " + line, "warn"),), room.width) for line in textwrap.wrap(note, max(10, room.width - 2))]

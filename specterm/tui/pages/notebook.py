@@ -9,7 +9,7 @@ from typing import TYPE_CHECKING, Any
 from specterm.session.notebook import Entry, Notebook
 from specterm.session.records import Record
 from specterm.tui.look import Look
-from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell
+from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell, prepared_in
 from specterm.tui.solving import Outcome
 from specterm.views.cells import Row, Rows, fit_row
 from specterm.views.columns import padded, text_rows
@@ -134,7 +134,7 @@ class NextFound:
 
 
 def _inquiry(look: Look, outcome: Outcome, bench: Bench) -> Next | None:
-    state = look.state or next(iter(outcome.states), None) or "level(0)"
+    state = prepared_in(look, outcome) or "level(0)"
     if outcome.spectrum is None or not outcome.spectrum.levels:
         return None
     choices, book = look.choices, bench.notebook

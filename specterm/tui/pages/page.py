@@ -83,9 +83,8 @@ class Room:
 class Page:
     """One page: its name, what it asks (None where there is nothing to ask), its rows, its data, what to do about None.
 
-    `alone` says that the rows make sense without a result; `keys` are the ids of the keys that act on it, with
-    what the bottom line says of one where it differs; `also` is a second
-    question that follows from the first answer.
+    `alone` says that the rows make sense without a result; `keys` are the ids of the keys that act on it, with what the bottom
+    line says of one where it differs; `also` is a second question that follows from the first answer.
     """
 
     name: str
@@ -96,6 +95,11 @@ class Page:
     alone: bool = False
     keys: tuple[str | tuple[str, str], ...] = ()
     also: Callable[[Any, Look, Outcome], Inquiry | None] | None = None
+
+
+def prepared_in(look: Look, outcome: Outcome) -> str | None:
+    """Return the state weighed, else the first one of the sheet, None where it has none."""
+    return look.state or next(iter(outcome.states), None)
 
 
 def subject_of(look: Look, outcome: Outcome) -> str | None:

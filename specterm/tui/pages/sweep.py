@@ -4,12 +4,14 @@ from __future__ import annotations
 
 import os
 from dataclasses import dataclass, replace
+from functools import lru_cache
 from typing import TYPE_CHECKING, Any
 
 from specterm.errors import SpectermError
 from specterm.session.records import Record
 from specterm.session.sweeps import journal_of
 from specterm.tui.look import Look
+from specterm.tui.numbers_of import numbers_of
 from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell
 from specterm.tui.solving import BuiltIn, Outcome, Request, compute
 from specterm.tui.terminal import start_tracker
@@ -20,7 +22,7 @@ from specterm.views.numbers import bracket, short, with_unit
 from specterm.views.scene import scene
 
 if TYPE_CHECKING:
-    from specterm.analysis.sweep import Point, Sweep, SweepRequest
+    from specterm.analysis.sweep import Axis, Point, Sweep, SweepRequest
 
 
 HERE = 1.5
@@ -76,21 +78,27 @@ class There:
 def request_of(look: Look, outcome: Outcome) -> SweepRequest | None:
     """Return the sweep chosen, None where none is; the present value of what is swept does not count."""
     from specterm.analysis.sweep_request import SweepRequest, axis_of, quantity_of  # noqa: PLC0415 - heavy
-    from specterm.language.edits import plain_numbers, with_number  # noqa: PLC0415
 
     ranges, asked = look.choices.sweep, outcome.request
     if not ranges:
         return None
     axes = tuple(axis_of(text) for text in ranges)
-    text, known = asked.text, plain_numbers(asked.text)
-    for axis in axes:
-        text = with_number(text, axis.name, axis.values[0]) if axis.name in known else text
     start = outcome.spectrum.levels[look.chosen].index if outcome.spectrum and outcome.spectrum.levels else 0
-    quantity = quantity_of(look.choices.quantity, start if look.choices.quantity not in ("levels",) else 0)
+    quantity = quantity_of(look.choices.quantity, start if look.choices.quantity != "levels" else 0)
     return SweepRequest(
-        text, axes, str(asked.folder.absolute()), tuple(sorted(asked.overrides.items())), asked.count, asked.near,
-        asked.tolerance, quantity,
+        _without_present(asked.text, axes), axes, str(asked.folder.absolute()), tuple(sorted(asked.overrides.items())),
+        asked.count, asked.near, asked.tolerance, quantity,
     )  # fmt: skip
+
+
+@lru_cache(maxsize=8)
+def _without_present(text: str, axes: tuple[Axis, ...]) -> str:
+    """Return the text with the first values of a sweep for the present ones; kept, as every redraw asks."""
+    from specterm.language.edits import with_number  # noqa: PLC0415 - heavy
+
+    for axis in axes:
+        text = with_number(text, axis.name, axis.values[0]) if axis.name in numbers_of(text) else text
+    return text
 
 
 def _inquiry(look: Look, outcome: Outcome, _: Bench) -> Swept | None:
@@ -103,9 +111,7 @@ def _inquiry(look: Look, outcome: Outcome, _: Bench) -> Swept | None:
 
 def _also(found: Sweep | None, look: Look, outcome: Outcome) -> There | None:
     """Return the question for the spectrum at the cursor of a sweep over a plain number."""
-    from specterm.language.edits import plain_numbers  # noqa: PLC0415 - it is loaded by now
-
-    if found is None or len(found.request.axes) != 1 or found.request.axes[0].name not in plain_numbers(outcome.request.text):
+    if found is None or len(found.request.axes) != 1 or found.request.axes[0].name not in numbers_of(outcome.request.text):
         return None
     place = min(look.choices.cursor, len(found.places) - 1)
     return There(outcome.request, found.request.axes[0].name, float(found.places[place, 0]))

@@ -10,20 +10,16 @@ import numpy as np
 
 from specterm.session.records import Record
 from specterm.tui.look import Look
-from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell
+from specterm.tui.pages.page import Bench, Page, Room, Stop, Tell, prepared_in
 from specterm.tui.solving import Outcome
 from specterm.views.cells import Row, Rows, fit_row
 from specterm.views.columns import padded
 from specterm.views.numbers import bracket, scale_of, short, with_unit
-from specterm.views.plain_table import known
 
 if TYPE_CHECKING:
     from specterm.analysis.evolution import Evolution, Packet
     from specterm.arrays import Array
 
-WANTED = 1 - 1e-9
-"""The share of the state that levels are computed for."""
-MOST_LEVELS = 300
 PLACES = 241
 MOST_NOTES = 3
 
@@ -39,18 +35,27 @@ class Course:
     def answer(self, outcome: Outcome, should_stop: Stop, _: Tell) -> CourseFound:
         """Return survival, means and the packet itself."""
         from specterm.analysis.capture import captured_by  # noqa: PLC0415 - heavy
-        from specterm.analysis.evolution import evolve, packet_of, usual_times  # noqa: PLC0415
+        from specterm.analysis.evolution import (  # noqa: PLC0415
+            MOST_LEVELS,
+            NEARLY_ALL,
+            evolve,
+            packet_of,
+            places_of,
+            usual_times,
+        )
 
         model, folder = outcome.model, outcome.request.folder
         spectrum, weights = captured_by(
-            model, self.state, WANTED, folder, tolerance=outcome.request.tolerance, most=MOST_LEVELS,
+            model, self.state, NEARLY_ALL, folder, tolerance=outcome.request.tolerance, most=MOST_LEVELS,
             least=len(outcome.spectrum.levels) if outcome.spectrum else 1, should_stop=should_stop,
         )  # fmt: skip
         first, last, count = self.times or usual_times(model, weights)
         times = np.linspace(first, last, count)
         found = evolve(model, spectrum, self.state, times.tolist(), self.observable, folder)
         packet = packet_of(model, spectrum, weights)
-        return CourseFound(found, packet, _places(packet, times, (spectrum.left, spectrum.right)))
+        some = times[:: max(1, len(times) // 60)]
+        places = places_of(packet, some, (spectrum.left, spectrum.right), PLACES, finer=8, least=1e-4)
+        return CourseFound(found, packet, places)
 
 
 @dataclass(frozen=True, eq=False)
@@ -62,17 +67,8 @@ class CourseFound:
     places: Array
 
 
-def _places(packet: Packet, times: Array, ends: tuple[float, float]) -> Array:
-    """Return places where the packet is at some of the times."""
-    wide = np.linspace(*ends, 8 * PLACES)
-    some = times[:: max(1, len(times) // 60)]
-    size = (np.abs(packet.wave(wide, some)) ** 2).max(axis=0)
-    alive = wide[size > 1e-4 * size.max()]
-    return np.linspace(alive[0], alive[-1], PLACES)
-
-
 def _inquiry(look: Look, outcome: Outcome, _: Bench) -> Course | None:
-    state = look.state or next(iter(outcome.states), None)
+    state = prepared_in(look, outcome)
     if state is None or outcome.spectrum is None or not outcome.spectrum.levels:
         return None
     return Course(state, look.choices.times, look.choices.observable)
@@ -107,25 +103,25 @@ def _rows(found: CourseFound, room: Room) -> Rows:
     return padded(rows, room.width, room.height)
 
 
-def _sure(e: Evolution, values: Array, errors: Array, place: int) -> str:
-    """Return a value with the digits that are sure, `-` where none is."""
-    scale = float(np.max(np.abs(e.mean) + np.where(np.isfinite(e.spread), e.spread, 0.0)))
-    return known([float(values[place])], [float(errors[place])], scale)[0]
+def _measured(text: str, unit: str) -> str:
+    """Return a number with its unit; what is not known has none."""
+    return "-" if text.strip() == "-" else with_unit(text.strip(), unit)
 
 
 def _words(found: CourseFound, place: int, width: int) -> list[tuple[str, str]]:
     """Return what is known at the cursor, of the state as a whole, and notes."""
+    from specterm.views.time_table import moment_texts, repeat_texts  # noqa: PLC0415 - it brings the engine
+
     e = found.evolution
     scale, unit = scale_of(e.unit)
+    mean, spread, unit_shown = moment_texts(e, slice(place, place + 1))
+    own = unit_shown if e.shown[0] != 1 else ""
     survival = bracket(float(e.survival[place]), float(e.survival_error[place]))
     here = [
         f"{e.state} at {with_unit(short(scale * float(e.times[place]), 6), unit)}", f"survival {survival}",
-        f"<{e.observable}> {_sure(e, e.mean, e.mean_error, place)}", f"spread {_sure(e, e.spread, e.spread_error, place)}",
+        f"<{e.observable}> {_measured(mean[0], own)}", f"spread {_measured(spread[0], own)}",
     ]  # fmt: skip
-    whole = [f"captured {short(e.captured, 10)}"]
-    for name, value in (("period", e.classical), ("revival", e.revival)):
-        if value is not None:
-            whole.append(f"{name} {with_unit(short(scale * value), unit)}")
+    whole = [f"captured {short(e.captured, 10)}", *repeat_texts(e)]
     notes = [line for note in e.notes for line in textwrap.wrap(note, max(10, width - 2))]
     return [("   ".join(here), "title"), ("   ".join(whole), "plain"), *((line, "warn") for line in notes[:MOST_NOTES])]
 
