@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Sequence
 
 import numpy as np
@@ -32,8 +33,11 @@ def element_columns(
 
 
 def element_text(value: complex, error: float) -> str:
-    """Return a complex number to six digits, or fewer where the error says so; a part below the error is left out."""
-    limit = max(error, 1e-12 * abs(value))
+    """Return a complex number to six digits, or fewer where the error says so; a part below the error is left out.
+
+    Without a known error (infinite or nan) the digits stand behind a `~`.
+    """
+    limit = max(error if math.isfinite(error) else 0.0, 1e-12 * abs(value))
     real, imaginary = abs(value.real) > limit, abs(value.imag) > limit
     if not real and not imaginary:
         return "0"

@@ -9,6 +9,7 @@ from standin import spectrum
 
 from specterm.spectrum.result import Level
 from specterm.views.cells import plain, row_width
+from specterm.views.element_table import element_text
 from specterm.views.level_table import Weighing, aligned, table, text_table
 from specterm.views.status import MomentsText, Units, state_line, trust_line
 from specterm.views.weight_bars import bar, percent
@@ -119,3 +120,10 @@ def test_trust_line_warns():
     assert row[0][1] == "warn"
     assert "3 levels, 2 bound, 1 UNRESOLVED, MAY BE INCOMPLETE" in row[0][0]
     assert trust_line(None, UNITS, 80) == (("no spectrum yet", "dim"),)
+
+
+def test_an_element_without_a_known_error_is_no_zero():
+    """What is not known to any digit is shown behind a mark, not as 0; what is below a known error is 0."""
+    assert element_text(3.08 + 0j, float("inf")) == "~3.08"
+    assert element_text(0.25j, float("nan")) == "~0.25i"
+    assert element_text(1e-9 + 0j, 1e-6) == "0"
